@@ -1,0 +1,1 @@
+"""Ground the rest stands on: errors, findings, numbers."""

@@ -1,0 +1,1 @@
+"""The case of one obligor: document, edits, storage, assessment."""

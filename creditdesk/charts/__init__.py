@@ -1,0 +1,1 @@
+"""Charts as matplotlib figures, the same for window and paper."""

@@ -1,0 +1,1 @@
+"""The safe formula language of ratios, rules and typed sums."""

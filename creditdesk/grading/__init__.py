@@ -1,0 +1,1 @@
+"""Master scale, house rules and the reasons given for a grade."""

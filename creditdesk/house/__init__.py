@@ -1,0 +1,1 @@
+"""The house book: everything a house configures."""

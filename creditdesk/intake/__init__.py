@@ -1,0 +1,1 @@
+"""Reading figures as people write them."""

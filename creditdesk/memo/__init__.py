@@ -1,0 +1,1 @@
+"""The PDF memo: content, layout, signatures, verification."""

@@ -1,0 +1,1 @@
+"""The scoring model: treatment, score, contributions, interval, calibration, fit."""

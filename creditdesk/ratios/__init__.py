@@ -1,0 +1,1 @@
+"""Ratios with a value or a reason why there is none."""

@@ -1,0 +1,1 @@
+"""Statements of a borrower: lines, periods, subtotals, disclosure, checks."""
