@@ -1,0 +1,55 @@
+"""Ground for every test: no display is needed, the user's home stays untouched, and nothing is skipped unseen."""
+
+import os
+import shutil
+from collections.abc import Generator, Iterator
+
+import pytest
+
+os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")  # a test that needs a real display starts its own process
+
+LONG = "--long"
+WINDOW_TOOLS = ("Xvfb", "xdotool")
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    parser.addoption(LONG, action="store_true", help="also run the campaigns that take minutes")
+
+
+def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
+    for item in items:
+        if item.get_closest_marker("long") and not config.getoption(LONG):
+            item.add_marker(pytest.mark.skip(reason=f"a campaign of minutes: add {LONG}"))
+        missing = [tool for tool in _tools_needed(item) if shutil.which(tool) is None]
+        if missing:
+            item.add_marker(pytest.mark.skip(reason=f"not installed: {', '.join(missing)}"))
+
+
+def _tools_needed(item: pytest.Item) -> list[str]:
+    tools = [tool for marker in item.iter_markers("needs") for tool in marker.args]
+    return [*tools, *WINDOW_TOOLS] if item.get_closest_marker("window_xvfb") else tools
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, pytest.TestReport, pytest.TestReport]:
+    """Let nothing but the long campaigns be skipped where CI=true: there every tool is to be present."""
+    report = yield
+    if (
+        report.skipped
+        and not hasattr(report, "wasxfail")
+        and os.environ.get("CI") == "true"
+        and not item.get_closest_marker("long")
+    ):
+        report.outcome = "failed"
+        report.longrepr = f"skipped where everything must run: {report.longrepr}"
+    return report
+
+
+@pytest.fixture(scope="session", autouse=True)
+def _own_home(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
+    """Give the run an empty home for settings, caches and reports."""
+    home = tmp_path_factory.mktemp("home")
+    with pytest.MonkeyPatch.context() as patch:
+        for name in ("XDG_CONFIG_HOME", "XDG_DATA_HOME", "XDG_STATE_HOME", "XDG_CACHE_HOME"):
+            patch.setenv(name, str(home / name.lower()))
+        yield
