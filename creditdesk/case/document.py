@@ -1,0 +1,97 @@
+"""The case of one obligor: everything a person entered, and nothing that follows from it."""
+
+from collections.abc import Mapping
+from datetime import date
+from enum import StrEnum
+
+import msgspec
+
+from creditdesk.statements.adjust import Adjustment
+from creditdesk.statements.period import Period
+
+
+class LegalForm(StrEnum):
+    """Name the obligor's legal form; the last three are refused, as natural persons are outside the purpose."""
+
+    COMPANY = "company"
+    PARTNERSHIP = "partnership"
+    PUBLIC_BODY = "public_body"
+    OTHER = "other"
+    NATURAL_PERSON = "natural_person"
+    SOLE_TRADER = "sole_trader"
+    PARTNERSHIP_OF_INDIVIDUALS = "partnership_of_individuals"
+
+
+REFUSED_FORMS = frozenset(
+    {LegalForm.NATURAL_PERSON, LegalForm.SOLE_TRADER, LegalForm.PARTNERSHIP_OF_INDIVIDUALS},
+)
+
+
+class SectorScheme(StrEnum):
+    """Name the classification a sector letter belongs to."""
+
+    ISIC4 = "ISIC4"
+    ISIC5 = "ISIC5"
+    NACE21 = "NACE2.1"
+
+
+class _Part(msgspec.Struct, frozen=True, forbid_unknown_fields=True, omit_defaults=True):
+    """Share the settings of every part of the case."""
+
+
+class Rates(_Part, frozen=True):
+    """Hold exchange rates of one date: units of foreign currency per unit of the case's currency, by ISO 4217 code.
+
+    In the exchange file the currencies stand beside ``date`` in ``[obligor.rates]``.
+    """
+
+    date: date
+    per_unit: Mapping[str, float] = msgspec.field(default_factory=dict)
+
+
+class Obligor(_Part, frozen=True):
+    """Identify the borrower and the unit of its figures; ``unit`` is 1, 1000 or 1000000 of ``currency``."""
+
+    name: str
+    legal_form: LegalForm
+    country: str
+    sector: str
+    currency: str
+    unit: int
+    sector_scheme: SectorScheme = SectorScheme.ISIC4
+    activity: str = ""
+    lei: str = ""
+    rates: Rates | None = None
+
+
+class Assessment(_Part, frozen=True):
+    """State the only date that counts as today, and the assessed period's end; None: chosen by rule, with a note."""
+
+    date: date | None = None
+    period: date | None = None
+
+
+class ModelChoice(_Part, frozen=True):
+    """Name the lead model: a name in the house book, or a path."""
+
+    lead: str = ""
+
+
+class Case(_Part, frozen=True):
+    """Hold one assessment as entered.
+
+    ``figures`` and ``printed``: per line item or total, one amount per period in the case's unit, nan where not
+    disclosed; lines never mentioned are not disclosed. ``typed``: the sum as typed, "" where a plain number was.
+    ``notes``: per line, one text per period. ``texts``: the officer's blocks (request, recommendation, conditions, …).
+    """
+
+    obligor: Obligor
+    periods: tuple[Period, ...]
+    figures: Mapping[str, tuple[float, ...]]
+    assessment: Assessment = Assessment()
+    model: ModelChoice = ModelChoice()
+    printed: Mapping[str, tuple[float, ...]] = msgspec.field(default_factory=dict)
+    adjustments: tuple[Adjustment, ...] = ()
+    typed: Mapping[str, tuple[str, ...]] = msgspec.field(default_factory=dict)
+    notes: Mapping[str, tuple[str, ...]] = msgspec.field(default_factory=dict)
+    texts: Mapping[str, str] = msgspec.field(default_factory=dict)
