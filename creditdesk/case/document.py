@@ -1,7 +1,7 @@
 """The case of one obligor: everything a person entered, and nothing that follows from it."""
 
+import datetime
 from collections.abc import Mapping
-from datetime import date
 from enum import StrEnum
 
 import msgspec
@@ -45,7 +45,7 @@ class Rates(_Part, frozen=True):
     In the exchange file the currencies stand beside ``date`` in ``[obligor.rates]``.
     """
 
-    date: date
+    date: datetime.date
     per_unit: Mapping[str, float] = msgspec.field(default_factory=dict)
 
 
@@ -67,8 +67,8 @@ class Obligor(_Part, frozen=True):
 class Assessment(_Part, frozen=True):
     """State the only date that counts as today, and the assessed period's end; None: chosen by rule, with a note."""
 
-    date: date | None = None
-    period: date | None = None
+    date: datetime.date | None = None
+    period: datetime.date | None = None
 
 
 class ModelChoice(_Part, frozen=True):
