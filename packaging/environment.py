@@ -192,8 +192,8 @@ def _install_system_packages(why: str) -> None:
     print(f"{why}: installing the packages of the system ...", flush=True)
     quiet = {**os.environ, "DEBIAN_FRONTEND": "noninteractive"}
     subprocess.run(["apt-get", "update", "-qq"], env=quiet, check=False)
-    line = ["apt-get", "install", "-y", "-qq", "--no-install-recommends", *_names_here()]
-    if subprocess.run(line, env=quiet, check=False).returncode != 0:
+    line = ["apt-get", "install", "-y", "--no-install-recommends", *_names_here()]
+    if subprocess.run(line, env=quiet, check=False, stdout=subprocess.DEVNULL).returncode != 0:
         raise Unable(f"{why}. This failed, see above: {' '.join(line)}")
     importlib.invalidate_caches()
 

@@ -41,7 +41,10 @@ def stages(python: Path, for_pytest: list[str]) -> list[Stage]:
         Stage("rules", [*module, "ruff", "check", "--quiet", "."]),
         Stage("types", [*module, "mypy", "--strict", "--no-error-summary", "creditdesk"]),
         Stage("types of the scripts", [*module, "mypy", "--strict", "--no-error-summary", *scripts]),
-        Stage("imports", [str(python), "-c", "from importlinter.cli import lint_imports_command as run; run()"]),
+        Stage(
+            "imports",
+            [str(python), "-c", "from importlinter.cli import lint_imports_command as run; run(['--no-logo'])"],
+        ),
         Stage("sizes", [str(python), str(packaging / "size_check.py")]),
         Stage("tests", [*module, "pytest", "-q", "-n", "2", "--dist", "loadgroup", *for_pytest]),
     ]

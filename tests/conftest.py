@@ -16,8 +16,11 @@ def pytest_addoption(parser: pytest.Parser) -> None:
     parser.addoption(LONG, action="store_true", help="also run the campaigns that take minutes")
 
 
+@pytest.hookimpl(tryfirst=True)
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
     for item in items:
+        if item.get_closest_marker("window_xvfb"):
+            item.add_marker(pytest.mark.xdist_group("window"))  # real keys need the machine's attention: one at a time
         if item.get_closest_marker("long") and not config.getoption(LONG):
             item.add_marker(pytest.mark.skip(reason=f"a campaign of minutes: add {LONG}"))
         missing = [tool for tool in _tools_needed(item) if shutil.which(tool) is None]

@@ -93,3 +93,15 @@ def test_package_names_follow_the_release() -> None:
     assert "libglib2.0-0" in environment.names_among({"libglib2.0-0"})
     assert "libglib2.0-0t64" in environment.names_among({"libglib2.0-0t64"})
     assert "libglib2.0-0" in environment.names_among(set())
+
+
+def test_without_rights_the_exact_line_is_said_and_nothing_is_installed(
+    place: environment.Place, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(environment.importlib.util, "find_spec", lambda _name: None)
+    monkeypatch.setattr(environment.shutil, "which", lambda name: f"/usr/bin/{name}")
+    monkeypatch.setattr(environment, "_is_root", lambda: False)
+    monkeypatch.setattr(environment, "_names_here", lambda: ["python3-venv", "libegl1"])
+    with pytest.raises(environment.Unable, match=r"sudo apt-get install -y python3-venv libegl1$"):
+        environment.ready("", place.root)
+    assert not place.growing.exists()
