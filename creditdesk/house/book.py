@@ -53,7 +53,10 @@ class LoadedModel:
 
 @dataclass(frozen=True)
 class HouseBook:
-    """Hold a compiled house book; ``files``: relative name -> bytes as read, the source of ``digest`` and of the zip."""
+    """Hold a compiled house book.
+
+    ``files``: relative name -> bytes as read, the source of ``digest`` and of the zip.
+    """
 
     settings: HouseSettings
     chart: Chart
