@@ -2,7 +2,10 @@
 
 import os
 import shutil
+import sys
+import threading
 from collections.abc import Generator, Iterator
+from typing import Any
 
 import pytest
 
@@ -56,3 +59,26 @@ def _own_home(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
         for name in ("XDG_CONFIG_HOME", "XDG_DATA_HOME", "XDG_STATE_HOME", "XDG_CACHE_HOME"):
             patch.setenv(name, str(home / name.lower()))
         yield
+
+
+@pytest.fixture(autouse=True)
+def _nothing_left_behind() -> Iterator[None]:
+    """Fail a test that leaves a window open or a thread running."""
+    threads = set(threading.enumerate())
+    windows = set(_windows())
+    yield
+    running = [thread.name for thread in threading.enumerate() if thread not in threads and not thread.daemon]
+    assert not running, f"threads still run: {running}"
+    left = [f"{type(window).__name__} {window.objectName()}" for window in _windows() if window not in windows]
+    assert not left, f"windows are left behind: {left}"
+
+
+def _windows() -> list[Any]:
+    """List the widgets without a parent, once Qt has done its postponed deletions; none where Qt is not in use."""
+    widgets = sys.modules.get("PySide6.QtWidgets")
+    if widgets is None or widgets.QApplication.instance() is None:
+        return []
+    core = sys.modules["PySide6.QtCore"]
+    core.QThreadPool.globalInstance().waitForDone(10_000)
+    core.QCoreApplication.sendPostedEvents(None, core.QEvent.Type.DeferredDelete.value)
+    return [widget for widget in widgets.QApplication.topLevelWidgets() if widget.parent() is None]
