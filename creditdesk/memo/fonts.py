@@ -8,22 +8,31 @@ from reportlab.pdfbase.ttfonts import TTFont
 
 from creditdesk.house.fontfiles import Face, font_path
 
-# In running text, <b> is the semibold: the bold is for what stands alone.
-_FAMILIES = (
-    (Face.SANS, Face.SANS_SEMIBOLD, Face.SANS_ITALIC, Face.SANS_SEMIBOLD_ITALIC),
-    (Face.SERIF, Face.SERIF_SEMIBOLD, Face.SERIF_ITALIC, Face.SERIF_SEMIBOLD_ITALIC),
-)
+_WEIGHTS = ("", "_SEMIBOLD", "_BOLD")
 
 
 @cache
 def register_fonts() -> None:
-    """Make every face known to reportlab under its ``Face`` value, with <b> and <i> for the two regular ones."""
+    """Make every face known to reportlab under its ``Face`` value; <b> is one weight up, <i> the italic."""
     for face in Face:
         pdfmetrics.registerFont(TTFont(str(face), str(font_path(face))))
-    for regular, bold, italic, bold_italic in _FAMILIES:
+    for face in Face:
+        family, weight, slant = _parts(face)
+        bolder = _WEIGHTS[min(_WEIGHTS.index(weight) + 1, len(_WEIGHTS) - 1)]
         pdfmetrics.registerFontFamily(
-            str(regular), normal=str(regular), bold=str(bold), italic=str(italic), boldItalic=str(bold_italic)
+            str(face),
+            normal=str(face),
+            bold=str(Face[family + bolder + slant]),
+            italic=str(Face[family + weight + "_ITALIC"]),
+            boldItalic=str(Face[family + bolder + "_ITALIC"]),
         )
+
+
+def _parts(face: Face) -> tuple[str, str, str]:
+    """Return family, weight and slant of a face, as they stand in its member's name."""
+    family, *rest = face.name.split("_")
+    slant = "_ITALIC" if "ITALIC" in rest else ""
+    return family, "".join("_" + word for word in rest if word != "ITALIC"), slant
 
 
 def missing_glyphs(text: str, font: Face = Face.SANS) -> str:
