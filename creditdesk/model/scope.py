@@ -1,0 +1,85 @@
+"""Whether a borrower is one the model was made for, in plain words, and from which day its PD runs."""
+
+from calendar import monthrange
+from collections.abc import Iterator
+from dataclasses import dataclass
+from datetime import date
+from math import isnan
+
+from creditdesk.model.spec import HorizonFrom, ModelSpec
+
+
+@dataclass(frozen=True, slots=True)
+class Borrower:
+    """Hold what a scope looks at; ``total_assets`` in single units of the model's currency, nan where unknown."""
+
+    legal_form: str
+    country: str
+    sector: str
+    sector_scheme: str
+    total_assets: float
+
+
+def out_of_scope(spec: ModelSpec, borrower: Borrower) -> tuple[str, ...]:
+    """Say in sentences why a borrower is outside the model's scope; empty where nothing speaks against it."""
+    return (*_kind(spec, borrower), *_sector(spec, borrower), *_size(spec, borrower))
+
+
+def _kind(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
+    scope = spec.scope
+    if scope.legal_forms and borrower.legal_form not in scope.legal_forms:
+        yield f"legal form {_words(borrower.legal_form)}: the model was made for {_listed(scope.legal_forms)}"
+    if scope.countries and borrower.country not in scope.countries:
+        yield f"country {borrower.country}: the model was made for {_listed(scope.countries)}"
+
+
+def _sector(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
+    sectors = spec.scope.sectors
+    if not sectors:
+        return
+    letters = sectors.get(borrower.sector_scheme)
+    if letters is None:
+        yield f"sector by {borrower.sector_scheme}: the model's sectors are stated in {_listed(tuple(sectors))} only"
+    elif borrower.sector not in letters:
+        scheme = borrower.sector_scheme
+        yield f"sector {borrower.sector} ({scheme}): the model was made for {_listed(letters)}"
+
+
+def _size(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
+    low, high, size = spec.scope.total_assets_low, spec.scope.total_assets_high, borrower.total_assets
+    if low is None and high is None:
+        return
+    if isnan(size):
+        yield f"total assets in {spec.currency} are not known, so the model's range of sizes cannot be checked"
+    elif low is not None and size < low:
+        yield f"total assets {size:,.0f} {spec.currency}: the model was made for {low:,.0f} and above"
+    elif high is not None and size > high:
+        yield f"total assets {size:,.0f} {spec.currency}: the model was made for up to {high:,.0f}"
+
+
+def pd_runs_from(spec: ModelSpec, period_end: date, assessed_on: date) -> date:
+    """Return the date from which the PD's months are counted: the stated date plus the lag of the sample."""
+    start = period_end if spec.horizon_from is HorizonFrom.PERIOD_END else assessed_on
+    return add_months(start, spec.sample_lag_months)
+
+
+def pd_runs_to(spec: ModelSpec, period_end: date, assessed_on: date) -> date:
+    """Return the last date the PD covers."""
+    start = period_end if spec.horizon_from is HorizonFrom.PERIOD_END else assessed_on
+    return add_months(start, spec.sample_lag_months + spec.horizon_months)
+
+
+def add_months(start: date, months: int) -> date:
+    """Move a date by whole months; the last day of a month stays the last day."""
+    ends_month = start.day == monthrange(start.year, start.month)[1]
+    year, month = divmod(start.year * 12 + start.month - 1 + months, 12)
+    last = monthrange(year, month + 1)[1]
+    return date(year, month + 1, last if ends_month else min(start.day, last))
+
+
+def _words(key: str) -> str:
+    return key.replace("_", " ")
+
+
+def _listed(keys: tuple[str, ...]) -> str:
+    return ", ".join(_words(key) for key in keys)
