@@ -1,0 +1,57 @@
+"""How charts and memo word a value, a direction and a period: the same on window and paper."""
+
+from collections.abc import Callable
+
+from creditdesk.base.display import MINUS, format_amount, format_days, format_number, format_percent, format_times
+from creditdesk.case.standing import FactorStanding, Standing
+
+REASON_WORDS = {
+    "net_cash": "net cash",
+    "no_debt": "no debt",
+    "not_disclosed": "not disclosed",
+    "needs_prior_period": "no prior year",
+    "zero_denominator": "divisor nil",
+    "negative_denominator": "divisor negative",
+}
+
+_BY_UNIT: dict[str, Callable[[float], str]] = {
+    "percent": format_percent,
+    "times": format_times,
+    "days": format_days,
+    "money": format_amount,
+}
+
+
+def ratio_text(value: float, unit: str) -> str:
+    """Write a ratio in its unit: 26.5 %, 2.50x, 64 days, 1 250; any other unit as a number with two decimals."""
+    write = _BY_UNIT.get(unit)
+    return write(value) if write else format_number(value, 2)
+
+
+def factor_value(factor: FactorStanding) -> str:
+    """Write a factor's value in its unit, or in few words why it has none."""
+    if factor.value is not None:
+        return ratio_text(factor.value, factor.unit)
+    return REASON_WORDS.get(factor.reason or "", factor.reason or "")
+
+
+def signed(value: float, decimals: int = 2) -> str:
+    """Write a contribution with its sign: +0.27, −0.34; what rounds to nil carries none."""
+    written = format_number(value, decimals)
+    nil = not any(digit in written for digit in "123456789∞")
+    return written if nil or written.startswith(MINUS) else f"+{written}"
+
+
+def contribution_scale(link: str) -> str:
+    """Name the scale on which contributions are measured."""
+    return {"logit": "log-odds", "probit": "index units"}.get(link, "score units")
+
+
+def what_it_moves(link: str) -> str:
+    """Name what a positive contribution raises: the PD, or the score alone where the model gives no PD."""
+    return "PD" if link in ("logit", "probit") else "the score"
+
+
+def period_name(standing: Standing) -> str:
+    """Name the assessed period."""
+    return str(standing.period.year)
