@@ -70,7 +70,7 @@ _FAR_BOTTOM = (
 )
 
 
-def scaled_upper_tail(distance: NDArray[np.float64]) -> NDArray[np.float64]:
+def upper_tail(distance: NDArray[np.float64]) -> NDArray[np.float64]:
     """Give P(Z > x) = erfc(x / sqrt 2) / 2 for x at or above zero; nan stays nan."""
     reduced = distance * _ROOT_HALF
     centre = 0.5 - 0.5 * _centre(np.minimum(reduced, _CENTRE_EDGE))

@@ -5,7 +5,7 @@ from typing import overload
 import numpy as np
 from numpy.typing import NDArray
 
-from creditdesk.base.erfc import scaled_upper_tail
+from creditdesk.base.erfc import upper_tail
 
 COMPARISON_DIGITS = 12
 """Significant digits kept before a probability is compared with a grade's edge."""
@@ -57,7 +57,7 @@ def normal_cdf(index: float | NDArray[np.float64]) -> float | NDArray[np.float64
     Both tails keep their relative accuracy. An unknown index (nan) stays unknown.
     """
     values = np.asarray(index, dtype=np.float64)
-    tail = scaled_upper_tail(np.abs(values))
+    tail = upper_tail(np.abs(values))
     return _like(index, np.where(values > 0, 1.0 - tail, tail))
 
 
