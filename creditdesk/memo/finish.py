@@ -102,8 +102,9 @@ class _Tree:
         marks = [kid for kid in node.kids if isinstance(kid, Mark)]
         if marks:
             written.Pg = self._pages[marks[0].page]
-        if node.kids:
-            written.K = Array([self._kid(kid, written, marks[0].page if marks else None) for kid in node.kids])
+        kids = [self._kid(kid, written, marks[0].page if marks else None) for kid in node.kids]
+        if kids:  # one kid stands without an array: so a signature field is found again after it was filled in
+            written.K = Array(kids) if len(kids) > 1 else kids[0]
         return written
 
     def _kid(
