@@ -35,6 +35,24 @@ class SectorScheme(StrEnum):
     NACE21 = "NACE2.1"
 
 
+TEXT_BLOCKS: Mapping[str, str] = {
+    "obligor": "Who the borrower is, what it makes, who owns and runs it",
+    "request": "What is asked for: amount, purpose, tenor, repayment, security",
+    "business": "Business model, market, customers and suppliers",
+    "management": "Management, its experience, key persons",
+    "group": "Group, connected clients, guarantors",
+    "environment": "Environmental, social and governance exposure and what limits it",
+    "foreign_exchange": "Foreign currency in sales, purchases and debt",
+    "strengths": "What speaks for the borrower",
+    "weak_spots": "What speaks against the borrower",
+    "recommendation": "What the officer recommends, and why",
+    "conditions": "Conditions and preconditions of the recommendation",
+    "monitoring": "What is watched, by whom, until when",
+    "remarks": "Anything else",
+}
+"""Blocks of text a case can carry, written by a person and never by the program: key -> what belongs there."""
+
+
 class _Part(msgspec.Struct, frozen=True, forbid_unknown_fields=True, omit_defaults=True):
     """Share the settings of every part of the case."""
 

@@ -79,11 +79,17 @@ def decode_toml(
     called on faulty files too and has to bear any content. Raises UserError ``not_toml`` with line and column, or
     ``faults`` with one line per fault: ``file: place: found …, allowed …``.
     """
-    raw = parse_toml(data, file=file)
+    return convert_tables(parse_toml(data, file=file), shape, file=file, extra_faults=extra_faults)
+
+
+def convert_tables(
+    raw: Table, shape: type[Shape], *, file: str, extra_faults: Callable[[Table], Iterable[Fault]] = no_faults
+) -> Shape:
+    """Turn tables already parsed into ``shape``; otherwise as ``decode_toml``."""
     faults: list[Fault] = []
     value: Shape | None = None
     try:
-        value = msgspec.convert(raw, shape)
+        value = msgspec.convert(raw, shape, builtin_types=(datetime.date,))  # a date in quotes is a text
     except (msgspec.ValidationError, OverflowError, RecursionError) as error:
         faults += type_faults(raw, shape) or [_fault_of_msgspec(str(error))]
     faults += extra_faults(raw)
