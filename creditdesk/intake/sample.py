@@ -1,24 +1,24 @@
 """A sample of many borrowers from a CSV file: one row each, one column per ratio, reasons written as words."""
 
-from collections.abc import Mapping
+import csv
+import re
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from math import isfinite
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.base.errors import UserError
 
-if TYPE_CHECKING:
-    import pandas as pd
-
 FloatArray = NDArray[np.float64]
 ReasonArray = NDArray[np.uint8]
 
+_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d{1,3})?", re.ASCII)
+_EMPTY = "not_disclosed"
 _SHOWN = 20
 """Faults listed one by one before the rest is only counted."""
-_EMPTY = "not_disclosed"
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,64 +35,68 @@ class SampleTable:
 
 
 def read_sample(path: Path, reason_codes: Mapping[str, int]) -> SampleTable:
-    """Read a sample: UTF-8, commas, first row the names, decimal points.
+    """Read a sample: UTF-8, commas, first row the names, decimal points, blank lines skipped.
 
     A cell is a number, or empty (not disclosed), or the word of a reason among ``reason_codes`` (``no_debt``); a column
-    with neither number nor reason in any cell is text. Raises UserError ``unreadable_sample`` or ``bad_sample`` with
-    every fault: file, row, column, what stands there.
+    without a single number or reason is text. Raises UserError ``unreadable_sample`` or ``bad_sample`` with every
+    fault: file, line, column, what stands there.
     """
-    frame = _read(path)
-    columns = {str(name): frame[name].str.strip() for name in frame.columns}
-    faults: list[str] = []
+    names, lines, rows = _read(path)
+    faults: list[tuple[int, str]] = []
     values, reasons, text = {}, {}, {}
-    for name, cells in columns.items():
+    for name, cells in zip(names, zip(*rows, strict=True), strict=True):
         numbers, codes, wrong = _parse(cells, reason_codes)
-        if _is_text(numbers, codes, wrong):
-            text[name] = tuple(cells)
+        if len(wrong) and np.all(np.isnan(numbers)) and not any(cell in reason_codes for cell in cells):
+            text[name] = cells
             continue
         values[name], reasons[name] = numbers, codes
-        faults += [f"{path}: row {row + 2}, column {name!r}: {cells[row]!r}" for row in np.flatnonzero(wrong)]
+        faults += [(lines[row], f"column {name!r}: {cells[row]!r}") for row in wrong]
     if faults:
-        raise UserError("bad_sample", _shortened(faults, reason_codes))
-    return SampleTable(len(frame), values, reasons, text)
+        raise UserError("bad_sample", _sentences(path, sorted(faults), reason_codes))
+    return SampleTable(len(rows), values, reasons, text)
 
 
-def _read(path: Path) -> "pd.DataFrame":
-    import pandas as pd
-
+def _read(path: Path) -> tuple[list[str], list[int], list[list[str]]]:
+    """Return names, line numbers and cells; every row has as many cells as there are names."""
     try:
         with path.open(encoding="utf-8-sig", newline="") as stream:
-            frame = pd.read_csv(stream, dtype=str, keep_default_na=False, header=None, skip_blank_lines=True)
-    except (OSError, UnicodeDecodeError, pd.errors.ParserError, pd.errors.EmptyDataError) as error:
+            reader = csv.reader(stream, strict=True)
+            numbered = [(reader.line_num, [cell.strip() for cell in row]) for row in reader if row]
+    except (OSError, UnicodeDecodeError, csv.Error) as error:
         raise UserError("unreadable_sample", f"{path}: {error}; expected a CSV file in UTF-8 with commas") from error
-    names = [str(name).strip() for name in frame.iloc[0]]
+    if len(numbered) < 2:
+        raise UserError("unreadable_sample", f"{path}: expected a row of names and at least one row below it")
+    names = numbered[0][1]
     repeated = sorted({name for name in names if names.count(name) > 1 or not name})
-    if repeated or len(frame) < 2:
-        what = (
-            f"column names {', '.join(map(repr, repeated))} empty or repeated" if repeated else "no row below the names"
-        )
-        raise UserError("unreadable_sample", f"{path}: {what}")
-    return frame.iloc[1:].set_axis(names, axis=1).reset_index(drop=True)
+    if repeated:
+        raise UserError("unreadable_sample", f"{path}: column names {repeated} empty or repeated")
+    _refuse_ragged(path, len(names), numbered[1:])
+    return names, [line for line, _ in numbered[1:]], [row for _, row in numbered[1:]]
 
 
-def _parse(
-    cells: "pd.Series[str]", reason_codes: Mapping[str, int]
-) -> tuple[FloatArray, ReasonArray, NDArray[np.bool_]]:
-    """Return numbers, reason codes and the cells that are neither."""
-    import pandas as pd
-
-    named = cells.where(cells != "", _EMPTY).map(reason_codes)
-    codes = named.fillna(0).to_numpy(dtype=np.uint8)
-    numbers = pd.to_numeric(cells, errors="coerce").to_numpy(dtype=np.float64)
-    wrong = np.asarray((codes == 0) & ~np.isfinite(numbers), dtype=np.bool_)
-    return np.where((codes == 0) & ~wrong, numbers, np.nan), codes, wrong
+def _refuse_ragged(path: Path, width: int, numbered: Sequence[tuple[int, list[str]]]) -> None:
+    ragged = [
+        f"{path}: line {line} has {len(row)} cells, expected {width}" for line, row in numbered if len(row) != width
+    ]
+    if ragged:
+        raise UserError("bad_sample", _shortened(ragged))
 
 
-def _is_text(numbers: FloatArray, codes: ReasonArray, wrong: NDArray[np.bool_]) -> bool:
-    return bool(np.all(np.isnan(numbers)) and np.any(wrong))
+def _parse(cells: Sequence[str], reason_codes: Mapping[str, int]) -> tuple[FloatArray, ReasonArray, list[int]]:
+    """Return numbers, reason codes, and the rows whose cell is neither."""
+    numeric = [_NUMBER.fullmatch(cell) is not None for cell in cells]
+    numbers = [float(cell) if is_number else np.nan for cell, is_number in zip(cells, numeric, strict=True)]
+    codes = [
+        0 if is_number else reason_codes.get(cell or _EMPTY, 0) for cell, is_number in zip(cells, numeric, strict=True)
+    ]
+    wrong = [row for row, number in enumerate(numbers) if not isfinite(number) and not codes[row]]
+    return np.array(numbers, dtype=np.float64), np.array(codes, dtype=np.uint8), wrong
 
 
-def _shortened(faults: list[str], reason_codes: Mapping[str, int]) -> list[str]:
+def _sentences(path: Path, faults: list[tuple[int, str]], reason_codes: Mapping[str, int]) -> list[str]:
     expected = f"expected a number, an empty cell, or one of {', '.join(reason_codes)}"
-    shown = [f"{fault}, {expected}" for fault in faults[:_SHOWN]]
-    return shown if len(faults) <= _SHOWN else [*shown, f"and {len(faults) - _SHOWN} more such cells"]
+    return _shortened([f"{path}: line {line}, {fault}, {expected}" for line, fault in faults])
+
+
+def _shortened(faults: list[str]) -> list[str]:
+    return faults if len(faults) <= _SHOWN else [*faults[:_SHOWN], f"and {len(faults) - _SHOWN} more such faults"]

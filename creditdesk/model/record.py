@@ -63,7 +63,7 @@ def _bins(scores: FloatArray, outcome: FloatArray, errors: FloatArray, described
     for rows in _groups(scores, described.bin_edges):
         defaults, borrowers = int(np.sum(outcome[rows])), int(rows.size)
         low, high = wilson(defaults, borrowers, described.interval_level)
-        yield Bin(_mean(scores[rows]), borrowers, defaults, low, high, _mean(errors[rows]))
+        yield Bin(_mean(scores[rows]), borrowers, defaults, _rounded(low), _rounded(high), _mean(errors[rows]))
 
 
 def _groups(scores: FloatArray, shares: tuple[float, ...]) -> list[NDArray[np.int64]]:
