@@ -54,6 +54,8 @@ class Identity:
     name: str
     fingerprint_sha256: str
     key_fingerprint: str
+    valid_from: datetime
+    valid_to: datetime
     signer: SimpleSigner = field(repr=False)
 
 
@@ -139,6 +141,8 @@ def load_identity(path: Path, passphrase: str, *, now: datetime) -> Identity:
         name=certificate_name(certificate),
         fingerprint_sha256=hashlib.sha256(der).hexdigest(),
         key_fingerprint=hashlib.sha256(parsed.public_key.dump()).hexdigest(),
+        valid_from=certificate.not_valid_before_utc,
+        valid_to=certificate.not_valid_after_utc,
         signer=signer,
     )
 

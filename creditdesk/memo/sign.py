@@ -24,7 +24,7 @@ from creditdesk.base.errors import BugError, Refusal, UserError
 from creditdesk.memo.canonical import canonical_cms, canonical_contents
 from creditdesk.memo.decision import DECISION_WORDS, PREPARED, Decision, Role, as_reason, plain_line
 from creditdesk.memo.identity import Identity
-from creditdesk.memo.signatures import SignatureReport, State, inspect
+from creditdesk.memo.signatures import SignatureReport, State, form_fields, inspect
 from creditdesk.memo.stamp import StampText, appearance, refuse_unprintable, stamp_facts
 
 _DIGEST = "sha256"
@@ -99,20 +99,34 @@ class _FormFillingWriter(IncrementalPdfFileWriter):
 
 def _signed(pdf: bytes, identity: Identity, order: _Order) -> bytes:
     refuse_unprintable(order.stamp)
+    _refuse_time_outside_validity(identity, order.time)
     try:
         writer = _FormFillingWriter(BytesIO(pdf), strict=True)
-        _refuse_without_fields(writer, order.role)
+        _refuse_unfit_for_signing(writer, order.role)
         return _filled(writer, identity, order)
     except (PdfError, SigningError) as error:
         raise UserError("sign.unreadable", f"The file cannot be signed: {error}.") from error
 
 
-def _refuse_without_fields(writer: IncrementalPdfFileWriter, role: Role) -> None:
+def _refuse_unfit_for_signing(writer: IncrementalPdfFileWriter, role: Role) -> None:
     signed = {str(name): value is not None for name, value, _ in enumerate_sig_fields(writer.prev)}
-    if set(signed) != set(Role):
-        raise UserError("sign.fields", f"The file is no memo: it lacks the fields {' and '.join(Role)}.")
+    if set(signed) != set(Role) or form_fields(writer.prev) != sorted(Role):
+        raise UserError(
+            "sign.fields", f"The file is no memo: its form must have the fields {' and '.join(Role)} alone."
+        )
     if role is Role.PREPARER and any(signed.values()):
         raise UserError("sign.done", "The memo is signed already.")
+    if role is Role.PREPARER and writer.prev.total_revisions != 1:
+        raise UserError("sign.changed", "The memo was changed after it was made: make it anew and sign that.")
+
+
+def _refuse_time_outside_validity(identity: Identity, time: datetime) -> None:
+    first, last = identity.valid_from, identity.valid_to
+    if not first <= time <= last:
+        raise UserError(
+            "sign.time",
+            f"The certificate is valid from {first:%Y-%m-%d} to {last:%Y-%m-%d}; it cannot sign on {time:%Y-%m-%d}.",
+        )
 
 
 def _filled(writer: IncrementalPdfFileWriter, identity: Identity, order: _Order) -> bytes:

@@ -141,8 +141,8 @@ def _check_document(reader: PdfFileReader, signatures: list[EmbeddedPdfSignature
     roles = [str(signature.field_name) for signature in signatures]
     if roles != list(Role)[: len(roles)]:
         problems.broken.append(f"Signed are {', '.join(roles)}; expected are {' then '.join(Role)}, once each.")
-    fields = [str(one.get_object()["/T"]) for one in reader.root["/AcroForm"]["/Fields"]]
-    if sorted(fields) != sorted(Role):
+    fields = form_fields(reader)
+    if fields != sorted(Role):
         problems.outside.append(f"The form has the fields {', '.join(fields)}; a memo has {' and '.join(Role)} alone.")
     revisions, expected = reader.total_revisions, len(signatures) + 1
     if revisions != expected or [one.signed_revision for one in signatures] != list(range(1, expected)):
@@ -160,6 +160,11 @@ def _check_document(reader: PdfFileReader, signatures: list[EmbeddedPdfSignature
         problems.broken.append("The preparer's signature does not certify the memo against changes.")
     if any(signature.docmdp_level is not None or signature.fieldmdp is not None for signature in signatures[1:]):
         problems.broken.append("The approver's signature grants or locks something; it may only countersign.")
+
+
+def form_fields(reader: PdfFileReader) -> list[str]:
+    """Return the names of all fields of a PDF's form, in order of name."""
+    return sorted(str(one.get_object()["/T"]) for one in reader.root["/AcroForm"]["/Fields"])
 
 
 def _check_place(pdf: bytes, signature: EmbeddedPdfSignature, problems: _Problems, *, last: bool) -> None:
