@@ -131,7 +131,7 @@ def test_a_fill_is_as_transparent_as_asked() -> None:
 def test_dashes_are_written_as_they_were_given() -> None:
     with pikepdf.open(BytesIO(on_paper(shapes()))) as pdf:
         content = pdf.pages[0].Contents.read_bytes()
-    assert b"[12 6] 0 d" in content  # matplotlib's pattern counts in line widths: 2 points
+    assert b"[12 6] 0.0 d" in content  # matplotlib's pattern counts in line widths: 2 points
 
 
 @pytest.mark.parametrize("text", ["Agpx", "−12.5 %", "grade"])
