@@ -1,0 +1,83 @@
+"""How the periods of one borrower relate in time, ready for the functions along periods."""
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from creditdesk.ratios.expressions import When
+from creditdesk.statements.period import Basis, Period, prior_indices
+
+FloatArray = NDArray[np.float64]
+IndexArray = NDArray[np.intp]
+
+MONTHS_IN_YEAR = 12
+
+
+@dataclass(frozen=True, eq=False)
+class Timing:
+    """Hold, for each period, where its prior period and its opening balance stand (-1: nowhere) and 12 / months."""
+
+    sources: Mapping[When, IndexArray]
+    per_year: FloatArray
+
+    def functions(self, dimensions: int) -> Mapping[str, Callable[[FloatArray], FloatArray]]:
+        """Give the functions along periods for amounts of so many dimensions: periods, or periods x draws."""
+        per_year = self.per_year.reshape(-1, *(1,) * (dimensions - 1))
+        prior, opening = (_shift(self.sources[when]) for when in (When.PRIOR, When.OPENING))
+        return {
+            "annual": lambda amount: amount * per_year,
+            "prior": prior,
+            "opening": opening,
+            "average": lambda balance: (balance + opening(balance)) / 2.0,
+            "change": lambda balance: balance - opening(balance),
+        }
+
+
+def timing(periods: Sequence[Period]) -> Timing:
+    """Relate periods in time."""
+    prior = np.asarray(prior_indices(periods), dtype=np.intp)
+    opening = np.array([_opening(periods, place, int(prior[place])) for place in range(len(periods))], dtype=np.intp)
+    per_year = np.array([MONTHS_IN_YEAR / period.months for period in periods])
+    return Timing({When.NOW: np.arange(len(periods)), When.PRIOR: prior, When.OPENING: opening}, per_year)
+
+
+def _opening(periods: Sequence[Period], place: int, prior: int) -> int:
+    """Find the period whose closing balances open this one: it ends when this one begins, give or take a month.
+
+    The prior period where it does; else, as for half-years, the latest one of any length with the same consolidation,
+    figures of the past before projections never among them.
+    """
+    period = periods[place]
+    begins = _month(period) - period.months
+
+    def fits(other: int) -> bool:
+        candidate = periods[other]
+        past = candidate.basis is not Basis.PROJECTION or period.basis is Basis.PROJECTION
+        near = abs(_month(candidate) - begins) <= 1 and candidate.ends < period.ends
+        return past and near and candidate.consolidated == period.consolidated
+
+    if prior >= 0 and fits(prior):
+        return prior
+    found = [other for other in range(len(periods)) if other != place and fits(other)]
+    return max(found, key=lambda other: (periods[other].ends, other), default=-1)
+
+
+def _month(period: Period) -> int:
+    """Count the months up to the one a period ends in."""
+    return period.ends.year * MONTHS_IN_YEAR + period.ends.month
+
+
+def _shift(source: IndexArray) -> Callable[[FloatArray], FloatArray]:
+    """Take amounts from other periods; nan where there is none."""
+    nowhere = source < 0
+    if not nowhere.any():
+        return lambda amount: amount[source]
+
+    def shift(amount: FloatArray) -> FloatArray:
+        taken = amount[source]
+        taken[nowhere] = np.nan
+        return taken
+
+    return shift

@@ -1,0 +1,206 @@
+"""One ratio of one period laid open: formula, numbers filled in, where each comes from."""
+
+import re
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
+from typing import Literal
+
+import numpy as np
+
+from creditdesk.base.display import MINUS, PLAIN, NumberStyle, format_amount
+from creditdesk.formula.compiler import Formula
+from creditdesk.formula.spelling import spell
+from creditdesk.ratios.catalogue import Catalogue
+from creditdesk.ratios.compute import RatioTable, Reason
+from creditdesk.ratios.explain import reason_text as reason_text
+from creditdesk.ratios.expressions import When
+from creditdesk.ratios.words import denominator_in_words, format_ratio, formula_in_words, is_single, label_of, sentence
+from creditdesk.statements.chart import Chart
+from creditdesk.statements.statement import StatementSet
+
+_MARK = re.compile("\ue000(\\d+)\ue001")
+
+
+@dataclass(frozen=True, slots=True)
+class TraceItem:
+    """Show one number of a formula: where it stands (``key``, ``period`` index), what it is, how it reads.
+
+    ``kind``: a line or subtotal of the statements, another ratio, or a constant. ``amount`` is nan where not known.
+    """
+
+    key: str
+    period: int
+    label: str
+    amount: float
+    text: str
+    kind: Literal["line", "ratio", "constant"]
+
+
+@dataclass(frozen=True, slots=True)
+class RatioTrace:
+    """Lay open one ratio of one period.
+
+    ``words``: the formula in labels. ``pieces``: the formula with numbers, texts and items in turn. ``value``: nan
+    where ``reason`` is not VALUE, which ``reason_text`` then explains. ``numerator``, ``denominator``: label and
+    amount; the denominator's amount is nan and its label empty where there is none. ``note``: such as which
+    principal was taken.
+    """
+
+    key: str
+    period: int
+    label: str
+    words: str
+    pieces: tuple[str | TraceItem, ...]
+    value: float
+    value_text: str
+    reason: Reason
+    reason_text: str
+    numerator: tuple[str, float]
+    denominator: tuple[str, float]
+    annualised: bool
+    note: str
+    definition: str
+    source: str
+
+    @property
+    def filled(self) -> str:
+        """Return the formula with its numbers as one text."""
+        return "".join(piece if isinstance(piece, str) else piece.text for piece in self.pieces)
+
+
+def trace_ratio(
+    catalogue: Catalogue,
+    statements: StatementSet,
+    table: RatioTable,
+    key: str,
+    period: int,
+    style: NumberStyle = PLAIN,
+) -> RatioTrace:
+    """Lay open one ratio of one period (by index). Only for tables without draws."""
+    spec = catalogue.spec(key)
+    row = catalogue.rows[table.rows[table.index[key], period]]
+    value = table.value(key, period)
+    filler = _Filler(catalogue, statements, table, style)
+    bottom = row.denominator.run if row.denominator else None
+    return RatioTrace(
+        key=key,
+        period=period,
+        label=spec.label,
+        words=formula_in_words(catalogue, row),
+        pieces=filler.pieces(row.whole, period),
+        value=value,
+        value_text=format_ratio(value, spec.unit, style),
+        reason=table.reason(key, period),
+        reason_text=reason_text(catalogue, table, key, period),
+        numerator=(
+            spec.numerator_label or sentence(label_of(catalogue, row.numerator.formula)),
+            filler.amount_of(row.numerator.run, period),
+        ),
+        denominator=(
+            sentence(denominator_in_words(catalogue, row)),
+            filler.amount_of(bottom, period) if bottom else np.nan,
+        ),
+        annualised=bool(table.annualised[table.index[key], period]),
+        note=table.notes.get((key, period), ""),
+        definition=spec.definition,
+        source=spec.source,
+    )
+
+
+def users_of(catalogue: Catalogue, line: str) -> tuple[str, ...]:
+    """List the ratios that a line or subtotal goes into, also through subtotals and other ratios, in order."""
+    reached = _reached(catalogue.chart, line)
+    direct = {row.ratio for row in catalogue.rows if not row.parts and any(use.name in reached for use in row.uses())}
+    combined = {row.ratio for row in catalogue.rows if direct.intersection(row.parts)}
+    return tuple(key for place, key in enumerate(catalogue.keys) if place in direct | combined)
+
+
+def _reached(chart: Chart, line: str) -> set[str]:
+    """List a line and all subtotals above it."""
+    reached, before = {line}, 0
+    while len(reached) > before:
+        before = len(reached)
+        reached |= {total.key for total in chart.subtotals if reached.intersection(total.adds + total.subtracts)}
+    return reached
+
+
+@dataclass(frozen=True, slots=True)
+class _Filler:
+    """Write a formula with numbers for names, marking each so that it can be found again in the text."""
+
+    catalogue: Catalogue
+    statements: StatementSet
+    table: RatioTable
+    style: NumberStyle
+    items: list[TraceItem] = field(default_factory=list)
+
+    def pieces(self, formula: Formula, period: int) -> tuple[str | TraceItem, ...]:
+        """Write a formula as texts and items in turn."""
+        self.items.clear()
+        return tuple(piece for piece in self._cut(self._fill(formula, period)) if piece != "")
+
+    def amount_of(self, formula: Formula, period: int) -> float:
+        """Compute an amount of one period; nan where not known."""
+        ratios: Mapping[str, np.ndarray] = {
+            name: self.table.values[self.table.index[name]] for name in formula.names if name in self.table.index
+        }
+        with np.errstate(all="ignore"):
+            amounts = formula({**ratios, **self.table.inputs.amounts})
+        return float(np.broadcast_to(amounts, len(self.statements.periods))[period])
+
+    def _cut(self, text: str) -> Iterator[str | TraceItem]:
+        start = 0
+        for found in _MARK.finditer(text):
+            item = self.items[int(found[1])]
+            yield text[start : found.start() - len(item.text)]
+            yield item
+            start = found.end()
+        yield text[start:]
+
+    def _fill(self, formula: Formula, period: int) -> str:
+        if period < 0:
+            return "none"
+        return spell(
+            formula,
+            lambda name: self._item(name, period),
+            lambda function, argument: self._along(function, argument, period),
+        )
+
+    def _along(self, function: str, argument: Formula, period: int) -> str:
+        """Write a function along periods as the arithmetic it stands for."""
+        sources = self.table.inputs.times.sources
+        if function == "annual":
+            amount, months = self._grouped(argument, period), self.statements.periods[period].months
+            return amount if months == 12 else f"({amount} × 12 ÷ {months})"
+        if function == "prior":
+            return self._grouped(argument, int(sources[When.PRIOR][period]))
+        opening = self._grouped(argument, int(sources[When.OPENING][period]))
+        if function == "opening":
+            return opening
+        closing = self._grouped(argument, period)
+        return f"(({opening} + {closing}) ÷ 2)" if function == "average" else f"({closing} {MINUS} {opening})"
+
+    def _grouped(self, formula: Formula, period: int) -> str:
+        text = self._fill(formula, period)
+        return text if is_single(formula) and not text.startswith(MINUS) else f"({text})"
+
+    def _item(self, name: str, period: int) -> str:
+        """Note one number and return its text with its mark."""
+        kind, amount, text = self._number(name, period)
+        self.items.append(TraceItem(name, period, self.catalogue.labels[name], amount, text, kind))
+        return f"{text}\ue000{len(self.items) - 1}\ue001"
+
+    def _number(self, name: str, period: int) -> tuple[Literal["line", "ratio", "constant"], float, str]:
+        if name in self.statements.index:
+            amount = float(self.statements.row(name)[period])
+            return "line", amount, self._amount(amount)
+        if name in self.table.inputs.constants:
+            amount = self.table.inputs.constants[name]
+            return "constant", amount, self._amount(amount)
+        amount = self.table.value(name, period)
+        return "ratio", amount, format_ratio(amount, self.catalogue.spec(name).unit, self.style) or "no value"
+
+    def _amount(self, amount: float) -> str:
+        """Write an amount with the digits it has, four decimals at most."""
+        decimals = next((digits for digits in range(4) if round(amount, digits) == amount), 4)
+        return format_amount(amount, decimals, self.style) or "not disclosed"
