@@ -58,8 +58,10 @@ class StatementSet:
 
     def row(self, key: str) -> FloatArray:
         """Return the amounts of ``key``: periods, or periods x draws; nan where not disclosed."""
-        return self.values[self.index[key]]
+        amounts: FloatArray = self.values[self.index[key]]
+        return amounts
 
     def state(self, key: str) -> StateArray:
         """Return the disclosure states of ``key``, one per period."""
-        return self.states[self.index[key]]
+        states: StateArray = self.states[self.index[key]]
+        return states
