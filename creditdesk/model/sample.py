@@ -1,4 +1,4 @@
-"""A sample of borrowers as a model sees it: columns stacked by factor, and a borrower's place among them."""
+"""Ratios as a model sees them: stacked by factor, from a sample or from one borrower, and a place in the sample."""
 
 from collections.abc import Mapping
 
@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from creditdesk.base.errors import UserError
 from creditdesk.model.spec import ModelSpec
+from creditdesk.ratios.compute import RatioTable
 
 FloatArray = NDArray[np.float64]
 ReasonArray = NDArray[np.uint8]
@@ -26,6 +27,12 @@ def stack(
         np.stack([values[factor.ratio] for factor in spec.factors]),
         np.stack([reasons[factor.ratio] for factor in spec.factors]),
     )
+
+
+def from_ratios(spec: ModelSpec, table: RatioTable) -> tuple[FloatArray, ReasonArray]:
+    """Take a borrower's ratios in the order of the factors: factors x periods, or factors x periods x draws."""
+    rows = [table.index[factor.ratio] for factor in spec.factors]
+    return table.values[rows], table.reasons[rows]
 
 
 def place_in_sample(spec: ModelSpec, key: str, value: float) -> float | None:

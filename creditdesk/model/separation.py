@@ -30,10 +30,10 @@ def refuse_separation(columns: FloatArray, sign: FloatArray, names: tuple[str, .
         if gap >= 0:
             raise _separation(f"{name}: this column alone", perfect=gap > 0)
     signed = columns * sign[:, None]
-    weights = _direction(signed)
-    if weights is not None:
-        used = [name for name, weight in zip(names, weights[1:], strict=True) if abs(weight) > _MARGIN]
-        raise _separation(f"{', '.join(used)}: a weighted sum of these columns", perfect=_perfect(signed))
+    if _divides(signed):
+        used = _needed(signed)
+        named = ", ".join(names[index - 1] for index in used)
+        raise _separation(f"{named}: a weighted sum of these columns", perfect=_perfect(signed[:, [0, *used]]))
 
 
 def _gap(defaults: FloatArray, others: FloatArray) -> float:
@@ -48,12 +48,22 @@ def _separation(what: str, *, perfect: bool) -> UserError:
     )
 
 
-def _direction(signed: FloatArray) -> FloatArray | None:
-    """Find weights in [-1, 1] with signed x w >= 0 everywhere and a positive sum; None where there are none."""
+def _needed(signed: FloatArray) -> list[int]:
+    """Leave out column after column while the rest still divides; what stays names the trouble."""
+    kept = list(range(1, signed.shape[1]))
+    for index in range(signed.shape[1] - 1, 0, -1):
+        fewer = [one for one in kept if one != index]
+        if fewer and _divides(signed[:, [0, *fewer]]):
+            kept = fewer
+    return kept
+
+
+def _divides(signed: FloatArray) -> bool:
+    """Say whether weights in [-1, 1] exist with signed x w >= 0 everywhere and a positive sum."""
     from scipy.optimize import linprog
 
     found = linprog(-signed.sum(axis=0), A_ub=-signed, b_ub=np.zeros(len(signed)), bounds=(-1.0, 1.0), method="highs")
-    return np.asarray(found.x) if found.fun is not None and found.fun < -_MARGIN * len(signed) else None
+    return found.fun is not None and bool(found.fun < -_MARGIN * len(signed))
 
 
 def _perfect(signed: FloatArray) -> bool:
@@ -64,4 +74,4 @@ def _perfect(signed: FloatArray) -> bool:
     bounds = [(-1.0, 1.0)] * terms + [(None, 1.0)]
     system = np.column_stack([-signed, np.ones(rows)])
     found = linprog([0.0] * terms + [-1.0], A_ub=system, b_ub=np.zeros(rows), bounds=bounds, method="highs")
-    return found.fun is not None and found.fun < -_MARGIN
+    return found.fun is not None and bool(found.fun < -_MARGIN)

@@ -6,9 +6,12 @@ from typing import Literal
 
 import msgspec
 
-REASONS = ("net_cash", "no_debt", "not_disclosed", "needs_prior_period", "zero_denominator", "negative_denominator")
-REASON_CODES = {reason: code for code, reason in enumerate(REASONS, start=1)}
-MISSING_BY_DEFAULT = frozenset({"not_disclosed", "needs_prior_period"})
+from creditdesk.ratios.compute import Reason
+
+REASON_CODES = {reason.key: int(reason) for reason in Reason if reason is not Reason.VALUE}
+"""Why a ratio may have no value, with the number that stands for it in arrays."""
+REASONS = tuple(REASON_CODES)
+MISSING_BY_DEFAULT = frozenset({Reason.NOT_DISCLOSED.key, Reason.NEEDS_PRIOR_PERIOD.key})
 INTERCEPT = "intercept"
 
 
