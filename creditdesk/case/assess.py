@@ -1,0 +1,201 @@
+"""The one pipeline: from a case and a house book to the standing, the same for window, memo and command line."""
+
+from dataclasses import dataclass, replace
+from datetime import date
+from difflib import get_close_matches
+
+import numpy as np
+
+from creditdesk.base.errors import UserError
+from creditdesk.base.findings import Finding, Severity
+from creditdesk.case.document import Case
+from creditdesk.case.doubts import case_findings, factor_findings
+from creditdesk.case.grades import Verdict, graded, verdict
+from creditdesk.case.opinions import RatioTables, borrower, second_opinion
+from creditdesk.case.placing import fitted_curve
+from creditdesk.case.reasons import principal_reasons
+from creditdesk.case.scoring import Scored, factor_standings, score_periods
+from creditdesk.case.standing import (
+    HouseIdentity,
+    Interval,
+    ModelIdentity,
+    PeriodStanding,
+    Reference,
+    SecondOpinion,
+    Standing,
+)
+from creditdesk.case.statements import CaseStatements, case_statements
+from creditdesk.house.book import HouseBook, LoadedModel
+from creditdesk.model.interval import WORDING
+from creditdesk.model.scope import out_of_scope, pd_runs_from, pd_runs_to
+from creditdesk.model.score import model_pd, reading_of
+from creditdesk.model.spec import Link
+from creditdesk.ratios.quality import ratio_findings
+from creditdesk.statements.checks import check_statements
+from creditdesk.statements.period import Basis, assessed_period, period_label, prior_index
+
+UNCERTAINTY = f"The interval covers {WORDING}; the future is more uncertain than that."
+
+
+@dataclass(frozen=True, slots=True)
+class _Desk:
+    """Carry what every step needs: the case, the house, the model, and what was computed from them."""
+
+    case: Case
+    house: HouseBook
+    model: LoadedModel
+    statements: CaseStatements
+    tables: RatioTables
+    scored: Scored
+    period: int
+    scope: tuple[str, ...]
+
+
+def assess(case: Case, house: HouseBook, model: str = "") -> Standing:
+    """Say where the borrower of ``case`` stands, by the rules of ``house``.
+
+    ``model`` applies a named model in place of the lead model, also one that may not lead: its score and PD are shown,
+    without a grade. Raises UserError for an unknown model, a lead model that gives no PD, a case without an actual
+    period. Depends on nothing but its arguments: the only date is the case's assessment date.
+    """
+    chosen = _model(case, house, model)
+    statements = case_statements(case, house.chart)
+    period, period_findings = assessed_period(case.periods, case.assessment.period)
+    tables = RatioTables(case, house.catalogue, statements.adjusted)
+    scored = score_periods(chosen.spec, tables.of(chosen.spec.currency), house.settings.interval_level)
+    scope = out_of_scope(chosen.spec, borrower(case, chosen.spec, statements.adjusted, tables, period))
+    desk = _Desk(case, house, chosen, statements, tables, scored, period, scope)
+    return _standing(desk, period_findings)
+
+
+def _model(case: Case, house: HouseBook, wanted: str) -> LoadedModel:
+    """Return the model asked for, or the lead model; refuse a lead that may not lead."""
+    name = wanted or case.model.lead or house.settings.lead_model
+    found = house.models.get(name)
+    if found is None:
+        near = get_close_matches(name, house.models, n=1)
+        hint = f" Did you mean {near[0]}?" if near else ""
+        raise UserError("model", f"model.lead: found {name!r}, allowed: {', '.join(house.models)}.{hint}")
+    if not wanted and not found.spec.lead:
+        raise UserError("model", f"model.lead: {name} may not lead: it gives no PD that the house stands behind.")
+    return found
+
+
+def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
+    case, house, scored, period = desk.case, desk.house, desk.scored, desk.period
+    spec, table = desk.model.spec, desk.tables.of(desk.model.spec.currency)
+    assessed_on, ends = _assessed_on(case, period), case.periods[period].ends
+    findings = (
+        *period_findings,
+        *desk.statements.findings,
+        *check_statements(desk.statements.adjusted, assessed=period),
+        *ratio_findings(house.catalogue, table, desk.statements.adjusted, period),
+        *factor_findings(scored, period, case.periods[period].ends),
+        *case_findings(case, house, desk.scope, assessed_on, ends),
+    )
+    usable = not any(finding.severity is Severity.STOP for finding in findings)
+    given = verdict(scored, house, desk.statements.adjusted, table, (period, bool(desk.scope)))
+    given = _without_grade(given, spec.label) if not (usable and spec.lead) else given
+    factors = factor_standings(scored, house.catalogue, table, period)
+    past = tuple(_past(desk, other) for other in range(len(case.periods)) if _counts_as_past(desk, other))
+    before = prior_index(case.periods, period)
+    score = _number(scored.scores[period])
+    return Standing(
+        obligor=case.obligor.name,
+        period=ends,
+        period_index=period,
+        assessed_on=assessed_on,
+        pd_runs_from=pd_runs_from(spec, ends, assessed_on),
+        pd_runs_to=pd_runs_to(spec, ends, assessed_on),
+        model=_model_identity(desk.model, score),
+        house=_house_identity(house),
+        statements=desk.statements.adjusted,
+        received=desk.statements.received,
+        ratios=table,
+        reference=_reference(scored),
+        factors=factors,
+        score=score,
+        pd_model=given.pd_model,
+        pd_calibrated=given.pd_calibrated,
+        pd_interval=_interval(scored, period),
+        pd_judged=given.pd_judged,
+        pd=given.pd,
+        pd_final=given.pd_final,
+        grade=given.grade,
+        reasons=principal_reasons(scored, factors, period) + given.notes,
+        usable=usable,
+        curve=fitted_curve(scored, house.scale, house.settings.interval_level),
+        past=past,
+        last_year=next((one for one in past if before is not None and one.ends == case.periods[before].ends), None),
+        second_opinions=_second_opinions(desk),
+        findings=findings,
+        cautions=(*house.settings.cautions, *spec.cautions, *((UNCERTAINTY,) if spec.covariance else ())),
+    )
+
+
+def _assessed_on(case: Case, period: int) -> date:
+    return case.assessment.date or case.periods[period].ends
+
+
+def _number(value: float) -> float | None:
+    return None if np.isnan(value) else float(value)
+
+
+def _without_grade(given: Verdict, label: str) -> Verdict:
+    grade = replace(given.grade, model="none", judged="none", final="none")
+    notes = given.notes or (f"{label} may not lead or a finding of severity stop stands: no grade is given",)
+    return replace(given, grade=grade, notes=notes)
+
+
+def _counts_as_past(desk: _Desk, other: int) -> bool:
+    """Say whether a period is shown on the curve beside the assessed one: actual, and not a part of a later year."""
+    return other != desk.period and desk.case.periods[other].basis is not Basis.PROJECTION
+
+
+def _past(desk: _Desk, period: int) -> PeriodStanding:
+    table = desk.tables.of(desk.model.spec.currency)
+    pd_calibrated = _number(desk.scored.pd_calibrated[period])
+    pd, grade = graded(desk.house, pd_calibrated)
+    return PeriodStanding(
+        ends=desk.case.periods[period].ends,
+        label=period_label(desk.case.periods[period]),
+        score=_number(desk.scored.scores[period]),
+        pd_calibrated=pd_calibrated,
+        pd=pd,
+        grade=grade if desk.model.spec.lead else "none",
+        factors=factor_standings(desk.scored, desk.house.catalogue, table, period),
+    )
+
+
+def _model_identity(model: LoadedModel, score: float | None) -> ModelIdentity:
+    spec = model.spec
+    reading = spec.reading.text if score is None else reading_of(spec, score)
+    return ModelIdentity(
+        spec.name, spec.label, spec.model_version, model.digest, spec.link.value, reading, spec.invented
+    )
+
+
+def _house_identity(house: HouseBook) -> HouseIdentity:
+    settings = house.settings
+    return HouseIdentity(settings.lender, settings.label, settings.book_version, house.digest, settings.invented)
+
+
+def _reference(scored: Scored) -> Reference:
+    start = np.array([scored.reference_score])
+    pd = None if scored.spec.link is Link.NONE else float(model_pd(scored.spec.link, start)[0])
+    return Reference(scored.spec.reference.text, scored.reference_score, pd)
+
+
+def _interval(scored: Scored, period: int) -> Interval | None:
+    low, high = (float(bound[period]) for bound in (scored.interval.pd_low, scored.interval.pd_high))
+    if np.isnan(low) or np.isnan(high):
+        return None
+    return Interval("pd_calibrated", scored.interval.level, low, high)
+
+
+def _second_opinions(desk: _Desk) -> tuple[SecondOpinion, ...]:
+    names = [name for name in desk.house.settings.second_opinions if name != desk.model.spec.name]
+    return tuple(
+        second_opinion(desk.case, desk.house.models[name].spec, desk.statements.adjusted, desk.tables, desk.period)
+        for name in names
+    )

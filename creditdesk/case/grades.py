@@ -1,0 +1,71 @@
+"""The chain from the model's PD to the final grade: calibration, judgement, floor, scale, house rules."""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from creditdesk.case.scoring import Scored
+from creditdesk.case.standing import GradeStanding
+from creditdesk.grading.rules import FLAGS, TEXTS, apply_rules
+from creditdesk.grading.scale import NO_GRADE, final_pd, grade_of
+from creditdesk.house.book import HouseBook
+from creditdesk.model.score import why_no_pd
+from creditdesk.ratios.compute import RatioTable
+from creditdesk.statements.statement import StatementSet
+
+
+@dataclass(frozen=True, slots=True)
+class Verdict:
+    """Hold the chain; PDs None where the model gives none, ``notes`` then say why."""
+
+    pd_model: float | None
+    pd_calibrated: float | None
+    pd_judged: float | None
+    pd: float | None
+    pd_final: float | None
+    grade: GradeStanding
+    notes: tuple[str, ...]
+
+
+def verdict(
+    scored: Scored, house: HouseBook, statements: StatementSet, table: RatioTable, where: tuple[int, bool]
+) -> Verdict:
+    """Follow the chain for one period; ``where``: its index, and whether the borrower is outside the model's scope."""
+    period, outside = where
+    pd_calibrated = float(scored.pd_calibrated[period])
+    if np.isnan(pd_calibrated):
+        why = scored.why_none(period) or why_no_pd(scored.spec) or ""
+        return Verdict(None, None, None, None, None, GradeStanding(NO_GRADE, NO_GRADE, NO_GRADE, (why,)), (why,))
+    pd_judged = pd_calibrated  # judgement moves it here once a case carries any
+    _, model_grade = graded(house, pd_calibrated)
+    pd, judged = graded(house, pd_judged)
+    assert pd is not None
+    outcome = apply_rules(house.rules, house.scale, _env(statements, table, period, outside=outside), judged)
+    final = NO_GRADE if outcome.stopped else outcome.grade
+    return Verdict(
+        pd_model=float(scored.pd_model[period]),
+        pd_calibrated=pd_calibrated,
+        pd_judged=pd_judged,
+        pd=pd,
+        pd_final=pd if final == NO_GRADE else final_pd(house.scale, pd, judged, final),
+        grade=GradeStanding(model_grade, judged, final, tuple(rule.reason for rule in outcome.fired)),
+        notes=tuple(rule.reason for rule in outcome.fired if rule.moved),
+    )
+
+
+def graded(house: HouseBook, pd: float | None) -> tuple[float | None, str]:
+    """Return a PD after the floor, and its grade."""
+    if pd is None:
+        return None, NO_GRADE
+    floored = max(house.settings.pd_floor, pd)
+    return floored, grade_of(house.scale, floored)
+
+
+def _env(statements: StatementSet, table: RatioTable, period: int, *, outside: bool) -> dict[str, float | str | None]:
+    """Return what a house rule may name: amounts and ratios, flags, texts."""
+    one = statements.periods[period]
+    amounts = {key: float(statements.values[row, period]) for row, key in enumerate(statements.keys)}
+    ratios = {key: float(table.values[row, period]) for row, key in enumerate(table.keys)}
+    flags = {flag: float(getattr(one, flag, False)) for flag in FLAGS if flag != "out_of_scope"}
+    texts = {name: getattr(one, name) for name in TEXTS}
+    return {**ratios, **amounts, **flags, "out_of_scope": float(outside), **texts}

@@ -1,0 +1,52 @@
+"""Where a score stands: the fitted curve, the sample's bins, the grade bands."""
+
+import numpy as np
+
+from creditdesk.case.scoring import Scored
+from creditdesk.case.standing import Curve, GradeBand, SampleBin
+from creditdesk.grading.scale import MasterScale
+from creditdesk.model.calibrate import calibrated_pd, calibrated_rate
+from creditdesk.model.interval import curve_error, interval
+from creditdesk.model.spec import Link, ModelSpec
+
+_POINTS = 121
+_MARGIN = 0.75
+
+
+def fitted_curve(scored: Scored, scale: MasterScale, level: float) -> Curve | None:
+    """Return the curve over the sample's scores and the borrower's own; None where the model has no link."""
+    spec = scored.spec
+    if spec.link is Link.NONE:
+        return None
+    scores = np.linspace(*_span(scored), _POINTS)
+    band = interval(spec, scores, curve_error(spec, scores), level)
+    return Curve(
+        scores=scores,
+        pd=calibrated_pd(spec, scores),
+        low=band.pd_low,
+        high=band.pd_high,
+        bins=_bins(spec),
+        bands=tuple(GradeBand(grade.key, grade.lower, scale.upper(grade.key), grade.criteria) for grade in scale.grades),
+    )
+
+
+def _span(scored: Scored) -> tuple[float, float]:
+    """Return the lowest and highest score to draw."""
+    spec = scored.spec
+    bins = [one.score for one in spec.sample.bins] if spec.sample is not None else []
+    own = [float(value) for value in scored.scores if np.isfinite(value)]
+    wanted = [*bins, *own, scored.reference_score]
+    low, high = min(wanted) - _MARGIN, max(wanted) + _MARGIN
+    return (low, high) if high - low >= 4 else ((low + high) / 2 - 2, (low + high) / 2 + 2)
+
+
+def _bins(spec: ModelSpec) -> tuple[SampleBin, ...]:
+    """Return the development sample's bins on the calibrated scale."""
+    if spec.sample is None:
+        return ()
+    rates = np.array([[one.defaults / one.borrowers, one.low, one.high] for one in spec.sample.bins])
+    moved = calibrated_rate(spec, rates.reshape(-1, 3))
+    return tuple(
+        SampleBin(one.score, float(rate), float(low), float(high), one.borrowers, one.defaults)
+        for one, (rate, low, high) in zip(spec.sample.bins, moved, strict=True)
+    )

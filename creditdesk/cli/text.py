@@ -1,0 +1,70 @@
+"""A standing as plain text for a terminal."""
+
+from collections.abc import Iterator
+
+from creditdesk.base.display import format_number, format_pd
+from creditdesk.case.document import Case
+from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.ratios.spec import Unit
+
+_WIDTH = 34
+
+
+def standing_text(case: Case, standing: Standing) -> str:
+    """Return the standing as lines of text."""
+    return "\n".join(_lines(case, standing))
+
+
+def _lines(case: Case, standing: Standing) -> Iterator[str]:
+    yield f"{standing.obligor}, {case.obligor.country}"
+    yield f"Figures to {standing.period}, assessed on {standing.assessed_on}"
+    yield f"Model {standing.model.name} {standing.model.version}, {standing.model.digest}"
+    yield ""
+    yield from _verdict(standing)
+    yield ""
+    yield f"From the reference borrower (score {standing.reference.score:.4f}) to this one"
+    for factor in standing.factors:
+        yield _factor(factor)
+    if standing.score is not None:
+        yield f"  {'score':<{_WIDTH}}{'':>14}  {standing.score:+.4f}"
+    for title, texts in (
+        ("Reasons", standing.reasons),
+        (
+            "Second opinions",
+            tuple(f"{one.label}: {_score(one.score)} {one.reading}" for one in standing.second_opinions),
+        ),
+        ("Findings", tuple(f"{one.severity.value}: {one.text}" for one in standing.findings)),
+        ("Cautions", standing.cautions),
+    ):
+        if texts:
+            yield ""
+            yield title
+            yield from (f"  {text}" for text in texts)
+
+
+def _verdict(standing: Standing) -> Iterator[str]:
+    if standing.pd_final is None:
+        yield "Probability of default: none"
+    else:
+        usable = "" if standing.usable else " (not usable until findings of severity stop are resolved)"
+        yield f"Probability of default {format_pd(standing.pd_final)}{usable}"
+        yield f"for the twelve months from {standing.pd_runs_from} to {standing.pd_runs_to}"
+    interval = standing.pd_interval
+    if interval is not None:
+        bounds = f"{format_pd(interval.low)} to {format_pd(interval.high)}"
+        yield f"{100 * interval.level:.0f} % interval {bounds}: uncertainty of the fitted coefficients only"
+    grade = standing.grade
+    yield f"Grade {grade.final}" + (f" (by the model {grade.model})" if grade.model != grade.final else "")
+
+
+def _factor(factor: FactorStanding) -> str:
+    if factor.value is None:
+        value = (factor.reason or "").replace("_", " ")
+    else:
+        percent = factor.unit == Unit.PERCENT.value
+        value = f"{format_number(100 * factor.value, 1)} %" if percent else format_number(factor.value, 2)
+    return f"  {factor.label:<{_WIDTH}}{value:>14}  {factor.log_odds:+.4f}{'  (capped)' if factor.capped else ''}"
+
+
+def _score(score: float | None) -> str:
+    return "no score," if score is None else f"{score:.2f},"

@@ -1,0 +1,93 @@
+"""The frame of the window: the header that names the obligor, and the names of the sheets."""
+
+from collections.abc import Sequence
+
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
+
+
+def label(role: str, text: str = "", *, wrap: bool = False) -> QLabel:
+    """Make a label whose look the style sheet takes from ``role``; text is never read as markup."""
+    result = QLabel(text)
+    result.setProperty("role", role)
+    result.setTextFormat(Qt.TextFormat.PlainText)
+    result.setWordWrap(wrap)
+    return result
+
+
+class Elided(QLabel):
+    """Show one line that is cut with an ellipsis where it does not fit; the whole stands in the tooltip."""
+
+    def __init__(self, role: str) -> None:
+        super().__init__()
+        self._whole = ""
+        self.setProperty("role", role)
+        self.setTextFormat(Qt.TextFormat.PlainText)
+        self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+
+    def show_text(self, text: str) -> None:
+        """Show ``text``, cut to the present width."""
+        self._whole = text
+        self._fit()
+
+    def resizeEvent(self, event: object) -> None:
+        """Cut anew to the new width."""
+        super().resizeEvent(event)  # type: ignore[arg-type]
+        self._fit()
+
+    def _fit(self) -> None:
+        cut = self.fontMetrics().elidedText(self._whole, Qt.TextElideMode.ElideRight, max(self.width(), 20))
+        if cut != self.text():
+            self.setText(cut)
+        self.setToolTip(self._whole if cut != self._whole else "")
+        self.setAccessibleName(self._whole)
+
+
+class Header(QWidget):
+    """Name the obligor at the left, state and warnings at the right."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.obligor = Elided("obligor")
+        self.description = Elided("second")
+        self.state = label("second")
+        self.warning = label("caution")
+        left, right = QVBoxLayout(), QVBoxLayout()
+        for box, widgets in ((left, (self.obligor, self.description)), (right, (self.state, self.warning))):
+            box.setSpacing(1)
+            for widget in widgets:
+                box.addWidget(widget)
+        for widget in (self.state, self.warning):
+            widget.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignBottom)
+        row = QHBoxLayout(self)
+        row.setContentsMargins(22, 10, 22, 2)
+        row.addLayout(left, 1)
+        row.addLayout(right)
+
+
+class SheetBar(QWidget):
+    """List the sheets by name; the chosen one is underlined."""
+
+    chosen = Signal(int)
+
+    def __init__(self, names: Sequence[str]) -> None:
+        super().__init__()
+        self.setObjectName("sheets")
+        self._group = QButtonGroup(self)
+        row = QHBoxLayout(self)
+        row.setContentsMargins(22, 0, 22, 0)
+        row.setSpacing(0)
+        for number, name in enumerate(names):
+            button = QPushButton(name)
+            button.setCheckable(True)
+            button.setAccessibleName(f"Sheet {name}")
+            button.setToolTip(f"Show the sheet {name} (Alt+{number + 1})")
+            button.setShortcut(f"Alt+{number + 1}")
+            self._group.addButton(button, number)
+            row.addWidget(button)
+        row.addStretch(1)
+        self._group.idClicked.connect(self.chosen)
+
+    def mark(self, number: int) -> None:
+        """Mark the sheet that is shown."""
+        self._group.button(number).setChecked(True)

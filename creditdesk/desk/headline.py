@@ -1,0 +1,45 @@
+"""The words of header and status line."""
+
+from dataclasses import dataclass
+
+from creditdesk.base.findings import Severity
+from creditdesk.case.document import Case
+from creditdesk.case.standing import Standing
+from creditdesk.desk.tables.figures import unit_words
+from creditdesk.house.book import HouseBook
+
+
+@dataclass(frozen=True, slots=True)
+class Headline:
+    """Hold what the header says below and beside the obligor's name."""
+
+    description: str
+    state: str
+    warning: str
+
+
+def describe(case: Case, standing: Standing, *, read_only: str) -> Headline:
+    """Word the header; ``read_only`` says why the case cannot be edited, empty where it can."""
+    obligor, period = case.obligor, standing.statements.periods[standing.period_index]
+    description = " · ".join(
+        (
+            f"Section {obligor.sector} of {obligor.sector_scheme.value}",
+            obligor.country,
+            unit_words(case),
+            f"{period.basis.value} figures to {period.ends.day} {period.ends:%B %Y}",
+        )
+    )
+    state = f"{read_only or 'Draft'} · lead model {standing.model.name} {standing.model.version}"
+    invented = standing.model.invented or standing.house.invented
+    warning = "▲ demonstration: model and house book are invented, not for lending" if invented else ""
+    return Headline(description, state, warning)
+
+
+def status_words(standing: Standing, house: HouseBook) -> str:
+    """Count findings by severity and name the house book."""
+    counts = [
+        f"{count} {severity.value}{'' if count == 1 else 's'}".replace("querys", "queries")
+        for severity in Severity
+        if (count := sum(finding.severity is severity for finding in standing.findings))
+    ]
+    return " · ".join([*counts, f"house book: {house.settings.label}"])

@@ -1,0 +1,49 @@
+"""A picture of one sheet of the real window."""
+
+from collections.abc import Callable
+from pathlib import Path
+
+from PySide6.QtCore import QElapsedTimer, QEventLoop
+
+from creditdesk.base.errors import BugError, UserError
+from creditdesk.base.palette import Palette
+from creditdesk.case.convert import load_any
+from creditdesk.case.lead import with_lead_model
+from creditdesk.desk.app import make_application
+from creditdesk.desk.session import Session
+from creditdesk.desk.window import SHEETS, Window
+from creditdesk.house.book import HouseBook
+
+_PATIENCE_MILLISECONDS = 60_000
+
+
+def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look: tuple[Palette, int, int]) -> None:
+    """Write a PNG of ``sheet`` at exactly the width and height of ``look``; raises UserError."""
+    names = [name.lower() for name in SHEETS]
+    if sheet.lower() not in names:
+        raise UserError("sheet", f"There is no sheet {sheet!r}: choose one of {', '.join(names)}.")
+    palette, width, height = look
+    application = make_application()
+    case = load_any(case_path, house.chart)
+    window = Window(Session(with_lead_model(house, case, case_path.parent), case, case_path), palette)
+    window.resize(width, height)
+    window.show_sheet(names.index(sheet.lower()))
+    window.show()
+    _wait(lambda: window.settled)
+    for _ in range(3):
+        application.processEvents()
+    pixmap = window.grab()
+    pixmap.setDevicePixelRatio(1)
+    if not pixmap.save(str(out), "PNG"):
+        raise UserError("write", f"{out}: the picture cannot be written there.")
+    window.close()
+
+
+def _wait(done: Callable[[], bool]) -> None:
+    """Let the window work until ``done``."""
+    timer, loop = QElapsedTimer(), QEventLoop()
+    timer.start()
+    while not done():
+        loop.processEvents(QEventLoop.ProcessEventsFlag.AllEvents, 50)
+        if timer.elapsed() > _PATIENCE_MILLISECONDS:
+            raise BugError("the window did not settle")

@@ -1,0 +1,1 @@
+"""Item models that show the case in Qt tables."""

@@ -1,0 +1,125 @@
+"""The look of the window: fonts, palette and style sheet, light and dark."""
+
+from string import Template
+
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QColor, QFont, QFontDatabase, QGuiApplication, QPalette
+from PySide6.QtWidgets import QApplication
+
+from creditdesk.base.palette import DARK, LIGHT, Palette
+from creditdesk.house.fontfiles import font_files
+
+SANS = "Source Sans Pro"
+SERIF = "Source Serif Pro"
+
+_STYLE = Template("""
+QWidget { color: $ink; selection-background-color: $selection; selection-color: $ink; }
+QMainWindow, QDialog, #desk, QMenuBar, QMenu, QStatusBar { background: $paper; }
+#standing { background: $sheet; border-left: 1px solid $rule; }
+#standing QScrollArea, #standing QScrollArea > QWidget > QWidget { background: $sheet; border: 0; }
+#header { border-bottom: 1px solid $rule; }
+QStatusBar { border-top: 1px solid $rule; color: $second_ink; }
+QStatusBar QLabel { color: $second_ink; }
+QStatusBar::item { border: 0; }
+QMenuBar::item { padding: 4px 9px; background: transparent; }
+QMenuBar::item:selected, QMenu::item:selected { background: $selection; }
+QMenu { border: 1px solid $rule; padding: 4px; }
+QMenu::item { padding: 4px 26px 4px 14px; }
+QMenu::item:disabled { color: $second_ink; }
+QMenu::separator { height: 1px; background: $rule; margin: 4px 6px; }
+QLabel[role="obligor"] { font-family: "$serif"; font-size: 19pt; font-weight: 600; }
+QLabel[role="heading"] { font-family: "$serif"; font-size: 11.5pt; font-weight: 600; color: $accent; }
+QLabel[role="second"] { color: $second_ink; }
+QLabel[role="caution"] { color: $caution; }
+QLabel[role="breach"] { color: $breach; font-weight: 600; }
+QLabel[role="pd"] { font-size: 36pt; font-weight: 600; }
+QLabel[role="pd-words"] { font-size: 15pt; font-weight: 600; color: $breach; }
+#grade { background: $paper; border: 1.5px solid $ink; }
+#grade QLabel { background: transparent; }
+QLabel[role="grade"] { font-family: "$serif"; font-size: 24pt; font-weight: 600; }
+#sheets QPushButton { border: 0; border-bottom: 3px solid transparent; padding: 5px 2px; margin-right: 22px;
+  background: transparent; color: $second_ink; font-size: 11pt; }
+#sheets QPushButton:hover { color: $ink; }
+#sheets QPushButton:checked { color: $ink; font-weight: 600; border-bottom-color: $accent; }
+#sheets QPushButton:focus { background: $selection; }
+QPushButton, QToolButton { background: $sheet; border: 1px solid $rule; padding: 5px 13px; }
+QPushButton:hover, QToolButton:hover { border-color: $accent; }
+QPushButton:pressed, QPushButton:checked { background: $selection; }
+QPushButton:default { border-color: $accent; font-weight: 600; }
+QPushButton:focus, QToolButton:focus { border-color: $accent; background: $selection; }
+QPushButton:disabled { color: $second_ink; background: $paper; }
+QLineEdit, QPlainTextEdit, QComboBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
+QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus { border-color: $accent; }
+QTableView { background: $paper; alternate-background-color: $paper; border: 0; gridline-color: transparent;
+  outline: 0; }
+QTableView::item { border-bottom: 1px solid $rule; padding: 0 7px; }
+QTableView::item:selected { background: $selection; color: $ink; }
+QTableView QLineEdit { border: 1.5px solid $accent; padding: 0 4px; }
+QHeaderView { background: $paper; }
+QHeaderView::section { background: $paper; border: 0; border-bottom: 1.5px solid $ink; padding: 6px 7px;
+  font-weight: 600; }
+QTableCornerButton::section { background: $paper; border: 0; }
+QScrollArea { border: 0; background: $paper; }
+#pages { background: $band; }
+QSplitter::handle { background: $rule; }
+QSplitter::handle:hover { background: $accent; }
+QToolTip { background: $sheet; color: $ink; border: 1px solid $rule; padding: 4px; }
+QScrollBar:vertical { background: transparent; width: 11px; }
+QScrollBar:horizontal { background: transparent; height: 11px; }
+QScrollBar::handle { background: $rule; border-radius: 4px; min-height: 28px; min-width: 28px; }
+QScrollBar::handle:hover { background: $second_ink; }
+QScrollBar::add-line, QScrollBar::sub-line, QScrollBar::add-page, QScrollBar::sub-page { background: none; border: 0;
+  width: 0; height: 0; }
+""")
+
+
+def system_palette() -> Palette:
+    """Return the palette that follows the system's choice of light or dark."""
+    return DARK if QGuiApplication.styleHints().colorScheme() == Qt.ColorScheme.Dark else LIGHT
+
+
+def load_fonts() -> None:
+    """Give Qt the program's own fonts, the same files the memo embeds."""
+    for path in font_files():
+        QFontDatabase.addApplicationFont(str(path))
+
+
+def style_sheet(palette: Palette) -> str:
+    """Return the style sheet in ``palette``."""
+    colours = {name: getattr(palette, name) for name in Palette.__slots__ if name != "name"}
+    return _STYLE.substitute(colours, serif=SERIF)
+
+
+def apply(application: QApplication, palette: Palette) -> None:
+    """Dress the whole application in ``palette``."""
+    font = QFont(SANS)
+    font.setPointSizeF(10.5)
+    font.setFeature(QFont.Tag("tnum"), 1)
+    application.setStyle("Fusion")
+    application.setFont(font)
+    application.setPalette(_qt_palette(palette))
+    application.setStyleSheet(style_sheet(palette))
+
+
+def _qt_palette(palette: Palette) -> QPalette:
+    """Return Qt's roles filled from ``palette``, for what a style sheet does not reach."""
+    role = QPalette.ColorRole
+    colours = {
+        role.Window: palette.paper,
+        role.Base: palette.sheet,
+        role.AlternateBase: palette.band,
+        role.Button: palette.sheet,
+        role.WindowText: palette.ink,
+        role.Text: palette.ink,
+        role.ButtonText: palette.ink,
+        role.ToolTipText: palette.ink,
+        role.ToolTipBase: palette.sheet,
+        role.PlaceholderText: palette.second_ink,
+        role.Highlight: palette.selection,
+        role.HighlightedText: palette.ink,
+        role.Link: palette.accent,
+    }
+    result = QPalette()
+    for name, colour in colours.items():
+        result.setColor(name, QColor(colour))
+    return result

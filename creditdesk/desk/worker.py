@@ -1,0 +1,82 @@
+"""Long work off the main thread: a job runs a function, its result comes back by signal on the main thread."""
+
+from collections.abc import Callable
+from typing import Any
+
+from PySide6.QtCore import QObject, QRunnable, QThreadPool, Signal
+
+
+class _Messenger(QObject):
+    """Carry a job's result across threads; lives in the thread that made the job."""
+
+    done = Signal(object)
+    failed = Signal(object)
+
+
+class Job(QRunnable):
+    """Run ``work`` in the thread pool and hand its result to ``done``, or its exception to ``failed``."""
+
+    def __init__(
+        self,
+        work: Callable[[], Any],
+        done: Callable[[Any], None],
+        failed: Callable[[BaseException], None],
+    ) -> None:
+        super().__init__()
+        self.setAutoDelete(False)
+        self._work = work
+        self._messenger = _Messenger()
+        self._messenger.done.connect(done)
+        self._messenger.failed.connect(failed)
+
+    def run(self) -> None:
+        """Do the work; called by the pool."""
+        try:
+            result = self._work()
+        except Exception as error:  # noqa: BLE001  whatever it is, the main thread decides what it means
+            self._messenger.failed.emit(error)
+        else:
+            self._messenger.done.emit(result)
+
+
+class Jobs(QObject):
+    """Keep the running jobs of one owner, so that none is lost and all can be waited for."""
+
+    idle = Signal()
+
+    def __init__(self, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._pool = QThreadPool(self)
+        self._running: list[Job] = []
+
+    @property
+    def busy(self) -> bool:
+        """Say whether any job has not reported yet."""
+        return bool(self._running)
+
+    def start(
+        self,
+        work: Callable[[], Any],
+        done: Callable[[Any], None],
+        failed: Callable[[BaseException], None],
+    ) -> None:
+        """Start ``work``; exactly one of ``done`` and ``failed`` is called later on the main thread."""
+
+        def finish(then: Callable[[Any], None]) -> Callable[[Any], None]:
+            def report(result: Any) -> None:  # noqa: ANN401  whatever the work returns
+                self._running.remove(job)
+                then(result)
+                if not self._running:
+                    self.idle.emit()
+
+            return report
+
+        job = Job(work, finish(done), finish(failed))
+        self._running.append(job)
+        self._pool.start(job)
+
+    def stop(self) -> None:
+        """Wait for what runs; nothing that waits in the queue is begun."""
+        self._pool.clear()
+        self._pool.waitForDone()
+        self._running.clear()

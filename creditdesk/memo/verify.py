@@ -1,0 +1,133 @@
+"""Verify a memo: signatures, signers, attachments, and the assessment run again from them."""
+
+from collections.abc import Collection
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+from creditdesk.base.errors import UserError
+from creditdesk.house.book import HouseBook
+from creditdesk.house.files import read_file
+from creditdesk.memo.attach import attachments
+from creditdesk.memo.decision import DECISION_WORDS
+from creditdesk.memo.rerun import Rerun, rerun
+from creditdesk.memo.signatures import SignatureFacts, SignatureReport, State, inspect
+
+PROVES = (
+    "A valid signature proves that nothing changed since and which key signed. It does not prove the time, which is "
+    "the signer's claim; a self-signed key names nobody beyond its fingerprint; two keys are not two people."
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Verification:
+    """Hold the whole answer; ``valid``: intact, complete, re-run equal, and what was required holds."""
+
+    signatures: SignatureReport
+    rerun: Rerun
+    unmet: tuple[str, ...]
+    text: str
+
+    @property
+    def valid(self) -> bool:
+        """Say whether the memo can be relied on as signed."""
+        return self.signatures.valid and self.rerun.answer == "equal" and not self.unmet
+
+    def as_json(self) -> dict[str, Any]:
+        """Return the answer as plain data."""
+        return {
+            "intact": self.signatures.intact,
+            "complete": self.signatures.complete,
+            "rerun": self.rerun.answer,
+            "largest_difference": self.rerun.largest_difference,
+            "state": self.signatures.state.value,
+            "signatures": [_signature(facts) for facts in self.signatures.signatures],
+            "valid": self.valid,
+            "text": self.text,
+        }
+
+
+def verify_file(path: Path, house: HouseBook, required: Collection[str] = ()) -> Verification:
+    """Verify the memo at ``path`` against the signers of ``house``.
+
+    ``required``: ``known``, every signer is in the house book with the role; ``countersigned``. Raises UserError where
+    the file cannot be read; a damaged memo is an answer, not an error.
+    """
+    return verify_bytes(read_file(path), house, required)
+
+
+def verify_bytes(pdf: bytes, house: HouseBook, required: Collection[str] = ()) -> Verification:
+    """Verify a memo held in memory."""
+    report = inspect(pdf, [signer.fingerprint for signer in house.settings.signers])
+    again = _rerun(pdf, report)
+    unmet = tuple(_unmet(report, required))
+    return Verification(report, again, unmet, _text(report, again, unmet))
+
+
+def _rerun(pdf: bytes, report: SignatureReport) -> Rerun:
+    """Re-run from what the preparer signed; nothing is run from a file that is not as signed."""
+    if not report.intact:
+        return Rerun("impossible", None, ("Nothing was re-run, because the file is not as signed.",))
+    try:
+        return rerun(attachments(pdf[: report.prepared_length]))
+    except UserError as error:
+        return Rerun("impossible", None, error.faults)
+
+
+def _unmet(report: SignatureReport, required: Collection[str]) -> list[str]:
+    unmet = []
+    if "countersigned" in required and report.state is not State.COUNTERSIGNED:
+        unmet.append("A countersignature is required and missing.")
+    if "known" in required:
+        strangers = [facts.name for facts in report.signatures if not facts.known]
+        unmet += [f"{name} is not among the signers of the house book." for name in strangers]
+        if not report.signatures:
+            unmet.append("A known signer is required, and nobody signed.")
+    return unmet
+
+
+def _signature(facts: SignatureFacts) -> dict[str, Any]:
+    return {
+        "role": facts.role.lower(),
+        "name": facts.name,
+        "fingerprint": facts.fingerprint,
+        "known": facts.known,
+        "level": facts.level,
+        "time_claimed": facts.time_claimed.isoformat() if facts.time_claimed else None,
+        "valid": facts.valid,
+        "decision": facts.decision.value if facts.decision else None,
+        "conditions": facts.conditions,
+    }
+
+
+def _text(report: SignatureReport, again: Rerun, unmet: tuple[str, ...]) -> str:
+    lines = [_STATE_WORDS[report.state] if report.valid else "NOT VALID: this is not the memo as signed."]
+    lines += [_signature_words(facts) for facts in report.signatures]
+    lines += report.problems
+    lines.append(_RERUN_WORDS[again.answer].format(difference=again.largest_difference or 0.0))
+    lines += [*again.problems, *unmet, PROVES]
+    return "\n".join(lines)
+
+
+_STATE_WORDS = {
+    State.UNSIGNED: "NOT VALID: the memo carries no signature.",
+    State.PREPARER: "Valid: signed by the preparer, awaiting countersignature.",
+    State.COUNTERSIGNED: "Valid: signed by the preparer and countersigned.",
+    State.DAMAGED: "NOT VALID: the file is damaged.",
+}
+_RERUN_WORDS = {
+    "equal": "Re-run from the attachments: every number, grade and text is the same "
+    "(largest relative difference {difference:.1e}).",
+    "different": "Re-run from the attachments: NOT the same.",
+    "impossible": "Re-run from the attachments: not possible here.",
+}
+
+
+def _signature_words(facts: SignatureFacts) -> str:
+    known = "known to the house book" if facts.known else "not known to the house book"
+    claimed = f", time claimed {facts.time_claimed:%Y-%m-%d %H:%M:%S %Z}" if facts.time_claimed else ""
+    words = f"{facts.role}: {facts.name}, {known}, certificate SHA-256 {facts.fingerprint}, {facts.level}{claimed}"
+    if facts.decision is None:
+        return words
+    decision = DECISION_WORDS[facts.decision]
+    return f"{words}\nDecision: {decision}{f': {facts.conditions}' if facts.conditions else ''}"
