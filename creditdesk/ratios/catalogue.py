@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from creditdesk.base.errors import UserError
+from creditdesk.formula.vocabulary import ARGUMENTS
 from creditdesk.ratios.compiler import Compiler, Row
 from creditdesk.ratios.expressions import ROW_FUNCTIONS, Step
 from creditdesk.ratios.plan import Plan, plan
@@ -95,7 +96,11 @@ def _faults_of_keys(file: RatioFile, chart: Chart) -> Iterator[str]:
     for place, keys in (("groups", groups), ("ratios", [spec.key for spec in file.ratios])):
         for key in sorted({key for key in keys if keys.count(key) > 1}):
             yield f"{place}.{key}: found {keys.count(key)} times; allowed: once"
-    reserved = {*CONSTANTS, *ROW_FUNCTIONS} | {line.key for line in chart.lines}
+    functions = {*ROW_FUNCTIONS, *ARGUMENTS}
+    lines = {line.key for line in chart.lines}
+    for key in sorted((lines | {total.key for total in chart.subtotals}) & (functions | CONSTANTS.keys())):
+        yield f"chart of accounts, {key}: found the name of a function or constant; allowed: a key of its own"
+    reserved = lines | functions | CONSTANTS.keys()
     for spec in file.ratios:
         if not spec.key.isidentifier() or spec.key != spec.key.lower() or spec.key.startswith("_"):
             yield f'ratios.{spec.key}: found "{spec.key}"; allowed: a key of small letters, digits and underscores'

@@ -7,6 +7,7 @@ import msgspec
 from creditdesk.base.errors import UserError
 from creditdesk.formula.compiler import Formula, Use, compile_formula
 from creditdesk.formula.nodes import Chain, Kind, Node, Number
+from creditdesk.formula.vocabulary import ARGUMENTS
 from creditdesk.ratios.expressions import ROW_FUNCTIONS, Expression, fault_of_months, faults_of_time, prepare
 from creditdesk.ratios.spec import CONSTANTS, RatioFile, RatioSpec, SecondFormula
 from creditdesk.statements.chart import Chart
@@ -50,7 +51,8 @@ class Compiler:
         self.ratios = {spec.key: place for place, spec in enumerate(file.ratios) if spec.key not in self.natures}
         self.faults: list[str] = []
         self._specs = file.ratios
-        self._names = (*self.natures, *CONSTANTS, *self.ratios)
+        functions = {*ROW_FUNCTIONS, *ARGUMENTS}
+        self._names = [name for name in (*self.natures, *CONSTANTS, *self.ratios) if name not in functions]
 
     def rows(self) -> tuple[list[Row], dict[str, dict[int, int]]]:
         """Compile the main rows in order, then the second ones.

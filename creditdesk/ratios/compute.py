@@ -177,7 +177,7 @@ def _not_known(plan: Plan, statements: StatementSet, inputs: Inputs) -> FlagArra
         if np.isnan(inputs.constants[name]):
             found[takes] = True
     for code, layout in enumerate(Presentation, start=1):
-        other = np.array([period.presentation is not layout for period in statements.periods])
+        other = np.array([period.presentation is not layout for period in statements.periods], dtype=np.bool_)
         found |= np.logical_and.outer(plan.presentation == code, other)
     return found
 
@@ -196,7 +196,7 @@ def _choose(catalogue: Catalogue, statements: StatementSet, reasons: ReasonArray
     """Choose the row of each ratio in each period: by nature where that is the layout, otherwise where a line lacks."""
     periods = statements.periods
     chosen = np.repeat(np.arange(len(catalogue.specs))[:, None], len(periods), axis=1)
-    by_nature = np.array([period.presentation is Presentation.BY_NATURE for period in periods])
+    by_nature = np.array([period.presentation is Presentation.BY_NATURE for period in periods], dtype=np.bool_)
     for ratio, row in catalogue.by_nature.items():
         chosen[ratio, by_nature] = row
     for ratio, row in catalogue.otherwise.items():
@@ -230,4 +230,4 @@ def _notes(catalogue: Catalogue, rows: IndexArray) -> dict[tuple[str, int], str]
 
 def _first_draw(array: ReasonArray) -> ReasonArray:
     """Drop the draws: what is disclosed is the same in all of them."""
-    return array.reshape(*array.shape[:2], -1)[..., 0]
+    return array if array.ndim == 2 else array[..., 0]

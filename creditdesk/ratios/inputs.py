@@ -56,7 +56,7 @@ def gather(
         for step in catalogue.steps:
             amounts[step.name] = functions[step.function](step.argument(amounts))
         nil = ROUNDING * np.nan_to_num(np.fmax.reduce(np.abs(used), axis=0))
-    known = used.reshape(*used.shape[:2], -1)[..., 0]
+    known = used if used.ndim == 2 else used[..., 0]
     return Inputs(
         statements.periods, times, constants, used, np.isnan(known), amounts, nil, statements.needs, constant_needs
     )

@@ -116,11 +116,13 @@ def users_of(catalogue: Catalogue, line: str) -> tuple[str, ...]:
 
 
 def _reached(chart: Chart, line: str) -> set[str]:
-    """List a line and all subtotals above it."""
+    """List a line, the subtotals above it, and the lines it may stand for."""
+    above = [(total.key, total.adds + total.subtracts) for total in chart.subtotals]
+    above += [(other.key, other.otherwise_adds + other.otherwise_subtracts) for other in chart.lines]
     reached, before = {line}, 0
     while len(reached) > before:
         before = len(reached)
-        reached |= {total.key for total in chart.subtotals if reached.intersection(total.adds + total.subtracts)}
+        reached |= {key for key, parts in above if reached.intersection(parts)}
     return reached
 
 
@@ -174,15 +176,22 @@ class _Filler:
             return amount if months == 12 else f"({amount} × 12 ÷ {months})"
         if function == "prior":
             return self._grouped(argument, int(sources[When.PRIOR][period]))
-        opening = self._grouped(argument, int(sources[When.OPENING][period]))
+        before = int(sources[When.OPENING][period])
         if function == "opening":
-            return opening
-        closing = self._grouped(argument, period)
-        return f"(({opening} + {closing}) ÷ 2)" if function == "average" else f"({closing} {MINUS} {opening})"
+            return self._grouped(argument, before)
+        if function == "average":
+            return f"(({self._grouped(argument, before)} + {self._second(argument, period)}) ÷ 2)"
+        return f"({self._grouped(argument, period)} {MINUS} {self._second(argument, before)})"
 
     def _grouped(self, formula: Formula, period: int) -> str:
+        """Write an amount so that it stands together."""
         text = self._fill(formula, period)
-        return text if is_single(formula) and not text.startswith(MINUS) else f"({text})"
+        return text if is_single(formula) else f"({text})"
+
+    def _second(self, formula: Formula, period: int) -> str:
+        """Write an amount that follows a sign."""
+        text = self._grouped(formula, period)
+        return f"({text})" if text.startswith(MINUS) else text
 
     def _item(self, name: str, period: int) -> str:
         """Note one number and return its text with its mark."""
