@@ -191,7 +191,7 @@ def _scalars(table: Mapping[str, object]) -> str:
 
 def _rows(section: str, rows: Mapping[str, tuple[float, ...]] | Mapping[str, tuple[str, ...]], order: list[str]) -> str:
     """Write one line per row; rows the chart does not know, which no checked case has, come last."""
-    keys = [*(key for key in order if key in rows), *sorted(rows.keys() - set(order))]
+    keys = [*(key for key in dict.fromkeys(order) if key in rows), *sorted(rows.keys() - set(order))]
     text = "".join(f"{_key(key)} = [ {', '.join(map(_literal, rows[key]))} ]\n" for key in keys)
     return f"[{section}]\n{text}" if text else ""
 

@@ -41,7 +41,7 @@ def chart() -> Chart:
         ),
         subtotals=tuple(
             Subtotal(key, key.replace("_", " ").capitalize(), group, _nature(group), adds, subtracts)
-            for key, (group, adds, subtracts) in TOTALS.items()
+            for key, (group, adds, subtracts) in [*TOTALS.items(), ("gross_profit", ("income", ("revenue",), ()))]
         ),
     )
 
