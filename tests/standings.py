@@ -3,6 +3,7 @@
 from dataclasses import replace
 from datetime import date
 from itertools import pairwise
+from math import nan
 from types import SimpleNamespace
 
 import numpy as np
@@ -32,7 +33,7 @@ FACTORS = (
     ("Interest cover", "interest_cover", "times", 5.92, 0.27),
     ("Size (log of assets)", "log_assets", "log", 17.2, -0.22),
     ("Debt / EBITDA", "debt_to_ebitda", "times", 1.61, -0.11),
-    ("Quick ratio", "quick_ratio", "ratio", 0.97, 0.08),
+    ("Quick ratio", "quick_ratio", "number", 0.97, 0.08),
     ("Revenue growth", "revenue_growth", "percent", 0.064, -0.06),
 )
 REFERENCE_SCORE = -3.38
@@ -151,7 +152,7 @@ def standing(**changes: object) -> Standing:
 def without_pd(**changes: object) -> Standing:
     """Make a standing whose model gives no PD because too many factors are missing."""
     gone = tuple(
-        replace(part, value=None, reason="not_disclosed", reason_text="Needs depreciation.", treated=None)
+        replace(part, value=None, reason="not_disclosed", reason_text="Needs depreciation.", treated=None, log_odds=nan)
         for part in factors()
     )
     return standing(

@@ -134,4 +134,4 @@ def _draw_key_shape(board: Board, layer: str, shape: str, at: tuple[float, float
     elif shape == "dot":
         board.dot(layer, at, 2.2, Pen(palette.sheet), Pen(palette.accent, 0.9))
     else:
-        board.box(layer, (x - 3, y - 2.5), (8, 5), Pen(palette.accent, alpha=0.22))
+        board.box(layer, (x - 3, y - 2.5), (6.5, 5), Pen(palette.accent, alpha=0.22))

@@ -11,7 +11,7 @@ from matplotlib.text import Text
 from matplotlib.transforms import Affine2D, Transform
 from numpy.typing import ArrayLike
 
-from creditdesk.charts.style import CAP_HEIGHT, Pen, Size, Type, font
+from creditdesk.charts.style import CAP_HEIGHT, Pen, Size, Type, drawable, font
 
 _ROUND = "round"
 
@@ -72,9 +72,17 @@ class Board:
     def text(self, layer: str, at: Size, words: str, style: Type, z: float = 5) -> Artist:
         """Write one line; ``at`` is the baseline at the side named by the style's alignment."""
         text = Text(
-            *at, words, color=style.colour, fontproperties=font(style.face), horizontalalignment=style.align,
-            verticalalignment="baseline", parse_math=False, usetex=False, transform=self._transform, zorder=z,
-        )  # fmt: skip
+            *at,
+            drawable(words, style.face),
+            color=style.colour,
+            fontproperties=font(style.face),
+            horizontalalignment=style.align,
+            verticalalignment="baseline",
+            parse_math=False,
+            usetex=False,
+            transform=self._transform,
+            zorder=z,
+        )
         text.set_fontsize(style.size)
         return self._keep(layer, text)
 

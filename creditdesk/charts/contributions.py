@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from math import isfinite
 
 from matplotlib.backend_bases import Event
 from matplotlib.figure import Figure
@@ -91,8 +92,7 @@ def contributions_height(rows: int, palette: Palette) -> float:
 
 def contribution_rows(standing: Standing, limit: int | None = None) -> list[Row]:
     """List the factors' rows, the largest contribution first; what goes beyond ``limit`` rows becomes their sum."""
-    factors = sorted(standing.factors, key=lambda factor: -abs(factor.log_odds))
-    rows = [_row(factor) for factor in factors]
+    rows = sorted((_row(factor) for factor in standing.factors), key=lambda row: -abs(row.amount))
     if limit is None or len(rows) <= limit:
         return rows
     rest = rows[limit - 1 :]
@@ -101,7 +101,8 @@ def contribution_rows(standing: Standing, limit: int | None = None) -> list[Row]
 
 def _row(factor: FactorStanding) -> Row:
     value = factor_value(factor)
-    return Row(factor.label, f"{value} (capped)" if factor.capped else value, factor.log_odds, factor.value is not None)
+    amount = factor.log_odds if isfinite(factor.log_odds) else 0.0  # not known where there is no score
+    return Row(factor.label, f"{value} (capped)" if factor.capped else value, amount, factor.value is not None)
 
 
 def _draw(board: Board, standing: Standing, rows: Sequence[Row], palette: Palette) -> None:

@@ -95,6 +95,16 @@ def _width_of_100_points(text: str, face: Face) -> float:
     return float(opened.get_width_height()[0]) / 64
 
 
+@cache
+def _characters(face: Face) -> frozenset[str]:
+    return frozenset(map(chr, _opened(face).get_charmap()))
+
+
+def drawable(text: str, face: Face = Face.SANS) -> str:
+    """Replace every character that the face lacks by a lozenge, so that a name in any script can be drawn."""
+    return "".join(character if character in _characters(face) else "◊" for character in text)
+
+
 def text_width(text: str, size: float, face: Face = Face.SANS) -> float:
     """Return the width of ``text`` in points."""
     return _width_of_100_points(text, face) * size / 100

@@ -1,9 +1,9 @@
 """How charts and memo word a value, a direction and a period: the same on window and paper."""
 
-from collections.abc import Callable
-
-from creditdesk.base.display import MINUS, format_amount, format_days, format_number, format_percent, format_times
+from creditdesk.base.display import MINUS, format_number
 from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.ratios.spec import Unit
+from creditdesk.ratios.words import format_ratio
 
 REASON_WORDS = {
     "net_cash": "net cash",
@@ -14,18 +14,10 @@ REASON_WORDS = {
     "negative_denominator": "divisor negative",
 }
 
-_BY_UNIT: dict[str, Callable[[float], str]] = {
-    "percent": format_percent,
-    "times": format_times,
-    "days": format_days,
-    "money": format_amount,
-}
-
 
 def ratio_text(value: float, unit: str) -> str:
-    """Write a ratio in its unit: 26.5 %, 2.50x, 64 days, 1 250; any other unit as a number with two decimals."""
-    write = _BY_UNIT.get(unit)
-    return write(value) if write else format_number(value, 2)
+    """Write a ratio in its unit: 26.5 %, 2.50x, 64 days, 1 250."""
+    return format_ratio(value, Unit(unit))
 
 
 def factor_value(factor: FactorStanding) -> str:

@@ -90,6 +90,13 @@ def test_no_setting_of_the_user_lets_a_label_be_read_as_a_formula() -> None:
     FigureCanvasAgg(figure).draw()
 
 
+def test_a_character_the_font_lacks_is_shown_as_a_lozenge_without_a_warning() -> None:
+    figure = new_figure((200, 100))
+    text = Board(figure).text("layer", (10, 10), "東京 Ltd", Type(LIGHT.ink, 8))
+    FigureCanvasAgg(figure).draw()
+    assert text.get_text() == "◊◊ Ltd"
+
+
 def test_a_layer_is_rubbed_out_alone() -> None:
     board = Board(new_figure((200, 100)))
     style = Type(LIGHT.ink, 8)

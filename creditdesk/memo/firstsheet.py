@@ -1,0 +1,164 @@
+"""Page one on paper: the decision on one page, however long its texts are.
+
+What may be long is cut to its share and printed in full after the page; the curve takes the height that is left.
+"""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from matplotlib.figure import Figure
+from reportlab.platypus import Flowable, Spacer
+
+from creditdesk.case.standing import Standing
+from creditdesk.charts.contributions import contributions_figure, contributions_height
+from creditdesk.charts.curve import curve_figure
+from creditdesk.charts.style import PAPER
+from creditdesk.memo.blocks import MemoContent
+from creditdesk.memo.firstpage import NOT_WRITTEN
+from creditdesk.memo.firstparts import NAME_WIDTH, columns, key_ratio_table, masthead, signature_boxes
+from creditdesk.memo.onpaper import draw_figure
+from creditdesk.memo.sheets import heading
+from creditdesk.memo.structure import TaggedCanvas
+from creditdesk.memo.styles import BODY, FOOT_CAUTION, NOTE, SMALL_ITEM, TEXT_HEIGHT, TEXT_WIDTH, marked_up
+from creditdesk.memo.tagging import TaggedDrawing, TaggedParagraph, tagged_list
+
+_LEFT, _GUTTER = 258.0, 22.0
+_RIGHT = TEXT_WIDTH - _LEFT - _GUTTER
+_ROWS = 8
+_CURVE_LEAST, _CURVE_MOST, _CURVE_WITHOUT_ROOM = 118.0, 228.0, 60.0
+_MOST_LINES = {"request": 3, "recommendation": 6, "conditions": 6, "weak spots": 7}
+_LEAST_LINES = {"request": 2, "recommendation": 2, "conditions": 2, "weak spots": 3}
+_POINTER = " … continued on page 2"
+
+
+@dataclass(frozen=True, slots=True)
+class FirstSheet:
+    """Hold page one's flowables, and the keys of the officer's texts that did not fit on it."""
+
+    flowables: tuple[Flowable, ...]
+    cut: tuple[str, ...]
+
+
+def first_sheet(content: MemoContent, standing: Standing) -> FirstSheet:
+    """Lay out page one so that it fills one page and never more."""
+    lines = dict(_MOST_LINES)
+    while True:
+        page = _Page(content, standing, lines)
+        room = TEXT_HEIGHT - _height([*page.above, *page.below, *page.foot]) - 1
+        if room >= _CURVE_LEAST or not _take_a_line(lines):
+            break
+    height = max(min(room, _CURVE_MOST), _CURVE_WITHOUT_ROOM)
+    curve = chart(lambda size: curve_figure(standing, PAPER, size), (TEXT_WIDTH, height), content.curve_words)
+    rest = Spacer(1, max(room - height, 0.0))
+    return FirstSheet((*page.above, curve, *page.below, rest, *page.foot), tuple(page.cut))
+
+
+def chart(make: Callable[[tuple[float, float]], Figure], size: tuple[float, float], words: str) -> TaggedDrawing:
+    """Return a chart of ``size`` points as a drawing that is read as ``words``."""
+    figure = make(size)
+
+    def draw(canvas: TaggedCanvas, x: float, y: float, width: float, height: float) -> None:
+        draw_figure(figure, canvas, x, y, width, height)
+
+    return TaggedDrawing(draw, *size, words)
+
+
+class _Page:
+    """Make page one's parts above and below the curve and at its foot, each text cut to its ``lines``."""
+
+    def __init__(self, content: MemoContent, standing: Standing, lines: dict[str, int]) -> None:
+        self.cut: list[str] = []
+        self._lines = lines
+        first = content.first
+        request = self._officer("request", "Request.", first.request, NAME_WIDTH - 8)
+        self.above: list[Flowable] = [masthead(first, request), Spacer(1, 9), *heading("Where the borrower stands")]
+        self.below: list[Flowable] = [
+            Spacer(1, 8),
+            _why_and_ratios(content, standing),
+            Spacer(1, 8),
+            *heading("Weak spots"),
+            *self._weak_spots(first.weak_spots),
+            Spacer(1, 6),
+            *heading("Recommendation and conditions"),
+            self._officer("recommendation", "Recommendation.", first.recommendation, TEXT_WIDTH),
+            Spacer(1, 2),
+            self._officer("conditions", "Conditions.", first.conditions, TEXT_WIDTH),
+            Spacer(1, 8),
+        ]
+        caution = TaggedParagraph(marked_up(f"▲ {first.caution}"), FOOT_CAUTION)
+        self.foot: list[Flowable] = [signature_boxes(TEXT_WIDTH, _GUTTER), Spacer(1, 6), caution]
+
+    def _officer(self, key: str, head: str, text: str, width: float) -> TaggedParagraph:
+        """Set an officer's text after its head, cut to its lines; an empty one is said to be missing."""
+        if not text:
+            return TaggedParagraph(f"<b>{head}</b> <i>{NOT_WRITTEN}</i>", BODY)
+        whole = _headed(head, text)
+        if _lines_of(whole, width) <= self._lines[key]:
+            return whole
+        self.cut.append(key)
+        return _cut(head, text, width, self._lines[key])
+
+    def _weak_spots(self, spots: Sequence[str]) -> list[Flowable]:
+        """List as many as fit their lines, and say how many more there are."""
+        if not spots:
+            return [
+                TaggedParagraph("No factor raises the PD above the reference borrower's, no query is open.", SMALL_ITEM)
+            ]
+        shown: list[str] = []
+        used = 0.0
+        for spot in spots:
+            used += _lines_of(TaggedParagraph(marked_up(spot), SMALL_ITEM), TEXT_WIDTH)
+            if shown and used > self._lines["weak spots"]:
+                break
+            shown.append(spot)
+        listed = tagged_list([marked_up(spot) for spot in shown], SMALL_ITEM)
+        hidden = len(spots) - len(shown)
+        more = f"and {hidden} more: see Findings and Contributions of all factors"
+        return [*listed, *([TaggedParagraph(more, NOTE)] if hidden else [])]
+
+
+def _why_and_ratios(content: MemoContent, standing: Standing) -> Flowable:
+    """Set the contributions beside the key ratios."""
+    rows = min(len(standing.factors), _ROWS)
+    size = (_LEFT, contributions_height(rows, PAPER))
+    why = chart(lambda wanted: contributions_figure(standing, PAPER, wanted, _ROWS), size, content.contribution_words)
+    left = [*heading("Why"), why]
+    right = [*heading("Key ratios"), key_ratio_table(content.first, _RIGHT)]
+    return columns((left, (), right), (_LEFT, _GUTTER, _RIGHT))
+
+
+def _headed(head: str, text: str) -> TaggedParagraph:
+    return TaggedParagraph(f"<b>{head}</b> {marked_up(text)}", BODY)
+
+
+def _cut(head: str, text: str, width: float, lines: int) -> TaggedParagraph:
+    """Keep as many words as leave room for the pointer to the whole text."""
+    words = text.split()
+    low, high = 0, len(words)
+    while low < high:
+        middle = (low + high + 1) // 2
+        fits = _lines_of(_headed(head, " ".join(words[:middle]) + _POINTER), width) <= lines
+        low, high = (middle, high) if fits else (low, middle - 1)
+    return _headed(head, " ".join(words[:low]) + _POINTER)
+
+
+def _lines_of(paragraph: TaggedParagraph, width: float) -> int:
+    return round(paragraph.wrap(width, 10_000)[1] / paragraph.style.leading)
+
+
+def _take_a_line(lines: dict[str, int]) -> bool:
+    """Take one line from the text that has most to spare; False where none has."""
+    spare = {key: lines[key] - _LEAST_LINES[key] for key in lines}
+    key = max(spare, key=lambda name: spare[name])
+    lines[key] -= 1 if spare[key] > 0 else 0
+    return spare[key] > 0
+
+
+def _height(flowables: Sequence[Flowable]) -> float:
+    """Return what flowables take of the page's height, space before and after included, as a frame counts it."""
+    total, above = 0.0, 0.0
+    for number, flowable in enumerate(flowables):
+        before = flowable.getSpaceBefore() if number else 0.0
+        total += max(before - above, 0.0) + flowable.wrap(TEXT_WIDTH, 10_000)[1] + flowable.getSpaceAfter()
+        above = flowable.getSpaceAfter()
+    return total

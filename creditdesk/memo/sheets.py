@@ -1,0 +1,47 @@
+"""The pages after the first: sections as flowables."""
+
+from collections.abc import Sequence
+
+from reportlab.platypus import CondPageBreak, Flowable, HRFlowable, Spacer
+
+from creditdesk.memo.blocks import Block, Grid, Listing, Pairs, Prose, Section, Subheading
+from creditdesk.memo.grids import grid_flowables, pairs_flowables
+from creditdesk.memo.styles import BY_TONE, HEADING, INKS, ITEM, SUBHEADING, TEXT_WIDTH, marked_up
+from creditdesk.memo.tagging import Decoration, TaggedParagraph, tagged_list
+
+_ROOM_FOR_A_BEGINNING = 96.0
+
+
+def section_flowables(section: Section) -> list[Flowable]:
+    """Return heading and blocks of a section; a heading never stands alone at a page's end."""
+    flowables: list[Flowable] = [CondPageBreak(_ROOM_FOR_A_BEGINNING), *heading(section.heading)]
+    for block in section.blocks:
+        flowables += _block_flowables(block)
+    return [*flowables, Spacer(1, 12)]
+
+
+def heading(text: str, level: str = "H2", width: float | str = "100%") -> list[Flowable]:
+    """Return a heading with the rule below it."""
+    rule = HRFlowable(width=width, thickness=0.6, color=INKS.rule, spaceBefore=2, spaceAfter=4, lineCap="butt")
+    return [TaggedParagraph(marked_up(text), HEADING, level), Decoration(rule)]
+
+
+def _block_flowables(block: Block) -> Sequence[Flowable]:
+    if isinstance(block, Grid):
+        return grid_flowables(block, TEXT_WIDTH)
+    if isinstance(block, Pairs):
+        return pairs_flowables(block, TEXT_WIDTH)
+    if isinstance(block, Listing):
+        return tagged_list([marked_up(item) for item in block.items], ITEM)
+    if isinstance(block, Subheading):
+        return [CondPageBreak(_ROOM_FOR_A_BEGINNING * 0.7), TaggedParagraph(marked_up(block.text), SUBHEADING, "H3")]
+    return _prose_flowables(block)
+
+
+def _prose_flowables(prose: Prose) -> list[Flowable]:
+    style = BY_TONE[prose.tone]
+    paragraphs = [part for part in prose.text.split("\n\n") if part.strip()]
+    spaced: list[Flowable] = []
+    for part in paragraphs:
+        spaced += [TaggedParagraph(marked_up(part), style), Spacer(1, 4)]
+    return spaced
