@@ -17,7 +17,7 @@ from creditdesk.case.wire import case_from_tables, case_tables, case_to_json
 from creditdesk.house.decode import Fault, type_faults
 from creditdesk.statements.adjust import Adjustment
 from creditdesk.statements.chart import Chart, LineItem, Subtotal
-from creditdesk.statements.period import Period
+from creditdesk.statements.period import Period, period_label
 
 Cell = TypeVar("Cell")
 _LINE = re.compile(r"[a-z][a-z0-9_]*")
@@ -373,13 +373,6 @@ def command_from_json(data: bytes) -> Command:
         return ReplaceCase(case_from_tables(raw["case"]))
     command: Command = msgspec.convert(raw, Command)
     return command
-
-
-def period_label(period: Period) -> str:
-    """Name a period shortly: its year where it is one that ends with it, else length and closing date."""
-    if period.months == 12 and (period.ends.month, period.ends.day) == (12, 31):
-        return str(period.ends.year)
-    return f"{period.months} months to {period.ends}"
 
 
 def _refused(*faults: Fault) -> UserError:

@@ -10,7 +10,8 @@ APPLICATION_ID = 0x43444B31
 """Marks a SQLite file as a case ("CDK1")."""
 VERSION = 1
 _HEADER = 100
-_MAGIC = b"SQLite format 3\x00"
+MAGIC = b"SQLite format 3\x00"
+"""First bytes of every SQLite file."""
 _TABLES = {
     "meta": "CREATE TABLE meta (key TEXT PRIMARY KEY, value TEXT NOT NULL) STRICT",
     "document": """CREATE TABLE document (
@@ -42,7 +43,7 @@ def check_header(path: Path) -> None:
     Whether the rest is there only SQLite can tell, because a writer may be at work.
     """
     head = _first_bytes(path)
-    if not head.startswith(_MAGIC[: len(head)]) or not head:
+    if not head.startswith(MAGIC[: len(head)]) or not head:
         raise UserError("not_a_case_file", f"{path}: not a case file")
     if len(head) < _HEADER:
         raise UserError("damaged", f"{path}: the file is damaged: only {len(head)} bytes are left")

@@ -1,7 +1,7 @@
 """The house book: line items, ratios, models, master scale, rules and settings of one house, compiled once."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import msgspec
 
@@ -66,3 +66,11 @@ class HouseBook:
     rules: RuleBook
     files: Mapping[str, bytes]
     digest: str
+
+
+def with_model(house: HouseBook, model: LoadedModel, name: str = "") -> HouseBook:
+    """Return the house book with one more model in it, under ``name`` or the model's own name.
+
+    Files and digest stay those of the house book as it was read: the model comes with a digest of its own.
+    """
+    return replace(house, models={**house.models, name or model.spec.name: model})

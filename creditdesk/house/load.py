@@ -81,10 +81,14 @@ def load_model(path: Path, house: HouseBook) -> LoadedModel:
 
     Raises UserError ``no_file`` and so on, or ``faults`` with one line each.
     """
-    data = read_file(path, SIZE_LIMIT)
-    spec = decode_toml(data, ModelSpec, file=str(path))
+    return model_from_bytes(read_file(path, SIZE_LIMIT), house, file=str(path))
+
+
+def model_from_bytes(data: bytes, house: HouseBook, *, file: str) -> LoadedModel:
+    """Load a model from memory, as ``load_model`` does from a file; ``file`` names it in messages."""
+    spec = decode_toml(data, ModelSpec, file=file)
     if found := models.faults(spec, house.catalogue.keys):
-        raise UserError("faults", [f"{path}: {fault}" for fault in found])
+        raise UserError("faults", [f"{file}: {fault}" for fault in found])
     return LoadedModel(spec, _digest(data))
 
 

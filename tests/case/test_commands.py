@@ -177,7 +177,7 @@ def test_a_case_can_be_replaced_whole(case: Case) -> None:
         (SetAssessment(Assessment(date(2026, 3, 15))), "Assessed on 2026-03-15, period chosen by rule"),
         (SetLeadModel("northlight-sme"), "Lead model northlight-sme"),
         (SetText("weak_spots", ""), "Text “weak spots” removed"),
-        (AddPeriod(2, Period(date(2026, 6, 30), 6, Basis.MANAGEMENT, FUNCTION)), "Period 6 months to 2026-06-30 added"),
+        (AddPeriod(2, Period(date(2026, 6, 30), 6, Basis.MANAGEMENT, FUNCTION)), "Period Jun 2026 (6 m) added"),
         (RemovePeriod(0), "Period 2024 removed"),
         (SetPeriod(0, annual(2023)), "Period 2024 to 2023"),
         (SetPeriod(0, annual(2024, consolidated=True)), "Period 2024 changed"),
