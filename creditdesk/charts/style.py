@@ -1,5 +1,6 @@
 """The look of the charts: paper's palette, type, pens, and how wide a word is."""
 
+import re
 from contextlib import AbstractContextManager
 from dataclasses import dataclass, replace
 from functools import cache
@@ -121,9 +122,12 @@ def shorten(text: str, width: float, size: float, face: Face = Face.SANS) -> str
 
 
 def wrap(text: str, width: float, size: float, face: Face = Face.SANS) -> list[str]:
-    """Break ``text`` at spaces into lines of at most ``width`` points; a longer word stands on its own line."""
+    """Break ``text`` at plain spaces into lines of at most ``width`` points; a longer word stands on its own line.
+
+    Fixed and narrow spaces hold numbers and units together.
+    """
     lines: list[str] = []
-    for word in text.split():
+    for word in filter(None, re.split("[ \n]+", text)):
         joined = f"{lines[-1]} {word}" if lines else word
         if lines and text_width(joined, size, face) <= width:
             lines[-1] = joined

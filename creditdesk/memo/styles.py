@@ -9,6 +9,7 @@ from reportlab.lib.enums import TA_CENTER, TA_RIGHT
 from reportlab.lib.pagesizes import A4
 from reportlab.lib.styles import ParagraphStyle
 
+from creditdesk.base.display import FIXED_SPACE, NARROW_SPACE
 from creditdesk.charts.style import PAPER
 from creditdesk.house.fontfiles import Face
 from creditdesk.memo.blocks import Tone
@@ -94,5 +95,9 @@ BY_TONE = {
 
 
 def marked_up(text: str) -> str:
-    """Make a text safe for a paragraph: markup escaped, characters the fonts lack replaced, line breaks kept."""
-    return "<br/>".join(escape(printable(line.expandtabs(4))) for line in text.splitlines())
+    """Make a text safe for a paragraph: markup escaped, characters the fonts lack replaced, line breaks kept.
+
+    Narrow spaces become fixed ones: reportlab breaks lines at the former.
+    """
+    lines = text.replace(NARROW_SPACE, FIXED_SPACE).splitlines()
+    return "<br/>".join(escape(printable(line.expandtabs(4))) for line in lines)

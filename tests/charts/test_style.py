@@ -82,6 +82,10 @@ def test_text_breaks_at_spaces_and_keeps_every_word() -> None:
     assert wrap("", 90, 8) == []
 
 
+def test_no_line_breaks_inside_a_number_or_before_its_unit() -> None:
+    assert wrap("1\u202f234.50x 12\u00a0%", 1, 8) == ["1\u202f234.50x", "12\u00a0%"]
+
+
 def test_no_setting_of_the_user_lets_a_label_be_read_as_a_formula() -> None:
     figure = new_figure((200, 100))
     text = Board(figure).text("layer", (10, 10), "$5 of $x_2$", Type(LIGHT.ink, 8))
