@@ -9,6 +9,8 @@ padding.
 from asn1crypto import algos, cms, core, x509  # type: ignore[import-untyped]
 from cryptography.hazmat.primitives.asymmetric.utils import decode_dss_signature, encode_dss_signature
 
+LEVEL = "PAdES B-B"
+
 _P256_ORDER = 0xFFFFFFFF00000000FFFFFFFFFFFFFFFFBCE6FAADA7179E84F3B9CAC2FC632551  # SEC 2, 2.4.2
 _SIGNATURE_ALGORITHMS = {
     "ec": {"algorithm": "sha256_ecdsa"},  # RFC 5758, 3.2: no parameters

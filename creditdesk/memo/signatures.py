@@ -25,9 +25,8 @@ from pyhanko.sign.validation.pdf_embedded import read_certification_data
 from pyhanko.sign.validation.settings import KeyUsageConstraints
 from pyhanko_certvalidator import ValidationContext
 
-from creditdesk.memo.canonical import canonical_cms, canonical_contents
+from creditdesk.memo.canonical import LEVEL, canonical_cms, canonical_contents
 from creditdesk.memo.decision import Decision, Role, read_reason
-from creditdesk.memo.stamp import LEVEL
 
 _USAGE = KeyUsageConstraints(key_usage={"non_repudiation", "digital_signature"}, match_all_key_usages=False)
 _DAMAGED = "The file is damaged; its signatures cannot be read, so it is not valid."

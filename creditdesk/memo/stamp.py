@@ -12,9 +12,9 @@ from pyhanko.pdf_utils.writer import BasePdfFileWriter
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import LIGHT
 from creditdesk.house.fontfiles import Face, font_path
+from creditdesk.memo.canonical import LEVEL
 from creditdesk.memo.fonts import missing_glyphs
 
-LEVEL = "PAdES B-B"
 WHAT_THE_LEVEL_PROVES = f"{LEVEL}: proves integrity and key, not the time"
 _SIZES = (8.0, 7.5, 7.0, 6.5, 6.0)  # points; the largest that fits is taken
 _LEADING, _MARGIN = 1.25, 4.0
