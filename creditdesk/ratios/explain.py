@@ -10,10 +10,8 @@ from creditdesk.ratios.expressions import When, moments
 from creditdesk.ratios.missing import Gap, gaps_of
 from creditdesk.ratios.spec import NET_DEBT
 from creditdesk.ratios.words import denominator_in_words, label_of, sentence, within
-from creditdesk.statements.period import Presentation
+from creditdesk.statements.period import FULL_YEAR_MONTHS, Presentation
 
-LONG_PERIOD = 11
-"""Months from which a period counts as a whole year."""
 _LAYOUT = {Presentation.BY_FUNCTION: "by function", Presentation.BY_NATURE: "by nature"}
 
 
@@ -69,8 +67,8 @@ def _needs_prior(row: Row, table: RatioTable, period: int) -> str:
     absent = {when for use in row.uses() for when in moments(use) if sources[when][period] < 0}
     if When.OPENING in absent:
         return "Needs the opening balance: no earlier period ends when this one begins"
-    if table.inputs.periods[period].months >= LONG_PERIOD:
-        return "Needs the prior period: none of 11 months or more ends when this one begins"
+    if table.inputs.periods[period].months >= FULL_YEAR_MONTHS:
+        return f"Needs the prior period: none of {FULL_YEAR_MONTHS} months or more ends when this one begins"
     return "Needs the prior period: none of the same length ends a year earlier"
 
 

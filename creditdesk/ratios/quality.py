@@ -8,7 +8,7 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.compute import RatioTable
 from creditdesk.ratios.words import format_ratio
-from creditdesk.statements.period import Period
+from creditdesk.statements.period import Period, period_place
 from creditdesk.statements.statement import StatementSet
 
 
@@ -25,9 +25,9 @@ def _annualised(table: RatioTable, period: Period, place: int) -> Iterator[Findi
     marked = np.flatnonzero(table.annualised[:, place] & ~np.isnan(table.values[:, place]))
     if len(marked):
         yield Finding(
-            code="ratios_annualised",
+            code="ratio.annualised",
             severity=Severity.NOTE,
-            place=f"periods[{period.ends.isoformat()}]",
+            place=period_place(period),
             text=f"{len(marked)} ratios take flows to 12 months, because this period has {period.months} months or the "
             "prior one has not 12; a season or a one-off in them then weighs more or less than it should: "
             + ", ".join(table.keys[position] for position in marked),
@@ -42,7 +42,7 @@ def _implausible(catalogue: Catalogue, table: RatioTable, place: int, ends: str)
         if value < low or value > high:
             side, bound = ("below", low) if value < low else ("above", high)
             yield Finding(
-                code="ratio_implausible",
+                code="ratio.implausible",
                 severity=Severity.QUERY,
                 place=f"ratios.{spec.key}[{ends}]",
                 text=f"{spec.label} is {format_ratio(value, spec.unit)}, {side} {format_ratio(bound, spec.unit)}; "

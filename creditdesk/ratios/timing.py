@@ -7,12 +7,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.ratios.expressions import When
-from creditdesk.statements.period import Basis, Period, prior_indices
+from creditdesk.statements.period import Period, annual_factors, is_actual, months_before, prior_indices
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
-
-MONTHS_IN_YEAR = 12
 
 
 @dataclass(frozen=True, eq=False)
@@ -37,36 +35,31 @@ class Timing:
 
 def timing(periods: Sequence[Period]) -> Timing:
     """Relate periods in time."""
-    prior = np.asarray(prior_indices(periods), dtype=np.intp)
+    prior = prior_indices(periods)
     opening = np.array([_opening(periods, place, int(prior[place])) for place in range(len(periods))], dtype=np.intp)
-    per_year = np.array([MONTHS_IN_YEAR / period.months for period in periods])
-    return Timing({When.NOW: np.arange(len(periods)), When.PRIOR: prior, When.OPENING: opening}, per_year)
+    sources = {When.NOW: np.arange(len(periods)), When.PRIOR: prior, When.OPENING: opening}
+    return Timing(sources, annual_factors(periods))
 
 
 def _opening(periods: Sequence[Period], place: int, prior: int) -> int:
-    """Find the period whose closing balances open this one: it ends when this one begins, give or take a month.
+    """Find the period whose closing balances open this one: it ends when this one begins, within a month.
 
-    The prior period where it does; else, as for half-years, the latest one of any length with the same consolidation,
-    figures of the past before projections never among them.
+    The prior period where it does; else, as for half-years, the latest one of any length. Of the same consolidation,
+    and a projection only where this one is one too.
     """
     period = periods[place]
-    begins = _month(period) - period.months
+    first, last = (months_before(period.ends, months) for months in (period.months + 1, period.months - 1))
 
     def fits(other: int) -> bool:
         candidate = periods[other]
-        past = candidate.basis is not Basis.PROJECTION or period.basis is Basis.PROJECTION
-        near = abs(_month(candidate) - begins) <= 1 and candidate.ends < period.ends
+        past = is_actual(candidate) or not is_actual(period)
+        near = first <= candidate.ends <= last and candidate.ends < period.ends
         return past and near and candidate.consolidated == period.consolidated
 
     if prior >= 0 and fits(prior):
         return prior
     found = [other for other in range(len(periods)) if other != place and fits(other)]
-    return max(found, key=lambda other: (periods[other].ends, other), default=-1)
-
-
-def _month(period: Period) -> int:
-    """Count the months up to the one a period ends in."""
-    return period.ends.year * MONTHS_IN_YEAR + period.ends.month
+    return max(found, key=lambda other: (periods[other].ends, periods[other].restated, other), default=-1)
 
 
 def _shift(source: IndexArray) -> Callable[[FloatArray], FloatArray]:

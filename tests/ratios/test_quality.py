@@ -18,7 +18,7 @@ def test_a_sound_year_raises_none() -> None:
 
 def test_annualised_ratios_are_noted_once_for_the_period() -> None:
     half = by_hand({name: row[1:] for name, row in SOUND.items()}, [year(date(2025, 6, 30), 6)])
-    notes = [finding for finding in _findings(half, 0) if finding.code == "ratios_annualised"]
+    notes = [finding for finding in _findings(half, 0) if finding.code == "ratio.annualised"]
     (note,) = notes
     assert note.severity is Severity.NOTE
     assert note.place == "periods[2025-06-30]"
@@ -29,7 +29,7 @@ def test_annualised_ratios_are_noted_once_for_the_period() -> None:
 
 def test_a_margin_above_one_is_asked_about_at_its_place() -> None:
     (finding,) = _findings(changed(ebitda=9_000.0))[:1]
-    assert finding.code == "ratio_implausible"
+    assert finding.code == "ratio.implausible"
     assert finding.severity is Severity.QUERY
     assert finding.place == "ratios.ebitda_margin[2025-12-31]"
     assert "121.6" in finding.text
