@@ -1,7 +1,7 @@
 """The statements of one borrower as arrays, with a disclosure state per cell."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from enum import IntEnum
 from functools import cached_property
 
@@ -40,6 +40,9 @@ class StatementSet:
     amounts. ``printed``: totals as the borrower printed them, by key, one per period, nan where none.
     ``not_divided``: the undivided rest by subtotal key, one per period, only where there is one.
     ``needs``: for (key, period index) of a row that is not disclosed, the lines whose blanks are the cause.
+    ``differences``: printed total less sum, by subtotal key, where the sum counts and they differ beyond tolerance; nan
+    elsewhere. ``imbalance``: assets less liabilities and equity, one per period, 0 within tolerance, nan where a side
+    is not known. ``not_divided``, ``differences`` and ``imbalance`` are those of the first draw.
     """
 
     chart: Chart
@@ -50,6 +53,8 @@ class StatementSet:
     printed: Mapping[str, FloatArray]
     not_divided: Mapping[str, FloatArray]
     needs: Mapping[tuple[str, int], tuple[str, ...]]
+    differences: Mapping[str, FloatArray] = field(default_factory=dict)
+    imbalance: FloatArray = field(default_factory=lambda: np.empty(0))
 
     @cached_property
     def index(self) -> Mapping[str, int]:
