@@ -3,7 +3,6 @@
 from collections.abc import Callable
 from datetime import date
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QDate, Qt
 from PySide6.QtWidgets import (
@@ -14,6 +13,7 @@ from PySide6.QtWidgets import (
     QFileDialog,
     QFormLayout,
     QLineEdit,
+    QMainWindow,
     QMessageBox,
     QSpinBox,
     QVBoxLayout,
@@ -24,10 +24,8 @@ from creditdesk.base.errors import UserError
 from creditdesk.case.convert import save_any
 from creditdesk.case.document import Case, LegalForm, Obligor
 from creditdesk.desk.frame import label
+from creditdesk.desk.session import Session
 from creditdesk.statements.period import Basis, Period, Presentation
-
-if TYPE_CHECKING:
-    from creditdesk.desk.window import Window
 
 CASES = "Cases (*.deskcase *.case.toml);;All files (*)"
 _UNITS = {"single units": 1, "thousands": 1000, "millions": 1_000_000}
@@ -40,14 +38,14 @@ def open_case(parent: QWidget, chosen: Callable[[Path], None]) -> None:
         chosen(Path(name))
 
 
-def export_case(window: "Window") -> None:
+def export_case(window: QMainWindow, session: Session) -> None:
     """Write the case as an exchange file or a copy of the case file."""
-    proposed = f"{window.session.path.stem}.case.toml"
+    proposed = f"{session.path.stem}.case.toml"
     name, _ = QFileDialog.getSaveFileName(window, "Export the case", proposed, "Exchange file (*.case.toml)")
     if not name:
         return
     try:
-        save_any(Path(name), window.session.case, window.session.house.chart)
+        save_any(Path(name), session.case, session.house.chart)
     except UserError as error:
         show_faults(window, "The case was not exported", error)
     else:

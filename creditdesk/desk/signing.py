@@ -3,9 +3,8 @@
 from collections.abc import Callable
 from datetime import UTC, datetime
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QObject, Qt
 from PySide6.QtWidgets import (
     QDialog,
     QDialogButtonBox,
@@ -13,6 +12,7 @@ from PySide6.QtWidgets import (
     QFormLayout,
     QHBoxLayout,
     QLineEdit,
+    QMainWindow,
     QMessageBox,
     QPushButton,
     QVBoxLayout,
@@ -22,90 +22,91 @@ from PySide6.QtWidgets import (
 from creditdesk.base.errors import UserError
 from creditdesk.desk.files import show_faults
 from creditdesk.desk.frame import label
-
-if TYPE_CHECKING:
-    from creditdesk.desk.window import Window
+from creditdesk.desk.session import Session
+from creditdesk.desk.worker import Jobs
 
 PDF = "Memo (*.pdf)"
 IDENTITY = "Signing identity (*.p12);;All files (*)"
 
 
-def sign_memo(window: "Window") -> None:
-    """Ask for identity, passphrase and place, then write the memo signed by the preparer."""
-    dialog = SignDialog(window, f"{window.session.path.stem}.pdf")
-    if dialog.exec() != QDialog.DialogCode.Accepted:
-        return
-    identity, passphrase, out = Path(dialog.identity.text()), dialog.passphrase.text(), Path(dialog.out.text())
-    case, house = window.session.case, window.session.house
+class Issuer(QObject):
+    """Sign, save and verify memos; the work is done off the main thread, its outcome shown in ``window``."""
 
-    def work() -> str:
-        from creditdesk.memo.issue import issue_signed  # heavy, and wanted off the main thread
+    def __init__(self, window: QMainWindow, session: Session, jobs: Jobs) -> None:
+        super().__init__(window)
+        self._window, self._session, self._jobs = window, session, jobs
 
-        return issue_signed(case, house, out, (identity, passphrase), datetime.now(UTC))
+    def sign(self) -> None:
+        """Ask for identity, passphrase and place, then write the memo signed by the preparer."""
+        dialog = SignDialog(self._window, f"{self._session.path.stem}.pdf")
+        if dialog.exec() != QDialog.DialogCode.Accepted:
+            return
+        key = (Path(dialog.identity.text()), dialog.passphrase.text())
+        out, case, house = Path(dialog.out.text()), self._session.case, self._session.house
 
-    _in_background(window, "The memo is being written and signed.", work, "The memo was not signed")
+        def work() -> str:
+            from creditdesk.memo.issue import issue_signed  # heavy, and wanted off the main thread
 
+            return issue_signed(case, house, out, key, datetime.now(UTC))
 
-def save_unsigned(window: "Window") -> None:
-    """Ask for a place and write the memo without a signature."""
-    name, _ = QFileDialog.getSaveFileName(window, "Save the memo unsigned", f"{window.session.path.stem}.pdf", PDF)
-    if not name:
-        return
-    case, house = window.session.case, window.session.house
+        self._start("The memo is being written and signed.", work, "The memo was not signed")
 
-    def work() -> str:
-        from creditdesk.memo.issue import issue_unsigned  # heavy, and wanted off the main thread
+    def save_unsigned(self) -> None:
+        """Ask for a place and write the memo without a signature."""
+        proposed = f"{self._session.path.stem}.pdf"
+        name, _ = QFileDialog.getSaveFileName(self._window, "Save the memo unsigned", proposed, PDF)
+        if not name:
+            return
+        case, house = self._session.case, self._session.house
 
-        return issue_unsigned(case, house, Path(name))
+        def work() -> str:
+            from creditdesk.memo.issue import issue_unsigned  # heavy, and wanted off the main thread
 
-    _in_background(window, "The memo is being written.", work, "The memo was not written")
+            return issue_unsigned(case, house, Path(name))
 
+        self._start("The memo is being written.", work, "The memo was not written")
 
-def verify_memo(window: "Window") -> None:
-    """Ask for a memo, check it and say what was found."""
-    name, _ = QFileDialog.getOpenFileName(window, "Verify a memo", "", PDF)
-    if not name:
-        return
-    house = window.session.house
+    def verify(self) -> None:
+        """Ask for a memo, check it and say what was found."""
+        name, _ = QFileDialog.getOpenFileName(self._window, "Verify a memo", "", PDF)
+        if not name:
+            return
+        house = self._session.house
 
-    def work() -> str:
-        from creditdesk.memo.verify import verify_file  # heavy, and wanted off the main thread
+        def work() -> str:
+            from creditdesk.memo.verify import verify_file  # heavy, and wanted off the main thread
 
-        return verify_file(Path(name), house).text
+            return verify_file(Path(name), house).text
 
-    def done(text: str) -> None:
-        box = QMessageBox(QMessageBox.Icon.Information, "Verification", Path(name).name, parent=window)
-        box.setTextFormat(Qt.TextFormat.PlainText)
-        box.setInformativeText(text)
-        box.open()
+        def show(text: str) -> None:
+            box = QMessageBox(QMessageBox.Icon.Information, "Verification", Path(name).name, parent=self._window)
+            box.setTextFormat(Qt.TextFormat.PlainText)
+            box.setInformativeText(text)
+            box.open()
 
-    _in_background(window, "The memo is being checked.", work, "The memo could not be checked", done)
+        self._start("The memo is being checked.", work, "The memo could not be checked", show)
 
+    def _start(
+        self, words: str, work: Callable[[], str], failure: str, show: Callable[[str], None] | None = None
+    ) -> None:
+        """Run ``work``; its sentence goes to the status line, or to ``show``; faults are shown."""
+        status = self._window.statusBar()
 
-def _in_background(
-    window: "Window",
-    words: str,
-    work: Callable[[], str],
-    failure: str,
-    done: Callable[[str], None] | None = None,
-) -> None:
-    """Run ``work`` in a worker; its sentence goes to the status line, or to ``done``; faults are shown."""
+        def failed(error: BaseException) -> None:
+            status.clearMessage()
+            if not isinstance(error, UserError):
+                raise error
+            show_faults(self._window, failure, error)
 
-    def failed(error: BaseException) -> None:
-        window.statusBar().clearMessage()
-        if not isinstance(error, UserError):
-            raise error
-        show_faults(window, failure, error)
+        def done(text: str) -> None:
+            status.clearMessage()
+            if show is not None:
+                show(text)
+            else:
+                status.showMessage(text, 30_000)
 
-    def say(text: Any) -> None:  # noqa: ANN401  what the worker's signal carries
-        window.statusBar().clearMessage()
-        if done is not None:
-            done(text)
-        else:
-            window.statusBar().showMessage(text, 30_000)
-
-    window.statusBar().showMessage(words)
-    window.jobs.start(work, say, failed)
+        status.showMessage(words)
+        self._jobs.start(work, done, failed)
 
 
 class SignDialog(QDialog):

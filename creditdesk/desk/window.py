@@ -5,17 +5,18 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QByteArray, QSettings, QTimer, Signal
-from PySide6.QtGui import QCloseEvent, QGuiApplication, QShowEvent
+from PySide6.QtGui import QCloseEvent, QGuiApplication, QKeySequence, QShowEvent
 from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
 from creditdesk.base.palette import Palette
-from creditdesk.desk import theme
-from creditdesk.desk.actions import build_menus
+from creditdesk.desk import files, theme
+from creditdesk.desk.actions import add_menu
 from creditdesk.desk.frame import Header, SheetBar
 from creditdesk.desk.headline import describe, status_words
 from creditdesk.desk.session import Session
 from creditdesk.desk.sheets.figures import FiguresSheet
 from creditdesk.desk.sheets.memo import MemoSheet
+from creditdesk.desk.signing import Issuer
 from creditdesk.desk.standing import StandingColumn
 from creditdesk.desk.worker import Jobs
 
@@ -48,7 +49,8 @@ class Window(QMainWindow):
         self.stack, self.split = QStackedWidget(), QSplitter()
         self.recorded, self.counts = QLabel(), QLabel()
         self._lay_out()
-        build_menus(self)
+        self.issuer = Issuer(self, session, self.jobs)
+        self._add_menus()
         self._connect()
         self._recolour()
         self._on_changed()
@@ -131,7 +133,40 @@ class Window(QMainWindow):
         self.statusBar().addPermanentWidget(self.counts)
         self.statusBar().setSizeGripEnabled(False)
 
+    def _add_menus(self) -> None:
+        keys, bar = QKeySequence.StandardKey, self.menuBar()
+        add_menu(
+            bar,
+            "&Case",
+            (
+                ("&New…", keys.New, lambda: files.new_case(self, self.new_asked.emit)),
+                ("&Open…", keys.Open, lambda: files.open_case(self, self.open_asked.emit)),
+                ("&Export…", "Ctrl+E", lambda: files.export_case(self, self.session)),
+                None,
+                ("&Close", keys.Close, self.close),
+            ),
+        )
+        edit, stack = bar.addMenu("&Edit"), self.session.undo_stack
+        for action, key in (
+            (stack.createUndoAction(self, "&Undo"), keys.Undo),
+            (stack.createRedoAction(self, "&Redo"), keys.Redo),
+        ):
+            action.setShortcut(QKeySequence(key))
+            edit.addAction(action)
+        add_menu(
+            bar,
+            "&Memo",
+            (
+                ("&Sign and save…", "Ctrl+G", self.issuer.sign),
+                ("Save &unsigned…", None, self.issuer.save_unsigned),
+                ("&Verify a memo…", "Ctrl+Shift+V", self.issuer.verify),
+            ),
+        )
+
     def _connect(self) -> None:
+        self.memo.sign_asked.connect(self.issuer.sign)
+        self.memo.save_asked.connect(self.issuer.save_unsigned)
+        self.memo.verify_asked.connect(self.issuer.verify)
         self.bar.chosen.connect(self.show_sheet)
         self.session.changed.connect(self._on_changed)
         self.session.recorded.connect(self._on_recorded)
