@@ -1,5 +1,6 @@
 """From ratios to the terms of a score: caps, rule per reason of no value, transform."""
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
@@ -104,7 +105,7 @@ def _beyond(factor: Factor, values: FloatArray, side: int) -> BoolArray:
 
 def _term(spec: ModelSpec, term: Term, treated: FloatArray, reasons: ReasonArray) -> FloatArray:
     if term.reasons:
-        return np.isin(reasons, [REASON_CODES[reason] for reason in term.reasons]).astype(np.float64)
+        return _met(reasons, term.reasons).astype(np.float64)
     known = ~np.isnan(treated)
     factor = spec.factors[term.factor]
     shaped = shape_values(factor, np.where(known, treated, 1.0))
@@ -128,10 +129,18 @@ def _where_reason(spec: ModelSpec, reasons: ReasonArray, *, refusal: bool) -> Bo
     """Mark factors x points whose reason refuses (``refusal``) or counts as missing."""
     return np.stack(
         [
-            np.isin(codes, [REASON_CODES[reason] for reason in REASONS if _applies(factor, reason, refusal=refusal)])
+            _met(codes, [reason for reason in REASONS if _applies(factor, reason, refusal=refusal)])
             for factor, codes in zip(spec.factors, reasons, strict=True)
         ]
     )
+
+
+def _met(codes: ReasonArray, reasons: Iterable[str]) -> BoolArray:
+    """Mark where a code is that of one of some reasons; a table of all codes is looked up, which is quick."""
+    table = np.zeros(len(REASONS) + 1, dtype=np.bool_)
+    for reason in reasons:
+        table[REASON_CODES[reason]] = True
+    return np.asarray(table[codes])
 
 
 def _applies(factor: Factor, reason: str, *, refusal: bool) -> bool:

@@ -7,12 +7,12 @@ from msgspec.structs import replace
 from creditdesk.base.errors import UserError
 from creditdesk.model.calibrate import calibrated_pd
 from creditdesk.model.check import faults
-from creditdesk.model.fit import fit_model
+from creditdesk.model.fit import Method, fit_model
 from creditdesk.model.likelihood import maximum_likelihood
 from creditdesk.model.recipe import Recipe, RecipeCaps, RecipeFactor, plain_recipe
 from creditdesk.model.sample import stack
 from creditdesk.model.score import model_pd, score
-from creditdesk.model.spec import REASON_CODES, Rule, Rules
+from creditdesk.model.spec import REASON_CODES, Link, Rule, Rules
 from creditdesk.model.treat import treat, treat_reference
 from creditdesk.model.write import from_toml, to_toml
 
@@ -162,3 +162,25 @@ def test_a_faulty_recipe_is_refused_before_the_fit() -> None:
 def test_a_base_rate_outside_0_to_1_is_refused(rate: float) -> None:
     with pytest.raises(UserError, match="expected between 0 and 1"):
         fit_model(*sample(), "bad", recipe(**OWN), base_rate=rate)
+
+
+def test_firths_method_fits_where_an_indicator_meets_no_default() -> None:
+    values, reasons = sample()
+    debt_free = reasons["interest_cover"] == REASON_CODES["no_debt"]
+    values["bad"] = np.where(debt_free, 0.0, values["bad"])
+    with pytest.raises(UserError) as caught:
+        fit_model(values, reasons, "bad", recipe(**OWN))
+    assert str(caught.value).startswith("cover.none: this column alone")
+    spec = fit_model(values, reasons, "bad", recipe(**OWN), method=Method.FIRTH)
+    assert faults(spec, values) == ()
+    assert spec.fit.method == "Firth's penalised likelihood"
+    assert -8.0 < spec.factors[1].own_coefficients["none"] < -2.0
+    pds = model_pd(spec.link, score(spec, treat(spec, *stack(spec, values, reasons))))
+    assert np.mean(pds) > np.mean(values["bad"])
+    assert any("lies above its default rate" in caution for caution in spec.cautions)
+
+
+def test_firths_method_is_made_for_the_logit() -> None:
+    with pytest.raises(UserError) as caught:
+        fit_model(*sample(), "bad", replace(recipe(**OWN), link=Link.PROBIT), method=Method.FIRTH)
+    assert caught.value.code == "bad_method"

@@ -18,9 +18,11 @@ from creditdesk.base.errors import UserError
 from creditdesk.base.numbers import sigmoid
 from creditdesk.house.shipped import resources_folder
 from creditdesk.model.contribute import contribute
+from creditdesk.model.firth import penalised_likelihood
 from creditdesk.model.fit import fit_model
-from creditdesk.model.likelihood import FitResult, maximum_likelihood
+from creditdesk.model.likelihood import maximum_likelihood
 from creditdesk.model.measure import area_under_roc
+from creditdesk.model.problem import FitResult
 from creditdesk.model.recipe import plain_recipe
 from creditdesk.model.score import reading_of, score
 from creditdesk.model.spec import ModelSpec, Reference
@@ -181,3 +183,29 @@ def test_contributions_of_a_bankrupt_firm_from_the_mean_of_the_sound_ones() -> N
     assert parts.log_odds == pytest.approx([13.0021072, 5.6284994, -0.8190815], abs=1e-6)
     assert parts.pd_share == pytest.approx([0.7115368, 0.3080181, -0.0448240], abs=1e-6)
     assert parts.pd_share.sum() == pytest.approx(sigmoid(score(spec, firm)) - sigmoid(score(spec, sound)), abs=1e-12)
+
+
+def test_firths_fit_of_all_five_ratios_is_a_maximum_above_another() -> None:
+    """4.61187 -10.96159 -3.41873 -1.95890 -.25256 -.97622 with -9.35677 (worked out elsewhere) is one of several maxima
+    of the penalised likelihood of these separated firms: its gradient is nil there, and the one reached here is higher.
+    """
+    elsewhere = np.array([4.61187, -10.96159, -3.41873, -1.95890, -0.25256, -0.97622])
+    height, slope = penalised(elsewhere)
+    assert height == pytest.approx(-9.35677, abs=5e-6)
+    assert slope == pytest.approx(np.zeros(6), abs=1e-4)
+    found = penalised_likelihood(DECIMALS, BANKRUPT, RATIOS)
+    height, slope = penalised(found.coefficients)
+    assert height == pytest.approx(found.log_likelihood, abs=1e-9)
+    assert slope == pytest.approx(np.zeros(6), abs=1e-7)
+    assert found.log_likelihood > -9.35677
+
+
+def penalised(beta: np.ndarray) -> tuple[float, np.ndarray]:
+    """Return penalised log-likelihood and its gradient, written out (Heinze & Schemper 2002, equation for U*)."""
+    rows = np.column_stack([np.ones(66), DECIMALS])
+    pd = sigmoid(rows @ beta)
+    information = (rows.T * (pd * (1.0 - pd))) @ rows
+    hat = np.einsum("ri,ij,rj->r", rows, np.linalg.inv(information), rows) * pd * (1.0 - pd)
+    plain = np.sum(np.log(sigmoid((2.0 * BANKRUPT - 1.0) * (rows @ beta))))
+    height = float(plain + np.linalg.slogdet(information)[1] / 2.0)
+    return height, rows.T @ (BANKRUPT - pd + hat * (0.5 - pd))
