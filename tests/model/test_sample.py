@@ -4,8 +4,9 @@ import numpy as np
 import pytest
 
 from creditdesk.base.errors import UserError
-from creditdesk.model.sample import place_in_sample, stack
+from creditdesk.model.sample import from_ratios, place_in_sample, stack
 from creditdesk.model.spec import DevelopmentSample, ModelSpec
+from creditdesk.ratios.compute import RatioTable
 
 MakeSpec = Callable[..., ModelSpec]
 
@@ -44,3 +45,22 @@ def test_the_place_among_the_sample_is_read_between_its_quantiles(make_spec: Mak
     assert places == pytest.approx([0.1, 0.1, 0.3, 0.5, 0.9])
     assert place_in_sample(spec, "cover", 1.0) is None
     assert place_in_sample(make_spec(), "profit", 1.0) is None
+
+
+def test_a_borrowers_ratios_are_taken_in_the_order_of_the_factors(make_spec: MakeSpec) -> None:
+    keys = ("equity_ratio", "debt_to_ebitda", "ebit_to_assets", "interest_cover")
+    values = np.array([[0.4, 0.5], [2.0, np.nan], [0.1, 0.2], [3.0, 4.0]])
+    reasons = np.array([[0, 0], [0, 2], [0, 0], [0, 0]], dtype=np.uint8)
+    table = RatioTable(
+        keys=keys,
+        values=values,
+        reasons=reasons,
+        annualised=np.zeros((4, 2), dtype=np.bool_),
+        rows=np.zeros((4, 2), dtype=np.intp),
+        needs={},
+        notes={},
+        constants={},
+    )
+    stacked, codes = from_ratios(make_spec(), table)
+    assert np.array_equal(stacked, [[0.1, 0.2], [3.0, 4.0], [2.0, np.nan]], equal_nan=True)
+    assert codes.tolist() == [[0, 0], [0, 0], [0, 2]]
