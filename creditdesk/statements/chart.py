@@ -1,7 +1,5 @@
 """The chart of accounts: line items, subtotals, derived amounts, all read from data."""
 
-from collections import Counter
-from collections.abc import Iterable, Iterator
 from enum import StrEnum
 
 import msgspec
@@ -94,72 +92,3 @@ class Chart(msgspec.Struct, frozen=True, forbid_unknown_fields=True, cache_hash=
     groups: tuple[Group, ...]
     lines: tuple[LineItem, ...]
     subtotals: tuple[Subtotal, ...]
-
-
-def chart_faults(chart: Chart) -> tuple[str, ...]:
-    """List what types cannot see: names that lead nowhere, keys that repeat, sums that are part of themselves.
-
-    Each fault says where it is, what was found and what is allowed.
-    """
-    return (*_repeated(chart), *_unknown_groups(chart), *_unknown_parts(chart), *_circles(chart))
-
-
-def _repeated(chart: Chart) -> Iterator[str]:
-    groups = [group.key for group in chart.groups]
-    both = [*(line.key for line in chart.lines), *{total.key for total in chart.subtotals}]
-    layouts = [
-        (total.key, layout)
-        for total in chart.subtotals
-        for layout in ((total.presentation,) if total.presentation else Presentation)
-    ]
-    for place, keys in (("groups", groups), ("lines and subtotals", both)):
-        for key, count in Counter(keys).items():
-            if count > 1:
-                yield f"{place}: found the key {key} {count} times, allowed once"
-    for (key, layout), count in Counter(layouts).items():
-        if count > 1:
-            yield f"subtotals: found {key} {count} times for {layout}, allowed once"
-
-
-def _unknown_groups(chart: Chart) -> Iterator[str]:
-    groups = {group.key for group in chart.groups}
-    for table, items in (("lines", chart.lines), ("subtotals", chart.subtotals)):
-        for item in items:
-            if item.group not in groups:
-                yield f"{table}.{item.key}.group: found {item.group}, allowed: {', '.join(sorted(groups))}"
-
-
-def _unknown_parts(chart: Chart) -> Iterator[str]:
-    for layout in Presentation:
-        lines = {line.key for line in chart.lines if line.presentation in (None, layout)}
-        totals = [total for total in chart.subtotals if total.presentation in (None, layout)]
-        known = lines | {total.key for total in totals}
-        for total in totals:
-            for field in ("adds", "subtracts", "requires", "printed_includes", "withheld_by"):
-                for key in getattr(total, field):
-                    if key not in known:
-                        yield f"subtotals.{total.key}.{field}: found {key}, allowed a line or subtotal of {layout}"
-    names = {line.key for line in chart.lines}
-    for line in chart.lines:
-        for key in (*line.otherwise_adds, *line.otherwise_subtracts, *line.may_lie_in):
-            if key not in names:
-                yield f"lines.{line.key}: found {key}, allowed a line"
-
-
-def _circles(chart: Chart) -> Iterator[str]:
-    for layout in Presentation:
-        parts: dict[str, tuple[str, ...]] = {
-            total.key: (*total.adds, *total.subtracts)
-            for total in chart.subtotals
-            if total.presentation in (None, layout)
-        }
-        parts |= {line.key: (*line.otherwise_adds, *line.otherwise_subtracts) for line in chart.lines}
-        left = {key for key, own in parts.items() if own}
-        while ready := {key for key in left if not left.intersection(parts[key])}:
-            left -= ready
-        if left:
-            yield f"sums of {layout}: found {_listed(left)} made of each other, allowed sums that end in lines"
-
-
-def _listed(keys: Iterable[str]) -> str:
-    return ", ".join(sorted(keys))
