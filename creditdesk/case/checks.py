@@ -20,6 +20,8 @@ from creditdesk.statements.chart import Chart
 PERIODS_MOST = 8
 MONTHS_MOST = 24
 _TYPED_TOLERANCE = 1e-9
+_INCOME = ("income", "memo")
+"""Statements whose lines a normalisation may touch: the income statement and what is told beside it."""
 _DEEPEST = 6
 """Levels of tables in an exchange file; a faulty one may have more."""
 
@@ -241,13 +243,18 @@ def _unknown_line(place: str, key: str, known: Collection[str]) -> Fault:
 
 
 def _entry_faults(place: str, adjustment: Table, chart: Chart) -> Iterator[Fault]:
-    lines = {item.key: item for item in chart.lines}
+    lines = {item.key: item.group for item in chart.lines}
+    income = {group.key for group in chart.groups if group.statement in _INCOME}
+    normalise = adjustment.get("kind") == AdjustmentKind.NORMALISE
     known = True
     for number, entry in enumerate(list_of(adjustment.get("entries"))):
         key = table_of(entry).get("line")
         if isinstance(key, str) and key not in lines:
             yield _unknown_line(f"{place}.entries[{number}].line", key, list(lines))
             known = False
+        elif isinstance(key, str) and normalise and lines[key] not in income:
+            allowed = "lines of the income statement: a normalisation leaves the balance sheet as it is"
+            yield Fault(f"{place}.entries[{number}].line", show(key), allowed)
     if known and adjustment.get("kind") == AdjustmentKind.RESTATE:
         yield from _balance_faults(place, adjustment, chart)
 

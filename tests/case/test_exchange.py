@@ -287,6 +287,14 @@ def test_a_restatement_keeps_the_balance(reader: Reader) -> None:
     )
 
 
+def test_a_normalisation_leaves_the_balance_sheet_alone(reader: Reader) -> None:
+    read_case(with_adjustment('{line = "revenue", amount = -400}', kind="normalise").encode(), reader.chart, file="a")
+    assert reader.fault(with_adjustment(LOANS, kind="normalise")) == (
+        'adjustments[0].entries[0].line: found "shareholder_loans", allowed lines of the income statement:'
+        " a normalisation leaves the balance sheet as it is"
+    )
+
+
 def test_adjustments_name_known_lines_and_periods(reader: Reader) -> None:
     assert reader.faults(with_adjustment('{line = "shareholder_loan", amount = 1}', "2022-12-31")) == (
         "a.case.toml: adjustments[0].period: found 2022-12-31, allowed the end of a period: 2024-12-31, 2025-12-31",
