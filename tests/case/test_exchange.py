@@ -210,8 +210,8 @@ REFUSED = {
         'obligor.sector: found "V", allowed a section letter A to U of ISIC4',
     ),
     "lei": (
-        lambda text: text.replace("unit =", 'lei = "529900T8BM49AURSDO56"\nunit ='),
-        'obligor.lei: found "529900T8BM49AURSDO56", allowed 20 characters of ISO 17442 whose check digits agree,'
+        lambda text: text.replace("unit =", 'lei = "999900INVENTED000100"\nunit ='),
+        'obligor.lei: found "999900INVENTED000100", allowed 20 characters of ISO 17442 whose check digits agree,'
         " or nothing",
     ),
     "escape in a name": (

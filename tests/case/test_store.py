@@ -356,6 +356,17 @@ def test_a_reader_recovers_a_copy_and_leaves_the_file_alone(hot: Path) -> None:
     assert (hot.read_bytes(), journal_path(hot).read_bytes()) == before
 
 
+def test_a_reader_gives_up_on_a_file_that_never_rests(hot: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    copy = shutil.copyfile
+
+    def copy_while_somebody_writes(source: Path, target: Path) -> None:
+        copy(source, target)
+        os.utime(hot, ns=(0, hot.stat().st_mtime_ns + 1))
+
+    monkeypatch.setattr(shutil, "copyfile", copy_while_somebody_writes)
+    assert code_of(lambda: CaseFile.open(hot, write=False)) == "busy"
+
+
 def test_a_writer_recovers_the_file_and_takes_over_the_lock(hot: Path, clock: Clock) -> None:
     assert lock_path(hot).exists()
     with CaseFile.open(hot, clock=clock) as file:
