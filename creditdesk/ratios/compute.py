@@ -1,6 +1,6 @@
 """All ratios of all periods at once: a value or one reason for each."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from enum import IntEnum
 from functools import cached_property
@@ -14,7 +14,7 @@ from creditdesk.ratios.missing import needs_of
 from creditdesk.ratios.plan import Plan
 from creditdesk.ratios.spec import DEBT, NET_DEBT
 from creditdesk.ratios.timing import Timing
-from creditdesk.statements.period import Presentation
+from creditdesk.statements.period import Period, Presentation
 from creditdesk.statements.statement import StatementSet
 
 FloatArray = NDArray[np.float64]
@@ -93,8 +93,9 @@ def compute_ratios(
     """
     known = {name: float(constants.get(name, np.nan)) for name in catalogue.plan.constants}
     inputs = gather(catalogue, statements, known, constant_needs or {})
-    by_row, reasons_by_row = _all_rows(catalogue, statements, inputs)
-    rows = _choose(catalogue, statements, _first_draw(reasons_by_row))
+    unknown = _not_known(catalogue.plan, inputs)
+    by_row, reasons_by_row = _all_rows(catalogue, inputs, unknown)
+    rows = _choose(catalogue, inputs.periods, unknown)
     columns = np.arange(len(statements.periods))
     values, reasons = by_row[rows, columns], reasons_by_row[rows, columns]
     annualised = _annualised(catalogue.plan, inputs.times)[rows, columns]
@@ -107,13 +108,13 @@ def compute_ratios(
         reasons=reasons,
         annualised=annualised,
         rows=rows,
-        needs=needs_of(catalogue, inputs, rows, _first_draw(reasons) == Reason.NOT_DISCLOSED),
+        needs=needs_of(catalogue, inputs, rows, _in_any_draw(reasons == Reason.NOT_DISCLOSED)),
         notes=_notes(catalogue, rows),
         inputs=inputs,
     )
 
 
-def _all_rows(catalogue: Catalogue, statements: StatementSet, inputs: Inputs) -> tuple[FloatArray, ReasonArray]:
+def _all_rows(catalogue: Catalogue, inputs: Inputs, unknown: FlagArray) -> tuple[FloatArray, ReasonArray]:
     """Compute every row of the catalogue in every period: values, nan where there is a reason, and reasons."""
     plan, nil = catalogue.plan, inputs.nil
     top, bottom, guarded = _evaluate(catalogue, inputs)
@@ -123,11 +124,8 @@ def _all_rows(catalogue: Catalogue, statements: StatementSet, inputs: Inputs) ->
     reasons = np.zeros(top.shape, dtype=np.uint8)
     reasons[guarded | (plan.positive.reshape(tall) & (bottom < -nil))] = Reason.NEGATIVE_DENOMINATOR
     reasons[zero & ~defined] = Reason.ZERO_DENOMINATOR
-    for flags, reason in (
-        (_no_earlier_period(plan, inputs.times), Reason.NEEDS_PRIOR_PERIOD),
-        (_not_known(plan, statements, inputs), Reason.NOT_DISCLOSED),
-    ):
-        reasons[flags] = reason
+    reasons[_no_earlier_period(plan, inputs.times)] = Reason.NEEDS_PRIOR_PERIOD
+    reasons[unknown] = Reason.NOT_DISCLOSED
     if DEBT in inputs.amounts:
         reasons[plan.no_debt.reshape(tall) & (np.abs(inputs.amounts[DEBT]) <= nil)] = Reason.NO_DEBT
     if NET_DEBT in inputs.amounts:
@@ -166,7 +164,7 @@ def _no_earlier_period(plan: Plan, times: Timing) -> FlagArray:
     return found
 
 
-def _not_known(plan: Plan, statements: StatementSet, inputs: Inputs) -> FlagArray:
+def _not_known(plan: Plan, inputs: Inputs) -> FlagArray:
     """Find rows x periods that lack an amount or a constant, or the layout of the income statement."""
     missing = inputs.missing.astype(np.float32)
     found = np.zeros((len(plan.factor), missing.shape[1]), dtype=np.bool_)
@@ -177,7 +175,7 @@ def _not_known(plan: Plan, statements: StatementSet, inputs: Inputs) -> FlagArra
         if np.isnan(inputs.constants[name]):
             found[takes] = True
     for code, layout in enumerate(Presentation, start=1):
-        other = np.array([period.presentation is not layout for period in statements.periods], dtype=np.bool_)
+        other = np.array([period.presentation is not layout for period in inputs.periods], dtype=np.bool_)
         found |= np.logical_and.outer(plan.presentation == code, other)
     return found
 
@@ -192,15 +190,14 @@ def _annualised(plan: Plan, times: Timing) -> FlagArray:
     return found
 
 
-def _choose(catalogue: Catalogue, statements: StatementSet, reasons: ReasonArray) -> IndexArray:
+def _choose(catalogue: Catalogue, periods: Sequence[Period], unknown: FlagArray) -> IndexArray:
     """Choose the row of each ratio in each period: by nature where that is the layout, otherwise where a line lacks."""
-    periods = statements.periods
     chosen = np.repeat(np.arange(len(catalogue.specs))[:, None], len(periods), axis=1)
     by_nature = np.array([period.presentation is Presentation.BY_NATURE for period in periods], dtype=np.bool_)
     for ratio, row in catalogue.by_nature.items():
         chosen[ratio, by_nature] = row
     for ratio, row in catalogue.otherwise.items():
-        chosen[ratio, reasons[ratio] == Reason.NOT_DISCLOSED] = row
+        chosen[ratio, unknown[ratio]] = row
     return chosen
 
 
@@ -228,6 +225,6 @@ def _notes(catalogue: Catalogue, rows: IndexArray) -> dict[tuple[str, int], str]
     return notes
 
 
-def _first_draw(array: ReasonArray) -> ReasonArray:
-    """Drop the draws: what is disclosed is the same in all of them."""
-    return array if array.ndim == 2 else array[..., 0]
+def _in_any_draw(flags: FlagArray) -> FlagArray:
+    """Reduce to ratios x periods."""
+    return flags if flags.ndim == 2 else np.asarray(flags.any(axis=2))

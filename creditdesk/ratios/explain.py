@@ -55,7 +55,7 @@ def _not_disclosed(catalogue: Catalogue, table: RatioTable, key: str, period: in
 
 def _gap(catalogue: Catalogue, table: RatioTable, gap: Gap, period: int) -> str:
     """Name an amount that is not known and the blanks behind it: EBITDA not disclosed: needs depreciation."""
-    label = sentence(catalogue.labels[gap.name])
+    label = sentence(within(catalogue.labels[gap.name]))
     when = "" if gap.period == period else f" of {table.inputs.periods[gap.period].ends.isoformat()}"
     behind = [within(catalogue.labels.get(line, line)) for line in gap.lines if line != gap.name]
     return f"{label}{when} not disclosed" + (f": needs {', '.join(behind)}" if behind else "")

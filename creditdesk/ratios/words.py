@@ -19,6 +19,7 @@ from creditdesk.ratios.compiler import Row
 from creditdesk.ratios.spec import Unit
 
 _FUNCTION = re.compile(r"[a-z_]+\(")
+_SIGN_HINT = re.compile(r" \([^()]*[+−-]\)$")
 _BEFORE = {
     "annual": "annual ",
     "prior": "prior period's ",
@@ -39,6 +40,8 @@ def format_ratio(value: float, unit: Unit, style: NumberStyle = PLAIN) -> str:
             return format_days(value, style=style)
         case Unit.MONEY:
             return format_amount(value, style=style)
+        case Unit.NUMBER if value in (0.0, 1.0):  # a yes or no
+            return format_number(value, 0, style)
         case Unit.LOG | Unit.NUMBER:
             return format_number(value, 2, style)
 
@@ -61,7 +64,11 @@ def denominator_in_words(catalogue: Catalogue, row: Row) -> str:
 
 
 def within(label: str) -> str:
-    """Write a label as it stands within a sentence: a small letter first, unless it begins with an acronym."""
+    """Write a label as it stands within a sentence.
+
+    A small letter first unless it begins with an acronym, without "of which" and without a hint on signs at its end.
+    """
+    label = _SIGN_HINT.sub("", label.removeprefix("of which "))
     return label[:1].lower() + label[1:] if label[1:2].islower() else label
 
 

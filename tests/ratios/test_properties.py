@@ -9,6 +9,7 @@ from hypothesis import strategies as st
 from numpy.typing import NDArray
 
 from creditdesk.ratios.spec import Unit
+from creditdesk.statements.statement import StatementSet
 from tests.ratios.ledger import SOUND, YEARS, by_hand, ratios, shipped_catalogue
 
 Factors = NDArray[np.float64]
@@ -36,7 +37,7 @@ def test_a_change_of_unit_changes_amounts_and_logarithms_alone(moved: Factors, b
 
 
 @given(moved=st.lists(factors, min_size=1, max_size=4), blank=blanks)
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=1500, deadline=None)
 def test_draws_give_what_a_loop_gives(moved: list[Factors], blank: set[str]) -> None:
     sets = [by_hand(_borrower(one, blank, 1.0)) for one in moved]
     drawn = ratios(replace(sets[0], values=np.stack([one.values for one in sets], axis=2)))
@@ -75,3 +76,18 @@ def test_more_debt_or_profit_moves_its_ratio_the_right_way(key: str) -> None:
     change = ratios(by_hand(better)).value(key, 1) - ratios(by_hand(SOUND)).value(key, 1)
     stronger = shipped_catalogue().spec(key).direction == "higher_is_stronger"
     assert (change > 0) == stronger
+
+
+def test_a_debt_free_draw_does_not_decide_the_formula_of_the_others() -> None:
+    sets = [by_hand({**SOUND, "interest_bearing_debt": (debt, debt)}) for debt in (0.0, 1_500.0)]
+    sets = [
+        replace(one, values=np.where(_rows(one, "scheduled_principal_next_year"), np.nan, one.values)) for one in sets
+    ]
+    drawn = ratios(replace(sets[0], values=np.stack([one.values for one in sets], axis=2)))
+    cover = drawn.values[drawn.index["debt_service_cover"], 1]
+    assert np.isnan(cover[0])
+    assert cover[1] == pytest.approx(1_030 / (80 + 170 + 30))
+
+
+def _rows(statements: StatementSet, key: str) -> NDArray[np.bool_]:
+    return (np.arange(len(statements.keys)) == statements.index[key])[:, None]

@@ -115,6 +115,12 @@ def test_a_missing_period_reads_none() -> None:
     assert _trace(by_hand(SOUND), "revenue_growth", 0).filled == "(6\u202f900 − none) ÷ none"
 
 
+def test_labels_are_fitted_into_a_formula() -> None:
+    assert _trace(by_hand(SOUND), "cash_debt_service_cover").words.startswith("(EBITDA − income tax paid − ")
+    assert "work in progress +" in _trace(by_hand(SOUND), "materials_margin").words
+    assert _trace(by_hand(SOUND), "loss_in_both_years").value_text == "0"
+
+
 def test_reasons_in_words() -> None:
     assert _reason(by_hand(SOUND), "equity_ratio") == ""
     assert _reason(changed(net_debt=-32_400.0), "net_debt_to_ebitda") == (
