@@ -4,6 +4,8 @@ import numpy as np
 
 from creditdesk.case.scoring import Scored
 from creditdesk.case.standing import FactorStanding
+from creditdesk.ratios.spec import Unit
+from creditdesk.ratios.words import format_ratio
 
 MOST = 4
 """More than four reasons help nobody: official interpretation of 12 CFR 1002.9, paragraph 9(b)(2)-1."""
@@ -21,5 +23,11 @@ def principal_reasons(scored: Scored, factors: tuple[FactorStanding, ...], perio
 
 
 def _sentence(factor: FactorStanding) -> str:
-    what = factor.label if factor.value is not None else f"{factor.label} has no value ({factor.reason_text})"
-    return f"{what} raises the score by {factor.log_odds:.2f} against the reference borrower"
+    effect = f"contributes {factor.log_odds:+.2f} to the score, which raises the PD"
+    if factor.value is None:
+        return f"{factor.label} has no value, and that {effect}. {factor.reason_text}"
+    unit = Unit(factor.unit)
+    value = format_ratio(factor.value, unit)
+    if factor.reference_value is not None:
+        value += f", against {format_ratio(factor.reference_value, unit)} of the reference borrower,"
+    return f"{factor.label} of {value} {effect}"

@@ -12,6 +12,8 @@ from creditdesk.desk.frame import label
 if TYPE_CHECKING:
     from creditdesk.memo.pages import PageImage
 
+_MARGIN = 14
+
 
 class Preview(QScrollArea):
     """Show pages, or a sentence while there are none."""
@@ -19,14 +21,15 @@ class Preview(QScrollArea):
     def __init__(self) -> None:
         super().__init__()
         self.setWidgetResizable(True)
+        self.setVerticalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOn)
         self.setFrameShape(QFrame.Shape.NoFrame)
         self.setAccessibleName("Pages of the memo")
         inside = QWidget()
         inside.setObjectName("pages")
         inside.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
         self._box = QVBoxLayout(inside)
-        self._box.setContentsMargins(14, 14, 14, 14)
-        self._box.setSpacing(14)
+        self._box.setContentsMargins(_MARGIN, _MARGIN, _MARGIN, _MARGIN)
+        self._box.setSpacing(_MARGIN)
         self._box.setAlignment(Qt.AlignmentFlag.AlignTop | Qt.AlignmentFlag.AlignHCenter)
         self._words = label("second", "The pages are being drawn.", wrap=True)
         self._box.addWidget(self._words)
@@ -40,7 +43,7 @@ class Preview(QScrollArea):
 
     def page_width(self) -> int:
         """Return the width in device pixels at which a page fills the preview."""
-        return max(300, round((self.viewport().width() - 30) * self.devicePixelRatioF()))
+        return max(300, round((self.viewport().width() - 2 * _MARGIN) * self.devicePixelRatioF()))
 
     def say(self, words: str) -> None:
         """Show a sentence above the pages; an empty one is hidden."""

@@ -21,6 +21,7 @@ QMainWindow, QDialog, #desk, QMenuBar, QMenu, QStatusBar { background: $paper; }
 QStatusBar { border-top: 1px solid $rule; color: $second_ink; }
 QStatusBar QLabel { color: $second_ink; }
 QStatusBar::item { border: 0; }
+QMenuBar { padding-left: 13px; }
 QMenuBar::item { padding: 4px 9px; background: transparent; }
 QMenuBar::item:selected, QMenu::item:selected { background: $selection; }
 QMenu { border: 1px solid $rule; padding: 4px; }

@@ -71,6 +71,7 @@ class Window(QMainWindow):
         """Bring a sheet to the front."""
         self.stack.setCurrentIndex(number)
         self.bar.mark(number)
+        self.stack.currentWidget().setFocus()
 
     def show_fault(self, text: str) -> None:
         """Say in the status line what was wrong with an entry."""

@@ -75,6 +75,7 @@ class FiguresSheet(QWidget):
         self.only_figures.setChecked(True)
         self.only_figures.toggled.connect(self._on_filter)
         self.about = label("second", wrap=True)
+        self.setFocusProxy(self.table)
         self._lay_out()
 
     def show_standing(self, case: Case, standing: Standing) -> None:

@@ -62,6 +62,7 @@ class MemoSheet(QWidget):
         self._pause.timeout.connect(self.refresh)
         for key, block in self.blocks.items():
             block.left.connect(lambda text, key=key: self._on_text(key, text))
+        self.setFocusProxy(self.blocks["request"])
         self._lay_out()
 
     def show_standing(self, case: Case, standing: Standing) -> None:
