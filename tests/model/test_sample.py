@@ -1,4 +1,5 @@
 from collections.abc import Callable
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -6,7 +7,6 @@ import pytest
 from creditdesk.base.errors import UserError
 from creditdesk.model.sample import from_ratios, place_in_sample, stack
 from creditdesk.model.spec import DevelopmentSample, ModelSpec
-from creditdesk.ratios.compute import RatioTable
 
 MakeSpec = Callable[..., ModelSpec]
 
@@ -51,16 +51,7 @@ def test_a_borrowers_ratios_are_taken_in_the_order_of_the_factors(make_spec: Mak
     keys = ("equity_ratio", "debt_to_ebitda", "ebit_to_assets", "interest_cover")
     values = np.array([[0.4, 0.5], [2.0, np.nan], [0.1, 0.2], [3.0, 4.0]])
     reasons = np.array([[0, 0], [0, 2], [0, 0], [0, 0]], dtype=np.uint8)
-    table = RatioTable(
-        keys=keys,
-        values=values,
-        reasons=reasons,
-        annualised=np.zeros((4, 2), dtype=np.bool_),
-        rows=np.zeros((4, 2), dtype=np.intp),
-        needs={},
-        notes={},
-        constants={},
-    )
+    table = SimpleNamespace(index={key: row for row, key in enumerate(keys)}, values=values, reasons=reasons)
     stacked, codes = from_ratios(make_spec(), table)
     assert np.array_equal(stacked, [[0.1, 0.2], [3.0, 4.0], [2.0, np.nan]], equal_nan=True)
     assert codes.tolist() == [[0, 0], [0, 0], [0, 2]]
