@@ -45,10 +45,14 @@ class HouseSettings(msgspec.Struct, frozen=True, forbid_unknown_fields=True):
 
 @dataclass(frozen=True, slots=True)
 class LoadedModel:
-    """Hold a model with the digest ``sha256:…`` of the file it was read from."""
+    """Hold a model with the digest ``sha256:…`` of the file it was read from.
+
+    ``outside``: the file's bytes where it is none of the house book's own, so that a memo can carry it along.
+    """
 
     spec: ModelSpec
     digest: str
+    outside: bytes = b""
 
 
 @dataclass(frozen=True)

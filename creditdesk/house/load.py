@@ -89,7 +89,7 @@ def model_from_bytes(data: bytes, house: HouseBook, *, file: str) -> LoadedModel
     spec = decode_toml(data, ModelSpec, file=file)
     if found := models.faults(spec, house.catalogue.keys):
         raise UserError("faults", [f"{file}: {fault}" for fault in found])
-    return LoadedModel(spec, _digest(data))
+    return LoadedModel(spec, _digest(data), outside=data)
 
 
 def digest_of_files(files: Mapping[str, bytes]) -> str:

@@ -10,7 +10,7 @@ from creditdesk.memo.attach import Attachment, Relationship
 from creditdesk.memo.content import memo_content
 from creditdesk.memo.finish import finish
 from creditdesk.memo.layout import write_memo
-from creditdesk.memo.parts import CASE, HOUSE_BOOK, RESULT
+from creditdesk.memo.parts import CASE, HOUSE_BOOK, LEAD_MODEL, RESULT
 
 LANGUAGE = "en-GB"
 
@@ -20,7 +20,8 @@ def unsigned_memo(case_bytes: bytes, case: Case, standing: Standing, result_json
 
     ``case_bytes`` is the case as an exchange file, ``result_json`` the standing as JSON; both are attached as they are.
     """
-    attachments = tuple(_attachments(case_bytes, result_json, house))
+    lead = house.models.get(case.model.lead)
+    attachments = tuple(_attachments(case_bytes, result_json, house, lead.outside if lead else b""))
     content = memo_content(case, standing, house, attachments)
     pdf, structure = write_memo(content, standing)
     return finish(
@@ -33,8 +34,10 @@ def unsigned_memo(case_bytes: bytes, case: Case, standing: Standing, result_json
     )
 
 
-def _attachments(case_bytes: bytes, result_json: bytes, house: HouseBook) -> Iterator[Attachment]:
+def _attachments(case_bytes: bytes, result_json: bytes, house: HouseBook, lead: bytes) -> Iterator[Attachment]:
     yield Attachment(CASE, case_bytes, "application/toml", Relationship.SOURCE, "the case as entered")
     yield Attachment(RESULT, result_json, "application/json", Relationship.DATA, "the result, every number in full")
     book = pack(house.files)
     yield Attachment(HOUSE_BOOK, book, "application/zip", Relationship.SUPPLEMENT, "the house book, complete")
+    if lead:
+        yield Attachment(LEAD_MODEL, lead, "application/toml", Relationship.SUPPLEMENT, "the lead model, not of the book")

@@ -3,5 +3,5 @@
 CASE = "case.toml"
 RESULT = "result.json"
 HOUSE_BOOK = "housebook.zip"
-MODELS = "models/"
-"""Folder of models that stand outside the house book."""
+LEAD_MODEL = "lead-model.toml"
+"""The lead model, only where its file is none of the house book's."""

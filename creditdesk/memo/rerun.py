@@ -13,7 +13,7 @@ from creditdesk.case.result import result_bytes
 from creditdesk.house.book import with_model
 from creditdesk.house.load import house_book_from_files, model_from_bytes
 from creditdesk.house.pack import unpack
-from creditdesk.memo.parts import CASE, HOUSE_BOOK, MODELS, RESULT
+from creditdesk.memo.parts import CASE, HOUSE_BOOK, LEAD_MODEL, RESULT
 
 TOLERANCE = 1e-9
 """Largest relative difference of a number between machines; grades, codes and texts must agree exactly."""
@@ -51,10 +51,10 @@ def rerun(parts: Mapping[str, bytes]) -> Rerun:
 
 def _assessed(parts: Mapping[str, bytes]) -> bytes:
     house = house_book_from_files(unpack(parts[HOUSE_BOOK]))
-    for name, data in parts.items():
-        if name.startswith(MODELS):
-            house = with_model(house, model_from_bytes(data, house, file=name))
-    return result_bytes(assess(read_case(parts[CASE], house.chart, file=CASE), house))
+    case = read_case(parts[CASE], house.chart, file=CASE)
+    if LEAD_MODEL in parts:
+        house = with_model(house, model_from_bytes(parts[LEAD_MODEL], house, file=LEAD_MODEL), case.model.lead)
+    return result_bytes(assess(case, house))
 
 
 def _differences(recorded: Any, again: Any, place: str) -> Iterator[tuple[str, float]]:  # noqa: ANN401  JSON values
