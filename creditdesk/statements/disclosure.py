@@ -16,14 +16,14 @@ from enum import IntEnum
 from creditdesk.statements.plan import Plan, Sum
 
 _DECIMALS_MOST = 4
-_FLOAT_NOISE = 1e-12
+_FLOAT_NOISE = 1e-14
 
 
 class Status(IntEnum):
     """Say how a row stands while one period is worked out.
 
     UNKNOWN: no amount. WHOLE: everything in it is known. ASSUMED: a sum in which blanks are taken as nil. RECEIVED: a
-    received total that its parts do not reach. BARE: a received total without any part disclosed.
+    received total that its parts do not reach. BARE: a received total of which no part is disclosed or proven.
     """
 
     UNKNOWN = 0
@@ -193,30 +193,35 @@ def _place_received(ledger: Ledger, total: Sum, view: _View, ties: list[tuple[Su
     near = within(ledger, view.amount, received, view.count)
     ledger.status[row], ledger.some[row] = _WHOLE, True
     ledger.amount[row], ledger.count[row] = received, 1
-    if near and (view.some or (received == 0 and row in ledger.plan.unsigned)):
+    if near and _proves(ledger, total, view):
         ties.append((total, False))
-    elif total.received_counts:
-        pass
-    elif view.whole:
-        ledger.amount[row], ledger.count[row] = view.amount, view.count
-        ledger.gap[row] = received - view.amount
-    elif view.some:
-        _leave_rest(ledger, total, view, ties)
+    elif total.received_counts or (view.whole and near):
+        return
+    elif view.some and not near:
+        _set_apart(ledger, total, view, ties)
     else:
         ledger.status[row] = _BARE
 
 
-def _leave_rest(ledger: Ledger, total: Sum, view: _View, ties: list[tuple[Sum, bool]]) -> None:
-    """Keep what the parts do not reach, unless they do where sums count beneath in place of totals that differ."""
+def _proves(ledger: Ledger, total: Sum, view: _View) -> bool:
+    """Say whether parts that reach a total prove the others nil; parts that may cancel out prove nothing by nil."""
+    return total.row in ledger.plan.unsigned if ledger.received[total.row] == 0 else view.some
+
+
+def _set_apart(ledger: Ledger, total: Sum, view: _View, ties: list[tuple[Sum, bool]]) -> None:
+    """Settle a received total that its parts do not reach, unless they do where sums count beneath them."""
     row, received = total.row, ledger.received[total.row]
     summed = _summed(ledger, total)
     if summed != view.amount and within(ledger, summed, received, view.count):
         ties.append((total, True))
-        return
-    ledger.status[row] = _RECEIVED
-    ledger.rest[row] = received - view.amount
-    if not view.blocked:
-        ledger.summed[row] = summed
+    elif view.whole:
+        ledger.amount[row], ledger.count[row] = view.amount, view.count
+        ledger.gap[row] = received - view.amount
+    else:
+        ledger.status[row] = _RECEIVED
+        ledger.rest[row] = received - view.amount
+        if not view.blocked:
+            ledger.summed[row] = summed
 
 
 def _summed(ledger: Ledger, total: Sum) -> float:
@@ -271,7 +276,7 @@ def _prove_balance(ledger: Ledger) -> None:
         return
     for overrule in (False, True):
         one, other = (_side(ledger, row, overrule=overrule) for row in (assets, funding))
-        if within(ledger, one, other, ledger.count[assets] + ledger.count[funding]):
+        if one != 0 and within(ledger, one, other, ledger.count[assets] + ledger.count[funding]):
             for row in (assets, funding):
                 if _lies_open(ledger, row, overrule=overrule):
                     _prove_parts(ledger, ledger.plan.sum_of[row], ledger.plan.sum_of[row], overrule=overrule)
