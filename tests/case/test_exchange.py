@@ -69,6 +69,11 @@ def test_reads_blank_as_blank_and_nil_as_nil(chart: Chart) -> None:
     assert case.assessment == Assessment(None, None)
 
 
+def test_nil_has_no_sign(chart: Chart) -> None:
+    plain, signed = (read_case(SMALL.replace("[41250", nil).encode(), chart, file="a") for nil in ("[0", "[-0.0"))
+    assert case_digest(plain) == case_digest(signed)
+
+
 def test_round_trip_gives_the_equal_case_and_the_same_bytes(case: Case, chart: Chart) -> None:
     data = write_case(case, chart)
     back = read_case(data, chart, file="a")

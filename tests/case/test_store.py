@@ -333,6 +333,8 @@ connection.execute("PRAGMA cache_size = 1")  # changed pages go to the file befo
 connection.execute("BEGIN IMMEDIATE")
 connection.execute("UPDATE document SET body = hex(randomblob(300000))")
 connection.execute("DELETE FROM trail WHERE seq > 1")
+for number in range(50, 90):  # pushes the pages changed above out of the cache
+    connection.execute("INSERT INTO trail VALUES (?, '', '', '', '', hex(randomblob(4000)), '', '', '')", (number,))
 os.kill(os.getpid(), signal.SIGKILL)
 """
 
@@ -344,6 +346,10 @@ def hot(path: Path) -> Path:
     subprocess.run([sys.executable, "-c", HALF_DONE, str(path)], check=False)
     assert journal_path(path).stat().st_size > 512
     assert path.read_bytes() != before
+    alone = path.with_name("alone.deskcase")
+    shutil.copyfile(path, alone)
+    assert code_of(lambda: CaseFile.open(alone, write=False)) == "damaged"  # nothing without its journal
+    alone.unlink()
     return path
 
 
@@ -376,20 +382,25 @@ def test_a_writer_recovers_the_file_and_takes_over_the_lock(hot: Path, clock: Cl
     assert [entry.name for entry in hot.parent.iterdir()] == [hot.name]
 
 
+def longer(case: Case) -> Case:
+    """Make a case whose file has other pages than that of the fixture, so that old pages would spoil it."""
+    return msgspec.structs.replace(case, texts={"request": "z" * 30_000})
+
+
 def test_a_file_is_replaced_together_with_its_journal(hot: Path, case: Case, clock: Clock) -> None:
-    with CaseFile.create(hot, case, actor="", clock=clock, replace=True) as file:
+    with CaseFile.create(hot, longer(case), actor="", clock=clock, replace=True) as file:
         type_in(file, 4.0)
     with CaseFile.open(hot, write=False) as file:
-        assert len(file.trail()) == 2
+        assert (len(file.trail()), file.findings) == (2, ())
 
 
 def test_a_forgotten_journal_does_not_harm_a_new_file(hot: Path, case: Case, clock: Clock) -> None:
     hot.unlink()
     lock_path(hot).unlink()
-    with CaseFile.create(hot, case, actor="", clock=clock) as file:
+    with CaseFile.create(hot, longer(case), actor="", clock=clock) as file:
         type_in(file, 4.0)
     with CaseFile.open(hot, write=False) as file:
-        assert file.findings == ()
+        assert (len(file.trail()), file.findings) == (2, ())
         assert file.case.figures["cash"][0] == 4.0
 
 
