@@ -23,26 +23,30 @@ def main(arguments: list[str]) -> int:
     parser.add_argument("--out", type=Path, default=environment.ROOT / "output", help="for pictures and memo")
     chosen = parser.parse_args(arguments)
     try:
-        python = environment.ready()
+        return show(environment.ready(), chosen.out)
     except environment.Unable as reason:
         print(reason, file=sys.stderr)
         return environment.CANNOT
-    program = [str(python), "-m", "creditdesk"]
-    case = str(environment.ROOT / "resources" / "demo" / "sound.case.toml")
+
+
+def show(python: Path, folder: Path) -> int:
+    """Open the window on the demonstration borrower, or put all that it shows into ``folder``."""
+    case = str(environment.ROOT / "resources" / "demo" / "brackwater-millworks.case.toml")
     if environment.has_display():
-        return subprocess.run([*program, case], cwd=environment.ROOT, check=False).returncode
+        return subprocess.run([str(python), "-m", "creditdesk", case], cwd=environment.ROOT, check=False).returncode
     print("There is no display here, so the sheets are drawn to files.")
-    return on_paper(program, case, chosen.out)
+    return on_paper(python, case, folder)
 
 
-def on_paper(program: list[str], case: str, folder: Path) -> int:
+def on_paper(python: Path, case: str, folder: Path) -> int:
     """Assess, draw every sheet, write a signed memo and verify it; end at the first step that fails."""
     folder.mkdir(parents=True, exist_ok=True)
     surroundings = {**os.environ, PASSPHRASE: secrets.token_urlsafe(24), "QT_QPA_PLATFORM": "offscreen"}
     with tempfile.TemporaryDirectory() as hidden:
-        for step in steps(case, folder, Path(hidden) / "throwaway.p12"):
+        for step in steps(sheets(python), case, folder, Path(hidden) / "throwaway.p12"):
             print(f"\n$ creditdesk {' '.join(step)}", flush=True)
-            code = subprocess.run([*program, *step], cwd=environment.ROOT, env=surroundings, check=False).returncode
+            command = [str(python), "-m", "creditdesk", *step]
+            code = subprocess.run(command, cwd=environment.ROOT, env=surroundings, check=False).returncode
             if code != 0:
                 print(f"This step ended with {code}.", file=sys.stderr)
                 return code
@@ -52,20 +56,27 @@ def on_paper(program: list[str], case: str, folder: Path) -> int:
     return 0
 
 
-def steps(case: str, folder: Path, identity: Path) -> list[list[str]]:
+def sheets(python: Path) -> list[str]:
+    """Ask the program which sheets its window has."""
+    asked = [str(python), "-c", "from creditdesk.desk.window import SHEETS; print(*SHEETS, sep='\\n')"]
+    answer = subprocess.run(asked, cwd=environment.ROOT, stdout=subprocess.PIPE, text=True, check=False)
+    if answer.returncode != 0:
+        raise environment.Unable("The window cannot be loaded, see above.")
+    return answer.stdout.split()
+
+
+def steps(names: list[str], case: str, folder: Path, identity: Path) -> list[list[str]]:
     """List the program's commands in order; the identity and its random passphrase are thrown away afterwards."""
     memo = str(folder / "memo.pdf")
     key = ["--passphrase-env", PASSPHRASE]
     return [
         ["assess", case],
-        *(["picture", sheet, case, "--out", str(folder / f"{sheet.lower()}.png")] for sheet in SHEETS),
+        *(["picture", sheet, case, "--out", str(folder / f"{sheet.lower()}.png")] for sheet in names),
         ["identity", "new", "--name", "Demonstration only", "--out", str(identity), *key],
         ["memo", case, "--out", memo, "--identity", str(identity), *key],
         ["verify", memo],
     ]
 
-
-SHEETS = ("Figures", "Memo")
 
 if __name__ == "__main__":
     sys.exit(main(sys.argv[1:]))
