@@ -113,15 +113,20 @@ def within(ledger: Ledger, one: float, other: float, count: int) -> bool:
     return abs(one - other) <= (count + 1) / 2 * ledger.unit + noise
 
 
-def imbalance(ledger: Ledger) -> float:
-    """Return assets less liabilities and equity; 0 within tolerance, nan where a side is not known."""
+def imbalance(ledger: Ledger) -> tuple[float, float]:
+    """Return assets less liabilities and equity: where both sides are known, and where one of them is not.
+
+    0 within tolerance; nan for the one that does not apply, and for both where a side discloses nothing.
+    """
     if ledger.plan.balance is None:
-        return math.nan
-    assets, funding, _ = ledger.plan.balance
-    if _UNKNOWN in (ledger.status[assets], ledger.status[funding]):
-        return math.nan
+        return math.nan, math.nan
+    assets, funding, equity = ledger.plan.balance
     one, other = ledger.amount[assets], ledger.amount[funding]
-    return 0.0 if within(ledger, one, other, ledger.count[assets] + ledger.count[funding]) else one - other
+    equal = within(ledger, one, other, ledger.count[assets] + ledger.count[funding])
+    gap = 0.0 if equal else one - other
+    if _UNKNOWN not in (ledger.status[assets], ledger.status[funding]):
+        return gap, math.nan
+    return math.nan, gap if ledger.some[assets] and ledger.some[equity] else math.nan
 
 
 def _add_up(ledger: Ledger) -> bool:

@@ -42,7 +42,8 @@ class StatementSet:
     ``needs``: for (key, period index) of a row that is not disclosed, the lines whose blanks are the cause.
     ``differences``: printed total less sum, by subtotal key, where the sum counts and they differ beyond tolerance; nan
     elsewhere. ``imbalance``: assets less liabilities and equity, one per period, 0 within tolerance, nan where a side
-    is not known. ``not_divided``, ``differences`` and ``imbalance`` are those of the first draw.
+    is not known. ``unexplained``: the same difference of what is disclosed, where a side is not known and both disclose
+    something; else nan. ``not_divided``, ``differences``, ``imbalance``, ``unexplained`` are those of the first draw.
     """
 
     chart: Chart
@@ -55,6 +56,7 @@ class StatementSet:
     needs: Mapping[tuple[str, int], tuple[str, ...]]
     differences: Mapping[str, FloatArray] = field(default_factory=dict)
     imbalance: FloatArray = field(default_factory=lambda: np.empty(0))
+    unexplained: FloatArray = field(default_factory=lambda: np.empty(0))
 
     @cached_property
     def index(self) -> Mapping[str, int]:

@@ -52,7 +52,8 @@ def build_statements(
         not_divided=_by_key(keys, [ledger.rest for ledger in ledgers]),
         needs=_needs(ledgers, states),
         differences=_by_key(keys, [ledger.gap for ledger in ledgers]),
-        imbalance=np.array([imbalance(ledger) for ledger in ledgers]),
+        imbalance=np.array([imbalance(ledger)[0] for ledger in ledgers]),
+        unexplained=np.array([imbalance(ledger)[1] for ledger in ledgers]),
     )
 
 
