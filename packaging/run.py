@@ -7,6 +7,7 @@ verified. ``--out FOLDER`` says where these go.
 import argparse
 import os
 import secrets
+import shlex
 import subprocess
 import sys
 import tempfile
@@ -34,7 +35,7 @@ def show(python: Path, folder: Path) -> int:
     case = str(environment.ROOT / "resources" / "demo" / "brackwater-millworks.case.toml")
     if environment.has_display():
         return subprocess.run([str(python), "-m", "creditdesk", case], cwd=environment.ROOT, check=False).returncode
-    print("There is no display here, so the sheets are drawn to files.")
+    print("There is no display here, so the sheets are drawn to files.", flush=True)
     return on_paper(python, case, folder)
 
 
@@ -44,7 +45,7 @@ def on_paper(python: Path, case: str, folder: Path) -> int:
     surroundings = {**os.environ, PASSPHRASE: secrets.token_urlsafe(24), "QT_QPA_PLATFORM": "offscreen"}
     with tempfile.TemporaryDirectory() as hidden:
         for step in steps(sheets(python), case, folder, Path(hidden) / "throwaway.p12"):
-            print(f"\n$ creditdesk {' '.join(step)}", flush=True)
+            print(f"\n$ creditdesk {shlex.join(step)}", flush=True)
             command = [str(python), "-m", "creditdesk", *step]
             code = subprocess.run(command, cwd=environment.ROOT, env=surroundings, check=False).returncode
             if code != 0:
