@@ -8,20 +8,23 @@ import math
 from collections.abc import Collection, Iterator, Mapping, Sequence
 from datetime import date
 from itertools import pairwise
+from typing import TypeVar
+
+import msgspec
 
 from creditdesk.base.errors import UserError
 from creditdesk.case.codes import COUNTRIES, CURRENCIES, SECTORS, UNITS
 from creditdesk.case.document import TEXT_BLOCKS
 from creditdesk.formula.sums import evaluate_sum
-from creditdesk.house.decode import Fault, Table, is_date, nearest_name, place_of, show, unknown_name
-from creditdesk.statements.adjust import AdjustmentKind
+from creditdesk.house.decode import Fault, Table, fault_of, is_date, nearest_name, place_of, show, unknown_name
+from creditdesk.statements.adjust import Adjustment, adjustment_faults
 from creditdesk.statements.chart import Chart
+from creditdesk.statements.period import Period
 
+Shape = TypeVar("Shape")
 PERIODS_MOST = 8
 MONTHS_MOST = 24
 _TYPED_TOLERANCE = 1e-9
-_INCOME = ("income", "memo")
-"""Statements whose lines a normalisation may touch: the income statement and what is told beside it."""
 _DEEPEST = 6
 """Levels of tables in an exchange file; a faulty one may have more."""
 
@@ -219,8 +222,7 @@ def name_faults(raw: Table, chart: Chart) -> Iterator[Fault]:
     yield from _unknown_lines(raw, "printed", totals, _elsewhere(lines, "[figures]"))
     yield from _unknown_lines(raw, "typed", lines, {})
     yield from _unknown_lines(raw, "notes", [*lines, *totals], {})
-    for index, adjustment in enumerate(list_of(raw.get("adjustments"))):
-        yield from _entry_faults(f"adjustments[{index}]", table_of(adjustment), chart)
+    yield from _entry_faults(raw, chart)
 
 
 def _elsewhere(keys: Sequence[str], section: str) -> dict[str, str]:
@@ -242,53 +244,27 @@ def _unknown_line(place: str, key: str, known: Collection[str]) -> Fault:
     return Fault(place, found, "a line item of the chart of accounts", nearest_name(key, known))
 
 
-def _entry_faults(place: str, adjustment: Table, chart: Chart) -> Iterator[Fault]:
-    lines = {item.key: item.group for item in chart.lines}
-    income = {group.key for group in chart.groups if group.statement in _INCOME}
-    normalise = adjustment.get("kind") == AdjustmentKind.NORMALISE
-    known = True
-    for number, entry in enumerate(list_of(adjustment.get("entries"))):
-        key = table_of(entry).get("line")
-        if isinstance(key, str) and key not in lines:
-            yield _unknown_line(f"{place}.entries[{number}].line", key, list(lines))
-            known = False
-        elif isinstance(key, str) and normalise and lines[key] not in income:
-            allowed = "lines of the income statement: a normalisation leaves the balance sheet as it is"
-            yield Fault(f"{place}.entries[{number}].line", show(key), allowed)
-    if known and adjustment.get("kind") == AdjustmentKind.RESTATE:
-        yield from _balance_faults(place, adjustment, chart)
+def _entry_faults(raw: Table, chart: Chart) -> Iterator[Fault]:
+    """Check what adjustments touch and whether they keep the balance, where their types are right."""
+    lines = [item.key for item in chart.lines]
+    periods = _converted(raw.get("periods"), tuple[Period, ...])
+    for index, adjustment in enumerate(list_of(raw.get("adjustments"))):
+        entries = enumerate(list_of(table_of(adjustment).get("entries")))
+        named = [(number, key) for number, entry in entries if isinstance(key := table_of(entry).get("line"), str)]
+        unknown = [(number, key) for number, key in named if key not in lines]
+        for number, key in unknown:
+            yield _unknown_line(f"adjustments[{index}].entries[{number}].line", key, lines)
+        typed = _converted(adjustment, Adjustment)
+        if periods and typed is not None and not unknown:
+            for sentence in adjustment_faults(chart, periods, (typed,)):
+                yield fault_of(sentence.replace("adjustments[0]", f"adjustments[{index}]", 1))
 
 
-def _balance_faults(place: str, adjustment: Table, chart: Chart) -> Iterator[Fault]:
-    """Demand that a restatement moves both sides of the balance sheet by the same amount."""
-    signs = balance_signs(chart)
-    moved = [
-        number_of(entry.get("amount")) * signs.get(str(entry.get("line")), 0)
-        for entry in map(table_of, list_of(adjustment.get("entries")))
-    ]
-    gap = math.fsum(moved) if all(map(math.isfinite, moved)) else 0.0
-    if abs(gap) > _TYPED_TOLERANCE * max(1.0, math.fsum(map(abs, moved))):
-        found = f"entries that move assets by {gap:.15g} more than liabilities and equity"
-        yield Fault(f"{place}.entries", found, "entries that keep assets = liabilities + equity")
-
-
-def balance_signs(chart: Chart) -> dict[str, int]:
-    """Say how much one unit of each line moves assets beyond liabilities and equity: 1, 0 or -1."""
-    totals = {total.key: total for total in chart.subtotals}
-    signs: dict[str, int] = {}
-
-    def walk(key: str, sign: int) -> None:
-        if key not in totals:
-            signs[key] = signs.get(key, 0) + sign
-            return
-        for part in totals[key].adds:
-            walk(part, sign)
-        for part in totals[key].subtracts:
-            walk(part, -sign)
-
-    for key, sign in (("total_assets", 1), ("total_liabilities", -1), ("total_equity", -1)):
-        walk(key, sign)
-    return signs
+def _converted(value: object, shape: type[Shape]) -> Shape | None:
+    try:
+        return msgspec.convert(value, shape, builtin_types=(date,))
+    except (msgspec.ValidationError, OverflowError, RecursionError):
+        return None
 
 
 def typed_faults(raw: Table) -> Iterator[Fault]:

@@ -376,7 +376,7 @@ def command_from_json(data: bytes) -> Command:
 
 
 def _refused(*faults: Fault) -> UserError:
-    return UserError("edit", [fault.sentence for fault in faults])
+    return UserError("edit", list(dict.fromkeys(fault.sentence for fault in faults)))
 
 
 def _is_text(command: Command) -> bool:

@@ -60,6 +60,13 @@ class Fault:
         return _one_line(f"{place}found {self.found}, allowed {self.allowed}{hint}")
 
 
+def fault_of(sentence: str) -> Fault:
+    """Take a fault worded elsewhere, ``place: found …, allowed …``, apart."""
+    place, _, rest = sentence.partition(": found ")
+    found, _, allowed = rest.partition(", allowed ")
+    return Fault(place, found, allowed)
+
+
 def _one_line(text: str) -> str:
     """Show line ends and control characters as escapes: a fault is one line, whatever the file holds."""
     return "".join(letter if letter.isprintable() else ascii(letter)[1:-1] for letter in text)
