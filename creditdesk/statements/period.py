@@ -151,6 +151,12 @@ def _latest(periods: Sequence[Period], candidates: Sequence[int]) -> int:
     return max(candidates, key=lambda index: (periods[index].ends, periods[index].restated, index))
 
 
+def period_ending(periods: Sequence[Period], ends: date) -> int | None:
+    """Find the period that ends on a day, the restated one of two, or None."""
+    fitting = [index for index, period in enumerate(periods) if period.ends == ends]
+    return _latest(periods, fitting) if fitting else None
+
+
 def _months(months: int) -> str:
     return "1 month" if months == 1 else f"{months} months"
 

@@ -66,6 +66,27 @@ WHOLE: dict[str, float] = {
     "non_controlling_interests": 200,
 }
 
+INCOME: dict[str, float] = {
+    "revenue": 24_000,
+    "cost_of_sales": 15_000,
+    "other_operating_income": 0,
+    "distribution_costs": 3_000,
+    "administrative_costs": 2_500,
+    "other_operating_costs": 0,
+    "depreciation_shown_separately": 0,
+    "depreciation_amortisation": 1_100,
+    "impairment": 0,
+    "finance_income": 0,
+    "finance_costs": 400,
+    "other_financial_result": 0,
+    "share_of_associates": 0,
+    "income_tax": 700,
+    "discontinued_operations": 0,
+    "profit_transfer": 0,
+}
+CASH_FLOW = {"operating_cash_flow": 0, "investing_cash_flow": 0, "financing_cash_flow": 0, "fx_on_cash": 0}
+CLEAN = WHOLE | INCOME | CASH_FLOW
+
 
 @cache
 def shipped_chart() -> Chart:
