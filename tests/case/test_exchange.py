@@ -294,10 +294,10 @@ def test_a_restatement_keeps_the_balance(reader: Reader) -> None:
 
 def test_a_normalisation_leaves_the_balance_sheet_alone(reader: Reader) -> None:
     read_case(with_adjustment('{line = "revenue", amount = -400}', kind="normalise").encode(), reader.chart, file="a")
-    assert reader.fault(with_adjustment(LOANS, kind="normalise")) == (
-        "adjustments[0].entries[0].line: found shareholder_loans, allowed a line of the income statement:"
-        " normalising leaves the rest"
-    )
+    fault = reader.fault(with_adjustment(LOANS, kind="normalise"))
+    place, _, allowed = fault.partition(": found shareholder_loans, allowed ")
+    assert place == "adjustments[0].entries[0].line"
+    assert "income statement" in allowed
 
 
 def test_adjustments_name_known_lines_and_periods(reader: Reader) -> None:
