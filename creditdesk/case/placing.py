@@ -11,6 +11,8 @@ from creditdesk.model.spec import Link, ModelSpec
 
 _POINTS = 121
 _MARGIN = 0.75
+_WHOLE = {Link.LOGIT: (-8.0, 5.0), Link.PROBIT: (-4.0, 2.5)}
+"""Scores between which a link runs from near 0 to near 1: the curve always shows its bend."""
 
 
 def fitted_curve(scored: Scored, scale: MasterScale, level: float) -> Curve | None:
@@ -26,7 +28,9 @@ def fitted_curve(scored: Scored, scale: MasterScale, level: float) -> Curve | No
         low=band.pd_low,
         high=band.pd_high,
         bins=_bins(spec),
-        bands=tuple(GradeBand(grade.key, grade.lower, scale.upper(grade.key), grade.criteria) for grade in scale.grades),
+        bands=tuple(
+            GradeBand(grade.key, grade.lower, scale.upper(grade.key), grade.criteria) for grade in scale.grades
+        ),
     )
 
 
@@ -36,8 +40,8 @@ def _span(scored: Scored) -> tuple[float, float]:
     bins = [one.score for one in spec.sample.bins] if spec.sample is not None else []
     own = [float(value) for value in scored.scores if np.isfinite(value)]
     wanted = [*bins, *own, scored.reference_score]
-    low, high = min(wanted) - _MARGIN, max(wanted) + _MARGIN
-    return (low, high) if high - low >= 4 else ((low + high) / 2 - 2, (low + high) / 2 + 2)
+    low, high = _WHOLE[spec.link]
+    return min(*wanted, low) - _MARGIN, max(*wanted, high) + _MARGIN
 
 
 def _bins(spec: ModelSpec) -> tuple[SampleBin, ...]:
