@@ -126,7 +126,8 @@ def _entry_faults(chart: Chart, layout: Presentation, adjustment: Adjustment, pl
         elif line.presentation not in (None, layout):
             yield f"{where}.line: found {entry.line}, allowed a line of an income statement {layout.replace('_', ' ')}"
         elif adjustment.kind is AdjustmentKind.NORMALISE and not _is_income(line, statements[line.group]):
-            yield f"{where}.line: found {entry.line}, allowed a line of the income statement: it is to be normalised"
+            allowed = "allowed a line of the income statement: normalising leaves the rest"
+            yield f"{where}.line: found {entry.line}, {allowed}"
 
 
 def _is_income(line: LineItem, statement: str) -> bool:
