@@ -36,6 +36,7 @@ BRACKETS = NumberStyle(thousands=",", parentheses=True)
         (0.0996, "10 %"),
         (0.12, "12 %"),
         (0.994, "99 %"),
+        (0.995, ">99 %"),
         (0.996, ">99 %"),
         (0.9999999, ">99 %"),
         (1.0, "100 %"),
@@ -83,6 +84,12 @@ def test_marks_and_brackets_follow_the_style() -> None:
     assert format_amount(-0.2, 0, BRACKETS) == "0"
     assert format_pd(0.0005, GERMAN) == "0,05 %"
     assert format_pd(0.0, GERMAN) == "<0,01 %"
+
+
+def test_money_has_no_decimals_unless_asked_for() -> None:
+    assert format_amount(3620.4) == "3\u202f620"
+    assert format_amount(0.5, 1) == "0.5"
+    assert format_number(-0.5, 1) == "\u22120.5"
 
 
 def test_units_stand_behind_a_space_that_does_not_break() -> None:

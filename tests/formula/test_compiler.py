@@ -25,33 +25,45 @@ FUNCTIONS = {
     "if_else": lambda condition, a, b: a if condition else b,
 }
 
-numbers = st.sampled_from(["0", "1", "2", "365", "0.5", "12.25", ".75", "3.", "1e-3", *NAMES])
-spaces = st.sampled_from(["", " "])
+NUMBERS = ("0", "1", "2", "365", "0.5", "12.25", ".75", "3.", "1e-3", *NAMES)
+# without parentheses of their own, so that precedence is left to the text
+PLAIN = ("{}+{}", "{} - {}", "{}*{}", "{} / {}", "({} - {})", "({}+{})", "({}/{})", "-({})", "-{}")
+CONDITIONS = ("{} < {}", "{} <= {}", "{} > {}", "{} >= {}", "{} == {}", "{} != {}", "{} < {} <= {}")
+JOINED = ("{}", "not {}", "{} and {}", "{} or {}", "({} or {}) and not {}", "{} and {} or {}")
+RICH = (
+    *PLAIN,
+    "abs({})",
+    "ln({})",
+    "exp({})",
+    "sqrt({})",
+    "sign({})",
+    "min({}, {})",
+    "max({},{},{})",
+    "if_else(?, {}, {})",
+)
+
+
+def filled(draw: st.DrawFn, form: str, parts: st.SearchStrategy[str]) -> str:
+    return form.format(*(draw(parts) for _ in range(form.count("{}"))))
 
 
 @st.composite
-def arithmetic(draw: st.DrawFn, inner: st.SearchStrategy[str]) -> str:
-    """Join two expressions with or without parentheses: precedence is left to the text."""
-    operator, space = draw(st.sampled_from("+-*/")), draw(spaces)
-    joined = f"{draw(inner)}{space}{operator}{space}{draw(inner)}"
-    return f"({joined})" if draw(st.booleans()) else joined
+def expressions(draw: st.DrawFn, forms: tuple[str, ...], depth: int = 3) -> str:
+    """Nest forms; a ? stands for a condition."""
+    if not depth or not draw(st.integers(0, 3)):
+        return draw(st.sampled_from(NUMBERS))
+    inner = expressions(forms, depth - 1)
+    text = filled(draw, draw(st.sampled_from(forms)), inner)
+    return text.replace("?", draw(conditions(inner)), 1) if "(?" in text else text
 
 
-plain = st.recursive(numbers, lambda inner: arithmetic(inner) | inner.map(lambda text: f"-({text})"), max_leaves=12)
+@st.composite
+def conditions(draw: st.DrawFn, inner: st.SearchStrategy[str]) -> str:
+    compared = st.sampled_from(CONDITIONS).flatmap(lambda form: st.builds(form.format, *[inner] * form.count("{}")))
+    return filled(draw, draw(st.sampled_from(JOINED)), compared)
 
 
-def extended(inner: st.SearchStrategy[str]) -> st.SearchStrategy[str]:
-    called = st.tuples(st.sampled_from(["abs", "ln", "exp", "sqrt", "sign"]), inner).map(
-        lambda one: f"{one[0]}({one[1]})"
-    )
-    paired = st.tuples(st.sampled_from(["min", "max"]), inner, inner).map(lambda one: f"{one[0]}({one[1]}, {one[2]})")
-    compared = st.tuples(inner, st.sampled_from(["<", "<=", ">", ">=", "==", "!="]), inner).map(" ".join)
-    joined = st.tuples(compared, st.sampled_from(["and", "or", "and not"]), compared).map(" ".join)
-    chosen = st.tuples(compared | joined, inner, inner).map(lambda one: f"if_else({one[0]}, {one[1]}, {one[2]})")
-    return called | paired | chosen | arithmetic(inner)
-
-
-rich = st.recursive(numbers, extended, max_leaves=8)
+plain, rich = expressions(PLAIN), expressions(RICH)
 values = st.fixed_dictionaries({name: st.floats(-1e3, 1e3).map(lambda x: round(x, 3)) for name in NAMES})
 
 
@@ -108,9 +120,8 @@ def test_elementary_functions_agree_with_the_standard_library(
     np.testing.assert_allclose(found, [reference(point) for point in points], rtol=4e-16)
 
 
-@given(st.lists(plain, min_size=2, max_size=3), values)
-def test_conditions_agree_with_python(parts: list[str], env: dict[str, float]) -> None:
-    text = f"not ({' < '.join(parts)}) or {parts[0]} >= 0 and {parts[1]} != {parts[-1]}"
+@given(conditions(plain), values)
+def test_conditions_are_pythons_own(text: str, env: dict[str, float]) -> None:
     expected = by_python(text, env)
     assert value_of(text, env, comparisons=True) == expected
 

@@ -1,6 +1,7 @@
 """What is no formula is refused with its place, and nothing of it runs."""
 
 import ast
+import math
 from collections.abc import Callable
 
 import pytest
@@ -217,7 +218,30 @@ def test_size_and_depth_are_limited(text: str, fault: str) -> None:
     assert fault in faults(text)[0]
 
 
+ARITIES = {"abs": (1, 1), "ln": (1, 1), "exp": (1, 1), "sqrt": (1, 1), "sign": (1, 1), "min": (2, 20), "max": (2, 20)}
+
+
+@pytest.mark.parametrize("function", ARITIES)
+def test_functions_take_so_many_arguments_and_no_other_number(function: str) -> None:
+    least, most = ARITIES[function]
+    for number in (least, most):
+        assert float(compile_formula(f"{function}({', '.join(['1'] * number)})", ())({})) in (0.0, 1.0, math.e)
+    for number in (least - 1, most + 1):
+        assert f"found {number} arguments" in faults(f"{function}({', '.join(['1'] * number)})")[0]
+
+
+def test_a_choice_takes_three_arguments() -> None:
+    assert "found 2 arguments" in faults("if_else(1 < 2, 3)")[0]
+    assert "found 4 arguments" in faults("if_else(1 < 2, 3, 4, 5)")[0]
+
+
+def test_a_long_find_is_shortened_and_a_shorter_one_is_not() -> None:
+    assert f'found an unknown name, "{"a" * 40}"; allowed' in faults("a" * 40)[0]
+    assert f'found an unknown name, "{"a" * 39}…"; allowed' in faults("a" * 41)[0]
+
+
 def test_up_to_the_limits_everything_works() -> None:
+    assert float(compile_formula("7" + " " * (LONGEST - 1), ())({})) == 7.0
     assert float(compile_formula("(" * DEEPEST + "7" + ")" * DEEPEST, ())({})) == 7.0
     assert float(compile_formula("-" * (DEEPEST - 1) + "7", ())({})) == -7.0
     long_sum = compile_formula("+".join(["revenue"] * 250), NAMES)

@@ -347,6 +347,12 @@ def test_the_expected_form_follows_the_convention() -> None:
     assert "such as 1,234.5, 1.234,5, (120) or 3k" in refusal("abc", None)
 
 
+def test_the_longest_text_is_read_and_a_long_find_is_shortened() -> None:
+    assert number("7" + " " * 1_999, ".") == 7.0
+    assert refusal("a" * 40).startswith(f'found "{"a" * 40}"; ')
+    assert refusal("a" * 41).startswith(f'found "{"a" * 39}…"; ')
+
+
 def test_long_runs_of_blanks_are_read_at_once() -> None:
     assert number("£" + " " * 1_900 + "7", ".") == 7.0
     assert parse_amount("£" + " " * 1_900 + "-", ".").kind is AmountKind.NIL

@@ -34,6 +34,13 @@ def test_only_what_reads_one_way_decides(texts: list[str], expected: Convention)
         (["1,234", "0"], None),
         (["1,234", "987", "4500"], None),  # a number beyond one thousand without a group
         (["2024", "2025", "1,234", "987"], "."),  # years say nothing
+        (["1900", "2100", "1,234", "987"], "."),
+        (["1899", "1,234", "987"], None),
+        (["2101", "1,234", "987"], None),
+        (["1,234", "999"], "."),
+        (["1,234", "1000"], None),
+        (["1,234", "1"], "."),
+        (["1,234", "987", "1000"], None),
         (["1,234", "5.678", "987"], None),  # both signs in use
     ],
 )
