@@ -8,13 +8,14 @@ from argparse import Namespace
 from datetime import UTC, datetime
 from pathlib import Path
 
-from creditdesk.base.errors import UsageError
+from creditdesk.base.errors import UsageError, UserError
 from creditdesk.base.palette import DARK, LIGHT
 from creditdesk.case.assess import assess as assess_case
 from creditdesk.case.convert import load_any, save_any
 from creditdesk.case.document import Case
-from creditdesk.case.lead import with_lead_model, with_named_model
+from creditdesk.case.lead import with_lead_model
 from creditdesk.case.result import result_bytes
+from creditdesk.cli.models import with_model_asked_for
 from creditdesk.cli.text import standing_text
 from creditdesk.house.book import HouseBook
 from creditdesk.house.files import write_file
@@ -63,16 +64,26 @@ def _passphrase(variable: str) -> str:
 
 def open_window(options: Namespace) -> int:
     """Open the window."""
+    _refuse_without_display()
     from creditdesk.desk.app import run  # the only command but one that needs Qt
 
     return run(options.case, house_book(options))
+
+
+def _refuse_without_display() -> None:
+    """Say that there is no display before Qt finds out: it ends the process, and blames a library that is there."""
+    chosen = any(os.environ.get(name) for name in ("DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM"))
+    if sys.platform.startswith("linux") and not chosen:
+        raise UserError(
+            "display", "The window needs a display: neither DISPLAY nor WAYLAND_DISPLAY is set."
+        )
 
 
 def assess(options: Namespace) -> int:
     """Print where the borrower stands; grade D or a stop is an answer too."""
     case, house = _case_and_house(options)
     name = options.model or ""
-    standing = assess_case(case, with_named_model(house, name, Path.cwd()), name)
+    standing = assess_case(case, with_model_asked_for(house, name), name)
     if options.json:
         _say_bytes(result_bytes(standing))
     else:

@@ -8,15 +8,15 @@ from pathlib import Path
 import numpy as np
 
 from creditdesk.base.errors import UserError
-from creditdesk.case.lead import with_named_model
-from creditdesk.house.book import HouseBook, LoadedModel
+from creditdesk.cli.models import with_model_asked_for
+from creditdesk.house.book import HouseBook
 from creditdesk.house.files import read_file, write_file
 from creditdesk.intake.sample import read_sample
 from creditdesk.model.calibrate import calibrated_pd
-from creditdesk.model.fit import fit_model
+from creditdesk.model.fit import Method, fit_model
 from creditdesk.model.recipe import Recipe, plain_recipe, recipe_from_toml
 from creditdesk.model.sample import stack
-from creditdesk.model.score import score
+from creditdesk.model.score import score, why_no_pd, why_no_score
 from creditdesk.model.spec import REASON_CODES, ModelSpec
 from creditdesk.model.treat import treat
 from creditdesk.model.write import to_toml
@@ -24,15 +24,13 @@ from creditdesk.model.write import to_toml
 
 def fit_file(options: Namespace) -> str:
     """Fit on the sample file and write the model file; return a few lines about the fit."""
-    if options.method == "firth":
-        raise UserError("method", "--method firth: not in this version; ml is the maximum-likelihood fit.")
     sample = read_sample(options.sample, REASON_CODES)
     if options.recipe is None:
         columns = [name for name in sample.values if name != options.target]
         recipe = plain_recipe(columns, options.out.name.removesuffix(".toml"))
     else:
         recipe = _recipe(options.recipe)
-    spec = fit_model(sample.values, sample.reasons, options.target, recipe, options.base_rate)
+    spec = fit_model(sample.values, sample.reasons, options.target, recipe, options.base_rate, Method(options.method))
     write_file(options.out, to_toml(spec).encode())
     return _summary(spec, options.out)
 
@@ -64,27 +62,21 @@ def _summary(spec: ModelSpec, out: Path) -> str:
 
 
 def score_file(options: Namespace, house: HouseBook) -> str:
-    """Score every row of the sample file and write it with score, PD and reason; return a sentence about it."""
-    model = _model(options.model, house)
+    """Score every row of the sample file, write it with score, PD and why there is none; return a sentence about it."""
+    spec = with_model_asked_for(house, options.model).models[options.model].spec
     sample = read_sample(options.sample, REASON_CODES)
-    values, reasons = stack(model.spec, sample.values, sample.reasons)
-    scores = score(model.spec, treat(model.spec, values, reasons))
-    pds = calibrated_pd(model.spec, scores)
+    design = treat(spec, *stack(spec, sample.values, sample.reasons))
+    scores = score(spec, design)
+    pds = calibrated_pd(spec, scores)
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
-    writer.writerow([*sample.text, "score", "pd"])
+    writer.writerow([*sample.text, "score", "pd", "reason"])
     for row in range(sample.rows):
         names = [column[row] for column in sample.text.values()]
-        writer.writerow([*names, _cell(scores[row]), _cell(pds[row])])
+        why = why_no_score(spec, design.missing[:, row], design.refused[:, row]) or why_no_pd(spec) or ""
+        writer.writerow([*names, _cell(scores[row]), _cell(pds[row]), why])
     write_file(options.out, text.getvalue().encode())
     return f"{sample.rows} rows scored, {int(np.isfinite(scores).sum())} with a score, written to {options.out}"
-
-
-def _model(name: str, house: HouseBook) -> LoadedModel:
-    found = with_named_model(house, name, Path.cwd()).models.get(name)
-    if found is None:
-        raise UserError("model", f"--model: found {name!r}, allowed: a model file or {', '.join(house.models)}.")
-    return found
 
 
 def _cell(number: float) -> str:

@@ -4,7 +4,7 @@ from collections.abc import Iterator
 
 from creditdesk.base.display import format_number, format_pd
 from creditdesk.case.document import Case
-from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.case.standing import FactorStanding, SecondOpinion, Standing
 from creditdesk.ratios.spec import Unit
 
 _WIDTH = 34
@@ -31,7 +31,7 @@ def _lines(case: Case, standing: Standing) -> Iterator[str]:
         ("Reasons", standing.reasons),
         (
             "Second opinions",
-            tuple(f"{one.label}: {_score(one.score)} {one.reading}" for one in standing.second_opinions),
+            tuple(map(_opinion, standing.second_opinions)),
         ),
         ("Findings", tuple(f"{one.severity.value}: {one.text}" for one in standing.findings)),
         ("Cautions", standing.cautions),
@@ -49,6 +49,8 @@ def _verdict(standing: Standing) -> Iterator[str]:
         usable = "" if standing.usable else " (not usable until findings of severity stop are resolved)"
         yield f"Probability of default {format_pd(standing.pd_final)}{usable}"
         yield f"for the twelve months from {standing.pd_runs_from} to {standing.pd_runs_to}"
+    if standing.pd_calibrated is not None and standing.pd_calibrated != standing.pd_final:
+        yield f"By the model {format_pd(standing.pd_calibrated)}"
     interval = standing.pd_interval
     if interval is not None:
         bounds = f"{format_pd(interval.low)} to {format_pd(interval.high)}"
@@ -66,5 +68,10 @@ def _factor(factor: FactorStanding) -> str:
     return f"  {factor.label:<{_WIDTH}}{value:>14}  {factor.log_odds:+.4f}{'  (capped)' if factor.capped else ''}"
 
 
-def _score(score: float | None) -> str:
-    return "no score," if score is None else f"{score:.2f},"
+def _opinion(one: SecondOpinion) -> str:
+    """Word a second opinion; where it has no score, its reading is the whole sentence why."""
+    if one.score is None:
+        return one.reading
+    pd = "" if one.pd is None else f", PD {format_pd(one.pd)}"
+    outside = "" if one.in_scope else f" (outside its scope: {one.scope_text})"
+    return f"{one.label}: {one.score:.2f}{pd}, {one.reading}{outside}"
