@@ -10,6 +10,7 @@ from typing import Any
 import pytest
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")  # a test that needs a real display starts its own process
+os.environ.setdefault("TZ", "UTC")  # a bare machine names no time zone, and pyHanko's plain writer warns of that
 
 LONG = "--long"
 WINDOW_TOOLS = ("Xvfb", "xdotool")
