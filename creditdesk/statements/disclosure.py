@@ -44,8 +44,9 @@ class Ledger:
     ``amount``: what the row is worth to the sums above it, blanks as nil; a printed total that ties, as printed.
     ``count``: how many rounded amounts it was made of. ``some``: anything disclosed at or beneath it. ``summed``: the
     amount of a row whose parts differ from the received total, if the parts were to count. ``nil``: lines proven nil.
-    ``held``: blank lines that lie in an undivided amount, with its row. ``tied``: sums proven whole. ``gap``: received
-    total less sum where the sum counts and they differ. ``rest``: what is not divided.
+    ``held``: blank lines that lie in an undivided amount, with its row. ``withheld``: sums not known for an undivided
+    amount, with its row and how they would stand without it. ``tied``: sums proven whole. ``gap``: received total less
+    sum where the sum counts and they differ. ``rest``: what is not divided.
     """
 
     plan: Plan
@@ -58,6 +59,7 @@ class Ledger:
     summed: dict[int, float] = field(default_factory=dict)
     nil: set[int] = field(default_factory=set)
     held: dict[int, int] = field(default_factory=dict)
+    withheld: dict[int, tuple[int, Status]] = field(default_factory=dict)
     tied: set[int] = field(default_factory=set)
     gap: dict[int, float] = field(default_factory=dict)
     rest: dict[int, float] = field(default_factory=dict)
@@ -132,6 +134,7 @@ def imbalance(ledger: Ledger) -> tuple[float, float]:
 def _add_up(ledger: Ledger) -> bool:
     """Go through all sums once; say whether something new was proven."""
     ledger.summed.clear()
+    ledger.withheld.clear()
     ledger.gap.clear()
     ledger.rest.clear()
     ties: list[tuple[Sum, bool]] = []
@@ -166,8 +169,8 @@ def _view(ledger: Ledger, total: Sum) -> _View:
             count += 1
         status = ledger.status[row]
         if status is _UNKNOWN:
-            if row in ledger.held and any(ledger.held[row] == part for part, _ in total.parts):
-                continue  # it lies in another part of this very sum
+            status = _beside_undivided(ledger, row, total)
+        if status is _UNKNOWN:
             complete = False
             blocked = blocked or row in total.needed
         elif status is _ASSUMED:
@@ -175,10 +178,28 @@ def _view(ledger: Ledger, total: Sum) -> _View:
     return _View(amount, count, some, whole or complete, blocked)
 
 
+def _beside_undivided(ledger: Ledger, row: int, total: Sum) -> Status:
+    """Say how an unknown part stands in a sum that holds the undivided amount for which it is unknown as well."""
+    if row in ledger.held:
+        holder, status = ledger.held[row], _WHOLE
+    elif row in ledger.withheld:
+        holder, status = ledger.withheld[row]
+    else:
+        return _UNKNOWN
+    return status if any(holder == part for part, _ in total.parts) else _UNKNOWN
+
+
 def _status_of_sum(ledger: Ledger, total: Sum, view: _View) -> Status:
     """Decide whether a sum stands for which no total was received."""
-    if any(_is_not_nil(ledger.received[row]) for row in total.withheld_by):
-        return _UNKNOWN
+    status = _status_of_parts(ledger, total, view)
+    for row in total.withheld_by:
+        if _is_not_nil(ledger.received[row]):
+            ledger.withheld[total.row] = (row, status)
+            return _UNKNOWN
+    return status
+
+
+def _status_of_parts(ledger: Ledger, total: Sum, view: _View) -> Status:
     if total.row in ledger.tied:
         return _WHOLE
     if total.above_nil and not (view.some and view.amount > 0):
@@ -302,8 +323,8 @@ def _needs(ledger: Ledger, row: int) -> list[int]:
     total = ledger.plan.sum_of.get(row)
     if total is None or row in ledger.plan.essential:
         return [row]
-    own = {part for part, _ in total.parts}
-    missing = [one for one in _rows_of(total) if ledger.status[one] is _UNKNOWN and ledger.held.get(one) not in own]
+    unknown = [one for one in _rows_of(total) if ledger.status[one] is _UNKNOWN]
+    missing = [one for one in unknown if _beside_undivided(ledger, one, total) is _UNKNOWN]
     needed = [part for part in missing if part in total.needed]
     if total.received_counts and row < ledger.plan.lines and not needed:
         return [row]

@@ -213,6 +213,15 @@ def test_liabilities_of_unknown_maturity_leave_both_maturities_open() -> None:
     assert not known(statements, "working_capital")
 
 
+def test_liabilities_of_unknown_maturity_add_up_whether_or_not_the_sides_balance() -> None:
+    statements = books(WHOLE | {"undivided_debt": 1_000})
+    assert amount(statements, "total_liabilities") == 14_450
+    assert state(statements, "total_liabilities") is Disclosure.DISCLOSED
+    assert statements.imbalance.tolist() == [-1_000]
+    blank = books(without(WHOLE, "short_term_debt") | {"undivided_debt": 900})
+    assert needs(blank, "total_liabilities") == ("short_term_debt",)
+
+
 def test_printed_funds_from_operations_win() -> None:
     income = {
         "revenue": 900,
