@@ -13,6 +13,9 @@ from creditdesk.model.score import why_no_pd
 from creditdesk.ratios.compute import RatioTable
 from creditdesk.statements.statement import StatementSet
 
+NOT_STATED = "none"
+"""What a house rule sees of an opinion or another text that is not stated."""
+
 
 @dataclass(frozen=True, slots=True)
 class Verdict:
@@ -49,7 +52,8 @@ def verdict(
         pd=pd,
         pd_final=pd if final == NO_GRADE else final_pd(house.scale, pd, judged, final),
         grade=GradeStanding(model_grade, judged, final, tuple(rule.reason for rule in outcome.fired)),
-        notes=tuple(rule.reason for rule in outcome.fired if rule.moved),
+        notes=tuple(rule.reason for rule in outcome.fired if rule.moved)
+        + tuple(f"House rule {sentence}" for sentence in outcome.unknown),
     )
 
 
@@ -67,5 +71,5 @@ def _env(statements: StatementSet, table: RatioTable, period: int, *, outside: b
     amounts = {key: float(statements.values[row, period]) for row, key in enumerate(statements.keys)}
     ratios = {key: float(table.values[row, period]) for row, key in enumerate(table.keys)}
     flags = {flag: float(getattr(one, flag, False)) for flag in FLAGS if flag != "out_of_scope"}
-    texts = {name: getattr(one, name) for name in TEXTS}
+    texts = {name: getattr(one, name) or NOT_STATED for name in TEXTS}
     return {**ratios, **amounts, **flags, "out_of_scope": float(outside), **texts}

@@ -26,7 +26,7 @@ class HouseIdentity:
 
 @dataclass(frozen=True, slots=True)
 class ModelIdentity:
-    """Identify the model that was applied; ``digest`` is ``sha256:…`` of its file, ``reading`` says what a score means."""
+    """Identify the model applied; ``digest`` is ``sha256:…`` of its file, ``reading`` says what this score means."""
 
     name: str
     label: str
@@ -61,7 +61,7 @@ class FactorStanding:
     """Show one factor of the model for one period.
 
     ``value``: the ratio, None where it has none (``reason`` then holds the key, ``reason_text`` the sentence).
-    ``treated``: the value after rule, caps and transform. ``log_odds``: contribution to score - reference score;
+    ``treated``: the value after rule and caps, in the ratio's unit. ``log_odds``: contribution to score - reference score;
     ``pd_share``: Aumann-Shapley share of pd_model - reference pd, None without a link. ``capped``: a cap was met.
     ``place``: share of the development sample below this value, 0 to 1, None where unknown.
     """
@@ -175,8 +175,8 @@ class Standing:
     The chain: ``pd_model`` (raw link) -> ``pd_calibrated`` -> ``pd_judged`` -> ``pd`` (floor) -> grade -> ``pd_final``.
     PDs are None and the grade "none" where the model gives none, with the reason in ``reasons``; ``score`` likewise.
     ``usable`` is False while a finding of severity stop stands: the PD is then shown as not usable, without grade.
-    ``past``: every other actual period that the model can score, oldest first; ``last_year``: the assessed period's prior.
-    ``received``: statements before adjustments; ``statements``: after them. ``annualised`` and needs stand in ``ratios``.
+    ``past``: every other actual period, oldest first; ``last_year``: the assessed period's prior. ``received``:
+    statements before adjustments; ``statements``: after them. What was annualised and what is needed stand in ``ratios``.
     """
 
     obligor: str

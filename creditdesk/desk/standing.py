@@ -201,10 +201,10 @@ def interval_words(standing: Standing) -> str:
         return ""
     if interval is None:
         return "no interval: the model states no covariance"
-    return (
-        f"{100 * interval.level:.0f} % interval {format_pd(interval.low)} to {format_pd(interval.high)}, "
-        "uncertainty of the fitted coefficients only"
-    )
+    bounds = f"{100 * interval.level:.0f} % interval {format_pd(interval.low)} to {format_pd(interval.high)}"
+    moved = standing.pd_calibrated is not None and standing.pd_final != standing.pd_calibrated
+    model = f"by the model {format_pd(standing.pd_calibrated or 0.0)}, " if moved else ""
+    return f"{model}{bounds}, uncertainty of the fitted coefficients only"
 
 
 def change_words(standing: Standing) -> str:

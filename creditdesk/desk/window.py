@@ -71,7 +71,8 @@ class Window(QMainWindow):
         """Bring a sheet to the front."""
         self.stack.setCurrentIndex(number)
         self.bar.mark(number)
-        self.stack.currentWidget().setFocus()
+        if sheet := self.stack.currentWidget():
+            sheet.setFocus()
 
     def show_fault(self, text: str) -> None:
         """Say in the status line what was wrong with an entry."""

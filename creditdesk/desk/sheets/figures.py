@@ -36,10 +36,16 @@ class FiguresTable(QTableView):
             self.pasted.emit(QApplication.clipboard().text())
         elif event.key() in (Qt.Key.Key_Delete, Qt.Key.Key_Backspace):
             self.cleared.emit()
-        elif event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter) and self.currentIndex().isValid():
-            self.edit(self.currentIndex())
+        elif event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter):
+            self._on_enter()
         else:
             super().keyPressEvent(event)
+
+    def _on_enter(self) -> None:
+        """Open the cell; a key that an editor has just used to close itself comes by here too and does nothing."""
+        editable = self.currentIndex().flags() & Qt.ItemFlag.ItemIsEditable
+        if editable and self.state() != QAbstractItemView.State.EditingState:
+            self.edit(self.currentIndex())
 
     def selected_text(self) -> str:
         """Return the selected block as a spreadsheet takes it: tabs between cells, one line per row."""

@@ -54,21 +54,36 @@ class FiguresModel(QAbstractTableModel):
     # What is shown
 
     def show_standing(self, case: Case, standing: Standing) -> None:
-        """Show another standing; the table is laid out anew only where its rows or periods differ."""
+        """Show another standing; other periods lay the table out anew, other rows come and go one by one.
+
+        So an open editor, the selection and the place scrolled to outlive an edit that brings or takes rows.
+        """
         rows = figure_rows(standing.statements, lines_with_figures_only=self.lines_with_figures_only)
-        same = (
-            rows == self._rows
-            and self._standing is not None
-            and (self._standing.statements.periods == standing.statements.periods)
-        )
-        if not same:
+        findings = _by_place(standing.findings)
+        if self._standing is None or self._statements.periods != standing.statements.periods:
             self.beginResetModel()
-        self._rows, self._case, self._standing = rows, case, standing
-        self._findings = _by_place(standing.findings)
-        if same:
-            self.dataChanged.emit(self.index(0, 0), self.index(self.rowCount() - 1, self.columnCount() - 1))
-        else:
+            self._rows, self._case, self._standing, self._findings = rows, case, standing, findings
             self.endResetModel()
+            return
+        self._take_out_rows(set(rows))
+        self._case, self._standing, self._findings = case, standing, findings
+        self._put_in_rows(rows)
+        self.dataChanged.emit(self.index(0, 0), self.index(self.rowCount() - 1, self.columnCount() - 1))
+
+    def _take_out_rows(self, kept: set[Row]) -> None:
+        for number in reversed(range(len(self._rows))):
+            if self._rows[number] not in kept:
+                self.beginRemoveRows(QModelIndex(), number, number)
+                self._rows = self._rows[:number] + self._rows[number + 1 :]
+                self.endRemoveRows()
+
+    def _put_in_rows(self, rows: tuple[Row, ...]) -> None:
+        """Put in what is new; the rows that stay keep their order, which is the chart's."""
+        for number, row in enumerate(rows):
+            if number == len(self._rows) or self._rows[number] != row:
+                self.beginInsertRows(QModelIndex(), number, number)
+                self._rows = (*self._rows[:number], row, *self._rows[number:])
+                self.endInsertRows()
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""

@@ -1,0 +1,55 @@
+"""Windows on the demonstration cases, closed again after each test."""
+
+from collections.abc import Callable, Iterator
+from pathlib import Path
+
+import pytest
+from PySide6.QtCore import QSettings
+from pytestqt.qtbot import QtBot
+
+from creditdesk.case.convert import load_any
+from creditdesk.case.document import Case
+from creditdesk.desk.app import make_application
+from creditdesk.desk.session import Session
+from creditdesk.desk.window import Window
+from creditdesk.house.book import HouseBook
+from creditdesk.house.load import load_house_book
+from creditdesk.house.shipped import resources_folder
+
+SOUND = "brackwater-millworks.case.toml"
+STRETCHED = "tarnside-castings.case.toml"
+
+
+@pytest.fixture(scope="session")
+def house() -> HouseBook:
+    return load_house_book(resources_folder() / "housebook")
+
+
+@pytest.fixture
+def sound_case(house: HouseBook) -> Case:
+    return load_any(resources_folder() / "demo" / SOUND, house.chart)
+
+
+@pytest.fixture
+def open_window(qtbot: QtBot, house: HouseBook, tmp_path: Path) -> Iterator[Callable[..., Window]]:
+    """Return a function that shows a session and waits until charts and pages are there."""
+    make_application()
+    QSettings().clear()
+    windows: list[Window] = []
+
+    def show(session: Session) -> Window:
+        window = Window(session)
+        windows.append(window)
+        window.show()
+        qtbot.waitUntil(lambda: window.settled, timeout=20_000)
+        return window
+
+    yield show
+    for window in windows:
+        window.close()
+        window.deleteLater()
+
+
+@pytest.fixture
+def window(open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path) -> Window:
+    return open_window(Session(house, sound_case, tmp_path / "case.deskcase"))
