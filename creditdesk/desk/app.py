@@ -7,6 +7,7 @@ from pathlib import Path
 
 import platformdirs
 from PySide6.QtCore import QObject, Signal
+from PySide6.QtGui import QFontDatabase
 from PySide6.QtWidgets import QApplication, QMessageBox
 
 from creditdesk.base.errors import UserError
@@ -25,14 +26,13 @@ from creditdesk.house.book import HouseBook
 
 
 def make_application() -> QApplication:
-    """Return the one application object, with name, fonts and look set."""
+    """Return the one application object, made if need be, with name, fonts and look set."""
     running = QApplication.instance()
-    if isinstance(running, QApplication):
-        return running
-    application = QApplication(["creditdesk"])
-    application.setApplicationName("creditdesk")
-    application.setOrganizationName("creditdesk")
-    theme.load_fonts()
+    application = running if isinstance(running, QApplication) else QApplication(["creditdesk"])
+    if application.applicationName() != "creditdesk" or not QFontDatabase.hasFamily(theme.SANS):
+        application.setApplicationName("creditdesk")
+        application.setOrganizationName("creditdesk")
+        theme.load_fonts()
     theme.apply(application, theme.system_palette())
     return application
 

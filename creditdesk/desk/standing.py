@@ -84,6 +84,7 @@ class FindingsList(QWidget):
         self._grid.setContentsMargins(0, 0, 0, 0)
         self._grid.setVerticalSpacing(4)
         self._grid.setColumnStretch(1, 1)
+        self._grid.setColumnMinimumWidth(0, 14)
         self._labels: list[QLabel] = []
 
     def show_findings(self, findings: Sequence[Finding]) -> None:

@@ -96,9 +96,12 @@ def test_printed_sums_of_the_balance_sheet_hold(demo: Case, key: str, parts: tup
     assert [total(demo, parts, period) for period in PERIODS] == list(demo.printed[key])
 
 
+PROFITS = (1831, 1510, 2270)  # of the sound case, whose income statement comes without printed sums
+
+
 def test_profit_goes_to_retained_earnings_less_dividends(demo: Case) -> None:
     for period in PERIODS:
-        assert net_profit(demo, period) == demo.printed["net_profit"][period]
+        assert net_profit(demo, period) == demo.printed.get("net_profit", PROFITS)[period]
         assert amount(demo, "dividends_paid", period) == amount(demo, "dividends_declared", period)
     for period in PERIODS[1:]:
         kept = net_profit(demo, period) - amount(demo, "dividends_paid", period)
@@ -151,7 +154,7 @@ def test_one_printed_total_differs_in_the_stretched_case_and_none_in_the_sound_o
     for name, expected in zip(NAMES, ([], [(1, 3030.0, 3300.0)]), strict=True):
         case = read_case(demo_path(name).read_bytes(), house.chart, file=name)
         gross = [amount(case, "revenue", period) - amount(case, "cost_of_sales", period) for period in PERIODS]
-        pairs = zip(PERIODS, case.printed["gross_profit"], gross, strict=True)
+        pairs = zip(PERIODS, case.printed.get("gross_profit", gross), gross, strict=True)
         assert [found for found in pairs if found[1] != found[2]] == expected
 
 
