@@ -5,6 +5,7 @@ went.
 """
 
 import os
+import random
 import subprocess
 import sys
 import time
@@ -12,6 +13,8 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import environment
+
+HASH_SEED = str(random.randrange(2**32))  # another order of sets each time, but one for all processes of a run
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +56,7 @@ def stages(python: Path, for_pytest: list[str]) -> list[Stage]:
 def run(stage: Stage) -> Outcome:
     """Run one stage from the project's folder, without a display."""
     print(f"\n== {stage.name}", flush=True)
-    surroundings = {**os.environ, "QT_QPA_PLATFORM": "offscreen"}
+    surroundings = {"PYTHONHASHSEED": HASH_SEED, **os.environ, "QT_QPA_PLATFORM": "offscreen"}
     start = time.monotonic()
     code = subprocess.run(stage.command, cwd=environment.ROOT, env=surroundings, check=False).returncode
     return Outcome(stage.name, code, time.monotonic() - start)
@@ -67,7 +70,7 @@ def main(arguments: list[str]) -> int:
         print(reason, file=sys.stderr)
         return environment.CANNOT
     outcomes = [run(stage) for stage in stages(python, arguments)]
-    print()
+    print(f"\nPYTHONHASHSEED={os.environ.get('PYTHONHASHSEED', HASH_SEED)}")
     for outcome in outcomes:
         print(f"{'good  ' if outcome.code == 0 else 'FAILED'}  {outcome.seconds:6.1f} s  {outcome.name}")
     return 0 if all(outcome.code == 0 for outcome in outcomes) else 1
