@@ -86,7 +86,7 @@ def findings() -> Grid:
         )
         for number in range(6)
     )
-    return Grid("Findings", ("Weight", "Where", "What"), rows, (0.7, 1.6, 4.2), left=3)
+    return Grid("Findings", ("Weight", "Where", "What"), rows, (0.7, 1.6, 4.2), words=(0, 1, 2))
 
 
 def content(first: FirstPage | None = None, **changes: object) -> MemoContent:

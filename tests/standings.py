@@ -25,6 +25,9 @@ from creditdesk.case.standing import (
     Standing,
     Term,
 )
+from creditdesk.statements.chart import Chart
+from creditdesk.statements.period import Basis, Period, Presentation
+from creditdesk.statements.statement import StatementSet
 
 # label, ratio, unit, value, contribution
 FACTORS = (
@@ -40,6 +43,17 @@ REFERENCE_SCORE = -3.38
 EDGES = (0.0, 0.0008, 0.0018, 0.0035, 0.0065, 0.0115, 0.02, 0.035, 0.06, 0.10, 0.17, 0.28, 1.0)
 
 
+PERIODS = tuple(Period(date(year, 12, 31), 12, Basis.AUDITED, Presentation.BY_FUNCTION) for year in (2023, 2024, 2025))
+EMPTY = StatementSet(
+    chart=Chart((), (), ()),
+    periods=PERIODS,
+    keys=(),
+    values=np.empty((0, 3)),
+    states=np.empty((0, 3), dtype=np.uint8),
+    printed={},
+    not_divided={},
+    needs={},
+)
 QUERY = Finding("inventories.slow", Severity.QUERY, "figures.inventories[2025-12-31]", "Inventories turn in 74 days.")
 
 
@@ -121,9 +135,9 @@ def standing(**changes: object) -> Standing:
             "Log-odds of default within twelve months.",
             True,
         ),
-        "statements": SimpleNamespace(),
-        "received": SimpleNamespace(),
-        "ratios": SimpleNamespace(),
+        "statements": EMPTY,
+        "received": EMPTY,
+        "ratios": SimpleNamespace(),  # neither charts nor the memo's layout read it
         "reference": Reference("the median borrower of the development sample", REFERENCE_SCORE, 0.0329),
         "factors": own,
         "score": score,

@@ -203,6 +203,7 @@ def _draw_total(board: Board, standing: Standing, place: Size, palette: Palette)
     size = type_size(palette)
     if standing.score is None:
         words = " ".join(("No score.", *standing.reasons))
+        words = words if text_width(words, size) <= width else "No score for this borrower."
         board.words(LAYER, (0, y), shorten(words, width, size), Type(palette.caution, size))
         return
     total = f"this borrower {format_number(standing.score, 2)}"

@@ -4,6 +4,7 @@ from creditdesk.base.display import MINUS, format_number
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.ratios.spec import Unit
 from creditdesk.ratios.words import format_ratio
+from creditdesk.statements.period import period_label
 
 REASON_WORDS = {
     "net_cash": "net cash",
@@ -46,4 +47,4 @@ def what_it_moves(link: str) -> str:
 
 def period_name(standing: Standing) -> str:
     """Name the assessed period."""
-    return str(standing.period.year)
+    return period_label(standing.statements.periods[standing.period_index])

@@ -46,7 +46,7 @@ class Row:
 
 @dataclass(frozen=True, slots=True)
 class Grid:
-    """Hold a table: ``heads`` of all columns, ``shares`` of the width, the first ``left`` columns set left.
+    """Hold a table: ``heads`` of all columns, ``shares`` of the width; columns of ``words`` stand left, numbers right.
 
     ``note`` explains marks below the table. ``name`` is what the table shows, for readers that hear it.
     """
@@ -55,7 +55,7 @@ class Grid:
     heads: tuple[str, ...]
     rows: tuple[Row, ...]
     shares: tuple[float, ...]
-    left: int = 1
+    words: tuple[int, ...] = (0,)
     note: str = ""
 
 

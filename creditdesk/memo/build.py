@@ -40,4 +40,4 @@ def _attachments(case_bytes: bytes, result_json: bytes, house: HouseBook, lead: 
     book = pack(house.files)
     yield Attachment(HOUSE_BOOK, book, "application/zip", Relationship.SUPPLEMENT, "the house book, complete")
     if lead:
-        yield Attachment(LEAD_MODEL, lead, "application/toml", Relationship.SUPPLEMENT, "the lead model, not of the book")
+        yield Attachment(LEAD_MODEL, lead, "application/toml", Relationship.SUPPLEMENT, "the lead model")

@@ -6,6 +6,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import SecondOpinion, Standing
 from creditdesk.grading.scale import MasterScale
+from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
 from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Prose, Row, Section, Subheading, Tone, text_row
 from creditdesk.memo.blocks import without_empty as _without_empty
@@ -71,7 +72,7 @@ def findings_section(standing: Standing) -> Section:
     ranked = sorted(standing.findings, key=lambda finding: order.index(finding.severity))
     names = [(factor.key, factor.label) for factor in standing.factors]
     rows = tuple(_finding_row(finding, standing, names) for finding in ranked)
-    grid = Grid("Findings", ("Weight", "Where", "What"), rows, (0.7, 1.6, 4.2), left=3)
+    grid = Grid("Findings", ("Weight", "Where", "What"), rows, (0.7, 1.6, 4.2), words=(0, 1, 2))
     return Section("Findings", (grid,) if rows else (Prose("The figures gave rise to no finding.", Tone.SECOND),))
 
 
@@ -84,7 +85,7 @@ def opinions_section(standing: Standing) -> Section | None:
         heads=("Model", "Score", "PD", "Reading", "Scope"),
         rows=tuple(_opinion_row(opinion) for opinion in standing.second_opinions),
         shares=(2.4, 0.8, 0.8, 1.8, 2.4),
-        left=1,
+        words=(0, 3, 4),
         note="Shown beside the lead model, never averaged into it.",
     )
     return Section("Second opinions", (grid,))
@@ -102,21 +103,25 @@ def scale_section(scale: MasterScale, standing: Standing) -> Section:
         name="Master scale",
         heads=("Grade", "PD from", "to below", "stands for", "Criteria"),
         rows=tuple(rows),
-        shares=(0.7, 0.8, 0.8, 0.8, 5.0),
+        shares=(0.6, 0.8, 0.8, 0.8, 5.0),
+        words=(0, 4),
         note=f"{scale.label}. {scale.source} Default is a fact, not a PD.",
     )
     return Section("Master scale", (grid,))
 
 
-def cautions(standing: Standing) -> tuple[str, ...]:
-    """Return every caution that applies: the program's own, then those of house and model."""
-    own = list(_own_cautions(standing))
-    return tuple(dict.fromkeys([*own, *standing.cautions]))
-
-
-def cautions_section(standing: Standing) -> Section:
-    """Return the cautions as a list."""
-    return Section("Cautions", (Listing(cautions(standing)),))
+def cautions_section(standing: Standing, house: HouseBook) -> Section:
+    """Return every caution that applies: the program's own, the house's, and those that come with the model."""
+    of_house = [caution for caution in standing.cautions if caution in house.settings.cautions]
+    of_model = [caution for caution in standing.cautions if caution not in of_house]
+    blocks: list[Block] = [
+        Listing(tuple(_own_cautions(standing))),
+        Subheading(f"Stated by the house, {standing.house.lender}"),
+        Listing(tuple(of_house)),
+        Subheading(f"Stated with the model, {standing.model.label}"),
+        Listing(tuple(of_model)),
+    ]
+    return Section("Cautions", _without_empty(blocks))
 
 
 def verify_section(standing: Standing, attachments: Sequence[Attachment]) -> Section:
@@ -132,7 +137,9 @@ def verify_section(standing: Standing, attachments: Sequence[Attachment]) -> Sec
             "attached case again with the attached house book, and compares every number with the attached result. "
             f"House book: {house.label} {house.version} of {house.lender}, {house.digest}."
         ),
-        Grid("Attachments", ("Attachment", "What it is", "Bytes", "SHA-256"), rows, (1.3, 2.2, 0.8, 4.2), left=2),
+        Grid(
+            "Attachments", ("Attachment", "What it is", "Bytes", "SHA-256"), rows, (1.2, 2.0, 0.8, 4.4), words=(0, 1, 3)
+        ),
         Subheading("What a signature proves"),
         Listing(SIGNATURE_PROVES),
         Subheading("What it does not prove"),

@@ -72,7 +72,7 @@ def _sections(case: Case, standing: Standing, house: HouseBook, attachments: Seq
     if opinions is not None:
         yield opinions
     yield scale_section(house.scale, standing)
-    yield cautions_section(standing)
+    yield cautions_section(standing, house)
     yield verify_section(standing, attachments)
     yield from _unprintable(case)
 
@@ -103,7 +103,7 @@ def _grade_section(standing: Standing) -> Section:
         Subheading("Reasons for the final grade"),
         Listing(standing.grade.reasons),
         Subheading("Principal reasons"),
-        Listing(standing.reasons),
+        Listing(tuple(reason for reason in standing.reasons if reason not in standing.grade.reasons)),
     ]
     return Section("From score to grade", without_empty(blocks))
 
@@ -111,7 +111,7 @@ def _grade_section(standing: Standing) -> Section:
 def _interval_words(standing: Standing) -> str:
     interval = standing.pd_interval
     if interval is None:
-        return "none: the model states no covariance"
+        return NIL if standing.pd_calibrated is None else "none: the model states no covariance"
     bounds = f"{format_pd(interval.low)} to {format_pd(interval.high)}"
     return f"{100 * interval.level:.0f}\u00a0%: {bounds}, uncertainty of the fitted coefficients only"
 

@@ -19,7 +19,7 @@ FloatArray = NDArray[np.float64]
 
 _NOTE = (
     "n.d. = not disclosed; – = nil. Costs and payments are positive numbers and are subtracted in the totals. "
-    "A total in italics is a sum in which lines not disclosed were taken as nil."
+    "In italics: a line that is not disclosed and was taken as nil, and a total in which such lines stand."
 )
 
 
@@ -92,12 +92,14 @@ def _group_rows(figures: _Figures, group: Group, shown: frozenset[str]) -> Itera
     for line in chart.lines:
         if line.group == group.key and line.key in shown:
             yield from _key_rows(figures, line.key, line.label, RowKind.LINE)
-    totals = {total.key: total for total in chart.subtotals if total.group == group.key and total.key in shown}
-    for key, total in totals.items():
-        rest = figures.adjusted.not_divided.get(key)
-        if rest is not None:
-            yield _amounts_row(f"not divided in {total.label.lower()}", rest, figures.decimals, RowKind.LINE)
-        yield from _key_rows(figures, key, total.label, RowKind.TOTAL)
+    layouts = {period.presentation for period in figures.adjusted.periods}
+    for total in chart.subtotals:
+        fits = total.presentation is None or total.presentation in layouts
+        if total.group == group.key and fits and total.key in shown:
+            rest = figures.adjusted.not_divided.get(total.key)
+            if rest is not None:
+                yield _amounts_row(f"not divided in {total.label}", rest, figures.decimals, RowKind.LINE, blank="")
+            yield from _key_rows(figures, total.key, total.label, RowKind.TOTAL)
 
 
 def _key_rows(figures: _Figures, key: str, label: str, kind: RowKind) -> Iterator[Row]:
@@ -108,7 +110,7 @@ def _key_rows(figures: _Figures, key: str, label: str, kind: RowKind) -> Iterato
         yield _amounts_row("received", received, figures.decimals, RowKind.UNDER)
         if key in figures.entries:
             yield _amounts_row("adjustment", figures.entries[key], figures.decimals, RowKind.UNDER)
-    printed = figures.adjusted.printed.get(key)
+    printed = figures.received.printed.get(key)
     if printed is not None and _differ(printed, received, figures.decimals):
         yield _amounts_row("as printed by the borrower", printed, figures.decimals, RowKind.UNDER, blank="")
 
@@ -123,10 +125,11 @@ def _amounts_row(
 ) -> Row:
     cells = [Cell(label)]
     for number, amount in enumerate(amounts):
-        assumed = states is not None and kind is RowKind.TOTAL and states[number] == Disclosure.ASSUMED_NIL
-        text = blank if isnan(amount) else amount_text(float(amount), decimals)
-        tone = Tone.SECOND if isnan(amount) else Tone.ASSUMED if assumed else Tone.PLAIN
-        cells.append(Cell(text, None if isnan(amount) else float(amount), tone))
+        assumed = states is not None and states[number] == Disclosure.ASSUMED_NIL
+        unknown = isnan(amount) or (assumed and kind is RowKind.LINE)  # a blank line is no nil, whatever the sum takes
+        text = blank if unknown else amount_text(float(amount), decimals)
+        tone = Tone.ASSUMED if assumed else Tone.SECOND if unknown else Tone.PLAIN
+        cells.append(Cell(text, None if unknown else float(amount), tone))
     return Row(tuple(cells), kind)
 
 
@@ -161,10 +164,12 @@ def _decimals(statements: StatementSet) -> int:
 def _never_disclosed(statements: StatementSet) -> list[Block]:
     """Name the lines on this layout of the statements that stand blank in every period."""
     layouts = {period.presentation for period in statements.periods}
+    unknown = (Disclosure.NOT_DISCLOSED, Disclosure.ASSUMED_NIL)
     blank = [
         line.label
         for line in statements.chart.lines
-        if (line.presentation is None or line.presentation in layouts) and np.isnan(statements.row(line.key)).all()
+        if (line.presentation is None or line.presentation in layouts)
+        and np.isin(statements.state(line.key), unknown).all()
     ]
     if not blank:
         return []
@@ -190,7 +195,7 @@ def _adjustments(case: Case, statements: StatementSet, decimals: int) -> Grid:
             )
             rows.append(Row(cells))
     heads = ("Period", "Line", "Reason, author as claimed, kind", "Adjustment")
-    return Grid("Adjustments", heads, tuple(rows), (1.2, 1.6, 3.2, 0.8), left=3)
+    return Grid("Adjustments", heads, tuple(rows), (1.2, 1.6, 3.2, 0.8), words=(0, 1, 2))
 
 
 def _notes(case: Case, statements: StatementSet) -> Grid:
@@ -201,7 +206,7 @@ def _notes(case: Case, statements: StatementSet) -> Grid:
         for head, note in zip(heads, notes, strict=False)
         if note
     ]
-    return Grid("Notes to figures", ("Line", "Period", "Note"), tuple(rows), (1.4, 0.7, 3.6), left=3)
+    return Grid("Notes to figures", ("Line", "Period", "Note"), tuple(rows), (1.4, 0.7, 3.6), words=(0, 1, 2))
 
 
 def place_words(place: str, statements: StatementSet, others: Sequence[tuple[str, str]] = ()) -> str:

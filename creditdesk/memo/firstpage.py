@@ -8,7 +8,6 @@ from creditdesk.charts.words import contribution_scale, factor_value, ratio_text
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import FirstPage
 from creditdesk.memo.closing import MARKS
-from creditdesk.memo.figurepages import place_words
 from creditdesk.memo.ratiopages import key_ratios
 from creditdesk.memo.text import basis_words, long_date, sector_words, unit_words
 
@@ -45,13 +44,14 @@ def first_page(case: Case, standing: Standing, house: HouseBook) -> FirstPage:
 def weak_spots(standing: Standing, house: HouseBook) -> tuple[str, ...]:
     """State what weighs against the borrower, derived from its figures alone.
 
-    First the findings of severity stop, then the factors that raise the PD most against the reference borrower, then
-    the queries.
+    First the findings of severity stop, then why there is no score or, where there is one, the factors that raise the
+    PD most against the reference borrower, then the queries.
     """
     raising = [] if standing.score is None else [factor for factor in standing.factors if factor.log_odds > 0]
     raising.sort(key=lambda factor: -factor.log_odds)
     return (
         *_findings(standing, Severity.STOP),
+        *(standing.reasons if standing.score is None else ()),
         *(_factor_sentence(factor, standing, house) for factor in raising[:_FACTORS_NAMED]),
         *_findings(standing, Severity.QUERY),
     )
@@ -84,7 +84,8 @@ def contribution_words(standing: Standing) -> str:
 
 def _description(case: Case, standing: Standing) -> str:
     period = standing.statements.periods[standing.period_index]
-    return " · ".join((sector_words(case), case.obligor.country, basis_words(period), unit_words(case)))
+    facts = (sector_words(case), case.obligor.country, basis_words(period), unit_words(case))
+    return "\u00a0· ".join(facts)
 
 
 def _officer_text(case: Case, key: str) -> str:
@@ -135,9 +136,7 @@ def _grade_note(standing: Standing, grades: int) -> str:
 
 def _findings(standing: Standing, severity: Severity) -> list[str]:
     return [
-        f"{MARKS[severity].split()[0]} {place_words(finding.place, standing.statements)}: {finding.text}"
-        for finding in standing.findings
-        if finding.severity is severity
+        f"{MARKS[severity].split()[0]} {finding.text}" for finding in standing.findings if finding.severity is severity
     ]
 
 

@@ -4,17 +4,21 @@ from collections.abc import Sequence
 from functools import partial
 
 from reportlab.lib.colors import Color
+from reportlab.lib.enums import TA_LEFT, TA_RIGHT
 from reportlab.lib.styles import ParagraphStyle
 from reportlab.pdfbase.pdfmetrics import stringWidth
-from reportlab.platypus import Flowable
+from reportlab.platypus import Flowable, KeepTogether
 
 from creditdesk.memo.blocks import Cell, Grid, Pairs, Row, RowKind, Tone
-from creditdesk.memo.styles import CELL, CELL_SECOND, INKS, ITALIC, NOTE, SANS, SEMIBOLD, marked_up
+from creditdesk.memo.styles import CELL, CELL_SECOND, INKS, ITALIC, NOTE, SANS, SEMIBOLD, SEMIBOLD_ITALIC, marked_up
 from creditdesk.memo.tables import Command, make_table
 from creditdesk.memo.tagging import TableTags, TaggedParagraph
 from creditdesk.memo.text import printable
 
 _PADDING = 3.0
+_AFTER_NUMBERS = 14.0
+_WIDEST_WORDS = 330.0
+_ROWS_KEPT_TOGETHER = 16
 _SIZE = 7.8
 _SMALLEST = 5.4
 _TONES = {
@@ -30,7 +34,7 @@ _TONES = {
 
 def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
     """Return the table of a grid, and its note below it."""
-    widths = [share / sum(grid.shares) * width for share in grid.shares]
+    widths = _widths(grid, width)
     size = _fitting_size(grid, widths)
     heads = [_head(text, widths[column], size) for column, text in enumerate(grid.heads)]
     body = [_cells(row, grid, widths, size) for row in grid.rows]
@@ -42,7 +46,10 @@ def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
         repeated_rows=1,
         space=(2, 4),
     )
-    return [table, *([TaggedParagraph(marked_up(grid.note), NOTE)] if grid.note else [])]
+    if not grid.note:
+        return [table]
+    both = [table, TaggedParagraph(marked_up(grid.note), NOTE)]
+    return [KeepTogether(both)] if len(grid.rows) <= _ROWS_KEPT_TOGETHER else both
 
 
 def pairs_flowables(pairs: Pairs, width: float) -> list[Flowable]:
@@ -61,6 +68,14 @@ def pairs_flowables(pairs: Pairs, width: float) -> list[Flowable]:
     return [make_table(rows, widths, style, TableTags(0, 1), space=(2, 4))]
 
 
+def _widths(grid: Grid, width: float) -> list[float]:
+    """Share the width; where numbers follow one column of words, that one is not stretched away from them."""
+    widths = [share / sum(grid.shares) * width for share in grid.shares]
+    if grid.words == (0,) and widths[0] > _WIDEST_WORDS:
+        widths[0] = _WIDEST_WORDS
+    return widths
+
+
 def _fitting_size(grid: Grid, widths: Sequence[float]) -> float:
     """Return the type size at which every number fits its column, not below ``_SMALLEST``."""
     size = _SIZE
@@ -75,7 +90,9 @@ def _fitting_size(grid: Grid, widths: Sequence[float]) -> float:
 def _number_cells(row: Row, grid: Grid) -> list[tuple[int, Cell]]:
     if row.kind in (RowKind.GROUP, RowKind.NOTE):
         return []
-    return [(column, cell) for column, cell in enumerate(row.cells) if column >= grid.left and cell.tone != Tone.WORDS]
+    return [
+        (column, cell) for column, cell in enumerate(row.cells) if column not in grid.words and cell.tone != Tone.WORDS
+    ]
 
 
 def _head(text: str, width: float, size: float) -> object:
@@ -99,18 +116,23 @@ def _cell(cell: Cell, column: int, *, row: Row, grid: Grid, widths: Sequence[flo
     """Return a cell as plain text where it fits on one line, else as a paragraph that breaks."""
     font, colour = _look(cell, row)
     indent = 8.0 if row.kind is RowKind.UNDER and column == 0 else 0.0
+    indent += _AFTER_NUMBERS - _PADDING if column in _words_after_numbers(grid) else 0.0
+    room = widths[column] - 2 * _PADDING - indent
     text = printable(cell.text)
-    if "\n" not in text and stringWidth(text, font, size) <= widths[column] - 2 * _PADDING - indent:
+    if "\n" not in text and stringWidth(text, font, size) <= room:
         return text
-    style = ParagraphStyle(
-        "cell", parent=CELL, fontName=font, textColor=colour, fontSize=size, leading=size * 1.22,
-        alignment=2 if column >= grid.left else 0,
-    )  # fmt: skip
+    longest = max((stringWidth(word, font, size) for word in text.split()), default=0.0)
+    if longest > room and column not in grid.words:  # a word is set smaller rather than broken
+        size = max(0.97 * size * room / longest, _SMALLEST)
+    style = ParagraphStyle("cell", parent=CELL, fontName=font, textColor=colour, fontSize=size, leading=size * 1.22)
+    style.alignment = TA_LEFT if column in grid.words else TA_RIGHT
     return _words(cell.text, style)
 
 
 def _look(cell: Cell, row: Row) -> tuple[str, Color]:
     font, colour = _TONES[cell.tone]
+    if cell.tone is Tone.ASSUMED and row.kind is RowKind.TOTAL:
+        return SEMIBOLD_ITALIC, colour
     if cell.tone is Tone.PLAIN and row.kind is RowKind.TOTAL:
         return SEMIBOLD, colour
     if cell.tone is Tone.PLAIN and row.kind is RowKind.UNDER:
@@ -127,15 +149,21 @@ def _frame_commands(grid: Grid, size: float) -> list[Command]:
         ("FONT", (0, 0), (-1, -1), SANS, size, size * 1.22),
         ("FONT", (0, 0), (-1, 0), SEMIBOLD, size, size * 1.22),
         ("TEXTCOLOR", (0, 0), (-1, -1), INKS.ink),
-        ("ALIGN", (grid.left, 0), (-1, -1), "RIGHT"),
+        ("LEFTPADDING", (0, 0), (-1, -1), _PADDING),
+        ("RIGHTPADDING", (0, 0), (-1, -1), _PADDING),
+        ("ALIGN", (0, 0), (-1, -1), "RIGHT"),
+        *(("ALIGN", (column, 0), (column, -1), "LEFT") for column in grid.words),
+        *(("LEFTPADDING", (column, 0), (column, -1), _AFTER_NUMBERS) for column in _words_after_numbers(grid)),
         ("VALIGN", (0, 0), (-1, -1), "TOP"),
         ("VALIGN", (0, 0), (-1, 0), "BOTTOM"),
         ("TOPPADDING", (0, 0), (-1, -1), 1.6),
         ("BOTTOMPADDING", (0, 0), (-1, -1), 2.4),
-        ("LEFTPADDING", (0, 0), (-1, -1), _PADDING),
-        ("RIGHTPADDING", (0, 0), (-1, -1), _PADDING),
         ("LINEBELOW", (0, 0), (-1, 0), 0.8, INKS.ink),
     ]
+
+
+def _words_after_numbers(grid: Grid) -> list[int]:
+    return [column for column in grid.words if column > 0 and column - 1 not in grid.words]
 
 
 def _row_commands(grid: Grid, size: float) -> list[Command]:

@@ -12,13 +12,17 @@ from creditdesk.memo.blocks import without_empty as _without_empty
 from creditdesk.memo.text import NIL, long_date, pd_text
 from creditdesk.model.spec import INTERCEPT, Calibration, Factor, Link, ModelSpec, Rule, terms_of
 
-_LINKS = {Link.LOGIT: "logistic", Link.PROBIT: "normal (probit)", Link.NONE: "none: a score without a PD"}
+_LINKS = {
+    Link.LOGIT: "logistic function",
+    Link.PROBIT: "normal distribution function (probit)",
+    Link.NONE: "none: the score is read as it stands",
+}
 
 
 def contributions_section(standing: Standing) -> Section:
     """Return every factor with its contribution, which sums to the distance from the reference borrower."""
     scale = contribution_scale(standing.model.link)
-    rows = [_contribution_row(factor) for factor in standing.factors]
+    rows = [_contribution_row(factor, scored=standing.score is not None) for factor in standing.factors]
     if standing.score is not None:
         rows += [_score_row("reference borrower", standing.reference.score, RowKind.LINE)]
         rows += [_score_row("this borrower", standing.score, RowKind.TOTAL)]
@@ -45,15 +49,15 @@ def model_section(standing: Standing, spec: ModelSpec, house: HouseBook) -> Sect
         Subheading("Rules used where a ratio has no value, and caps met"),
         _rules_used(standing, spec),
         Listing(tuple(_caps_met(standing, spec))),
-        Subheading("Limits stated with the model"),
-        Listing((*spec.scope.exclusions, *spec.cautions)),
+        Subheading("To be checked by a person: the model is not made for"),
+        Listing(spec.scope.exclusions),
     ]
     return Section("Model", _without_empty(blocks))
 
 
-def _contribution_row(factor: FactorStanding) -> Row:
+def _contribution_row(factor: FactorStanding, *, scored: bool) -> Row:
     place = NIL if factor.place is None else format_percent(factor.place, 0)
-    reference = NIL if factor.reference_value is None else format_number(factor.reference_value, 3)
+    reference = NIL if factor.reference_value is None else ratio_text(factor.reference_value, factor.unit)
     share = NIL if factor.pd_share is None else f"{signed(100 * factor.pd_share)}"
     known = factor.value is not None
     value = factor_value(factor) + (", capped" if factor.capped else "")
@@ -63,7 +67,7 @@ def _contribution_row(factor: FactorStanding) -> Row:
             Cell(value, factor.value, Tone.PLAIN if known else Tone.WORDS),
             Cell(reference, factor.reference_value),
             Cell(place, factor.place),
-            Cell(signed(factor.log_odds, 3), factor.log_odds),
+            Cell(signed(factor.log_odds, 3), factor.log_odds) if scored else Cell(NIL),
             Cell(share, factor.pd_share),
         )
     )
@@ -77,7 +81,8 @@ def _facts(standing: Standing, spec: ModelSpec, house: HouseBook) -> Iterator[tu
     model, sample = standing.model, spec.sample
     yield "Model", f"{spec.label} ({spec.name}), version {spec.model_version}{', invented' if spec.invented else ''}"
     yield "Digest of its file", model.digest
-    yield "Score and link", f"{spec.reading.text} Link: {_LINKS[spec.link]}."
+    yield "Score", spec.reading.text
+    yield "From score to PD", _LINKS[spec.link]
     yield "Source", f"{spec.source} {spec.checked}"
     yield "Made for", spec.scope.text
     if sample is not None:
@@ -130,7 +135,7 @@ def _coefficients(spec: ModelSpec, standing: Standing) -> Grid:
         "A factor's main term is (ratio within its caps, transformed − centre) ÷ scale. Terms named after a reason "
         "stand for ratios without a value."
     )
-    return Grid("Coefficients", heads, tuple(rows), (2.4, 1.0, 1.0, 1.0, 2.2), left=1, note=note)
+    return Grid("Coefficients", heads, tuple(rows), (2.4, 1.0, 1.0, 1.0, 2.2), words=(0, 4), note=note)
 
 
 def _term_row(spec: ModelSpec, units: dict[str, str], position: int) -> Row:
@@ -187,7 +192,13 @@ def _rules_used(standing: Standing, spec: ModelSpec) -> Grid:
             rows.append(
                 text_row(factor.label, factor.reason_text, _rule_words(rule), rule.evidence if rule else "")
             )  # fmt: skip
-    return Grid("Rules used", ("Factor", "Why no value", "Rule", "Evidence"), tuple(rows), (1.5, 2, 1.5, 2.2), left=4)
+    return Grid(
+        "Rules used",
+        ("Factor", "Why no value", "Rule", "Evidence"),
+        tuple(rows),
+        (1.5, 2, 1.5, 2.2),
+        words=(0, 1, 2, 3),
+    )
 
 
 def _rule_words(rule: Rule | None) -> str:

@@ -23,6 +23,7 @@ TEXT_BOTTOM = 48.0
 TEXT_HEIGHT = TEXT_TOP - TEXT_BOTTOM
 
 SANS, SEMIBOLD, ITALIC = str(Face.SANS), str(Face.SANS_SEMIBOLD), str(Face.SANS_ITALIC)
+SEMIBOLD_ITALIC = str(Face.SANS_SEMIBOLD_ITALIC)
 SERIF, SERIF_SEMIBOLD = str(Face.SERIF), str(Face.SERIF_SEMIBOLD)
 
 
@@ -71,7 +72,7 @@ SMALL_ITEM = _style("small item", 8.2, 10.6, spaceAfter=1.2)
 FOOT_CAUTION = _style("foot caution", 7.4, 9.2, textColor=INKS.caution)
 REASON = _style("reason", 7.0, 8.0, alignment=TA_RIGHT, textColor=INKS.second)
 REQUEST = _style("request", 8.6, 11.6, spaceBefore=4)
-NOTE = _style("note", 7.2, 9.2, textColor=INKS.second, spaceBefore=3)
+NOTE = _style("note", 7.2, 9.2, textColor=INKS.second, spaceBefore=3, spaceAfter=5)
 HEADING = _style("heading", 11.4, 14, SERIF_SEMIBOLD, textColor=INKS.accent, spaceBefore=0, spaceAfter=0)
 SUBHEADING = _style("subheading", 9.2, 12, SERIF_SEMIBOLD, textColor=INKS.accent, spaceBefore=7, spaceAfter=2)
 NAME = _style("name", 21, 24, SERIF_SEMIBOLD)

@@ -28,6 +28,7 @@ def make_table(
         style=TableStyle(cast("Any", list(commands))),
         renderCB=cast("Any", rendering),
         repeatRows=repeated_rows,
+        hAlign="LEFT",
         spaceBefore=space[0],
         spaceAfter=space[1],
     )

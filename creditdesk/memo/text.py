@@ -1,12 +1,12 @@
 """Words and numbers as the memo prints them, and characters its fonts cannot print."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from datetime import date
 
 from creditdesk.base.display import FIXED_SPACE, format_amount, format_pd
 from creditdesk.case.document import Case, SectorScheme
 from creditdesk.memo.fonts import missing_glyphs
-from creditdesk.statements.period import Period
+from creditdesk.statements.period import Opinion, Period, period_label
 
 NOT_DISCLOSED = "n.d."
 NIL = "–"
@@ -42,7 +42,13 @@ _MONTHS = (
     "January", "February", "March", "April", "May", "June", "July", "August", "September", "October", "November",
     "December",
 )  # fmt: skip
-_UNITS = {1: "", 1000: " thousands", 1_000_000: " millions"}
+_OPINIONS = {
+    Opinion.UNQUALIFIED: "unqualified",
+    Opinion.QUALIFIED: "qualified opinion",
+    Opinion.ADVERSE: "adverse opinion",
+    Opinion.DISCLAIMER: "disclaimer of opinion",
+}
+_UNITS = {1: "", 1000: f"{FIXED_SPACE}thousands", 1_000_000: f"{FIXED_SPACE}millions"}
 
 
 def long_date(day: date) -> str:
@@ -63,25 +69,20 @@ def sector_words(case: Case) -> str:
     return f"section {obligor.sector} of {obligor.sector_scheme.value}"
 
 
-def period_heads(periods: tuple[Period, ...]) -> tuple[str, ...]:
-    """Name the periods for column heads: the year, the date where years repeat, with months where they are not 12."""
-    years = [period.ends.year for period in periods]
-    heads = []
-    for period in periods:
-        head = str(period.ends.year)
-        if years.count(period.ends.year) > 1:
-            head = f"{period.ends:%d}.{period.ends:%m}.{period.ends.year}"
-        heads.append(head if period.months == 12 else f"{head}, {period.months}{FIXED_SPACE}m")
-    return tuple(heads)
+def period_heads(periods: Sequence[Period]) -> tuple[str, ...]:
+    """Name the periods for column heads; what is restated says so where the first account of the period stands too."""
+    labels = [period_label(period) for period in periods]
+    return tuple(
+        f"{label} restated" if period.restated and labels.count(label) > 1 else label
+        for label, period in zip(labels, periods, strict=True)
+    )
 
 
 def basis_words(period: Period) -> str:
     """Say who stands behind a period's figures: audited to 31 December 2025, qualified opinion."""
     words = [f"{period.basis.value} to {long_date(period.ends)}"]
     if period.opinion is not None:
-        words.append(
-            f"{period.opinion.value} opinion" if period.opinion.value != "disclaimer" else "disclaimer of opinion"
-        )
+        words += [_OPINIONS[period.opinion]]
     if period.going_concern_doubt:
         words.append("doubt about going concern")
     if period.restated:
