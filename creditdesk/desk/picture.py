@@ -5,7 +5,7 @@ from pathlib import Path
 
 from PySide6.QtCore import QElapsedTimer, QEventLoop
 
-from creditdesk.base.errors import BugError, UserError
+from creditdesk.base.errors import BugError, UsageError, UserError
 from creditdesk.base.palette import Palette
 from creditdesk.case.convert import load_any
 from creditdesk.case.lead import with_lead_model
@@ -21,7 +21,7 @@ def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look:
     """Write a PNG of ``sheet`` at exactly the width and height of ``look``; raises UserError."""
     names = [name.lower() for name in SHEETS]
     if sheet.lower() not in names:
-        raise UserError("sheet", f"There is no sheet {sheet!r}: choose one of {', '.join(names)}.")
+        raise UsageError("sheet", f"There is no sheet {sheet!r}: choose one of {', '.join(names)}.")
     palette, width, height = look
     application = make_application()
     case = load_any(case_path, house.chart)

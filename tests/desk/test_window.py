@@ -136,3 +136,15 @@ def test_a_long_or_foreign_name_fits(
     label = window.header.obligor
     assert label.fontMetrics().horizontalAdvance(label.text()) <= label.width()
     assert window.width() == 1280
+
+
+def test_a_total_as_printed_is_typed_on_its_sum(qtbot: QtBot, window: Window) -> None:
+    _type(qtbot, window, "gross_profit", 2, "11500")
+    assert window.session.case.printed["gross_profit"][2] == 11_500
+    gross = float(window.session.standing.statements.row("gross_profit")[2])
+    assert gross == 11_990  # every part is known: the sum counts, and the difference is asked about
+    assert any("11\u202f500" in finding.text for finding in window.session.standing.findings)
+    table = window.figures.table
+    table.setCurrentIndex(_cell(window, "gross_profit", 2))
+    qtbot.keyClick(table, Qt.Key.Key_Delete)
+    assert "gross_profit" not in window.session.case.printed

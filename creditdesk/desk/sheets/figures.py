@@ -8,13 +8,13 @@ from PySide6.QtWidgets import QAbstractItemView, QApplication, QCheckBox, QHBoxL
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
-from creditdesk.case.commands import Command, Figure, SetFigures
+from creditdesk.case.commands import Command, Figure, SetFigures, SetPrinted
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.desk.frame import label
 from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.figures import FiguresModel
-from creditdesk.desk.tables.rows import RowKind
+from creditdesk.desk.tables.rows import Row, RowKind
 from creditdesk.intake.amounts import Amount, AmountKind, parse_amount
 from creditdesk.intake.block import read_block
 from creditdesk.intake.numerals import DecimalMark
@@ -117,7 +117,12 @@ class FiguresSheet(QWidget):
 
     def _lay_out(self) -> None:
         top = QHBoxLayout()
-        top.addWidget(label("second", "Blank is not disclosed, 0 is nil. Costs are positive."), 1)
+        top.addWidget(
+            label(
+                "second", "Blank is not disclosed, 0 is nil, costs are positive. On a sum, type the total as printed."
+            ),
+            1,
+        )
         top.addWidget(self.only_figures)
         box = QVBoxLayout(self)
         box.setContentsMargins(22, 10, 16, 8)
@@ -139,10 +144,11 @@ class FiguresSheet(QWidget):
         if self._case is not None and self._standing is not None:
             self.model.show_standing(self._case, self._standing)
 
-    def _on_entered(self, line: str, period: int, text: str) -> bool:
+    def _on_entered(self, row: Row, period: int, text: str) -> bool:
+        set_cells = SetFigures if row.kind is RowKind.LINE else SetPrinted
         try:
             amount = parse_amount(text, _decimal_mark(), self._unit)
-            self._do(SetFigures((_figure(line, period, amount),)))
+            self._do(set_cells((_figure(row.key, period, amount),)))
         except UserError as error:
             self.fault.emit(" ".join(error.faults))
             return False
@@ -163,13 +169,12 @@ class FiguresSheet(QWidget):
             self.fault.emit(" ".join(error.faults))
 
     def _on_cleared(self) -> None:
-        cells = [
-            Figure(self.model.rows[index.row()].key, index.column() - 1, float("nan"))
-            for index in self.table.selectedIndexes()
-            if self.model.flags(index) & Qt.ItemFlag.ItemIsEditable
-        ]
-        if cells:
-            self._do(SetFigures(tuple(cells)))
+        chosen = [index for index in self.table.selectedIndexes() if index.flags() & Qt.ItemFlag.ItemIsEditable]
+        for kind, set_cells in ((RowKind.LINE, SetFigures), (RowKind.SUBTOTAL, SetPrinted)):
+            places = [(self.model.rows[index.row()], index.column() - 1) for index in chosen]
+            cells = [Figure(row.key, period, float("nan")) for row, period in places if row.kind is kind]
+            if cells:
+                self._do(set_cells(tuple(cells)))
 
     def _on_current(self, current: QModelIndex, _previous: QModelIndex) -> None:
         tip = current.data(Qt.ItemDataRole.ToolTipRole) if current.isValid() else None

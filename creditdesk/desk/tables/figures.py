@@ -17,7 +17,7 @@ from creditdesk.statements.period import period_label
 from creditdesk.statements.statement import Disclosure, StatementSet
 
 Index = QModelIndex | QPersistentModelIndex
-Enter = Callable[[str, int, str], bool]
+Enter = Callable[[Row, int, str], bool]
 
 MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "●"}
 _STATE_WORDS = {
@@ -38,7 +38,10 @@ class FigureRole(IntEnum):
 
 
 class FiguresModel(QAbstractTableModel):
-    """Show a standing's statements; hand what is typed to ``enter(line, period index, text)``."""
+    """Show a standing's statements; hand what is typed to ``enter(row, period index, text)``.
+
+    What is typed on a sum is the total as the borrower printed it; derived amounts nobody prints.
+    """
 
     def __init__(self, enter: Enter, parent: QObject | None = None) -> None:
         super().__init__(parent)
@@ -141,19 +144,19 @@ class FiguresModel(QAbstractTableModel):
         return ("change", "trend", "")[section - self.periods - 1]
 
     def flags(self, index: Index) -> Qt.ItemFlag:
-        """Allow typing in the cells of lines only."""
+        """Allow typing in the cells of lines, and of sums that a borrower prints."""
         row = self._rows[index.row()]
         if row.kind is RowKind.HEADING:
             return Qt.ItemFlag.ItemIsEnabled
         base = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
-        typed = row.kind is RowKind.LINE and 0 < index.column() <= self.periods
+        typed = row.editable and 0 < index.column() <= self.periods
         return base | Qt.ItemFlag.ItemIsEditable if typed else base
 
     def setData(self, index: Index, value: object, role: int = Qt.ItemDataRole.EditRole) -> bool:
         """Hand what was typed on; what it means is decided there."""
         if role != Qt.ItemDataRole.EditRole or not self.flags(index) & Qt.ItemFlag.ItemIsEditable:
             return False
-        return self._enter(self._rows[index.row()].key, index.column() - 1, str(value))
+        return self._enter(self._rows[index.row()], index.column() - 1, str(value))
 
     def data(self, index: Index, role: int = Qt.ItemDataRole.DisplayRole) -> object:
         """Answer for one cell."""
@@ -209,12 +212,13 @@ class FiguresModel(QAbstractTableModel):
         return change if after < before or change.startswith("0.0") else f"+{change}"
 
     def _typed(self, row: Row, column: int) -> object:
-        if row.kind is not RowKind.LINE or not 0 < column <= self.periods or self._case is None:
+        if not row.editable or not 0 < column <= self.periods or self._case is None:
             return None
-        typed = self._case.typed.get(row.key, ())
+        typed = self._case.typed.get(row.key, ()) if row.kind is RowKind.LINE else ()
         if typed and typed[column - 1]:
             return typed[column - 1]
-        amounts = self._case.figures.get(row.key)
+        entered = self._case.figures if row.kind is RowKind.LINE else self._case.printed
+        amounts = entered.get(row.key)
         amount = float("nan") if amounts is None else amounts[column - 1]
         return "" if np.isnan(amount) else f"{amount:.15g}"
 

@@ -21,11 +21,17 @@ class RowKind(Enum):
 
 @dataclass(frozen=True, slots=True)
 class Row:
-    """Name one row: ``key`` is a line's or subtotal's; a heading has its statement's."""
+    """Name one row: ``key`` is a line's or subtotal's; a heading has its statement's; ``derived``: nobody prints it."""
 
     kind: RowKind
     key: str
     label: str
+    derived: bool = False
+
+    @property
+    def editable(self) -> bool:
+        """Say whether amounts can be typed: on a line, or on a sum that a borrower prints."""
+        return self.kind is RowKind.LINE or (self.kind is RowKind.SUBTOTAL and not self.derived)
 
 
 def figure_rows(statements: StatementSet, *, lines_with_figures_only: bool) -> tuple[Row, ...]:
@@ -57,7 +63,7 @@ def _group_rows(statements: StatementSet, group: Group, shown: Collection[str] |
         seen.add(total.key)
         if total.key in statements.not_divided:
             yield Row(RowKind.NOT_DIVIDED, total.key, f"{total.label}: not divided")
-        yield Row(RowKind.SUBTOTAL, total.key, total.label)
+        yield Row(RowKind.SUBTOTAL, total.key, total.label, derived=total.derived)
 
 
 def _shown_keys(statements: StatementSet) -> frozenset[str]:
