@@ -19,7 +19,7 @@ QMainWindow, QDialog, #desk, QMenuBar, QMenu, QStatusBar { background: $paper; }
 #standing QScrollArea, #standing QScrollArea > QWidget > QWidget { background: $sheet; border: 0; }
 #header { border-bottom: 1px solid $rule; }
 QStatusBar { border-top: 1px solid $rule; color: $second_ink; }
-QStatusBar QLabel { color: $second_ink; }
+QStatusBar QLabel { color: $second_ink; padding: 2px 20px; }
 QStatusBar::item { border: 0; }
 QMenuBar { padding-left: 13px; }
 QMenuBar::item { padding: 4px 9px; background: transparent; }

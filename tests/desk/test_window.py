@@ -40,6 +40,7 @@ def _type(qtbot: QtBot, window: Window, line: str, period: int, text: str) -> No
 def test_a_typed_figure_moves_everything_that_follows_and_undo_brings_it_back(
     qtbot: QtBot, window: Window, house: HouseBook, sound_case: Case
 ) -> None:
+    qtbot.wait(200)  # the charts' own postponed drawing and the layout that follows it
     before = window.standing.grab().toImage()
     pd_before, revenue = window.standing.verdict.pd.text(), sound_case.figures["revenue"][2]
     _type(qtbot, window, "revenue", 2, f"{revenue * 0.9:.0f}")

@@ -230,11 +230,21 @@ class FiguresModel(QAbstractTableModel):
         needs = self._statements.needs.get((row.key, period), ())
         if needs and row.kind is RowKind.SUBTOTAL:
             words[1] = f"not disclosed: needs {', '.join(needs)}"
+        words.append(self._adjusted_words(row, period))
         printed = self._statements.printed.get(row.key)
         if printed is not None and np.isfinite(printed[period]):
             words.append(f"as printed {format_amount(float(printed[period]), style=self._style)}")
         words += [finding.text for finding in self._findings.get(self._place_name(row, period), ())]
         return "\n".join(word for word in words if word)
+
+    def _adjusted_words(self, row: Row, period: int) -> str:
+        if self._standing is None or row.kind is RowKind.NOT_DIVIDED:
+            return ""
+        received = float(self._standing.received.row(row.key)[period])
+        adjusted = float(self._statements.row(row.key)[period])
+        if received == adjusted or np.isnan(received) or np.isnan(adjusted):
+            return ""
+        return f"received {format_amount(received, style=self._style)}, the rest is adjustment"
 
     def _place_name(self, row: Row, period: int) -> str:
         return f"figures.{row.key}[{self._statements.periods[period].ends.isoformat()}]"
