@@ -154,6 +154,7 @@ def test_last_bits_do_not_matter_in_a_comparison() -> None:
     assert 0.1 + 0.2 != 0.3
     assert round_for_comparison(0.1 + 0.2) == round_for_comparison(0.3) == 0.3
     assert round_for_comparison(0.02 * (1 + 1e-11)) > 0.02
+    assert round_for_comparison(0.1234567890126) == 0.123456789013  # twelve digits, not eleven or thirteen
 
 
 def test_rounding_leaves_zero_infinities_and_the_smallest_numbers() -> None:

@@ -192,6 +192,11 @@ def test_a_function_along_periods_needs_a_name() -> None:
         by_rows("prior(5 + 1)")
 
 
+def test_a_function_along_periods_takes_one_argument() -> None:
+    with pytest.raises(UserError, match="found 2 arguments"):
+        by_rows("prior(revenue, costs)")
+
+
 @pytest.mark.parametrize("function", ["abs", "revenue"])
 def test_a_function_of_the_callers_may_not_shadow_another_word(function: str) -> None:
     with pytest.raises(BugError, match=function):
