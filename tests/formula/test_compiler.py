@@ -14,7 +14,7 @@ from creditdesk.formula.compiler import Formula, Use, compile_formula
 from creditdesk.formula.nodes import Kind
 
 NAMES = ("revenue", "costs", "equity")
-FUNCTIONS = {
+FUNCTIONS: dict[str, object] = {
     "abs": abs,
     "min": min,
     "max": max,
