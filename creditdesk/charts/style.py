@@ -68,7 +68,7 @@ class Type:
 
 def type_size(palette: Palette) -> float:
     """Return the size of a chart's running text in points: smaller on paper, which is read from nearer."""
-    return 7.4 if palette.name == PAPER.name else 8.6
+    return 7.4 if palette.name == PAPER.name else 9.0
 
 
 @cache

@@ -76,10 +76,20 @@ def contribution_words(standing: Standing) -> str:
     scale = contribution_scale(standing.model.link)
     if standing.score is None:
         return "There is no score, so there are no contributions. " + " ".join(standing.reasons)
-    rows = [f"{one.label} {factor_value(one)}, {signed(one.log_odds)}" for one in standing.factors]
-    start = format_number(standing.reference.score, 2)
-    end = format_number(standing.score, 2)
-    return f"From the reference borrower at {start} to this one at {end}, in {scale}: {'; '.join(rows)}."
+    start, end = format_number(standing.reference.score, 2), format_number(standing.score, 2)
+    parts = [f"{_of(one)} {_effect(one)}." for one in standing.factors]
+    return f"The reference borrower stands at {start} and this one at {end}, in {scale}. {' '.join(parts)}"
+
+
+def _of(factor: FactorStanding) -> str:
+    if factor.value is None:
+        return f"{factor.label} without a value, because {factor_value(factor)},"
+    return f"{factor.label} of {factor_value(factor)}"
+
+
+def _effect(factor: FactorStanding) -> str:
+    moves = "raises" if factor.log_odds > 0 else "lowers"
+    return f"{moves} the score by {format_number(abs(factor.log_odds), 2)}"
 
 
 def _description(case: Case, standing: Standing) -> str:

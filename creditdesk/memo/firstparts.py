@@ -1,6 +1,7 @@
 """The parts of page one: masthead with PD and grade plate, key ratios with their trends, boxes to sign in."""
 
 from collections.abc import Sequence
+from functools import partial
 
 from matplotlib.figure import Figure
 from reportlab.lib.styles import ParagraphStyle
@@ -10,6 +11,7 @@ from reportlab.platypus import Flowable, Spacer, Table
 from creditdesk.charts.style import PAPER
 from creditdesk.charts.trends import trend_figure
 from creditdesk.memo.blocks import FirstPage, KeyRatio
+from creditdesk.memo.cutting import cut_to_lines
 from creditdesk.memo.decision import Role
 from creditdesk.memo.onpaper import draw_figure
 from creditdesk.memo.structure import Element
@@ -37,6 +39,7 @@ _PLATE, _VERDICT = 84.0, 138.0
 NAME_WIDTH = TEXT_WIDTH - _PLATE - _VERDICT - 18
 _TREND = (42.0, 12.0)
 _BOX_HEIGHT = 66.0
+_LINES_A_NOTE = 4
 _NAME_SIZES = (21.0, 18.0, 15.5, 13.0, 11.0)
 _TITLES = {Role.PREPARER: "Prepared and signed", Role.APPROVER: "Countersigned"}
 _AWAITED = {Role.PREPARER: "awaiting the preparer", Role.APPROVER: "awaiting the approver and the decision"}
@@ -97,8 +100,8 @@ def columns(parts: Sequence[Sequence[Flowable]], widths: Sequence[float]) -> Tab
 def masthead(first: FirstPage, request: Flowable) -> Table:
     """Return name, description and request beside PD and grade."""
     name = _name(first.obligor)
-    description = TaggedParagraph(marked_up(first.description), SECOND)
-    facts: list[Flowable] = [name, Spacer(1, 2), description, Spacer(1, 4), request]
+    description, _ = cut_to_lines(_described, first.description, NAME_WIDTH - 8, 3)
+    facts: list[Flowable] = [name, Spacer(1, 2), _described(description), Spacer(1, 4), request]
     return columns((facts, _verdict(first), (), (_plate(first),)), (NAME_WIDTH, _VERDICT, 18, _PLATE))
 
 
@@ -140,18 +143,31 @@ _RATIO_STYLE: list[Command] = [
 def _name(obligor: str) -> Flowable:
     """Set the name as large as lets it stand on two lines."""
     for size in _NAME_SIZES:
-        style = ParagraphStyle("name", parent=NAME, fontSize=size, leading=size * 1.14, spaceAfter=2)
-        paragraph = TaggedParagraph(marked_up(obligor), style, "H1")
-        if paragraph.wrap(NAME_WIDTH, 1000)[1] <= 2 * size * 1.14 + 1:
-            break
-    return paragraph
+        text, cut = cut_to_lines(partial(_named, size), obligor, NAME_WIDTH, 2)
+        if not cut:
+            return _named(size, text)
+    smallest = _NAME_SIZES[-1]
+    return _named(smallest, cut_to_lines(partial(_named, smallest), obligor, NAME_WIDTH, 4)[0])
+
+
+def _named(size: float, obligor: str) -> TaggedParagraph:
+    style = ParagraphStyle("name", parent=NAME, fontSize=size, leading=size * 1.14, spaceAfter=2)
+    return TaggedParagraph(marked_up(obligor), style, "H1")
 
 
 def _verdict(first: FirstPage) -> list[Flowable]:
     style = PD if first.pd is not None else PD_WORDS
-    notes = [TaggedParagraph(marked_up(note), RIGHT_SECOND) for note in first.pd_notes]
+    notes = [_noted(cut_to_lines(_noted, note, _VERDICT, _LINES_A_NOTE)[0]) for note in first.pd_notes]
     pd = TaggedParagraph(marked_up(first.pd_text), style)
     return [TaggedParagraph("probability of default", RIGHT_SECOND), pd, Spacer(1, 3), *notes]
+
+
+def _noted(text: str) -> TaggedParagraph:
+    return TaggedParagraph(marked_up(text), RIGHT_SECOND)
+
+
+def _described(text: str) -> TaggedParagraph:
+    return TaggedParagraph(marked_up(text), SECOND)
 
 
 def _plate(first: FirstPage) -> Table:

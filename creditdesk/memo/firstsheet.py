@@ -5,6 +5,8 @@ What may be long is cut to its share and printed in full after the page; the cur
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import partial
+from typing import cast
 
 from matplotlib.figure import Figure
 from reportlab.platypus import Flowable, Spacer
@@ -14,6 +16,7 @@ from creditdesk.charts.contributions import contributions_figure, contributions_
 from creditdesk.charts.curve import curve_figure
 from creditdesk.charts.style import PAPER
 from creditdesk.memo.blocks import MemoContent
+from creditdesk.memo.cutting import cut_to_lines, lines_of
 from creditdesk.memo.firstpage import NOT_WRITTEN
 from creditdesk.memo.firstparts import NAME_WIDTH, columns, key_ratio_table, masthead, signature_boxes
 from creditdesk.memo.onpaper import draw_figure
@@ -28,6 +31,7 @@ _ROWS = 8
 _CURVE_LEAST, _CURVE_MOST, _CURVE_WITHOUT_ROOM = 118.0, 228.0, 60.0
 _MOST_LINES = {"request": 3, "recommendation": 6, "conditions": 6, "weak spots": 7}
 _LEAST_LINES = {"request": 2, "recommendation": 2, "conditions": 2, "weak spots": 3}
+_LINES_A_SPOT = 3
 _POINTER = " … continued on page 2"
 
 
@@ -92,11 +96,9 @@ class _Page:
         """Set an officer's text after its head, cut to its lines; an empty one is said to be missing."""
         if not text:
             return TaggedParagraph(f"<b>{head}</b> <i>{NOT_WRITTEN}</i>", BODY)
-        whole = _headed(head, text)
-        if _lines_of(whole, width) <= self._lines[key]:
-            return whole
-        self.cut.append(key)
-        return _cut(head, text, width, self._lines[key])
+        shown, cut = cut_to_lines(partial(_headed, head), text, width, self._lines[key], _POINTER)
+        self.cut += [key] if cut else []
+        return _headed(head, shown)
 
     def _weak_spots(self, spots: Sequence[str]) -> list[Flowable]:
         """List as many as fit their lines, and say how many more there are."""
@@ -105,16 +107,16 @@ class _Page:
                 TaggedParagraph("No factor raises the PD above the reference borrower's, no query is open.", SMALL_ITEM)
             ]
         shown: list[str] = []
-        used = 0.0
+        used = 0
         for spot in spots:
-            used += _lines_of(TaggedParagraph(marked_up(spot), SMALL_ITEM), TEXT_WIDTH)
+            text, _ = cut_to_lines(_listed, spot, TEXT_WIDTH, _LINES_A_SPOT)
+            used += lines_of(_listed(text), TEXT_WIDTH)
             if shown and used > self._lines["weak spots"]:
                 break
-            shown.append(spot)
-        listed = tagged_list([marked_up(spot) for spot in shown], SMALL_ITEM)
+            shown.append(marked_up(text))
         hidden = len(spots) - len(shown)
         more = f"and {hidden} more: see Findings and Contributions of all factors"
-        return [*listed, *([TaggedParagraph(more, NOTE)] if hidden else [])]
+        return [*tagged_list(shown, SMALL_ITEM), *([TaggedParagraph(more, NOTE)] if hidden else [])]
 
 
 def _why_and_ratios(content: MemoContent, standing: Standing) -> Flowable:
@@ -131,19 +133,9 @@ def _headed(head: str, text: str) -> TaggedParagraph:
     return TaggedParagraph(f"<b>{head}</b> {marked_up(text)}", BODY)
 
 
-def _cut(head: str, text: str, width: float, lines: int) -> TaggedParagraph:
-    """Keep as many words as leave room for the pointer to the whole text."""
-    words = text.split()
-    low, high = 0, len(words)
-    while low < high:
-        middle = (low + high + 1) // 2
-        fits = _lines_of(_headed(head, " ".join(words[:middle]) + _POINTER), width) <= lines
-        low, high = (middle, high) if fits else (low, middle - 1)
-    return _headed(head, " ".join(words[:low]) + _POINTER)
-
-
-def _lines_of(paragraph: TaggedParagraph, width: float) -> int:
-    return round(paragraph.wrap(width, 10_000)[1] / paragraph.style.leading)
+def _listed(text: str) -> TaggedParagraph:
+    (item,) = tagged_list([marked_up(text)], SMALL_ITEM)
+    return cast("TaggedParagraph", item)
 
 
 def _take_a_line(lines: dict[str, int]) -> bool:

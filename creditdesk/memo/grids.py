@@ -7,9 +7,10 @@ from reportlab.lib.colors import Color
 from reportlab.lib.enums import TA_LEFT, TA_RIGHT
 from reportlab.lib.styles import ParagraphStyle
 from reportlab.pdfbase.pdfmetrics import stringWidth
-from reportlab.platypus import Flowable, KeepTogether
+from reportlab.platypus import Flowable, KeepTogether, Table
 
 from creditdesk.memo.blocks import Cell, Grid, Pairs, Row, RowKind, Tone
+from creditdesk.memo.structure import Element
 from creditdesk.memo.styles import CELL, CELL_SECOND, INKS, ITALIC, NOTE, SANS, SEMIBOLD, SEMIBOLD_ITALIC, marked_up
 from creditdesk.memo.tables import Command, make_table
 from creditdesk.memo.tagging import TableTags, TaggedParagraph
@@ -32,6 +33,17 @@ _TONES = {
 }
 
 
+class _GridTags(TableTags):
+    """Let heads head: a text across the whole row, such as a group's name, is a cell and heads no row."""
+
+    def __init__(self) -> None:
+        super().__init__(header_rows=1, header_columns=1)
+
+    def _cell(self, table: Table, row: int, column: int, content: object) -> Element:
+        cell = super()._cell(table, row, column, content)
+        return Element("TD", columns=cell.columns) if cell.columns > 1 else cell
+
+
 def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
     """Return the table of a grid, and its note below it."""
     widths = _widths(grid, width)
@@ -42,7 +54,7 @@ def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
         [heads, *body],
         widths,
         [*_frame_commands(grid, size), *_row_commands(grid, size)],
-        TableTags(header_rows=1, header_columns=1),
+        _GridTags(),
         repeated_rows=1,
         space=(2, 4),
     )

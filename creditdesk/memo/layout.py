@@ -7,7 +7,7 @@ from creditdesk.memo.blocks import MemoContent, Prose, Section, Subheading
 from creditdesk.memo.firstsheet import first_sheet
 from creditdesk.memo.fonts import register_fonts
 from creditdesk.memo.page import print_pages
-from creditdesk.memo.sheets import section_flowables
+from creditdesk.memo.sheets import Bookmark, section_flowables
 from creditdesk.memo.structure import Structure
 
 
@@ -25,7 +25,7 @@ def write_memo(content: MemoContent, standing: Standing) -> tuple[bytes, Structu
 
 def _flowables(content: MemoContent, standing: Standing) -> list[Flowable]:
     page = first_sheet(content, standing)
-    flowables: list[Flowable] = [*page.flowables, PageBreak()]
+    flowables: list[Flowable] = [Bookmark("The decision on one page"), *page.flowables, PageBreak()]
     for section in (*_texts_in_full(content, page.cut), *content.sections):
         flowables += section_flowables(section)
     return flowables

@@ -8,7 +8,7 @@ from reportlab.platypus import BaseDocTemplate, Flowable, Frame, PageTemplate
 
 from creditdesk.memo.blocks import MemoContent
 from creditdesk.memo.fonts import register_fonts
-from creditdesk.memo.structure import Structure, TaggedCanvas
+from creditdesk.memo.structure import Element, Structure, TaggedCanvas
 from creditdesk.memo.styles import (
     INKS,
     MARGIN,
@@ -41,14 +41,15 @@ class _Document(BaseDocTemplate):
         self.addPageTemplates(PageTemplate("page", [frame], onPage=self._draw_running))
 
     def _draw_running(self, plain: Canvas, _document: BaseDocTemplate) -> None:
-        """Draw head and foot, which are no content of the page."""
+        """Draw head and foot; only the head of page one is content, the others repeat it."""
         canvas = cast("TaggedCanvas", plain)
         page = canvas.getPageNumber()
-        with canvas.artifact("Pagination"):
-            canvas.saveState()
+        canvas.saveState()
+        with canvas.marked(Element("P")) if page == 1 else canvas.artifact("Pagination"):
             _draw_head(canvas, self._content, page)
+        with canvas.artifact("Pagination"):
             _draw_foot(canvas, self._content, page, self._total)
-            canvas.restoreState()
+        canvas.restoreState()
 
 
 def print_pages(content: MemoContent, flowables: list[Flowable], structure: Structure, total: int) -> tuple[bytes, int]:

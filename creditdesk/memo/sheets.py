@@ -12,9 +12,24 @@ from creditdesk.memo.tagging import Decoration, TaggedParagraph, tagged_list
 _ROOM_FOR_A_BEGINNING = 96.0
 
 
+class Bookmark(Flowable):
+    """Enter a place into the document's outline."""
+
+    def __init__(self, title: str) -> None:
+        super().__init__()
+        self.width = self.height = 0
+        self._title = title
+
+    def draw(self) -> None:
+        """Mark the place; sections have headings of their own, so the title names it."""
+        self.canv.bookmarkHorizontal(self._title, 0, HEADING.leading + 6)
+        self.canv.addOutlineEntry(self._title, self._title, level=0)
+
+
 def section_flowables(section: Section) -> list[Flowable]:
     """Return heading and blocks of a section; a heading never stands alone at a page's end."""
-    flowables: list[Flowable] = [CondPageBreak(_ROOM_FOR_A_BEGINNING), *heading(section.heading)]
+    start = [CondPageBreak(_ROOM_FOR_A_BEGINNING), Bookmark(section.heading)]
+    flowables: list[Flowable] = [*start, *heading(section.heading)]
     for block in section.blocks:
         flowables += _block_flowables(block)
     return [*flowables, Spacer(1, 12)]
