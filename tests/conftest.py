@@ -8,9 +8,13 @@ from collections.abc import Generator, Iterator
 from typing import Any
 
 import pytest
+from hypothesis import settings
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")  # a test that needs a real display starts its own process
 os.environ.setdefault("TZ", "UTC")  # a bare machine names no time zone, and pyHanko's plain writer warns of that
+
+settings.register_profile("calm", deadline=None)  # a busy machine is no fault of the example
+settings.load_profile("calm")
 
 LONG = "--long"
 WINDOW_TOOLS = ("Xvfb", "xdotool")

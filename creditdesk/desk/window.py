@@ -5,7 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QByteArray, QSettings, QTimer, Signal
-from PySide6.QtGui import QCloseEvent, QGuiApplication, QKeySequence, QShowEvent
+from PySide6.QtGui import QCloseEvent, QGuiApplication, QKeySequence, QPaintEvent
 from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QSplitter, QStackedWidget, QVBoxLayout, QWidget
 
 from creditdesk.base.palette import Palette
@@ -78,9 +78,9 @@ class Window(QMainWindow):
         """Say in the status line what was wrong with an entry."""
         self.statusBar().showMessage(f"▲ {text}", _FAULT_MILLISECONDS)
 
-    def showEvent(self, event: QShowEvent) -> None:
+    def paintEvent(self, event: QPaintEvent) -> None:
         """Fetch the chart library once the first paint is done."""
-        super().showEvent(event)
+        super().paintEvent(event)
         if not self._warmed:
             self._warmed = True
             QTimer.singleShot(0, self._warm)

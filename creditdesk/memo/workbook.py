@@ -72,6 +72,8 @@ def _standing(sheet: Worksheet, standing: Standing) -> None:
     rows += [("Caution", caution) for caution in standing.cautions]
     for label, value in rows:
         sheet.append([label, value])
+        if isinstance(value, str):
+            sheet.cell(sheet.max_row, 2).data_type = "s"  # a text that begins with = is a text, not a formula
 
 
 def _number(value: float) -> float | None:

@@ -54,9 +54,6 @@ def test_a_workbook_opens_elsewhere_and_holds_the_figures(command: Command, tmp_
     assert len(book.sheetnames) > 1
 
 
-@pytest.mark.xfail(
-    strict=True, reason="texts of the case go into the workbook as they are, also where they begin with ="
-)
 def test_a_workbook_runs_no_formula_of_the_case(command: Command, tmp_path: Path) -> None:
     """A name that looks like a formula is text in the workbook."""
     name = ('name = "Brackwater Millworks Ltd"', "name = '=HYPERLINK(\"http://x\")'")

@@ -98,7 +98,6 @@ def modules_of_a_window(drafts: Path, **env: str) -> tuple[bool, set[str], set[s
     return bool(busy), set(first), set(last)
 
 
-@pytest.mark.xfail(strict=True, reason="the chart library is fetched from the show event, which comes before the paint")
 def test_nothing_heavy_is_imported_before_the_first_paint(tmp_path: Path) -> None:
     busy, first, last = modules_of_a_window(tmp_path, QT_QPA_PLATFORM="offscreen")
     assert {"PySide6", "numpy", "creditdesk"} <= first
