@@ -83,8 +83,9 @@ def _draw_curve(board: Board, layer: str, frame: Frame, curve: Curve, palette: P
         shade = 0.30 if palette.name == DARK.name else 0.16
         board.area(layer, np.vstack([low, high[::-1]]), Pen(palette.accent, alpha=shade), z=1)
     line = frame.points(curve.scores, curve.pd)
-    if len(line) > 1:
-        board.line(layer, line, Pen(palette.accent, 1.4), z=2)
+    deep = int((line[:, 1] <= frame.plot.bottom + 1e-6).sum())  # below the frame it would run along the axis
+    if len(line) - deep > 1:
+        board.line(layer, line[max(deep - 1, 0) :], Pen(palette.accent, 1.4), z=2)
 
 
 def _draw_bin(board: Board, layer: str, frame: Frame, bin_: SampleBin, palette: Palette) -> None:

@@ -3,6 +3,7 @@
 from matplotlib.backend_bases import Event
 from matplotlib.figure import Figure
 
+from creditdesk.base.display import format_number
 from creditdesk.base.palette import Palette
 from creditdesk.case.standing import Curve, Standing
 from creditdesk.charts.backdrop import draw_backdrop
@@ -62,7 +63,7 @@ class CurveChart:
         self._drawn, self.frame = (), None
         width, height = self.board.size
         size = type_size(self._palette) * 1.1
-        lines = wrap(_no_curve(standing), width * 0.8, size)
+        lines = wrap(no_curve_words(standing), width * 0.8, size)
         style = Type(self._palette.second_ink, size, align="center")
         self.board.lines(BORROWER, (width / 2, height / 2 + len(lines) * size * 0.7), lines, style, size * 1.4)
 
@@ -78,6 +79,9 @@ def curve_figure(standing: Standing, palette: Palette, size: Size) -> Figure:
     return figure
 
 
-def _no_curve(standing: Standing) -> str:
-    model = standing.model
-    return f"{model.label} gives a score and no probability of default, so there is no curve. {model.reading}"
+def no_curve_words(standing: Standing) -> str:
+    """Say that the model has no curve, and how its score reads."""
+    words = f"{standing.model.label} gives a score and no probability of default, so there is no curve."
+    if standing.score is None:
+        return words
+    return f"{words} Its score of {format_number(standing.score, 2)} reads: {standing.model.reading.rstrip('.')}."

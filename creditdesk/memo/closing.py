@@ -84,7 +84,7 @@ def opinions_section(standing: Standing) -> Section | None:
         name="Second opinions",
         heads=("Model", "Score", "PD", "Reading", "Scope"),
         rows=tuple(_opinion_row(opinion) for opinion in standing.second_opinions),
-        shares=(2.4, 0.8, 0.8, 1.8, 2.4),
+        shares=(2.0, 0.6, 0.6, 2.6, 2.2),
         words=(0, 3, 4),
         note="Shown beside the lead model, never averaged into it.",
     )
@@ -138,7 +138,11 @@ def verify_section(standing: Standing, attachments: Sequence[Attachment]) -> Sec
             f"House book: {house.label} {house.version} of {house.lender}, {house.digest}."
         ),
         Grid(
-            "Attachments", ("Attachment", "What it is", "Bytes", "SHA-256"), rows, (1.2, 2.0, 0.8, 4.4), words=(0, 1, 3)
+            "Attachments",
+            ("Attachment", "What it is", "Bytes", "SHA-256"),
+            rows,
+            (1.05, 1.75, 0.6, 4.7),
+            words=(0, 1, 3),
         ),
         Subheading("What a signature proves"),
         Listing(SIGNATURE_PROVES),

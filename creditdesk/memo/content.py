@@ -59,6 +59,7 @@ def officer_section(case: Case, keys: Sequence[str]) -> Section | None:
 
 def _sections(case: Case, standing: Standing, house: HouseBook, attachments: Sequence[Attachment]) -> Iterator[Section]:
     """Yield the sections in the order of the memo."""
+    yield from _unprintable(case)
     texts = officer_section(case, [key for key in case.texts if key not in OFFICER_TEXTS])
     if texts is not None:
         yield texts
@@ -74,7 +75,6 @@ def _sections(case: Case, standing: Standing, house: HouseBook, attachments: Seq
     yield scale_section(house.scale, standing)
     yield cautions_section(standing, house)
     yield verify_section(standing, attachments)
-    yield from _unprintable(case)
 
 
 def _spec(standing: Standing, house: HouseBook) -> ModelSpec:

@@ -4,6 +4,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Severity
 from creditdesk.case.document import Case
 from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.charts.curve import no_curve_words
 from creditdesk.charts.words import contribution_scale, factor_value, ratio_text, signed, what_it_moves
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import FirstPage
@@ -60,7 +61,7 @@ def weak_spots(standing: Standing, house: HouseBook) -> tuple[str, ...]:
 def curve_words(standing: Standing) -> str:
     """Say in words what the curve shows, for readers that hear it."""
     if standing.curve is None:
-        return f"{standing.model.label} gives a score and no probability of default, so there is no curve."
+        return no_curve_words(standing)
     if standing.score is None or standing.pd_calibrated is None:
         return "The fitted curve of the model. The borrower has no place on it: " + " ".join(standing.reasons)
     words = f"The borrower stands on the fitted curve at score {format_number(standing.score, 2)}"

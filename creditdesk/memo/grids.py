@@ -7,7 +7,7 @@ from reportlab.lib.colors import Color
 from reportlab.lib.enums import TA_LEFT, TA_RIGHT
 from reportlab.lib.styles import ParagraphStyle
 from reportlab.pdfbase.pdfmetrics import stringWidth
-from reportlab.platypus import Flowable, KeepTogether, Table
+from reportlab.platypus import Flowable, Table
 
 from creditdesk.memo.blocks import Cell, Grid, Pairs, Row, RowKind, Tone
 from creditdesk.memo.structure import Element
@@ -19,7 +19,6 @@ from creditdesk.memo.text import printable
 _PADDING = 3.0
 _AFTER_NUMBERS = 14.0
 _WIDEST_WORDS = 330.0
-_ROWS_KEPT_TOGETHER = 16
 _SIZE = 7.8
 _SMALLEST = 5.4
 _TONES = {
@@ -58,10 +57,7 @@ def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
         repeated_rows=1,
         space=(2, 4),
     )
-    if not grid.note:
-        return [table]
-    both = [table, TaggedParagraph(marked_up(grid.note), NOTE)]
-    return [KeepTogether(both)] if len(grid.rows) <= _ROWS_KEPT_TOGETHER else both
+    return [table, *([TaggedParagraph(marked_up(grid.note), NOTE)] if grid.note else [])]
 
 
 def pairs_flowables(pairs: Pairs, width: float) -> list[Flowable]:

@@ -2,14 +2,15 @@
 
 from collections.abc import Sequence
 
-from reportlab.platypus import CondPageBreak, Flowable, HRFlowable, Spacer
+from reportlab.platypus import CondPageBreak, Flowable, HRFlowable, KeepTogether, Spacer
 
-from creditdesk.memo.blocks import Block, Grid, Listing, Pairs, Prose, Section, Subheading
+from creditdesk.memo.blocks import Grid, Listing, Pairs, Prose, Section, Subheading
 from creditdesk.memo.grids import grid_flowables, pairs_flowables
 from creditdesk.memo.styles import BY_TONE, HEADING, INKS, ITEM, SUBHEADING, TEXT_WIDTH, marked_up
 from creditdesk.memo.tagging import Decoration, TaggedParagraph, tagged_list
 
 _ROOM_FOR_A_BEGINNING = 96.0
+_ROWS_KEPT_TOGETHER = 16
 
 
 class Bookmark(Flowable):
@@ -27,12 +28,21 @@ class Bookmark(Flowable):
 
 
 def section_flowables(section: Section) -> list[Flowable]:
-    """Return heading and blocks of a section; a heading never stands alone at a page's end."""
-    start = [CondPageBreak(_ROOM_FOR_A_BEGINNING), Bookmark(section.heading)]
-    flowables: list[Flowable] = [*start, *heading(section.heading)]
+    """Return heading and blocks of a section; no heading stands alone at a page's end, no short table is broken."""
+    flowables: list[Flowable] = []
+    heads: list[Flowable] = [Bookmark(section.heading), *heading(section.heading)]
     for block in section.blocks:
-        flowables += _block_flowables(block)
-    return [*flowables, Spacer(1, 12)]
+        if isinstance(block, Subheading):
+            heads.append(TaggedParagraph(marked_up(block.text), SUBHEADING, "H3"))
+            continue
+        body = _block_flowables(block)
+        short = isinstance(block, Grid) and len(block.rows) <= _ROWS_KEPT_TOGETHER
+        if short:
+            flowables.append(KeepTogether([*heads, *body]))
+        else:
+            flowables += [*([CondPageBreak(_ROOM_FOR_A_BEGINNING)] if heads else []), *heads, *body]
+        heads = []
+    return [*flowables, *heads, Spacer(1, 12)]
 
 
 def heading(text: str, level: str = "H2", width: float | str = "100%") -> list[Flowable]:
@@ -41,15 +51,13 @@ def heading(text: str, level: str = "H2", width: float | str = "100%") -> list[F
     return [TaggedParagraph(marked_up(text), HEADING, level), Decoration(rule)]
 
 
-def _block_flowables(block: Block) -> Sequence[Flowable]:
+def _block_flowables(block: Grid | Listing | Pairs | Prose) -> Sequence[Flowable]:
     if isinstance(block, Grid):
         return grid_flowables(block, TEXT_WIDTH)
     if isinstance(block, Pairs):
         return pairs_flowables(block, TEXT_WIDTH)
     if isinstance(block, Listing):
         return tagged_list([marked_up(item) for item in block.items], ITEM)
-    if isinstance(block, Subheading):
-        return [CondPageBreak(_ROOM_FOR_A_BEGINNING * 0.7), TaggedParagraph(marked_up(block.text), SUBHEADING, "H3")]
     return _prose_flowables(block)
 
 

@@ -123,7 +123,17 @@ def test_without_a_pd_the_curve_stands_with_the_reason() -> None:
 
 def test_a_model_without_a_link_has_words_instead_of_a_curve() -> None:
     figure = curve_figure(standing(curve=None), LIGHT, SIZE)
-    assert "no probability of default" in " ".join(words(figure))
+    said = " ".join(words(figure))
+    assert "no probability of default" in said
+    assert "Its score of −4.05 reads: Log-odds of default within twelve months." in said
+
+
+def test_below_the_frame_the_curve_does_not_run_along_the_axis() -> None:
+    chart, frame = _chart(_at(-4.05, curve=curve(low=-30.0), past=(year(date(2024, 12, 31), -25.0),)))
+    lines = [mark for mark in chart.board.marks(BACKDROP) if hasattr(mark, "get_path") and not mark.get_fill()]
+    line = max(lines, key=lambda mark: len(mark.get_path().vertices))
+    at_bottom = line.get_path().vertices[:, 1] <= frame.plot.bottom + 1e-6
+    assert at_bottom.sum() == 1
 
 
 def test_a_bin_without_defaults_is_shown_by_its_upper_bound() -> None:
