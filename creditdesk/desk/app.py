@@ -12,7 +12,7 @@ from PySide6.QtWidgets import QApplication, QMessageBox
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
-from creditdesk.case.convert import load_any
+from creditdesk.case.convert import check_case, load_any
 from creditdesk.case.document import Case
 from creditdesk.case.lead import with_lead_model
 from creditdesk.case.store import CaseFile
@@ -116,11 +116,21 @@ def open_session(path: Path, house: HouseBook) -> Session:
         case = load_any(path, house.chart)
         return _recorded_session(_draft_path(path), case, with_lead_model(house, case, path.parent))
     file = CaseFile.open(path, actor=getpass.getuser())
-    return Session(with_lead_model(house, file.case, path.parent), file.case, path, file)
+    return _session(file, house, path)
 
 
 def _recorded_session(path: Path, case: Case, house: HouseBook) -> Session:
-    return Session(house, case, path, CaseFile.create(path, case, actor=getpass.getuser(), clock=utc_now))
+    return _session(CaseFile.create(path, case, actor=getpass.getuser(), clock=utc_now), house, path)
+
+
+def _session(file: CaseFile, house: HouseBook, path: Path) -> Session:
+    """Return a session on an open case file; where there can be none, the file is let go again."""
+    try:
+        check_case(file.case, house.chart, file=str(path))
+        return Session(with_lead_model(house, file.case, path.parent), file.case, path, file)
+    except BaseException:
+        file.close()
+        raise
 
 
 def _draft_path(source: Path) -> Path:

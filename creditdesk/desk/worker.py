@@ -64,6 +64,8 @@ class Jobs(QObject):
 
         def finish(then: Callable[[Any], None]) -> Callable[[Any], None]:
             def report(result: Any) -> None:  # noqa: ANN401  whatever the work returns
+                if job not in self._running:  # stopped meanwhile: nobody waits for it any more
+                    return
                 self._running.remove(job)
                 then(result)
                 if not self._running:
