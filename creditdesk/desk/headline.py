@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from creditdesk.base.findings import Severity
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
-from creditdesk.desk.tables.figures import unit_words
+from creditdesk.case.words import basis_words, sector_words, unit_words
 from creditdesk.house.book import HouseBook
 
 
@@ -21,14 +21,7 @@ class Headline:
 def describe(case: Case, standing: Standing, *, read_only: str) -> Headline:
     """Word the header; ``read_only`` says why the case cannot be edited, empty where it can."""
     obligor, period = case.obligor, standing.statements.periods[standing.period_index]
-    description = " · ".join(
-        (
-            f"Section {obligor.sector} of {obligor.sector_scheme.value}",
-            obligor.country,
-            unit_words(case),
-            f"{period.basis.value} figures to {period.ends.day} {period.ends:%B %Y}",
-        )
-    )
+    description = " · ".join((sector_words(case), obligor.country, unit_words(case), basis_words(period)))
     state = f"{read_only or 'Draft'} · lead model {standing.model.name} {standing.model.version}"
     invented = standing.model.invented or standing.house.invented
     warning = "▲ demonstration: model and house book are invented, not for lending" if invented else ""

@@ -5,13 +5,14 @@ from collections.abc import Iterator, Sequence
 from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import SecondOpinion, Standing
+from creditdesk.case.words import long_date
 from creditdesk.grading.scale import MasterScale
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
 from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Prose, Row, Section, Subheading, Tone, text_row
 from creditdesk.memo.blocks import without_empty as _without_empty
 from creditdesk.memo.figurepages import place_words
-from creditdesk.memo.text import NIL, long_date, pd_text
+from creditdesk.memo.text import NIL, pd_text
 
 MARKS = {Severity.STOP: "■ stop", Severity.QUERY: "▲ query", Severity.NOTE: "note"}
 _TONES = {Severity.STOP: Tone.BREACH, Severity.QUERY: Tone.CAUTION, Severity.NOTE: Tone.SECOND}

@@ -6,6 +6,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.errors import BugError
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.words import long_date
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
 from creditdesk.memo.blocks import Block, Listing, MemoContent, Pairs, Prose, Section, Subheading, Tone, without_empty
@@ -22,7 +23,7 @@ from creditdesk.memo.fonts import missing_glyphs
 from creditdesk.memo.modelcard import contributions_section, model_section
 from creditdesk.memo.parts import CASE
 from creditdesk.memo.ratiopages import ratios_section
-from creditdesk.memo.text import NIL, REPLACEMENT, long_date, pd_text, short_digest
+from creditdesk.memo.text import NIL, REPLACEMENT, pd_text, short_digest
 from creditdesk.model.spec import ModelSpec
 
 OFFICER_TEXTS = ("request", "recommendation", "conditions")

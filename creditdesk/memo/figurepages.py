@@ -9,9 +9,10 @@ from numpy.typing import NDArray
 
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.words import basis_words, long_date, period_heads, unit_words
 from creditdesk.memo.blocks import Block, Cell, Grid, Prose, Row, RowKind, Section, Subheading, Tone, group_row
 from creditdesk.memo.blocks import without_empty as _without_empty
-from creditdesk.memo.text import NOT_DISCLOSED, amount_text, basis_words, long_date, period_heads, unit_words
+from creditdesk.memo.text import NOT_DISCLOSED, amount_text
 from creditdesk.statements.chart import Group
 from creditdesk.statements.statement import Disclosure, StatementSet
 

@@ -4,13 +4,13 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Severity
 from creditdesk.case.document import Case
 from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.case.words import basis_words, long_date, sector_words, unit_words
 from creditdesk.charts.curve import no_curve_words
 from creditdesk.charts.words import contribution_scale, factor_value, ratio_text, signed, what_it_moves
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import FirstPage
 from creditdesk.memo.closing import MARKS
 from creditdesk.memo.ratiopages import key_ratios
-from creditdesk.memo.text import basis_words, long_date, sector_words, unit_words
 
 NOT_WRITTEN = "not yet written by the officer"
 DRAFT = "DRAFT — not usable until resolved"

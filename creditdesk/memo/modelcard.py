@@ -5,11 +5,12 @@ from math import sqrt
 
 from creditdesk.base.display import format_number, format_pd, format_percent
 from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.case.words import long_date
 from creditdesk.charts.words import contribution_scale, factor_value, ratio_text, signed
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Pairs, Row, RowKind, Section, Subheading, Tone, text_row
 from creditdesk.memo.blocks import without_empty as _without_empty
-from creditdesk.memo.text import NIL, long_date, pd_text
+from creditdesk.memo.text import NIL, pd_text
 from creditdesk.model.spec import INTERCEPT, Calibration, Factor, Link, ModelSpec, Rule, terms_of
 
 _LINKS = {

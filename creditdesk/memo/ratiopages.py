@@ -5,10 +5,10 @@ from collections.abc import Iterator
 import numpy as np
 
 from creditdesk.case.standing import Standing
+from creditdesk.case.words import period_heads
 from creditdesk.charts.words import REASON_WORDS, ratio_text
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import Cell, Grid, KeyRatio, Prose, Row, RowKind, Section, Tone, group_row, note_row
-from creditdesk.memo.text import period_heads
 from creditdesk.ratios.compute import Reason
 from creditdesk.ratios.spec import RatioSpec
 from creditdesk.ratios.trace import trace_ratio

@@ -12,8 +12,8 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.words import basis_words, period_heads, unit_words
 from creditdesk.desk.tables.rows import Row, RowKind, figure_rows
-from creditdesk.statements.period import period_label
 from creditdesk.statements.statement import Disclosure, StatementSet
 
 Index = QModelIndex | QPersistentModelIndex
@@ -24,9 +24,13 @@ _STATE_WORDS = {
     Disclosure.NOT_DISCLOSED: "not disclosed",
     Disclosure.DISCLOSED: "",
     Disclosure.PROVEN_NIL: "blank, and proven nil because the total ties without it",
-    Disclosure.ASSUMED_NIL: "blank lines below were taken as nil: no printed total says otherwise",
+    Disclosure.ASSUMED_NIL: "taken as nil where blank: no printed total says otherwise",
     Disclosure.NOT_DIVIDED: "the total as printed: its disclosed parts do not reach it",
 }
+
+
+_BLANK_BUT_TAKEN_AS_NIL = {Disclosure.PROVEN_NIL: "–", Disclosure.ASSUMED_NIL: ""}
+"""What the cell of a blank line shows: a dash where a total proves it nil, nothing where that is only assumed."""
 
 
 class FigureRole(IntEnum):
@@ -134,13 +138,13 @@ class FiguresModel(QAbstractTableModel):
             return _LEFT if section in (0, self.periods + 2) else _RIGHT
         if role == Qt.ItemDataRole.ToolTipRole and 0 < section <= self.periods:
             period = self._statements.periods[section - 1]
-            return f"{period.months} months to {period.ends:%d %B %Y}, {period.basis}"
+            return f"{period.months} months, {basis_words(period)}"
         if role != Qt.ItemDataRole.DisplayRole:
             return None
         if section == 0:
             return unit_words(self._case)
         if section <= self.periods:
-            return period_label(self._statements.periods[section - 1])
+            return period_heads(self._statements.periods)[section - 1]
         return ("change", "trend", "")[section - self.periods - 1]
 
     def flags(self, index: Index) -> Qt.ItemFlag:
@@ -198,8 +202,8 @@ class FiguresModel(QAbstractTableModel):
         amount = float(self._amounts(row)[column - 1])
         if np.isnan(amount):
             return "n.d." if row.kind is RowKind.SUBTOTAL else ""
-        if amount == 0 and row.kind is RowKind.LINE and self._state(row, column - 1) is Disclosure.PROVEN_NIL:
-            return "–"
+        if row.kind is RowKind.LINE and self._state(row, column - 1) in _BLANK_BUT_TAKEN_AS_NIL:
+            return _BLANK_BUT_TAKEN_AS_NIL[self._state(row, column - 1)]
         return format_amount(amount, style=self._style)
 
     def _change(self, row: Row) -> str:
@@ -282,11 +286,6 @@ class FiguresModel(QAbstractTableModel):
 
 _LEFT = Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter
 _RIGHT = Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter
-
-
-def unit_words(case: Case) -> str:
-    """Return currency and unit in words: GBP thousands."""
-    return f"{case.obligor.currency} {({1: '', 1000: 'thousands', 1000000: 'millions'})[case.obligor.unit]}".strip()
 
 
 def _by_place(findings: Sequence[Finding]) -> dict[str, list[Finding]]:
