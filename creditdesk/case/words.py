@@ -37,7 +37,7 @@ _MONTHS = (
     "December",
 )  # fmt: skip
 _OPINIONS = {
-    Opinion.UNQUALIFIED: "unqualified",
+    Opinion.UNQUALIFIED: "unqualified opinion",
     Opinion.QUALIFIED: "qualified opinion",
     Opinion.ADVERSE: "adverse opinion",
     Opinion.DISCLAIMER: "disclaimer of opinion",

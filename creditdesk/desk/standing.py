@@ -4,6 +4,7 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QSize, Qt
+from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QFrame, QGridLayout, QHBoxLayout, QLabel, QScrollArea, QSizePolicy, QVBoxLayout, QWidget
 
 from creditdesk.base.display import format_pd
@@ -15,6 +16,10 @@ from creditdesk.desk.tables.figures import MARKS
 
 if TYPE_CHECKING:
     from creditdesk.desk.canvases import ChartCanvases
+
+_CURVE_HEIGHTS = (200, 330)
+_HEADINGS = 120
+"""Height of the two headings above the charts with the margins around them."""
 
 
 class GradePlate(QFrame):
@@ -147,6 +152,11 @@ class StandingColumn(QWidget):
         self.cautions.setText("\n".join(f"▲ {caution}" for caution in standing.cautions))
         self._show_charts()
 
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Share the new height."""
+        super().resizeEvent(event)
+        self._fit_curve()
+
     def put_charts(self, canvases: "ChartCanvases", palette: Palette) -> None:
         """Put the chart canvases in their places; they follow every standing from now on."""
         self._take_charts_out()
@@ -167,6 +177,13 @@ class StandingColumn(QWidget):
         if self._canvases is not None and self._standing is not None:
             self._canvases.show_standing(self._standing)
             self.contributions_place.setFixedHeight(self._canvases.contributions_height(self._standing))
+            self._fit_curve()
+
+    def _fit_curve(self) -> None:
+        """Give the curve what the column has left beside verdict and contributions, within what it reads well at."""
+        taken = self.verdict.sizeHint().height() + self.contributions_place.height() + _HEADINGS
+        lowest, highest = _CURVE_HEIGHTS
+        self.curve_place.setFixedHeight(min(max(self.height() - taken, lowest), highest))
 
     def _lay_out(self) -> None:
         inside = QWidget()

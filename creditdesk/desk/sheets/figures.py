@@ -4,7 +4,15 @@ from collections.abc import Callable
 
 from PySide6.QtCore import QLocale, QModelIndex, Qt, Signal
 from PySide6.QtGui import QKeyEvent, QKeySequence
-from PySide6.QtWidgets import QAbstractItemView, QApplication, QCheckBox, QHBoxLayout, QTableView, QVBoxLayout, QWidget
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QApplication,
+    QHBoxLayout,
+    QPushButton,
+    QTableView,
+    QVBoxLayout,
+    QWidget,
+)
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
@@ -77,8 +85,11 @@ class FiguresSheet(QWidget):
         self.table.pasted.connect(self._on_pasted)
         self.table.cleared.connect(self._on_cleared)
         self.table.selectionModel().currentChanged.connect(self._on_current)
-        self.only_figures = QCheckBox("Only lines with figures")
+        self.only_figures = QPushButton("Only lines with figures")
+        self.only_figures.setCheckable(True)
         self.only_figures.setChecked(True)
+        self.only_figures.setToolTip("Hide the lines that have no figure in any period (Ctrl+L)")
+        self.only_figures.setShortcut("Ctrl+L")
         self.only_figures.toggled.connect(self._on_filter)
         self.about = label("second", wrap=True)
         self.setFocusProxy(self.table)

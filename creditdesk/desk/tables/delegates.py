@@ -47,7 +47,7 @@ class FiguresDelegate(QStyledItemDelegate):
             self._paint_trend(painter, rect, np.asarray(trend, dtype=float))
         severity = index.data(FigureRole.MARK)
         if severity is not None:
-            self._paint_mark(painter, rect, severity)
+            self._paint_mark(painter, rect, Severity(severity))  # Qt hands an enumeration's text through
         painter.restore()
 
     def _paint_trend(self, painter: QPainter, rect: QRectF, amounts: np.ndarray) -> None:
