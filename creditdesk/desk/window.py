@@ -23,7 +23,9 @@ from creditdesk.desk.worker import Jobs
 if TYPE_CHECKING:
     from types import ModuleType
 
-SHEETS = ("Figures", "Memo")
+    from creditdesk.desk.sheets.base import Sheet
+
+SHEETS = (FiguresSheet.title, MemoSheet.title)
 _FAULT_MILLISECONDS = 12_000
 
 
@@ -43,13 +45,14 @@ class Window(QMainWindow):
         self._warmed = False
         self._canvas_module: ModuleType | None = None
         self.header, self.bar = Header(), SheetBar(SHEETS)
+        self.issuer = Issuer(self, session, self.jobs)
         self.figures = FiguresSheet(session.do)
-        self.memo = MemoSheet(session.house, session.do)
+        self.memo = MemoSheet(session.house, session.do, self.issuer)
+        self.sheets: tuple[Sheet, ...] = (self.figures, self.memo)
         self.standing = StandingColumn(len(session.house.scale.grades))
         self.stack, self.split = QStackedWidget(), QSplitter()
         self.recorded, self.counts = QLabel(), QLabel()
         self._lay_out()
-        self.issuer = Issuer(self, session, self.jobs)
         self._add_menus()
         self._connect()
         self._recolour()
@@ -64,15 +67,22 @@ class Window(QMainWindow):
     @property
     def settled(self) -> bool:
         """Say whether everything that follows from the case is on screen."""
-        memo = self.stack.currentWidget() is not self.memo or self.memo.settled
-        return self._canvas_module is not None and not self.jobs.busy and memo
+        sheet = self.sheets[self.stack.currentIndex()]
+        return self._canvas_module is not None and not self.jobs.busy and sheet.settled
 
     def show_sheet(self, number: int) -> None:
         """Bring a sheet to the front."""
         self.stack.setCurrentIndex(number)
         self.bar.mark(number)
-        if sheet := self.stack.currentWidget():
-            sheet.setFocus()
+        self.sheets[number].setFocus()
+
+    def go_to(self, place: str) -> None:
+        """Show a place, as findings name it, on the sheet it belongs to."""
+        for number, sheet in enumerate(self.sheets):
+            if place.startswith(sheet.places):
+                self.show_sheet(number)
+                sheet.go_to(place)
+                return
 
     def show_fault(self, text: str) -> None:
         """Say in the status line what was wrong with an entry."""
@@ -87,8 +97,9 @@ class Window(QMainWindow):
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Let running work end, remember the window's shape, close the case."""
-        for jobs in (self.jobs, self.memo.jobs):
-            jobs.stop()
+        self.jobs.stop()
+        for sheet in self.sheets:
+            sheet.stop()
         settings = QSettings()
         settings.setValue("window/geometry", self.saveGeometry())
         settings.setValue("window/split", self.split.saveState())
@@ -107,7 +118,7 @@ class Window(QMainWindow):
     def _lay_out(self) -> None:
         self.setMinimumSize(900, 600)
         self.resize(1440, 900)
-        for sheet in (self.figures, self.memo):
+        for sheet in self.sheets:
             self.stack.addWidget(sheet)
         self.split.addWidget(self.stack)
         self.split.addWidget(self.standing)
@@ -155,25 +166,17 @@ class Window(QMainWindow):
         ):
             action.setShortcut(QKeySequence(key))
             edit.addAction(action)
-        add_menu(
-            bar,
-            "&Memo",
-            (
-                ("&Sign and save…", "Ctrl+G", self.issuer.sign),
-                ("Save &unsigned…", None, self.issuer.save_unsigned),
-                ("&Verify a memo…", "Ctrl+Shift+V", self.issuer.verify),
-            ),
-        )
+        for sheet in self.sheets:
+            if entries := sheet.entries():
+                add_menu(bar, f"&{sheet.title}", entries)
 
     def _connect(self) -> None:
-        self.memo.sign_asked.connect(self.issuer.sign)
-        self.memo.save_asked.connect(self.issuer.save_unsigned)
-        self.memo.verify_asked.connect(self.issuer.verify)
         self.bar.chosen.connect(self.show_sheet)
         self.session.changed.connect(self._on_changed)
         self.session.recorded.connect(self._on_recorded)
-        self.figures.fault.connect(self.show_fault)
-        self.memo.fault.connect(self.show_fault)
+        for sheet in self.sheets:
+            sheet.fault.connect(self.show_fault)
+            sheet.jump_asked.connect(self.go_to)
         QGuiApplication.styleHints().colorSchemeChanged.connect(self._on_scheme)
 
     def _on_changed(self) -> None:
@@ -185,8 +188,8 @@ class Window(QMainWindow):
         self.header.state.setText(headline.state)
         self.header.warning.setText(headline.warning)
         self.counts.setText(status_words(standing, self.session.house))
-        self.figures.show_standing(case, standing)
-        self.memo.show_standing(case, standing)
+        for sheet in self.sheets:
+            sheet.show_standing(case, standing)
         self.standing.show_standing(standing)
 
     def _on_recorded(self, when: datetime) -> None:
@@ -200,7 +203,8 @@ class Window(QMainWindow):
         application = QApplication.instance()
         assert isinstance(application, QApplication)
         theme.apply(application, self.theme)
-        self.figures.recolour(self.theme)
+        for sheet in self.sheets:
+            sheet.recolour(self.theme)
         self._put_charts()
 
     def _warm(self) -> None:

@@ -1,5 +1,6 @@
 """The sheet Figures: the statements as received, typed into and recomputed with each entry."""
 
+import re
 from collections.abc import Callable
 
 from PySide6.QtCore import QLocale, QModelIndex, Qt, Signal
@@ -11,7 +12,6 @@ from PySide6.QtWidgets import (
     QPushButton,
     QTableView,
     QVBoxLayout,
-    QWidget,
 )
 
 from creditdesk.base.errors import UserError
@@ -20,6 +20,7 @@ from creditdesk.case.commands import Command, Figure, SetFigures, SetPrinted
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.desk.frame import label
+from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.rows import Row, RowKind
@@ -28,6 +29,7 @@ from creditdesk.intake.block import read_block
 from creditdesk.intake.numerals import DecimalMark
 
 Do = Callable[[Command], None]
+_CELL = re.compile(r"figures\.(?P<line>\w+)\[(?P<end>[\d-]+)\]")
 
 
 class FiguresTable(QTableView):
@@ -69,10 +71,11 @@ class FiguresTable(QTableView):
         return "\n".join(lines)
 
 
-class FiguresSheet(QWidget):
+class FiguresSheet(Sheet):
     """Show and edit the statements; every edit is a command handed to ``do``, every fault goes to ``fault``."""
 
-    fault = Signal(str)
+    title = "Figures"
+    places = ("figures.", "periods[")
 
     def __init__(self, do: Do) -> None:
         super().__init__()
@@ -112,8 +115,14 @@ class FiguresSheet(QWidget):
         self.delegate.palette = palette
         self.model.recolour(palette)
 
-    def go_to(self, line: str, period: int) -> None:
-        """Move to the cell of a line and period, showing all lines if it is hidden."""
+    def go_to(self, place: str) -> None:
+        """Move to the cell ``figures.<line>[<period end>]``, showing all lines if it is hidden."""
+        found = _CELL.fullmatch(place)
+        ends = [period.ends.isoformat() for period in self._case.periods] if self._case is not None else []
+        if found is not None and found["end"] in ends:
+            self._go_to_cell(found["line"], ends.index(found["end"]))
+
+    def _go_to_cell(self, line: str, period: int) -> None:
         index = self.model.place(line, period)
         if not index.isValid():
             self.only_figures.setChecked(False)

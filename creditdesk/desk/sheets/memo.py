@@ -1,6 +1,6 @@
 """The sheet Memo: the officer's texts, the real pages, signing and verifying."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 
 from PySide6.QtCore import QTimer, Signal
 from PySide6.QtGui import QFocusEvent, QHideEvent, QShowEvent
@@ -9,8 +9,11 @@ from PySide6.QtWidgets import QHBoxLayout, QPlainTextEdit, QPushButton, QSplitte
 from creditdesk.case.commands import Command, SetText
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.desk.actions import Entry
 from creditdesk.desk.frame import label
 from creditdesk.desk.preview import Preview
+from creditdesk.desk.sheets.base import Sheet
+from creditdesk.desk.signing import Issuer
 from creditdesk.desk.worker import Jobs
 from creditdesk.house.book import HouseBook
 
@@ -40,17 +43,15 @@ class TextBlock(QPlainTextEdit):
         self.left.emit(self.toPlainText())
 
 
-class MemoSheet(QWidget):
+class MemoSheet(Sheet):
     """Write the texts, see the pages, ask to sign or verify."""
 
-    sign_asked = Signal()
-    save_asked = Signal()
-    verify_asked = Signal()
-    fault = Signal(str)
+    title = "Memo"
+    places = ("texts.",)
 
-    def __init__(self, house: HouseBook, do: Callable[[Command], None]) -> None:
+    def __init__(self, house: HouseBook, do: Callable[[Command], None], issuer: Issuer) -> None:
         super().__init__()
-        self._house, self._do = house, do
+        self._house, self._do, self._issuer = house, do, issuer
         self._case: Case | None = None
         self._drawn_for: tuple[Case, int] | None = None
         self.jobs = Jobs(self)
@@ -90,6 +91,18 @@ class MemoSheet(QWidget):
         """Say whether the pages shown are those of the present case."""
         return not self._pause.isActive() and not self.jobs.busy and self._drawn_for is not None
 
+    def entries(self) -> Sequence[Entry | None]:
+        """Return signing, saving and verifying."""
+        return (
+            ("&Sign and save…", "Ctrl+G", self._issuer.sign),
+            ("Save &unsigned…", None, self._issuer.save_unsigned),
+            ("&Verify a memo…", "Ctrl+Shift+V", self._issuer.verify),
+        )
+
+    def stop(self) -> None:
+        """Let the page that is being drawn end."""
+        self.jobs.stop()
+
     def refresh(self) -> None:
         """Draw the memo of the present case in the background."""
         case, house, width = self._case, self._house, self.preview.page_width()
@@ -121,14 +134,14 @@ class MemoSheet(QWidget):
 
     def _lay_out(self) -> None:
         buttons = QHBoxLayout()
-        for title, signal, tip in (
-            ("Sign and save…", self.sign_asked, "Write the memo and sign it as preparer (Ctrl+G)"),
-            ("Save unsigned…", self.save_asked, "Write the memo without a signature"),
-            ("Verify a memo…", self.verify_asked, "Check signatures, attachments and re-run of a memo"),
+        for title, do, tip in (
+            ("Sign and save…", self._issuer.sign, "Write the memo and sign it as preparer (Ctrl+G)"),
+            ("Save unsigned…", self._issuer.save_unsigned, "Write the memo without a signature"),
+            ("Verify a memo…", self._issuer.verify, "Check signatures, attachments and re-run of a memo"),
         ):
             button = QPushButton(title)
             button.setToolTip(tip)
-            button.clicked.connect(signal)
+            button.clicked.connect(lambda _=False, do=do: do())
             buttons.addWidget(button)
         buttons.addStretch(1)
         texts = QWidget()
