@@ -74,9 +74,7 @@ def _refuse_without_display() -> None:
     """Say that there is no display before Qt finds out: it ends the process, and blames a library that is there."""
     chosen = any(os.environ.get(name) for name in ("DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM"))
     if sys.platform.startswith("linux") and not chosen:
-        raise UserError(
-            "display", "The window needs a display: neither DISPLAY nor WAYLAND_DISPLAY is set."
-        )
+        raise UserError("display", "The window needs a display: neither DISPLAY nor WAYLAND_DISPLAY is set.")
 
 
 def assess(options: Namespace) -> int:

@@ -1,0 +1,141 @@
+"""A virtual display, and hands that press keys and buttons on it as a person does."""
+
+import json
+import os
+import subprocess
+import time
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Any
+
+from tests.programs import command_line
+
+Json = dict[str, Any]
+WATCHED = Path(__file__).with_name("watched.py")
+PATIENCE_SECONDS = 60
+
+
+@contextmanager
+def virtual_display() -> Iterator[str]:
+    """Start a display of 1440 x 900 on the first free number and give its name."""
+    reading, writing = os.pipe()
+    asked = ["Xvfb", "-displayfd", str(writing), "-screen", "0", "1440x900x24", "-nolisten", "tcp"]
+    quiet = {"stdout": subprocess.DEVNULL, "stderr": subprocess.DEVNULL}
+    server = subprocess.Popen(asked, pass_fds=[writing], **quiet)  # type: ignore[call-overload]
+    os.close(writing)
+    with os.fdopen(reading) as told:
+        number = told.readline().strip()
+    assert number, "no virtual display could be started"
+    try:
+        yield f":{number}"
+    finally:
+        server.terminate()
+        server.wait(PATIENCE_SECONDS)
+
+
+class Hands:
+    """Press keys and mouse buttons on a display; without a window manager the focus is given by hand too."""
+
+    def __init__(self, display: str) -> None:
+        self.display = display
+
+    def focus(self, title: str) -> str:
+        """Wait for the window whose title holds ``title`` and give it the keyboard; return its number."""
+        found = self._do("search", "--sync", "--onlyvisible", "--name", title).splitlines()[-1]
+        self._do("windowfocus", "--sync", found)
+        return found
+
+    def press(self, *keys: str) -> None:
+        """Press keys or combinations such as ``ctrl+z`` one after the other."""
+        self._do("key", "--delay", "15", *keys)
+
+    def type(self, text: str) -> None:
+        """Type a text."""
+        self._do("type", "--delay", "15", "--", text)
+
+    def click(self, place: list[int], times: int = 1) -> None:
+        """Click at a place of the display."""
+        x, y = place
+        self._do("mousemove", "--sync", str(x), str(y), "click", "--repeat", str(times), "--delay", "60", "1")
+
+    def _do(self, *asked: str) -> str:
+        done = subprocess.run(
+            ["xdotool", *asked],
+            env={**os.environ, "DISPLAY": self.display},
+            capture_output=True,
+            text=True,
+            timeout=PATIENCE_SECONDS,
+            check=True,
+        )
+        return done.stdout
+
+
+class Watched:
+    """A window in a process of its own that tells what it shows."""
+
+    def __init__(self, process: subprocess.Popen[str]) -> None:
+        self.process = process
+
+    def look(self) -> Json:
+        """Return what the window shows now."""
+        assert self.process.stdin is not None
+        assert self.process.stdout is not None
+        self.process.stdin.write("look\n")
+        self.process.stdin.flush()
+        shown: Json = json.loads(self.process.stdout.readline())
+        return shown
+
+    def wait(self, until: Callable[[Json], bool]) -> Json:
+        """Look until the window has settled and ``until`` holds; the last look is the answer."""
+        end = time.monotonic() + PATIENCE_SECONDS
+        while True:
+            shown = self.look()
+            if shown["settled"] and until(shown):
+                return shown
+            assert time.monotonic() < end, f"the window never came to show that; it shows {shown}"
+            time.sleep(0.05)
+
+
+@contextmanager
+def opened(command: Sequence[str], display: str, drafts: Path) -> Iterator[subprocess.Popen[str]]:
+    """Start a program that opens the window; once its window is closed it must end with 0 and without a word.
+
+    Closing its standard input is how a watched one is told to end; the program itself has to be closed before.
+    """
+    pipes = dict.fromkeys(("stdin", "stdout", "stderr"), subprocess.PIPE)
+    process = subprocess.Popen(command, env=surroundings(display, drafts), text=True, **pipes)
+    try:
+        yield process
+        out, messages = process.communicate(timeout=PATIENCE_SECONDS)
+        assert (process.returncode, out, messages) == (0, "", "")
+    finally:
+        process.kill()
+        process.wait()
+
+
+@contextmanager
+def watched(case: Path, display: str, drafts: Path) -> Iterator[Watched]:
+    """Open the window on ``case`` and watch it."""
+    with opened(command_line(WATCHED, case), display, drafts) as process:
+        yield Watched(process)
+
+
+def surroundings(display: str, drafts: Path) -> dict[str, str]:
+    """Return the environment of a program on ``display``."""
+    return {**os.environ, "DISPLAY": display, "QT_QPA_PLATFORM": "xcb", "CREDITDESK_DRAFTS": str(drafts)}
+
+
+def go_to_revenue(window: Watched, hands: Hands) -> Json:
+    """Walk with the arrow keys from the first cell to the revenue of the last year."""
+    hands.press("ctrl+Home")
+    rows = list(window.wait(lambda shown: shown["current"][0] == 0)["standing"]["cells"])
+    hands.press("Right", "Right", "Right")
+    for _ in range(len(rows) + 10):
+        row, key, period = window.look()["current"]
+        if key == "revenue":
+            assert period == 2
+            return window.wait(lambda shown: "revenue" in shown["places"])
+        hands.press("Down")
+        window.wait(lambda shown, row=row: shown["current"][0] != row)
+    raise AssertionError("the arrow keys never reached the revenue")

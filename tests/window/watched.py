@@ -1,0 +1,152 @@
+"""The real window with an eye in it: each line on standard input asks what it shows, the answer is a line of JSON.
+
+Nothing of the program is replaced. What is read are the widgets themselves and the marks on the charts, in pixels.
+"""
+
+import hashlib
+import json
+import sys
+from pathlib import Path
+from typing import Any
+
+from PySide6.QtCore import QPoint, QSocketNotifier
+from PySide6.QtWidgets import QApplication, QLineEdit, QPushButton, QWidget
+
+from creditdesk.desk.app import make_application, run
+from creditdesk.desk.tables.rows import RowKind
+from creditdesk.desk.window import Window
+from creditdesk.house.load import load_house_book
+from creditdesk.house.shipped import resources_folder
+
+Json = dict[str, Any]
+
+
+def seen() -> Json:
+    """Return everything a test wants to know of the open window, or that there is none yet."""
+    windows = [widget for widget in QApplication.topLevelWidgets() if isinstance(widget, Window)]
+    if not windows or not windows[0].isVisible():
+        return {"settled": False}
+    window = windows[0]
+    verdict = window.standing.verdict
+    return {
+        "settled": window.settled,
+        "obligor": window.header.obligor.text(),
+        "state": window.header.state.text(),
+        "recorded": window.recorded.text(),
+        "message": window.statusBar().currentMessage(),
+        "standing": {
+            "pd": verdict.pd.text(),
+            "interval": verdict.interval.text(),
+            "grade": verdict.plate.grade.text(),
+            "counts": window.counts.text(),
+            "cells": cells(window),
+            **charts(window),
+            "pixels": [pixels(window.standing), pixels(window.figures)],
+        },
+        "current": current(window),
+        "places": places(window),
+        "buttons": {one.text(): middle(one) for one in window.findChildren(QPushButton) if one.isVisible()},
+        "dialog": dialog(),
+    }
+
+
+def cells(window: Window) -> dict[str, list[str]]:
+    """Return the amounts shown of each line and sum, period by period."""
+    model = window.figures.model
+    shown = (RowKind.LINE, RowKind.SUBTOTAL)
+    return {
+        row.key: [str(model.place(row.key, period).data() or "") for period in range(model.periods)]
+        for row in model.rows
+        if row.kind in shown
+    }
+
+
+def current(window: Window) -> list[object]:
+    """Return key and period of the cell the cursor stands on, its row's number first."""
+    index = window.figures.table.currentIndex()
+    if not index.isValid():
+        return [-1, "", -1]
+    return [index.row(), window.figures.model.rows[index.row()].key, index.column() - 1]
+
+
+def places(window: Window) -> dict[str, list[Any]]:
+    """Return row number and the screen position of the last period's cell, for the rows in sight."""
+    table, model = window.figures.table, window.figures.model
+    found = {}
+    for row in model.rows:
+        index = model.place(row.key, model.periods - 1)
+        rect = table.visualRect(index)
+        if row.kind is RowKind.LINE and table.viewport().rect().contains(rect.center()):
+            at = table.viewport().mapToGlobal(rect.center())
+            found[row.key] = [index.row(), at.x(), at.y()]
+    return found
+
+
+def charts(window: Window) -> Json:
+    """Return texts and marks of both charts, each with where it stands in pixels from the lower left corner."""
+    canvases = window.standing._canvases
+    if canvases is None:
+        return {}
+    return {"curve": drawn(canvases.curve), "contributions": drawn(canvases.contributions)}
+
+
+def drawn(canvas: Any) -> Json:  # noqa: ANN401  a matplotlib canvas, which is not imported here
+    """Return what is on a canvas: [text, x, y] of words, [kind, left, bottom, right, top, colour] of filled marks."""
+    texts, marks = [], []
+    renderer = canvas.get_renderer()
+    for artist in canvas.figure.get_children():
+        kind = type(artist).__name__
+        if kind not in ("Text", "PathPatch"):
+            continue
+        box = artist.get_window_extent(renderer)
+        if kind == "Text":
+            texts.append([artist.get_text(), (box.x0 + box.x1) / 2, (box.y0 + box.y1) / 2])
+        elif artist.get_fill():
+            path = artist.get_path()
+            corners = artist.get_transform().transform_path(path).get_extents()
+            shape = "round" if path.codes is not None and 4 in path.codes else f"{len(path.vertices) - 1} corners"
+            marks.append([shape, *corners.extents.tolist(), list(artist.get_facecolor())])
+    return {"texts": texts, "marks": marks}
+
+
+def pixels(widget: QWidget) -> str:
+    """Return a digest of what the display itself shows where ``widget`` is."""
+    corner = widget.mapToGlobal(QPoint(0, 0))
+    image = widget.screen().grabWindow(0, corner.x(), corner.y(), widget.width(), widget.height()).toImage()
+    return hashlib.sha256(bytes(image.constBits())).hexdigest()
+
+
+def middle(widget: QWidget) -> list[int]:
+    """Return where to click a widget."""
+    at = widget.mapToGlobal(widget.rect().center())
+    return [at.x(), at.y()]
+
+
+def dialog() -> Json | None:
+    """Return the title, the fields and the focus of the dialog that is open."""
+    box = QApplication.activeModalWidget()
+    if box is None:
+        return None
+    focus = QApplication.focusWidget()
+    return {
+        "title": box.windowTitle(),
+        "text": box.text() if hasattr(box, "text") else "",
+        "fields": {field.accessibleName(): field.text() for field in box.findChildren(QLineEdit)},
+        "focus": focus.accessibleName() if focus is not None else "",
+    }
+
+
+def answer() -> None:
+    """Answer one question, or end with the one who asks."""
+    if not sys.stdin.readline():
+        QApplication.quit()
+        return
+    sys.stdout.write(json.dumps(seen()) + "\n")
+    sys.stdout.flush()
+
+
+if __name__ == "__main__":
+    make_application()
+    notifier = QSocketNotifier(sys.stdin.fileno(), QSocketNotifier.Type.Read)
+    notifier.activated.connect(answer)
+    sys.exit(run(Path(sys.argv[1]), load_house_book(resources_folder() / "housebook")))
