@@ -16,6 +16,8 @@ from creditdesk.desk.headline import describe, status_words
 from creditdesk.desk.session import Session
 from creditdesk.desk.sheets.figures import FiguresSheet
 from creditdesk.desk.sheets.memo import MemoSheet
+from creditdesk.desk.sheets.obligor import ObligorSheet
+from creditdesk.desk.sheets.ratios import RatiosSheet
 from creditdesk.desk.signing import Issuer
 from creditdesk.desk.standing import StandingColumn
 from creditdesk.desk.worker import Jobs
@@ -25,7 +27,7 @@ if TYPE_CHECKING:
 
     from creditdesk.desk.sheets.base import Sheet
 
-SHEETS = (FiguresSheet.title, MemoSheet.title)
+SHEETS = (ObligorSheet.title, FiguresSheet.title, RatiosSheet.title, MemoSheet.title)
 _FAULT_MILLISECONDS = 12_000
 
 
@@ -46,9 +48,11 @@ class Window(QMainWindow):
         self._canvas_module: ModuleType | None = None
         self.header, self.bar = Header(), SheetBar(SHEETS)
         self.issuer = Issuer(self, session, self.jobs)
+        self.obligor = ObligorSheet(session.house, session.do)
         self.figures = FiguresSheet(session.do)
+        self.ratios = RatiosSheet(session.house)
         self.memo = MemoSheet(session.house, session.do, self.issuer)
-        self.sheets: tuple[Sheet, ...] = (self.figures, self.memo)
+        self.sheets: tuple[Sheet, ...] = (self.obligor, self.figures, self.ratios, self.memo)
         self.standing = StandingColumn(len(session.house.scale.grades))
         self.stack, self.split = QStackedWidget(), QSplitter()
         self.recorded, self.counts = QLabel(), QLabel()
@@ -57,7 +61,7 @@ class Window(QMainWindow):
         self._connect()
         self._recolour()
         self._on_changed()
-        self.show_sheet(0)
+        self.show_sheet(SHEETS.index(FiguresSheet.title))
 
     @property
     def theme(self) -> Palette:
