@@ -49,7 +49,7 @@ class Window(QMainWindow):
         self.header, self.bar = Header(), SheetBar(SHEETS)
         self.issuer = Issuer(self, session, self.jobs)
         self.obligor = ObligorSheet(session.house, session.do)
-        self.figures = FiguresSheet(session.do)
+        self.figures = FiguresSheet(session.house, session.do)
         self.ratios = RatiosSheet(session.house)
         self.memo = MemoSheet(session.house, session.do, self.issuer)
         self.sheets: tuple[Sheet, ...] = (self.obligor, self.figures, self.ratios, self.memo)

@@ -24,6 +24,7 @@ from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.rows import Row, RowKind
+from creditdesk.house.book import HouseBook
 from creditdesk.intake.amounts import Amount, AmountKind, parse_amount
 from creditdesk.intake.block import read_block
 from creditdesk.intake.numerals import DecimalMark
@@ -77,9 +78,9 @@ class FiguresSheet(Sheet):
     title = "Figures"
     places = ("figures.", "periods[")
 
-    def __init__(self, do: Do) -> None:
+    def __init__(self, house: HouseBook, do: Do) -> None:
         super().__init__()
-        self._do = do
+        self._house, self._do = house, do
         self._case: Case | None = None
         self._standing: Standing | None = None
         self.model = FiguresModel(self._on_entered, self)
