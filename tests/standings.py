@@ -3,7 +3,6 @@
 from dataclasses import replace
 from datetime import date
 from itertools import pairwise
-from math import nan
 from types import SimpleNamespace
 
 import numpy as np
@@ -115,7 +114,7 @@ def year(ends: date, score: float) -> PeriodStanding:
 def standing(**changes: object) -> Standing:
     """Make the standing of an invented borrower whose score is reference plus contributions."""
     own = changes.pop("factors", factors())
-    score = REFERENCE_SCORE + sum(part.log_odds for part in own)
+    score = REFERENCE_SCORE + sum(part.log_odds or 0.0 for part in own)
     pd = float(sigmoid(score))
     grade = grade_of(pd)
     past = (year(date(2023, 12, 31), -3.25), year(date(2024, 12, 31), -3.7))
@@ -165,9 +164,9 @@ def standing(**changes: object) -> Standing:
 
 def without_pd(**changes: object) -> Standing:
     """Make a standing whose model gives no PD because too many factors are missing."""
+    blank: dict[str, object] = {"value": None, "treated": None, "log_odds": None, "pd_share": None, "terms": ()}
     gone = tuple(
-        replace(part, value=None, reason="not_disclosed", reason_text="Needs depreciation.", treated=None, log_odds=nan)
-        for part in factors()
+        replace(part, reason="not_disclosed", reason_text="Needs depreciation.", **blank) for part in factors()
     )
     return standing(
         factors=gone,

@@ -1,6 +1,7 @@
 """The one pipeline: from a case and a house book to the standing, the same for window, memo and command line."""
 
-from dataclasses import dataclass, replace
+from collections.abc import Iterator
+from dataclasses import dataclass
 from datetime import date
 from difflib import get_close_matches
 
@@ -10,7 +11,7 @@ from creditdesk.base.errors import UserError
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.document import Case
 from creditdesk.case.doubts import case_findings, factor_findings
-from creditdesk.case.grades import Verdict, graded, verdict
+from creditdesk.case.grades import graded, verdict, without_grade
 from creditdesk.case.opinions import RatioTables, borrower, second_opinion
 from creditdesk.case.placing import fitted_curve
 from creditdesk.case.reasons import principal_reasons
@@ -25,14 +26,15 @@ from creditdesk.case.standing import (
     Standing,
 )
 from creditdesk.case.statements import CaseStatements, case_statements
+from creditdesk.case.words import period_heads
 from creditdesk.house.book import HouseBook, LoadedModel
 from creditdesk.model.interval import WORDING
 from creditdesk.model.scope import out_of_scope, pd_runs_from, pd_runs_to
 from creditdesk.model.score import model_pd, reading_of
-from creditdesk.model.spec import Link
+from creditdesk.model.spec import Link, ModelSpec
 from creditdesk.ratios.quality import ratio_findings
 from creditdesk.statements.checks import check_statements
-from creditdesk.statements.period import Basis, assessed_period, period_label, prior_index
+from creditdesk.statements.period import assessed_period, is_actual, prior_index
 
 UNCERTAINTY = f"The interval covers {WORDING}; the future is more uncertain than that."
 
@@ -95,9 +97,11 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
     )
     usable = not any(finding.severity is Severity.STOP for finding in findings)
     given = verdict(scored, house, desk.statements.adjusted, table, (period, bool(desk.scope)))
-    given = _without_grade(given, spec.label) if not (usable and spec.lead) else given
+    why = tuple(_why_no_grade(spec, usable=usable))
+    given = without_grade(given, why) if why else given
     factors = factor_standings(scored, house.catalogue, table, period)
-    past = tuple(_past(desk, other) for other in range(len(case.periods)) if _counts_as_past(desk, other))
+    others = [other for other, one in enumerate(case.periods) if other != period and is_actual(one)]
+    past = {other: _past(desk, other) for other in others}
     before = prior_index(case.periods, period)
     score = _number(scored.scores[period])
     return Standing(
@@ -124,9 +128,9 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
         grade=given.grade,
         reasons=principal_reasons(scored, factors, period) + given.notes,
         usable=usable,
-        curve=fitted_curve(scored, house.scale, house.settings.interval_level),
-        past=past,
-        last_year=next((one for one in past if before is not None and one.ends == case.periods[before].ends), None),
+        curve=fitted_curve(scored, house.scale, house.settings.interval_level, (period, *others)),
+        past=tuple(past.values()),
+        last_year=None if before is None else past[before],
         second_opinions=_second_opinions(desk),
         findings=findings,
         cautions=(*house.settings.cautions, *spec.cautions, *((UNCERTAINTY,) if spec.covariance else ())),
@@ -141,15 +145,11 @@ def _number(value: float) -> float | None:
     return None if np.isnan(value) else float(value)
 
 
-def _without_grade(given: Verdict, label: str) -> Verdict:
-    grade = replace(given.grade, model="none", judged="none", final="none")
-    notes = given.notes or (f"{label} may not lead or a finding of severity stop stands: no grade is given",)
-    return replace(given, grade=grade, notes=notes)
-
-
-def _counts_as_past(desk: _Desk, other: int) -> bool:
-    """Say whether a period is shown on the curve beside the assessed one: actual, and not a part of a later year."""
-    return other != desk.period and desk.case.periods[other].basis is not Basis.PROJECTION
+def _why_no_grade(spec: ModelSpec, *, usable: bool) -> Iterator[str]:
+    if not usable:
+        yield "No grade is given while a finding of severity stop stands"
+    if not spec.lead:
+        yield f"No grade is given, because {spec.label} may not lead"
 
 
 def _past(desk: _Desk, period: int) -> PeriodStanding:
@@ -158,7 +158,7 @@ def _past(desk: _Desk, period: int) -> PeriodStanding:
     pd, grade = graded(desk.house, pd_calibrated)
     return PeriodStanding(
         ends=desk.case.periods[period].ends,
-        label=period_label(desk.case.periods[period]),
+        label=period_heads(desk.case.periods)[period],
         score=_number(desk.scored.scores[period]),
         pd_calibrated=pd_calibrated,
         pd=pd,

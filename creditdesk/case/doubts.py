@@ -7,6 +7,7 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.document import Case
 from creditdesk.case.scoring import Scored
 from creditdesk.house.book import HouseBook
+from creditdesk.model.scope import add_months
 from creditdesk.model.spec import REASONS
 
 
@@ -23,10 +24,9 @@ def case_findings(
     elif assessed_on < ends:
         text = f"The assessment date {assessed_on} lies before the end of the assessed period, {ends}."
         found.append(Finding("assessment_date", Severity.QUERY, "assessment.date", text))
-    months = (assessed_on.year - ends.year) * 12 + assessed_on.month - ends.month
-    if months > house.settings.stale_after_months:
-        most = house.settings.stale_after_months
-        text = f"The assessed figures are {months} months old; the house asks for {most} at most."
+    most = house.settings.stale_after_months
+    if assessed_on > add_months(ends, most):
+        text = f"The assessed figures, to {ends}, are more than {most} months old on {assessed_on}, the house's limit."
         found.append(Finding("old_figures", Severity.QUERY, "assessment.period", text))
     return tuple(found)
 

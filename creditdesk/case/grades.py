@@ -1,12 +1,12 @@
 """The chain from the model's PD to the final grade: calibration, judgement, floor, scale, house rules."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from creditdesk.case.scoring import Scored
 from creditdesk.case.standing import GradeStanding
-from creditdesk.grading.rules import FLAGS, TEXTS, apply_rules
+from creditdesk.grading.rules import FLAGS, TEXTS, Effect, apply_rules
 from creditdesk.grading.scale import NO_GRADE, final_pd, grade_of
 from creditdesk.house.book import HouseBook
 from creditdesk.model.score import why_no_pd
@@ -52,9 +52,17 @@ def verdict(
         pd=pd,
         pd_final=pd if final == NO_GRADE else final_pd(house.scale, pd, judged, final),
         grade=GradeStanding(model_grade, judged, final, tuple(rule.reason for rule in outcome.fired)),
-        notes=tuple(rule.reason for rule in outcome.fired if rule.moved)
+        notes=tuple(rule.reason for rule in outcome.fired if rule.moved or rule.effect is Effect.STOP)
         + tuple(f"House rule {sentence}" for sentence in outcome.unknown),
     )
+
+
+def without_grade(given: Verdict, why: tuple[str, ...]) -> Verdict:
+    """Take the grade from a verdict, for the reasons ``why``; its PDs stay, no rule moves the one that counts."""
+    if given.pd is None:
+        return given  # the reason for that stands there already
+    grade = GradeStanding(NO_GRADE, NO_GRADE, NO_GRADE, (*why, *given.grade.reasons))
+    return replace(given, grade=grade, pd_final=given.pd, notes=(*why, *given.notes))
 
 
 def graded(house: HouseBook, pd: float | None) -> tuple[float | None, str]:

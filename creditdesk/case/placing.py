@@ -1,5 +1,7 @@
 """Where a score stands: the fitted curve, the sample's bins, the grade bands."""
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from creditdesk.case.scoring import Scored
@@ -15,12 +17,15 @@ _WHOLE = {Link.LOGIT: (-8.0, 5.0), Link.PROBIT: (-4.0, 2.5)}
 """Scores between which a link runs from near 0 to near 1: the curve always shows its bend."""
 
 
-def fitted_curve(scored: Scored, scale: MasterScale, level: float) -> Curve | None:
-    """Return the curve over the sample's scores and the borrower's own; None where the model has no link."""
+def fitted_curve(scored: Scored, scale: MasterScale, level: float, shown: Sequence[int]) -> Curve | None:
+    """Return the curve over the sample's scores and the borrower's own; None where the model has no link.
+
+    ``shown``: indices of the periods that stand on it.
+    """
     spec = scored.spec
     if spec.link is Link.NONE:
         return None
-    scores = np.linspace(*_span(scored), _POINTS)
+    scores = np.linspace(*_span(scored, shown), _POINTS)
     band = interval(spec, scores, curve_error(spec, scores), level)
     return Curve(
         scores=scores,
@@ -34,11 +39,11 @@ def fitted_curve(scored: Scored, scale: MasterScale, level: float) -> Curve | No
     )
 
 
-def _span(scored: Scored) -> tuple[float, float]:
+def _span(scored: Scored, shown: Sequence[int]) -> tuple[float, float]:
     """Return the lowest and highest score to draw."""
     spec = scored.spec
     bins = [one.score for one in spec.sample.bins] if spec.sample is not None else []
-    own = [float(value) for value in scored.scores if np.isfinite(value)]
+    own = [float(value) for value in scored.scores[list(shown)] if np.isfinite(value)]
     wanted = [*bins, *own, scored.reference_score]
     low, high = _WHOLE[spec.link]
     return min(*wanted, low) - _MARGIN, max(*wanted, high) + _MARGIN

@@ -7,6 +7,7 @@ import numpy as np
 
 from creditdesk.case.standing import FactorStanding, Interval, Standing
 from creditdesk.ratios.compute import Reason
+from creditdesk.statements.period import period_ending
 
 Json = dict[str, Any]
 FORMAT = "creditdesk-standing"
@@ -129,9 +130,11 @@ def _factor(factor: FactorStanding) -> Json:
 
 
 def _ratios(standing: Standing) -> Json:
-    table, ends = standing.ratios, [period.ends.isoformat() for period in standing.statements.periods]
+    """Return the ratios by key and end of period; of two periods that end on one day the restated one counts."""
+    table, periods = standing.ratios, standing.statements.periods
+    columns = {period.ends.isoformat(): period_ending(periods, period.ends) for period in periods}
     return {
-        key: {end: _ratio(standing, key, row, period) for period, end in enumerate(ends)}
+        key: {end: _ratio(standing, key, row, column) for end, column in columns.items() if column is not None}
         for row, key in enumerate(table.keys)
     }
 

@@ -76,7 +76,7 @@ def _factor(scored: Scored, catalogue: Catalogue, table: RatioTable, number: int
     value, code = float(scored.values[number, period]), int(scored.reasons[number, period])
     treated, reference = float(design.treated[number, period]), float(scored.reference.treated[number])
     known = not np.isnan(scored.scores[period])
-    share = float(scored.contributions.pd_share[number, period])
+    contributions = scored.contributions
     return FactorStanding(
         key=factor.key,
         label=factor.label,
@@ -86,8 +86,8 @@ def _factor(scored: Scored, catalogue: Catalogue, table: RatioTable, number: int
         reason=REASONS[code - 1] if code else None,
         reason_text=reason_text(catalogue, table, factor.ratio, period) if code else "",
         treated=None if np.isnan(treated) else treated,
-        log_odds=float(scored.contributions.log_odds[number, period]),
-        pd_share=share if known and scored.spec.link is not Link.NONE else None,
+        log_odds=float(contributions.log_odds[number, period]) if known else None,
+        pd_share=float(contributions.pd_share[number, period]) if known and scored.spec.link is not Link.NONE else None,
         capped=bool(design.capped[number, period]),
         terms=_terms(scored, number, period),
         reference_value=None if np.isnan(reference) else reference,

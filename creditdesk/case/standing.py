@@ -61,8 +61,9 @@ class FactorStanding:
     """Show one factor of the model for one period.
 
     ``value``: the ratio, None where it has none (``reason`` then holds the key, ``reason_text`` the sentence).
-    ``treated``: the value after rule and caps, in the ratio's unit. ``log_odds``: its part of score - reference score;
-    ``pd_share``: Aumann-Shapley share of pd_model - reference pd, None without a link. ``capped``: a cap was met.
+    ``treated``: the value after rule and caps, in the ratio's unit. ``log_odds``: its part of score - reference score,
+    None where there is no score; ``pd_share``: Aumann-Shapley share of pd_model - reference pd, None also without a
+    link. ``capped``: a cap was met.
     ``place``: share of the development sample below this value, 0 to 1, None where unknown.
     """
 
@@ -74,7 +75,7 @@ class FactorStanding:
     reason: str | None
     reason_text: str
     treated: float | None
-    log_odds: float
+    log_odds: float | None
     pd_share: float | None
     capped: bool
     terms: tuple[Term, ...]
@@ -175,7 +176,7 @@ class Standing:
     The chain: ``pd_model`` (raw link) -> ``pd_calibrated`` -> ``pd_judged`` -> ``pd`` (floor) -> grade -> ``pd_final``.
     PDs are None and the grade "none" where the model gives none, with the reason in ``reasons``; ``score`` likewise.
     ``usable`` is False while a finding of severity stop stands: the PD is then shown as not usable, without grade.
-    ``past``: every other actual period, oldest first; ``last_year``: the assessed period's prior. ``received``:
+    ``past``: every other actual period, in their order; ``last_year``: the assessed period's prior. ``received``:
     statements before adjustments; ``statements``: after them. What was annualised and is needed stands in ``ratios``.
     """
 

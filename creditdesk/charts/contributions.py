@@ -2,7 +2,6 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from math import isfinite
 
 from matplotlib.backend_bases import Event
 from matplotlib.figure import Figure
@@ -101,7 +100,7 @@ def contribution_rows(standing: Standing, limit: int | None = None) -> list[Row]
 
 def _row(factor: FactorStanding) -> Row:
     value = factor_value(factor)
-    amount = factor.log_odds if isfinite(factor.log_odds) else 0.0  # not known where there is no score
+    amount = factor.log_odds or 0.0  # None where there is no score
     return Row(factor.label, f"{value} (capped)" if factor.capped else value, amount, factor.value is not None)
 
 

@@ -8,6 +8,7 @@ from creditdesk.case.standing import FactorStanding, SecondOpinion, Standing
 from creditdesk.ratios.spec import Unit
 
 _WIDTH = 34
+_SCALES = {"logit": "log-odds", "probit": "index units", "none": "score units"}
 
 
 def standing_text(case: Case, standing: Standing) -> str:
@@ -22,7 +23,9 @@ def _lines(case: Case, standing: Standing) -> Iterator[str]:
     yield ""
     yield from _verdict(standing)
     yield ""
-    yield f"From the reference borrower (score {standing.reference.score:.4f}) to this one"
+    scale = _SCALES[standing.model.link]
+    start = f"From the reference borrower (score {standing.reference.score:.4f}) to this one, in {scale}"
+    yield start if standing.score is not None else "Factors; without a score none contributes"
     for factor in standing.factors:
         yield _factor(factor)
     if standing.score is not None:
@@ -65,7 +68,8 @@ def _factor(factor: FactorStanding) -> str:
     else:
         percent = factor.unit == Unit.PERCENT.value
         value = f"{format_number(100 * factor.value, 1)} %" if percent else format_number(factor.value, 2)
-    return f"  {factor.label:<{_WIDTH}}{value:>14}  {factor.log_odds:+.4f}{'  (capped)' if factor.capped else ''}"
+    amount = "" if factor.log_odds is None else f"  {factor.log_odds:+.4f}"
+    return f"  {factor.label:<{_WIDTH}}{value:>14}{amount}{'  (capped)' if factor.capped else ''}"
 
 
 def _opinion(one: SecondOpinion) -> str:

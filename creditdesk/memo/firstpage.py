@@ -3,6 +3,7 @@
 from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Severity
 from creditdesk.case.document import Case
+from creditdesk.case.reasons import raising_factors
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.case.words import basis_words, long_date, sector_words, unit_words
 from creditdesk.charts.curve import no_curve_words
@@ -48,12 +49,11 @@ def weak_spots(standing: Standing, house: HouseBook) -> tuple[str, ...]:
     First the findings of severity stop, then why there is no score or, where there is one, the factors that raise the
     PD most against the reference borrower, then the queries.
     """
-    raising = [] if standing.score is None else [factor for factor in standing.factors if factor.log_odds > 0]
-    raising.sort(key=lambda factor: -factor.log_odds)
+    raising = raising_factors(standing.factors)[:_FACTORS_NAMED]
     return (
         *_findings(standing, Severity.STOP),
         *(standing.reasons if standing.score is None else ()),
-        *(_factor_sentence(factor, standing, house) for factor in raising[:_FACTORS_NAMED]),
+        *(_factor_sentence(factor, raise_by, standing, house) for factor, raise_by in raising),
         *_findings(standing, Severity.QUERY),
     )
 
@@ -89,8 +89,8 @@ def _of(factor: FactorStanding) -> str:
 
 
 def _effect(factor: FactorStanding) -> str:
-    moves = "raises" if factor.log_odds > 0 else "lowers"
-    return f"{moves} the score by {format_number(abs(factor.log_odds), 2)}"
+    amount = factor.log_odds or 0.0
+    return f"{'raises' if amount > 0 else 'lowers'} the score by {format_number(abs(amount), 2)}"
 
 
 def _description(case: Case, standing: Standing) -> str:
@@ -151,8 +151,8 @@ def _findings(standing: Standing, severity: Severity) -> list[str]:
     ]
 
 
-def _factor_sentence(factor: FactorStanding, standing: Standing, house: HouseBook) -> str:
-    amount = f"{signed(factor.log_odds)} {contribution_scale(standing.model.link)}"
+def _factor_sentence(factor: FactorStanding, raise_by: float, standing: Standing, house: HouseBook) -> str:
+    amount = f"{signed(raise_by)} {contribution_scale(standing.model.link)}"
     if factor.value is None:
         return f"{factor.label} has no value ({factor_value(factor)}), which raises {_moved(standing)}: {amount}."
     model = house.models.get(standing.model.name)

@@ -23,7 +23,7 @@ _LINKS = {
 def contributions_section(standing: Standing) -> Section:
     """Return every factor with its contribution, which sums to the distance from the reference borrower."""
     scale = contribution_scale(standing.model.link)
-    rows = [_contribution_row(factor, scored=standing.score is not None) for factor in standing.factors]
+    rows = [_contribution_row(factor) for factor in standing.factors]
     if standing.score is not None:
         rows += [_score_row("reference borrower", standing.reference.score, RowKind.LINE)]
         rows += [_score_row("this borrower", standing.score, RowKind.TOTAL)]
@@ -56,7 +56,7 @@ def model_section(standing: Standing, spec: ModelSpec, house: HouseBook) -> Sect
     return Section("Model", _without_empty(blocks))
 
 
-def _contribution_row(factor: FactorStanding, *, scored: bool) -> Row:
+def _contribution_row(factor: FactorStanding) -> Row:
     place = NIL if factor.place is None else format_percent(factor.place, 0)
     reference = NIL if factor.reference_value is None else ratio_text(factor.reference_value, factor.unit)
     share = NIL if factor.pd_share is None else f"{signed(100 * factor.pd_share)}"
@@ -68,7 +68,7 @@ def _contribution_row(factor: FactorStanding, *, scored: bool) -> Row:
             Cell(value, factor.value, Tone.PLAIN if known else Tone.WORDS),
             Cell(reference, factor.reference_value),
             Cell(place, factor.place),
-            Cell(signed(factor.log_odds, 3), factor.log_odds) if scored else Cell(NIL),
+            Cell(NIL) if factor.log_odds is None else Cell(signed(factor.log_odds, 3), factor.log_odds),
             Cell(share, factor.pd_share),
         )
     )

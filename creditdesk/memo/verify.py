@@ -1,17 +1,17 @@
 """Verify a memo: signatures, signers, attachments, and the assessment run again from them."""
 
 from collections.abc import Collection
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
 from creditdesk.base.errors import UserError
-from creditdesk.house.book import HouseBook
+from creditdesk.house.book import HouseBook, Signer
 from creditdesk.house.files import read_file
 from creditdesk.memo.attach import attachments
 from creditdesk.memo.decision import DECISION_WORDS
 from creditdesk.memo.rerun import Rerun, rerun
-from creditdesk.memo.signatures import SignatureFacts, SignatureReport, State, inspect
+from creditdesk.memo.signatures import SignatureFacts, SignatureReport, State, inspect, plain_fingerprint
 
 PROVES = (
     "A valid signature proves that nothing changed since and which key signed. It does not prove the time, which is "
@@ -50,18 +50,25 @@ class Verification:
 def verify_file(path: Path, house: HouseBook, required: Collection[str] = ()) -> Verification:
     """Verify the memo at ``path`` against the signers of ``house``.
 
-    ``required``: ``known``, every signer is in the house book with the role; ``countersigned``. Raises UserError where
-    the file cannot be read; a damaged memo is an answer, not an error.
+    ``required``: ``known``, the house book lists every signer for the role that was signed in; ``countersigned``.
+    Raises UserError where the file cannot be read; a damaged memo is an answer, not an error.
     """
     return verify_bytes(read_file(path), house, required)
 
 
 def verify_bytes(pdf: bytes, house: HouseBook, required: Collection[str] = ()) -> Verification:
     """Verify a memo held in memory."""
-    report = inspect(pdf, [signer.fingerprint for signer in house.settings.signers])
+    report = _with_known(inspect(pdf), house.settings.signers)
     again = _rerun(pdf, report)
     unmet = tuple(_unmet(report, required))
     return Verification(report, again, unmet, _text(report, again, unmet))
+
+
+def _with_known(report: SignatureReport, signers: Collection[Signer]) -> SignatureReport:
+    """Mark who is known: a certificate that the house book lists for the very role it signed in."""
+    listed = {(plain_fingerprint(signer.fingerprint), role) for signer in signers for role in signer.roles}
+    marked = (replace(one, known=(one.fingerprint, one.role.lower()) in listed) for one in report.signatures)
+    return replace(report, signatures=tuple(marked))
 
 
 def _rerun(pdf: bytes, report: SignatureReport) -> Rerun:
@@ -79,8 +86,11 @@ def _unmet(report: SignatureReport, required: Collection[str]) -> list[str]:
     if "countersigned" in required and report.state is not State.COUNTERSIGNED:
         unmet.append("A countersignature is required and missing.")
     if "known" in required:
-        strangers = [facts.name for facts in report.signatures if not facts.known]
-        unmet += [f"{name} is not among the signers of the house book." for name in strangers]
+        strangers = [facts for facts in report.signatures if not facts.known]
+        unmet += [
+            f"{one.name} is not among the signers of the house book who may sign as {one.role.lower()}."
+            for one in strangers
+        ]
         if not report.signatures:
             unmet.append("A known signer is required, and nobody signed.")
     return unmet
@@ -101,12 +111,23 @@ def _signature(facts: SignatureFacts) -> dict[str, Any]:
 
 
 def _text(report: SignatureReport, again: Rerun, unmet: tuple[str, ...]) -> str:
-    lines = [_STATE_WORDS[report.state] if report.valid else "NOT VALID: this is not the memo as signed."]
+    lines = [_headline(report, again, unmet)]
     lines += [_signature_words(facts) for facts in report.signatures]
     lines += report.problems
     lines.append(_RERUN_WORDS[again.answer].format(difference=again.largest_difference or 0.0))
     lines += [*again.problems, *unmet, PROVES]
     return "\n".join(lines)
+
+
+def _headline(report: SignatureReport, again: Rerun, unmet: tuple[str, ...]) -> str:
+    """Sum up the whole answer in one line, which says valid only where nothing at all speaks against it."""
+    if report.valid and again.answer != "equal":
+        return "NOT VALID: signed and unchanged since, but the re-run does not confirm the result."
+    if report.valid and unmet:
+        return "NOT ACCEPTED: the signatures hold and the re-run is equal, but not all that is required is there."
+    if report.valid or report.state in (State.UNSIGNED, State.DAMAGED):
+        return _STATE_WORDS[report.state]
+    return "NOT VALID: this is not the memo as signed."
 
 
 _STATE_WORDS = {

@@ -9,6 +9,7 @@ from openpyxl.worksheet.worksheet import Worksheet
 
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.charts.words import contribution_scale
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import Reason
 
@@ -66,8 +67,11 @@ def _standing(sheet: Worksheet, standing: Standing) -> None:
         ("PD that counts", standing.pd_final),
         ("Grade by the model", standing.grade.model),
         ("Grade", standing.grade.final),
+        ("Usable", "yes" if standing.usable else "no: a finding of severity stop stands"),
     ]
-    rows += [(f"Log-odds of {factor.label}", factor.log_odds) for factor in standing.factors]
+    rows += [("Reason", reason) for reason in standing.reasons]
+    scale = contribution_scale(standing.model.link)
+    rows += [(f"{factor.label}, {scale}", factor.log_odds) for factor in standing.factors]
     rows += [("Finding", finding.text) for finding in standing.findings]
     rows += [("Caution", caution) for caution in standing.cautions]
     for label, value in rows:
