@@ -1,36 +1,13 @@
 """Words for an obligor, its periods and dates: the same in window, charts and memo, and in every locale."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from datetime import date
 
 from creditdesk.base.display import FIXED_SPACE
-from creditdesk.case.document import Case, SectorScheme
+from creditdesk.case.document import Case
+from creditdesk.case.sectors import SECTIONS_ISIC4 as SECTIONS_ISIC4
+from creditdesk.case.sectors import section_name, short_scheme
 from creditdesk.statements.period import Opinion, Period, period_label
-
-SECTIONS_ISIC4: Mapping[str, str] = {
-    "A": "Agriculture, forestry and fishing",
-    "B": "Mining and quarrying",
-    "C": "Manufacturing",
-    "D": "Electricity, gas, steam and air conditioning",
-    "E": "Water supply, sewerage, waste management",
-    "F": "Construction",
-    "G": "Wholesale and retail trade",
-    "H": "Transportation and storage",
-    "I": "Accommodation and food service",
-    "J": "Information and communication",
-    "K": "Financial and insurance activities",
-    "L": "Real estate activities",
-    "M": "Professional, scientific and technical activities",
-    "N": "Administrative and support services",
-    "O": "Public administration and defence",
-    "P": "Education",
-    "Q": "Human health and social work",
-    "R": "Arts, entertainment and recreation",
-    "S": "Other services",
-    "T": "Households as employers",
-    "U": "Extraterritorial organizations",
-}
-"""Short names of the sections of ISIC Rev. 4 (United Nations, 2008; wording shortened, from memory)."""
 
 _MONTHS = (
     "January", "February", "March", "April", "May", "June", "July", "August", "September", "October", "November",
@@ -56,11 +33,10 @@ def unit_words(case: Case) -> str:
 
 
 def sector_words(case: Case) -> str:
-    """Name the obligor's branch by section letter and scheme; in words where the scheme is ISIC Rev. 4."""
+    """Name the obligor's branch in words, with its section letter and scheme: Manufacturing (ISIC C)."""
     obligor = case.obligor
-    if obligor.sector_scheme is SectorScheme.ISIC4 and obligor.sector in SECTIONS_ISIC4:
-        return f"{SECTIONS_ISIC4[obligor.sector]} (ISIC {obligor.sector})"
-    return f"section {obligor.sector} of {obligor.sector_scheme.value}"
+    name = section_name(obligor.sector_scheme, obligor.sector)
+    return f"{name} ({short_scheme(obligor.sector_scheme)} {obligor.sector})"
 
 
 def period_heads(periods: Sequence[Period]) -> tuple[str, ...]:
