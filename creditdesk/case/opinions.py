@@ -1,19 +1,21 @@
 """Second opinions: what other configured models say, shown beside the lead model and never averaged in."""
 
+from functools import lru_cache
+
 import numpy as np
 
 from creditdesk.case.document import Case
-from creditdesk.case.scoring import score_periods
 from creditdesk.case.standing import SecondOpinion
+from creditdesk.model.calibrate import calibrated_pd
+from creditdesk.model.sample import from_ratios
 from creditdesk.model.scope import Borrower, out_of_scope
-from creditdesk.model.score import reading_of, why_no_pd
+from creditdesk.model.score import reading_of, score, why_no_pd, why_no_score
 from creditdesk.model.spec import ModelSpec
+from creditdesk.model.treat import treat
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.compute import RatioTable, compute_ratios
+from creditdesk.ratios.trace import users_of
 from creditdesk.statements.statement import StatementSet
-
-_ANY_LEVEL = 0.9
-"""A second opinion shows no interval, so the level it would be taken at does not matter."""
 
 
 class RatioTables:
@@ -34,12 +36,25 @@ class RatioTables:
             )
         return self._tables[currency]
 
+    def for_model(self, spec: ModelSpec) -> RatioTable:
+        """Return the ratios for a model: in its currency, or those at hand where its factors are the same in any."""
+        amounts = _in_model_currency(self._catalogue)
+        if self._tables and not any(factor.ratio in amounts for factor in spec.factors):
+            return next(iter(self._tables.values()))
+        return self.of(spec.currency)
+
     def rate(self, currency: str) -> float:
         """Return units of ``currency`` per unit of the case's currency; nan where the case states none."""
         obligor = self._case.obligor
         if currency in ("", obligor.currency):
             return 1.0
         return obligor.rates.per_unit.get(currency, float("nan")) if obligor.rates else float("nan")
+
+
+@lru_cache(maxsize=8)
+def _in_model_currency(catalogue: Catalogue) -> frozenset[str]:
+    """List the ratios that depend on the model's currency; kept, as a catalogue does not change."""
+    return frozenset(users_of(catalogue, "to_model_currency"))
 
 
 def borrower(case: Case, spec: ModelSpec, statements: StatementSet, tables: RatioTables, period: int) -> Borrower:
@@ -52,12 +67,17 @@ def borrower(case: Case, spec: ModelSpec, statements: StatementSet, tables: Rati
 def second_opinion(
     case: Case, spec: ModelSpec, statements: StatementSet, tables: RatioTables, period: int
 ) -> SecondOpinion:
-    """Return what ``spec`` says of one period; its reading in words, or why it has none."""
-    scored = score_periods(spec, tables.of(spec.currency), _ANY_LEVEL)
-    value, pd = float(scored.scores[period]), float(scored.pd_calibrated[period])
+    """Return what ``spec`` says of one period; its reading in words, or why it has none.
+
+    Score and PD alone: an opinion shows neither interval nor contributions.
+    """
+    design = treat(spec, *from_ratios(spec, tables.for_model(spec)))
+    scores = score(spec, design)
+    value, pd = float(scores[period]), float(calibrated_pd(spec, scores)[period])
     outside = out_of_scope(spec, borrower(case, spec, statements, tables, period))
     known = not np.isnan(value)
-    reading = reading_of(spec, value) if known else scored.why_none(period) or ""
+    why = why_no_score(spec, design.missing[:, period], design.refused[:, period])
+    reading = reading_of(spec, value) if known else why or ""
     return SecondOpinion(
         name=spec.name,
         label=spec.label,

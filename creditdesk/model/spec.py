@@ -261,6 +261,10 @@ class ModelSpec(Record, frozen=True):
     fit: FitRecord | None = None
     covariance: Covariance | None = None
 
+    def __hash__(self) -> int:
+        """Hash what tells models apart, so that what follows from one can be kept; its tables have no hash."""
+        return hash((self.name, self.model_version, self.intercept))
+
 
 class Term(msgspec.Struct, frozen=True):
     """Name one summand of the score.

@@ -1,13 +1,14 @@
 """From ratios to the terms of a score: caps, rule per reason of no value, transform."""
 
-from collections.abc import Iterable
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.base.errors import BugError
-from creditdesk.model.spec import REASON_CODES, REASONS, Factor, ModelSpec, Term, Transform, counts_as_missing, terms_of
+from creditdesk.model.layout import Layout, layout
+from creditdesk.model.spec import Factor, ModelSpec, Term, Transform
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -41,27 +42,34 @@ def treat(spec: ModelSpec, values: FloatArray, reasons: ReasonArray) -> Design:
     ``values``, ``reasons``: factors x points in the order of the model's factors; a reason is 0 where there is a value,
     else a code of ``REASON_CODES``. Raises BugError where a ratio has neither a value nor a reason.
     """
-    if np.any(np.isnan(values) & (reasons == 0)):
+    known = reasons == 0
+    if np.any(np.isnan(values) & known):
         message = "a ratio has neither a value nor a reason for having none"
         raise BugError(message)
-    treated = np.stack([_treated(*row) for row in zip(spec.factors, values, reasons, strict=True)])
-    names = terms_of(spec)
-    terms = np.stack([_term(spec, term, treated[term.factor], reasons[term.factor]) for term in names])
-    low, high = (np.stack([_beyond(*row, side) for row in zip(spec.factors, values, strict=True)]) for side in (-1, 1))
+    laid, column = layout(spec), (-1, *(1,) * (values.ndim - 1))
+    low, high, row = (one.reshape(column) for one in (laid.low, laid.high, np.arange(len(laid.low))))
+    treated = np.where(known, np.clip(values, low, high), laid.at_cap[row, reasons])
+    terms = np.empty((len(laid.names), *values.shape[1:]))
+    terms[laid.main] = _main_terms(laid, treated, column)
+    terms[laid.switches] = laid.switched[np.arange(len(laid.switches)).reshape(column), reasons[laid.owners]]
     return Design(
-        names=names,
+        names=laid.names,
         terms=terms,
         treated=treated,
-        capped=(reasons == 0) & (low | high),
-        missing=_where_reason(spec, reasons, refusal=False),
-        refused=_where_reason(spec, reasons, refusal=True),
+        capped=known & ((values < low) | (values > high)),
+        missing=laid.missing[row, reasons],
+        refused=laid.refused[row, reasons],
     )
 
 
+@lru_cache(maxsize=64)
 def treat_reference(spec: ModelSpec) -> Design:
-    """Treat the reference borrower; one point, without a trailing axis."""
+    """Treat the reference borrower; one point, without a trailing axis. Kept, and therefore not to be written to."""
     values = np.array([spec.reference.values[factor.key] for factor in spec.factors], dtype=np.float64)
-    return treat(spec, values, np.zeros(values.shape, dtype=np.uint8))
+    design = treat(spec, values, np.zeros(values.shape, dtype=np.uint8))
+    for array in (design.terms, design.treated, design.capped, design.missing, design.refused):
+        array.flags.writeable = False
+    return design
 
 
 def treat_derivative(spec: ModelSpec, values: FloatArray, reasons: ReasonArray) -> FloatArray:
@@ -83,33 +91,20 @@ def shape_values(factor: Factor, treated: FloatArray) -> FloatArray:
     return shaped if factor.deflator is None else shaped - np.log(factor.deflator.index)
 
 
-def _treated(factor: Factor, values: FloatArray, reasons: ReasonArray) -> FloatArray:
-    low, high = _bounds(factor)
-    result = np.where(reasons == 0, np.clip(values, low, high), np.nan)
-    for reason, code in REASON_CODES.items():
-        rule = factor.rules.rule(reason)
-        if rule is not None and rule.at_cap is not None:
-            result = np.where(reasons == code, low if rule.at_cap == "low" else high, result)
-    return result
+def _main_terms(laid: Layout, treated: FloatArray, column: tuple[int, ...]) -> FloatArray:
+    """Return every factor's main term; nil where there is no treated value."""
+    known = ~np.isnan(treated)
+    shaped = np.where(known, treated, 1.0)
+    shaped[laid.log] = np.log(shaped[laid.log])
+    signed = shaped[laid.signed_log]
+    shaped[laid.signed_log] = np.sign(signed) * np.log1p(np.abs(signed))
+    shaped -= laid.deflation.reshape(column)
+    return np.where(known, (shaped - laid.centre.reshape(column)) / laid.scale.reshape(column), 0.0)
 
 
 def _bounds(factor: Factor) -> tuple[float, float]:
     low, high = factor.caps.low, factor.caps.high
     return (-np.inf if low is None else low), (np.inf if high is None else high)
-
-
-def _beyond(factor: Factor, values: FloatArray, side: int) -> BoolArray:
-    low, high = _bounds(factor)
-    return np.less(values, low) if side < 0 else np.greater(values, high)
-
-
-def _term(spec: ModelSpec, term: Term, treated: FloatArray, reasons: ReasonArray) -> FloatArray:
-    if term.reasons:
-        return _met(reasons, term.reasons).astype(np.float64)
-    known = ~np.isnan(treated)
-    factor = spec.factors[term.factor]
-    shaped = shape_values(factor, np.where(known, treated, 1.0))
-    return np.where(known, (shaped - factor.centre) / factor.scale, 0.0)
 
 
 def _slope(factor: Factor, values: FloatArray, reasons: ReasonArray) -> FloatArray:
@@ -123,26 +118,3 @@ def _slope(factor: Factor, values: FloatArray, reasons: ReasonArray) -> FloatArr
     else:
         slope = np.ones_like(safe)
     return np.where(inside, slope / factor.scale, 0.0)
-
-
-def _where_reason(spec: ModelSpec, reasons: ReasonArray, *, refusal: bool) -> BoolArray:
-    """Mark factors x points whose reason refuses (``refusal``) or counts as missing."""
-    return np.stack(
-        [
-            _met(codes, [reason for reason in REASONS if _applies(factor, reason, refusal=refusal)])
-            for factor, codes in zip(spec.factors, reasons, strict=True)
-        ]
-    )
-
-
-def _met(codes: ReasonArray, reasons: Iterable[str]) -> BoolArray:
-    """Mark where a code is that of one of some reasons; a table of all codes is looked up, which is quick."""
-    table = np.zeros(len(REASONS) + 1, dtype=np.bool_)
-    for reason in reasons:
-        table[REASON_CODES[reason]] = True
-    return np.asarray(table[codes])
-
-
-def _applies(factor: Factor, reason: str, *, refusal: bool) -> bool:
-    rule = factor.rules.rule(reason)
-    return (rule is None or rule.refuse) if refusal else counts_as_missing(reason, rule)
