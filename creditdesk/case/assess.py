@@ -12,6 +12,7 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.document import Case
 from creditdesk.case.doubts import case_findings, factor_findings
 from creditdesk.case.grades import graded, verdict, without_grade
+from creditdesk.case.moves import what_moved
 from creditdesk.case.opinions import RatioTables, borrower, second_opinion
 from creditdesk.case.placing import fitted_curve
 from creditdesk.case.reasons import principal_reasons
@@ -103,6 +104,8 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
     others = [other for other, one in enumerate(case.periods) if other != period and is_actual(one)]
     past = {other: _past(desk, other) for other in others}
     before = prior_index(case.periods, period)
+    last_year = None if before is None else past[before]
+    moves, why_no_moves = what_moved(scored, period, factors, before, last_year)
     score = _number(scored.scores[period])
     return Standing(
         obligor=case.obligor.name,
@@ -130,7 +133,9 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
         usable=usable,
         curve=fitted_curve(scored, house.scale, house.settings.interval_level, (period, *others)),
         past=tuple(past.values()),
-        last_year=None if before is None else past[before],
+        last_year=last_year,
+        what_moved=moves,
+        what_moved_reason=why_no_moves,
         second_opinions=_second_opinions(desk),
         findings=findings,
         cautions=(*house.settings.cautions, *spec.cautions, *((UNCERTAINTY,) if spec.covariance else ())),

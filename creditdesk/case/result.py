@@ -51,6 +51,7 @@ def result(standing: Standing) -> Json:
             }
             for past in standing.past
         ],
+        "what_moved": _what_moved(standing),
         "second_opinions": [
             {
                 "name": one.name,
@@ -125,6 +126,28 @@ def _factor(factor: FactorStanding) -> Json:
                 "reference": term.reference,
             }
             for term in factor.terms
+        ],
+    }
+
+
+def _what_moved(standing: Standing) -> Json:
+    """Return what moved since last year; without factors where there is a ``reason``."""
+    moved, last_year = standing.what_moved, standing.last_year
+    return {
+        "since": last_year.ends.isoformat() if moved and last_year is not None else None,
+        "reason": standing.what_moved_reason,
+        "factors": [
+            {
+                "key": move.key,
+                "ratio": move.ratio,
+                "before": move.before,
+                "before_missing": move.before_reason,
+                "after": move.after,
+                "after_missing": move.after_reason,
+                "log_odds": move.log_odds,
+                "pd_share": move.pd_share,
+            }
+            for move in moved
         ],
     }
 

@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.case.standing import FactorStanding, Term
+from creditdesk.case.treatment import treatment_of
 from creditdesk.model.calibrate import calibrated_pd
 from creditdesk.model.contribute import Contributions, contribute
 from creditdesk.model.interval import ScoreInterval, interval, standard_error
@@ -77,13 +78,14 @@ def _factor(scored: Scored, catalogue: Catalogue, table: RatioTable, number: int
     treated, reference = float(design.treated[number, period]), float(scored.reference.treated[number])
     known = not np.isnan(scored.scores[period])
     contributions = scored.contributions
+    reason = REASONS[code - 1] if code else None
     return FactorStanding(
         key=factor.key,
         label=factor.label,
         ratio=factor.ratio,
         unit=catalogue.spec(factor.ratio).unit.value,
         value=None if code else value,
-        reason=REASONS[code - 1] if code else None,
+        reason=reason,
         reason_text=reason_text(catalogue, table, factor.ratio, period) if code else "",
         treated=None if np.isnan(treated) else treated,
         log_odds=float(contributions.log_odds[number, period]) if known else None,
@@ -92,6 +94,7 @@ def _factor(scored: Scored, catalogue: Catalogue, table: RatioTable, number: int
         terms=_terms(scored, number, period),
         reference_value=None if np.isnan(reference) else reference,
         place=None if code else place_in_sample(scored.spec, factor.key, value),
+        treatment=treatment_of(factor, reason),
     )
 
 

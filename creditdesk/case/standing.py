@@ -57,6 +57,25 @@ class Term:
 
 
 @dataclass(frozen=True, slots=True)
+class Treatment:
+    """State how the model treats one factor.
+
+    Main term = (``transform`` of the ratio within its caps - ``centre``) / ``scale``; ``transform`` is identity, log
+    or signed_log; ``deflator``: price index whose logarithm is taken off. Caps in the ratio's unit, None: none.
+    ``rule``, ``evidence``: what is done where the ratio has no value, and why; "" where it has one.
+    """
+
+    cap_low: float | None = None
+    cap_high: float | None = None
+    transform: str = "identity"
+    centre: float = 0.0
+    scale: float = 1.0
+    deflator: float | None = None
+    rule: str = ""
+    evidence: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class FactorStanding:
     """Show one factor of the model for one period.
 
@@ -81,6 +100,28 @@ class FactorStanding:
     terms: tuple[Term, ...]
     reference_value: float | None
     place: float | None
+    treatment: Treatment = Treatment()
+
+
+@dataclass(frozen=True, slots=True)
+class FactorMove:
+    """Show what one factor moved from last year's borrower to this one.
+
+    ``before``, ``after``: the ratio in both years, None where it has none (the reason's key then stands beside it).
+    ``log_odds``: its part of score - last year's score; ``pd_share``: Aumann-Shapley share of pd_model - last year's,
+    None without a link.
+    """
+
+    key: str
+    label: str
+    ratio: str
+    unit: str
+    before: float | None
+    before_reason: str | None
+    after: float | None
+    after_reason: str | None
+    log_odds: float
+    pd_share: float | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -178,6 +219,8 @@ class Standing:
     ``usable`` is False while a finding of severity stop stands: the PD is then shown as not usable, without grade.
     ``past``: every other actual period, in their order; ``last_year``: the assessed period's prior. ``received``:
     statements before adjustments; ``statements``: after them. What was annualised and is needed stands in ``ratios``.
+    ``what_moved``: the way from last year's borrower to this one, in the order of ``factors``; empty where one of the
+    two has no score, for the reason in ``what_moved_reason``.
     """
 
     obligor: str
@@ -209,3 +252,5 @@ class Standing:
     findings: tuple[Finding, ...]
     cautions: tuple[str, ...]
     house: HouseIdentity
+    what_moved: tuple[FactorMove, ...] = ()
+    what_moved_reason: str = ""
