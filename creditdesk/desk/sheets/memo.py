@@ -2,14 +2,15 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import QTimer, Signal
-from PySide6.QtGui import QFocusEvent, QHideEvent, QShowEvent
-from PySide6.QtWidgets import QHBoxLayout, QPlainTextEdit, QPushButton, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtCore import QTimer
+from PySide6.QtGui import QHideEvent, QShowEvent
+from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSplitter, QVBoxLayout, QWidget
 
 from creditdesk.case.commands import Command, SetText
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.desk.actions import Entry
+from creditdesk.desk.fields import TextBlock
 from creditdesk.desk.frame import label
 from creditdesk.desk.preview import Preview
 from creditdesk.desk.sheets.base import Sheet
@@ -24,23 +25,6 @@ BLOCKS = (
     ("conditions", "Conditions", "What must hold before and after drawing."),
 )
 _PAUSE = 350
-
-
-class TextBlock(QPlainTextEdit):
-    """Edit one text block; the edit is handed on when the cursor leaves it."""
-
-    left = Signal(str)
-
-    def __init__(self, title: str, hint: str) -> None:
-        super().__init__()
-        self.setPlaceholderText(hint)
-        self.setAccessibleName(title)
-        self.setTabChangesFocus(True)
-
-    def focusOutEvent(self, event: QFocusEvent) -> None:
-        """Hand the text on."""
-        super().focusOutEvent(event)
-        self.left.emit(self.toPlainText())
 
 
 class MemoSheet(Sheet):
@@ -70,9 +54,7 @@ class MemoSheet(Sheet):
         """Show the texts of ``case`` and, once typing pauses, the pages of its memo."""
         self._case = case
         for key, block in self.blocks.items():
-            text = case.texts.get(key, "")
-            if block.toPlainText() != text and not block.hasFocus():
-                block.setPlainText(text)
+            block.show_text(case.texts.get(key, ""))
         if self.isVisible():
             self._pause.start()
 

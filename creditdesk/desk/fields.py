@@ -1,0 +1,313 @@
+"""Fields of a form: each hands its entry on when Enter, Tab or a choice ends it, and says in words what was refused."""
+
+import re
+from collections.abc import Callable, Sequence
+
+from PySide6.QtCore import QEvent, QModelIndex, QPersistentModelIndex, QStringListModel, Qt, Signal
+from PySide6.QtGui import QFocusEvent, QKeyEvent, QKeySequence, QWheelEvent
+from PySide6.QtWidgets import QComboBox, QCompleter, QLineEdit, QPlainTextEdit, QWidget
+
+from creditdesk.base.errors import UserError
+from creditdesk.desk.frame import label
+from creditdesk.house.decode import fault_of
+
+_PLACE = re.compile(r"(?:[\w.\[\]-]+: )+")
+_STAYS = (Qt.FocusReason.PopupFocusReason,)
+"""Reasons to lose the focus that end no entry: a menu or list of the field's own."""
+_HISTORY = (QKeySequence.StandardKey.Undo, QKeySequence.StandardKey.Redo)
+
+
+def set_role(widget: QWidget, role: str) -> None:
+    """Give a widget another look of the style sheet."""
+    if widget.property("role") != role:
+        widget.setProperty("role", role)
+        widget.style().unpolish(widget)
+        widget.style().polish(widget)
+
+
+def fault_words(error: UserError) -> str:
+    """Word faults for the place they stand beside: without the place, found and expected in plain words."""
+    return ". ".join(dict.fromkeys(_words_of(sentence) for sentence in error.faults))
+
+
+def _words_of(sentence: str) -> str:
+    fault = fault_of(sentence)
+    if fault.allowed:
+        return f"Found {fault.found}, expected {fault.allowed}"
+    bare = _PLACE.sub("", sentence, count=1)
+    return f"{bare[:1].upper()}{bare[1:]}"
+
+
+class TextField(QLineEdit):
+    """Edit one value as text. Enter and leaving hand it on; Escape, or undo within, brings the recorded one back."""
+
+    entered = Signal(object)
+    restored = Signal()
+
+    def __init__(self, title: str, hint: str = "") -> None:
+        super().__init__()
+        self._recorded = ""
+        self._refused: str | None = None
+        self.setAccessibleName(title)
+        self.setPlaceholderText(hint)
+        self.returnPressed.connect(self.enter)
+
+    @property
+    def changed(self) -> bool:
+        """Say whether anything stands here that is not recorded."""
+        return self.text() != self._recorded
+
+    def show_value(self, value: object) -> None:
+        """Show the recorded value; what is being typed stays unless the recorded value itself has changed."""
+        text = str(value)
+        if text == self._recorded and self.changed:
+            return
+        self._recorded, self._refused = text, None
+        if self.text() != text:
+            self.setText(text)
+            self.setCursorPosition(0)
+
+    def enter(self) -> None:
+        """Hand on what was typed."""
+        if self.changed:
+            self.entered.emit(self.text())
+        else:
+            self.restore()
+
+    def restore(self) -> None:
+        """Bring the recorded value back."""
+        self._refused = None
+        self.setText(self._recorded)
+        self.restored.emit()
+
+    def refuse(self) -> None:
+        """Keep what was typed, and do not offer the same again when the focus leaves."""
+        self._refused = self.text()
+
+    def focusOutEvent(self, event: QFocusEvent) -> None:
+        """Hand on what was typed, but not a second time what was refused."""
+        super().focusOutEvent(event)
+        if event.reason() not in _STAYS and self.changed and self.text() != self._refused:
+            self.enter()
+
+    def event(self, event: QEvent) -> bool:
+        """Leave undo and redo to the window where nothing was typed here."""
+        if event.type() == QEvent.Type.ShortcutOverride and isinstance(event, QKeyEvent) and not self.changed:
+            asked = any(event.matches(key) for key in _HISTORY)
+            event.setAccepted(not asked)
+            return True if asked else super().event(event)
+        return super().event(event)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Take Escape and undo as the way back to the recorded value."""
+        back = event.key() == Qt.Key.Key_Escape or event.matches(QKeySequence.StandardKey.Undo)
+        if back and self.changed:
+            self.restore()
+        else:
+            super().keyPressEvent(event)
+
+
+class CodeField(TextField):
+    """Edit a code; names that contain what is typed are offered, capitals and spaces are seen to."""
+
+    def __init__(self, title: str, codes: Sequence[tuple[str, str]], hint: str = "") -> None:
+        super().__init__(title, hint)
+        completer = _Codes([f"{code}  {name}".strip() for code, name in codes], self)
+        completer.activated.connect(self._on_chosen)
+        self.setCompleter(completer)
+
+    def enter(self) -> None:
+        """Hand the code on in capitals."""
+        tidy = self.text().strip().upper()
+        if self.text() != tidy:
+            self.setText(tidy)
+        super().enter()
+
+    def _on_chosen(self, code: str) -> None:
+        self.setText(code)
+        self.enter()
+
+
+class _Codes(QCompleter):
+    """Complete a code from any part of its name."""
+
+    def __init__(self, lines: Sequence[str], parent: QWidget) -> None:
+        super().__init__(parent)
+        self.setModel(QStringListModel(list(lines), self))
+        self.setCaseSensitivity(Qt.CaseSensitivity.CaseInsensitive)
+        self.setFilterMode(Qt.MatchFlag.MatchContains)
+
+    def pathFromIndex(self, index: QModelIndex | QPersistentModelIndex) -> str:
+        """Return the code alone."""
+        return str(index.data()).partition("  ")[0]
+
+
+class ChoiceField(QComboBox):
+    """Choose one of a few values. A list opens on any key, so that nothing is chosen in passing."""
+
+    entered = Signal(object)
+    restored = Signal()
+
+    def __init__(self, title: str) -> None:
+        super().__init__()
+        self._values: list[object] = []
+        self._recorded: object = None
+        self.setAccessibleName(title)
+        self.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
+        self.setMinimumContentsLength(12)
+        self.activated.connect(self._on_activated)
+
+    def offer(self, choices: Sequence[tuple[object, str]]) -> None:
+        """Offer ``choices``, each a value and its words; nothing happens where these are offered already."""
+        texts = [text for _, text in choices]
+        if [value for value, _ in choices] == self._values and texts == self.texts():
+            return
+        self._values = [value for value, _ in choices]
+        self.clear()
+        self.addItems(texts)
+        self._show()
+
+    def texts(self) -> list[str]:
+        """Return the words of all choices."""
+        return [self.itemText(index) for index in range(self.count())]
+
+    def show_value(self, value: object) -> None:
+        """Show the recorded value."""
+        self._recorded = value
+        self._show()
+
+    def choose(self, value: object) -> None:
+        """Hand on a choice as if it had been made in the list."""
+        self.setCurrentIndex(self._values.index(value))
+        self._on_activated(self.currentIndex())
+
+    def refuse(self) -> None:
+        """Go back to what is recorded: a choice is quickly made again."""
+        self._show()
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Open the list on arrows, Enter and letters; a letter also looks for its entry."""
+        text = event.text()
+        if event.key() in (Qt.Key.Key_Up, Qt.Key.Key_Down, Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Space):
+            self.showPopup()
+        elif text.isprintable() and text and not event.modifiers() & ~Qt.KeyboardModifier.ShiftModifier:
+            self.showPopup()
+            self.view().keyboardSearch(text)
+        else:
+            super().keyPressEvent(event)
+
+    def wheelEvent(self, event: QWheelEvent) -> None:
+        """Let the wheel scroll the sheet and change nothing."""
+        event.ignore()
+
+    def _show(self) -> None:
+        self.setCurrentIndex(self._values.index(self._recorded) if self._recorded in self._values else -1)
+
+    def _on_activated(self, index: int) -> None:
+        value = self._values[index]
+        if value == self._recorded:
+            self.restored.emit()
+        else:
+            self.entered.emit(value)
+
+
+class TextBlock(QPlainTextEdit):
+    """Edit one text block; the edit is handed on when the cursor leaves it, Escape brings the recorded text back."""
+
+    left = Signal(str)
+
+    def __init__(self, title: str, hint: str) -> None:
+        super().__init__()
+        self._recorded, self._shown = "", ""
+        self.setPlaceholderText(hint)
+        self.setAccessibleName(title)
+        self.setTabChangesFocus(True)
+
+    def show_text(self, text: str) -> None:
+        """Show the recorded text; what is being typed stays unless the recorded text itself has changed."""
+        if text == self._recorded:
+            return
+        self._recorded = text
+        if self.toPlainText() != text:
+            self.setPlainText(text)
+        self._shown = self.toPlainText()
+
+    def focusOutEvent(self, event: QFocusEvent) -> None:
+        """Hand on a text that was changed."""
+        super().focusOutEvent(event)
+        if event.reason() not in _STAYS and self.toPlainText() != self._shown:
+            self.left.emit(self.toPlainText())
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Take Escape as the way back to the recorded text."""
+        if event.key() == Qt.Key.Key_Escape and self.toPlainText() != self._shown:
+            self.setPlainText(self._shown)
+        else:
+            super().keyPressEvent(event)
+
+
+Field = TextField | ChoiceField
+
+
+class Line:
+    """Tie a field to its title and the words beside it.
+
+    ``accept`` takes what was entered and raises UserError where it cannot be: the words then say why, until the entry
+    is mended or taken back.
+    """
+
+    def __init__(self, title: str, field: Field, accept: Callable[[object], None]) -> None:
+        self.field = field
+        self.title = label("second", title)
+        self.title.setBuddy(field)
+        self.words = label("second", wrap=True)
+        self._accept = accept
+        self._said = ""
+        field.entered.connect(self._on_entered)
+        field.restored.connect(self._on_restored)
+
+    @property
+    def faulty(self) -> bool:
+        """Say whether what stands in the field was refused."""
+        return bool(self.field.property("fault"))
+
+    def show(self, value: object, words: str = "") -> None:
+        """Show the recorded value with its words; a refusal stays as long as what was refused."""
+        self.field.show_value(value)
+        self._said = words
+        if not (self.faulty and isinstance(self.field, TextField) and self.field.changed):
+            self._on_restored()
+
+    def say(self, words: str) -> None:
+        """Say something of what is being typed."""
+        self._mark(faulty=False)
+        self._write(words, "second")
+
+    def refuse(self, words: str) -> None:
+        """Say why the entry cannot be; what was typed stays."""
+        self.field.refuse()
+        self._mark(faulty=True)
+        self._write(f"▲ {words}", "breach")
+
+    def _on_entered(self, value: object) -> None:
+        try:
+            self._accept(value)
+        except UserError as error:
+            self.refuse(fault_words(error))
+        else:
+            self._on_restored()
+
+    def _on_restored(self) -> None:
+        self._mark(faulty=False)
+        self._write(self._said, "second")
+
+    def _write(self, words: str, role: str) -> None:
+        set_role(self.words, role)
+        self.words.setText(words)
+        self.field.setAccessibleDescription(words)
+
+    def _mark(self, *, faulty: bool) -> None:
+        if self.faulty != faulty:
+            self.field.setProperty("fault", faulty)
+            self.field.style().unpolish(self.field)
+            self.field.style().polish(self.field)
