@@ -26,11 +26,27 @@ def separated(tmp_path: Path) -> Path:
     return path
 
 
+def alike(one: object, other: object) -> bool:
+    """Say whether two model files agree: numbers to 1e-9 of their size, everything else exactly."""
+    if isinstance(one, dict) and isinstance(other, dict):
+        return one.keys() == other.keys() and all(alike(one[key], other[key]) for key in one)
+    if isinstance(one, list) and isinstance(other, list):
+        return len(one) == len(other) and all(map(alike, one, other))
+    if isinstance(one, float) and isinstance(other, float):
+        return math.isclose(one, other, rel_tol=1e-9, abs_tol=1e-12)
+    return type(one) is type(other) and one == other
+
+
 def test_the_shipped_model_is_fitted_from_the_shipped_sample(command: Command, tmp_path: Path) -> None:
     out = tmp_path / "model.toml"
     done = command(*FIT, "--out", out)
     assert (done.code, done.messages) == (0, ())
-    assert out.read_bytes() == SHIPPED.read_bytes()
+    again, shipped = (tomllib.loads(path.read_text(encoding="utf-8")) for path in (out, SHIPPED))
+    assert alike(again, shipped)  # to the byte on one machine; another's arithmetic may differ in the last bits
+    assert list(again) == list(shipped)
+    second = tmp_path / "second.toml"
+    assert command(*FIT, "--out", second).code == 0
+    assert second.read_bytes() == out.read_bytes()
     assert done.text.startswith("5868 borrowers, ")  # 132 of 6,000 have too many factors missing
 
 
@@ -39,11 +55,11 @@ def test_a_fitted_model_assesses_at_once(command: Command, tmp_path: Path) -> No
     assert command(*FIT, "--base-rate", "0.01", "--out", out).code == 0
     done = command("assess", SOUND, "--model", out, "--json")
     shifted, shipped = json.loads(done.text), json.loads(command("assess", SOUND, "--json").text)
-    assert (done.code, shifted["score"]) == (0, shipped["score"])
+    assert (done.code, shifted["score"]) == (0, pytest.approx(shipped["score"], rel=1e-9))
     rate = tomllib.loads(SHIPPED.read_text(encoding="utf-8"))["sample"]
     start = rate["defaults"] / rate["size"]
     odds = shipped["pd_calibrated"] / (1 - shipped["pd_calibrated"]) * (0.01 / 0.99) / (start / (1 - start))
-    assert shifted["pd_calibrated"] == pytest.approx(odds / (1 + odds), rel=1e-12)  # King & Zeng 2001
+    assert shifted["pd_calibrated"] == pytest.approx(odds / (1 + odds), rel=1e-9)  # King & Zeng 2001
 
 
 def test_separation_is_an_error_with_a_name_and_firth_bears_it(

@@ -45,7 +45,7 @@ def test_numbers_of_a_trace_give_its_value(key: str, months: int) -> None:
         assert trace.reason is Reason.NEEDS_PRIOR_PERIOD
 
 
-@pytest.mark.parametrize("key", [*VALUED, *CONDITIONS])
+@pytest.mark.parametrize("key", [*VALUED, *sorted(CONDITIONS)])
 def test_each_number_names_the_cell_it_comes_from(key: str) -> None:
     statements = by_hand(SOUND)
     table = ratios(statements)
