@@ -86,6 +86,22 @@ class SetPrinted(Edit, frozen=True, tag="set_printed"):
         return _describe_cells(self.cells, ", as printed,", chart, case)
 
 
+class SetCells(Edit, frozen=True, tag="set_cells"):
+    """Set figures and totals as printed in one edit, as a paste or a clearing across both does."""
+
+    cells: tuple[Figure, ...]
+    totals: tuple[Figure, ...]
+
+    def applied(self, case: Case) -> Case:
+        """Set the figures, then the totals."""
+        return SetPrinted(self.totals).applied(SetFigures(self.cells).applied(case))
+
+    def describe(self, chart: Chart, case: Case) -> str:
+        """Name the first cell and count the others."""
+        kind = "" if self.cells else ", as printed,"
+        return _describe_cells((*self.cells, *self.totals), kind, chart, case)
+
+
 class SetNote(Edit, frozen=True, tag="set_note"):
     """Note where the figure of a cell comes from; "" takes the note away."""
 
@@ -321,6 +337,7 @@ class ReplaceCase(Edit, frozen=True, tag="replace_case"):
 Command: TypeAlias = (
     SetFigures
     | SetPrinted
+    | SetCells
     | SetNote
     | SetObligor
     | SetRates
@@ -365,14 +382,18 @@ def command_to_json(command: Command) -> bytes:
 def command_from_json(data: bytes) -> Command:
     """Read what ``command_to_json`` wrote. Raises msgspec.DecodeError or ValidationError for anything else."""
     raw = msgspec.json.decode(data)
-    if isinstance(raw, dict) and isinstance(cells := raw.get("cells"), list):
-        for cell in cells:
+    if isinstance(raw, dict):
+        for cell in (*_listed(raw.get("cells")), *_listed(raw.get("totals"))):
             if isinstance(cell, dict) and cell.get("amount", 0.0) is None:
                 cell["amount"] = math.nan
     if isinstance(raw, dict) and "case" in raw:
         return ReplaceCase(case_from_tables(raw["case"]))
     command: Command = msgspec.convert(raw, Command)
     return command
+
+
+def _listed(value: object) -> list[object]:
+    return value if isinstance(value, list) else []
 
 
 def _refused(*faults: Fault) -> UserError:

@@ -18,6 +18,7 @@ from creditdesk.case.commands import (
     RemovePeriod,
     ReplaceCase,
     SetAssessment,
+    SetCells,
     SetFigures,
     SetLeadModel,
     SetNote,
@@ -53,6 +54,13 @@ def refusal(case: Case, command: Command, chart: Chart | None = None) -> tuple[s
         apply(case, command, chart)
     assert caught.value.code == "edit"
     return caught.value.faults
+
+
+def test_figures_and_totals_are_set_in_one_edit(case: Case) -> None:
+    both = SetCells((Figure("revenue", 0, 5.0),), (Figure("total_assets", 1, 9.0),))
+    after = apply(case, both)
+    assert after == apply(apply(case, SetFigures(both.cells)), SetPrinted(both.totals))
+    assert (after.figures["revenue"][0], after.printed["total_assets"][1]) == (5.0, 9.0)
 
 
 def test_a_block_of_figures_is_one_edit(case: Case) -> None:
@@ -171,6 +179,8 @@ def test_a_case_can_be_replaced_whole(case: Case) -> None:
         (figure("revenue", 0, -12.25), "Revenue 2024 to \u221212.25"),
         (SetFigures((Figure("cash", 0, 1.0), Figure("cash", 1, 2.0))), "Cash 2024 to 1 and 1 more"),
         (SetPrinted((Figure("total_assets", 1, 9.0),)), "Total assets 2025, as printed, to 9"),
+        (SetCells((), (Figure("total_assets", 1, 9.0),)), "Total assets 2025, as printed, to 9"),
+        (SetCells((Figure("cash", 0, 1.0),), (Figure("total_assets", 1, 9.0),)), "Cash 2024 to 1 and 1 more"),
         (SetNote("cash", 1, "x"), "Note on Cash 2025"),
         (SetObligor("legal_form", "company"), "Legal form to company"),
         (SetRates(Rates(date(2025, 12, 31), {"USD": 1.3, "EUR": 1.1})), "Exchange rates of 2025-12-31: EUR, USD"),
@@ -201,9 +211,11 @@ periods = st.builds(Period, days, st.integers(0, 26), st.sampled_from(Basis), st
 entries = st.lists(st.builds(Entry, lines, st.floats(-1e6, 1e6)), max_size=3).map(tuple)
 adjustments = st.builds(Adjustment, st.sampled_from(AdjustmentKind), days, entries, texts)
 blocks = st.sampled_from(["request", "conditions", "nonsense"])
+totals = st.lists(st.builds(Figure, st.just("total_assets"), st.integers(0, 3), amounts), max_size=5).map(tuple)
 edits: st.SearchStrategy[Command] = st.one_of(
     st.builds(SetFigures, st.lists(cells, max_size=5).map(tuple)),
-    st.builds(SetPrinted, st.lists(st.builds(Figure, st.just("total_assets"), st.integers(0, 3), amounts)).map(tuple)),
+    st.builds(SetPrinted, totals),
+    st.builds(SetCells, st.lists(cells, max_size=5).map(tuple), totals),
     st.builds(SetNote, lines, st.integers(-1, 4), texts),
     st.builds(SetObligor, st.sampled_from(["name", "country", "unit", "lei"]), st.sampled_from(["", "DE", 1, 1000])),
     st.builds(SetRates, st.none() | st.builds(Rates, days, st.dictionaries(st.sampled_from(["EUR", "GBP"]), amounts))),
