@@ -1,4 +1,4 @@
-"""What stands behind the borrower: axes, grade bands, fitted curve, its band of uncertainty, the sample's bins."""
+"""What stands behind the borrower: axes, grade bands, fitted curve, its band of uncertainty, bins, the key."""
 
 from itertools import pairwise
 
@@ -8,11 +8,11 @@ from creditdesk.base.palette import DARK, Palette
 from creditdesk.case.standing import Curve, SampleBin, Standing
 from creditdesk.charts.board import Board
 from creditdesk.charts.frame import Frame, decades, score_ticks, tick_text
+from creditdesk.charts.key import draw_key, score_title
 from creditdesk.charts.placing import Box
-from creditdesk.charts.style import CAP_HEIGHT, LINE_HEIGHT, Pen, Type, text_width, type_size
+from creditdesk.charts.style import CAP_HEIGHT, LINE_HEIGHT, Pen, Type, type_size
 
 BIN_HALF = 2.3
-SCORE_TITLES = {"logit": "score (log-odds of default)", "probit": "score (index units)"}
 
 
 def draw_backdrop(board: Board, layer: str, frame: Frame, standing: Standing, palette: Palette) -> None:
@@ -25,7 +25,8 @@ def draw_backdrop(board: Board, layer: str, frame: Frame, standing: Standing, pa
     _draw_curve(board, layer, frame, curve, palette)
     for bin_ in curve.bins:
         _draw_bin(board, layer, frame, bin_, palette)
-    _draw_key(board, layer, frame, standing, palette)
+    below = frame.plot.bottom - (0.6 + CAP_HEIGHT / 2 + LINE_HEIGHT) * type_size(palette)
+    draw_key(board, layer, (frame.plot.left, below), frame.key, palette)
 
 
 def curve_boxes(frame: Frame, curve: Curve) -> list[Box]:
@@ -73,8 +74,7 @@ def _draw_axes(board: Board, layer: str, frame: Frame, standing: Standing, palet
         board.line(layer, [(x, plot.bottom), (x, plot.bottom - 2)], Pen(palette.rule, 0.8), z=0.8)
         if x > plot.left + size or decades(frame.pd_low)[-1] > frame.pd_low * 1.1:  # else it would touch the corner's
             board.text(layer, (x, baseline), label, style.but(align="center"))
-    title = SCORE_TITLES.get(standing.model.link, "score")
-    board.text(layer, (plot.right, baseline - LINE_HEIGHT * size), title, style)
+    board.text(layer, (plot.right, baseline - LINE_HEIGHT * size), score_title(standing), style)
 
 
 def _draw_curve(board: Board, layer: str, frame: Frame, curve: Curve, palette: Palette) -> None:
@@ -99,40 +99,3 @@ def _draw_bin(board: Board, layer: str, frame: Frame, bin_: SampleBin, palette: 
         return
     box, edge = _bin_box(frame, bin_), Pen(palette.second_ink, 0.8)
     board.box(layer, (box.left, box.bottom), (2 * BIN_HALF, 2 * BIN_HALF), Pen(palette.sheet), edge, z=2.4)
-
-
-def _draw_key(board: Board, layer: str, frame: Frame, standing: Standing, palette: Palette) -> None:
-    """Name square, dot and band under the axis, as far as there is room before the axis title."""
-    size = type_size(palette)
-    style = Type(palette.second_ink, size)
-    y = frame.plot.bottom - (0.6 + CAP_HEIGHT / 2 + LINE_HEIGHT) * size
-    x = frame.plot.left
-    end = frame.plot.right - text_width(SCORE_TITLES.get(standing.model.link, "score"), size) - 10
-    for shape, words in _key_entries(standing):
-        if x + 9 + text_width(words, size) > end:
-            break
-        _draw_key_shape(board, layer, shape, (x + 3, y), palette)
-        board.words(layer, (x + 9, y), words, style)
-        x += 9 + text_width(words, size) + 10
-
-
-def _key_entries(standing: Standing) -> list[tuple[str, str]]:
-    entries = []
-    if standing.curve is not None and standing.curve.bins:
-        entries.append(("square", "sample default rate"))
-    if any(year.score is not None for year in standing.past):
-        entries.append(("dot", "other years"))
-    if standing.curve is not None and np.isfinite(standing.curve.low).any():
-        entries.append(("band", "uncertainty of the coefficients"))
-    return entries
-
-
-def _draw_key_shape(board: Board, layer: str, shape: str, at: tuple[float, float], palette: Palette) -> None:
-    x, y = at
-    if shape == "square":
-        board.line(layer, [(x, y - 4), (x, y + 4)], Pen(palette.second_ink, 0.7, alpha=0.75))
-        board.box(layer, (x - 2, y - 2), (4, 4), Pen(palette.sheet), Pen(palette.second_ink, 0.8), z=2.4)
-    elif shape == "dot":
-        board.dot(layer, at, 2.2, Pen(palette.sheet), Pen(palette.accent, 0.9))
-    else:
-        board.box(layer, (x - 3, y - 2.5), (6.5, 5), Pen(palette.accent, alpha=0.22))

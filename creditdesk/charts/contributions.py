@@ -6,10 +6,11 @@ from dataclasses import dataclass
 from matplotlib.backend_bases import Event
 from matplotlib.figure import Figure
 
-from creditdesk.base.display import format_number
 from creditdesk.base.palette import Palette
-from creditdesk.case.standing import FactorStanding, Standing
+from creditdesk.case.standing import Standing
 from creditdesk.charts.board import Board
+from creditdesk.charts.passage import Passage, Row, from_reference, since_last_year
+from creditdesk.charts.placing import Box
 from creditdesk.charts.style import (
     CAP_HEIGHT,
     LINE_HEIGHT,
@@ -23,22 +24,15 @@ from creditdesk.charts.style import (
     type_size,
     wrap,
 )
-from creditdesk.charts.words import contribution_scale, factor_value, signed, what_it_moves
+from creditdesk.charts.words import contribution_scale, signed, what_it_moves
 from creditdesk.house.fontfiles import Face
 
 LAYER = "contributions"
 _GAP = 8.0
 _MARK = 2.6
-
-
-@dataclass(frozen=True, slots=True)
-class Row:
-    """Hold one row: texts, and the contribution as a number; ``known`` False sets the value in italics."""
-
-    label: str
-    value: str
-    amount: float
-    known: bool = True
+_OTHER_LINES = 2.6
+"""Room for the line above the rows and the total below them, in rows."""
+BAR_ALPHA = 0.88
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,21 +51,24 @@ class ContributionsChart:
 
     def __init__(self, figure: Figure, palette: Palette, limit: int | None = None) -> None:
         self.board = Board(figure)
+        self.passage: Passage | None = None
         self._palette = palette
         self._limit = limit
-        self._standing: Standing | None = None
         figure.canvas.mpl_connect("resize_event", self._on_resize)
 
-    def show(self, standing: Standing) -> None:
-        """Draw ``standing``; the canvas has still to be asked to repaint."""
-        self._standing = standing
+    def show(self, standing: Standing, *, moved: bool = False) -> None:
+        """Draw ``standing``, or what ``moved`` since last year; the canvas has still to be asked to repaint."""
+        self.passage = since_last_year(standing) if moved else from_reference(standing, self._limit)
+        self._draw(self.passage)
+
+    def _draw(self, passage: Passage) -> None:
         self.board.clear(LAYER)
         with house_style():
-            _draw(self.board, standing, contribution_rows(standing, self._limit), self._palette)
+            _draw(self.board, passage, self._palette)
 
     def _on_resize(self, _event: Event) -> None:
-        if self._standing is not None:
-            self.show(self._standing)
+        if self.passage is not None:
+            self._draw(self.passage)
 
 
 def contributions_figure(standing: Standing, palette: Palette, size: Size, limit: int | None = None) -> Figure:
@@ -86,40 +83,55 @@ def contributions_figure(standing: Standing, palette: Palette, size: Size, limit
 
 def contributions_height(rows: int, palette: Palette) -> float:
     """Return the height in points that lets ``rows`` factors stand comfortably."""
-    return (rows + 2.6) * type_size(palette) * 2.05
+    return (rows + _OTHER_LINES) * type_size(palette) * 2.05
 
 
-def contribution_rows(standing: Standing, limit: int | None = None) -> list[Row]:
-    """List the factors' rows, the largest contribution first; what goes beyond ``limit`` rows becomes their sum."""
-    rows = sorted((_row(factor) for factor in standing.factors), key=lambda row: -abs(row.amount))
-    if limit is None or len(rows) <= limit:
-        return rows
-    rest = rows[limit - 1 :]
-    return [*rows[: limit - 1], Row(f"{len(rest)} other factors", "", sum(row.amount for row in rest))]
+@dataclass(frozen=True, slots=True)
+class RowLayout:
+    """Say where rows stand: ``start`` is the middle of the line above them, ``pitch`` the distance of two rows."""
+
+    width: float
+    start: float
+    pitch: float
+    count: int
+
+    def middle(self, number: int) -> float:
+        """Return the height of a row's middle; the first row is 0."""
+        return self.start - (number + 1) * self.pitch
+
+    def box(self, number: int) -> Box:
+        """Return the place of a row over the whole width."""
+        middle = self.middle(number)
+        return Box(0.0, middle - self.pitch / 2, self.width, middle + self.pitch / 2)
+
+    @property
+    def bottom(self) -> float:
+        """Return the height of the line under the rows."""
+        return self.start - self.pitch * (self.count + 0.55)
 
 
-def _row(factor: FactorStanding) -> Row:
-    value = factor_value(factor)
-    amount = factor.log_odds or 0.0  # None where there is no score
-    return Row(factor.label, f"{value} (capped)" if factor.capped else value, amount, factor.value is not None)
+def row_layout(size: Size, count: int, palette: Palette) -> RowLayout:
+    """Share a figure of ``size`` points among ``count`` rows, the line above and the total below."""
+    pitch = min(size[1] / (count + _OTHER_LINES), type_size(palette) * 2.4)
+    return RowLayout(size[0], size[1] - pitch * 0.5, pitch, count)
 
 
-def _draw(board: Board, standing: Standing, rows: Sequence[Row], palette: Palette) -> None:
-    width, height = board.size
-    size = type_size(palette)
-    scored = standing.score is not None and bool(rows)
-    pitch = min(height / (len(rows) + 2.6), size * 2.4)
-    style = Type(palette.second_ink, size)
-    y = height - pitch * 0.5
-    board.words(LAYER, (0, y), f"reference borrower {format_number(standing.reference.score, 2)}", style)
-    columns = _columns(rows, width, size)
-    bottom = y - pitch * (len(rows) + 0.55)
+def _draw(board: Board, passage: Passage, palette: Palette) -> None:
+    rows, size = passage.rows, type_size(palette)
+    layout = row_layout(board.size, len(rows), palette)
+    board.words(LAYER, (0, layout.start), passage.start, Type(palette.second_ink, size))
+    columns = _columns(rows, layout.width, size)
+    scored = bool(rows) and not passage.why_none
     if scored:
-        board.line(LAYER, [(columns.zero, y - pitch * 0.35), (columns.zero, bottom)], Pen(palette.rule, 0.8), z=0.8)
-    for number, row in enumerate(rows, start=1):
-        _draw_row(board, row, (y - number * pitch, pitch), columns, (standing, palette))
-    board.line(LAYER, [(0, bottom), (width, bottom)], Pen(palette.ink, 0.9))
-    _draw_total(board, standing, (width, bottom - pitch * 0.55), palette)
+        upright = [(columns.zero, layout.start - layout.pitch * 0.35), (columns.zero, layout.bottom)]
+        board.line(LAYER, upright, Pen(palette.rule, 0.8), z=0.8)
+    for number, row in enumerate(rows):
+        place = (layout.middle(number), layout.pitch)
+        _draw_texts(board, row, place, columns, palette)
+        if scored:
+            _draw_bar(board, row, place, columns, (passage, palette))
+    board.line(LAYER, [(0, layout.bottom), (layout.width, layout.bottom)], Pen(palette.ink, 0.9))
+    _draw_total(board, passage, (layout.width, layout.bottom - layout.pitch * 0.55), palette)
 
 
 def _columns(rows: Sequence[Row], width: float, size: float) -> Columns:
@@ -136,23 +148,24 @@ def _columns(rows: Sequence[Row], width: float, size: float) -> Columns:
     return Columns(label, value, value + _GAP + left * per_unit, per_unit, width)
 
 
-def _draw_row(
-    board: Board, row: Row, place: tuple[float, float], columns: Columns, look: tuple[Standing, Palette]
-) -> None:
-    (y, pitch), (standing, palette) = place, look
+def _draw_texts(board: Board, row: Row, place: tuple[float, float], columns: Columns, palette: Palette) -> None:
+    y, pitch = place
     size = type_size(palette)
     _draw_label(board, row.label, (y, pitch), columns.label, Type(palette.ink, size))
     face = Face.SANS_SEMIBOLD if row.known else Face.SANS_ITALIC
     room = columns.value - columns.label - _GAP
-    value = Type(palette.ink, size, face, "right")
-    _draw_value(board, row.value, (columns.value, y, pitch), room, value)
-    if standing.score is None:
-        return
+    _draw_value(board, row.value, (columns.value, y, pitch), room, Type(palette.ink, size, face, "right"))
+
+
+def _draw_bar(
+    board: Board, row: Row, place: tuple[float, float], columns: Columns, look: tuple[Passage, Palette]
+) -> None:
+    (y, pitch), (passage, palette) = place, look
+    size = type_size(palette)
     raises = row.amount > 0
-    end = columns.zero + row.amount * columns.per_unit
-    low, high = sorted((columns.zero, end))
-    colour = _bar_colour(standing, palette, raises)
-    board.box(LAYER, (low, y - pitch * 0.29), (high - low, pitch * 0.58), Pen(colour, alpha=0.88))
+    low, high = sorted((columns.zero, columns.zero + row.amount * columns.per_unit))
+    colour = _bar_colour(passage.link, palette, raises)
+    board.box(LAYER, (low, y - pitch * 0.29), (high - low, pitch * 0.58), Pen(colour, alpha=BAR_ALPHA))
     written = signed(row.amount)
     x = high + 5
     ink = palette.ink if raises else palette.second_ink
@@ -162,9 +175,9 @@ def _draw_row(
         board.triangle(LAYER, (x, y), _MARK, ink, up=raises)
 
 
-def _bar_colour(standing: Standing, palette: Palette, raises: bool) -> str:
+def _bar_colour(link: str, palette: Palette, raises: bool) -> str:
     """Return breach for what raises the PD, strength for what lowers it; neither where the model gives no PD."""
-    if what_it_moves(standing.model.link) != "PD":
+    if what_it_moves(link) != "PD":
         return palette.accent
     return palette.breach if raises else palette.strength
 
@@ -197,19 +210,18 @@ def _stack(board: Board, place: tuple[float, float, float], lines: Sequence[str]
     board.lines(LAYER, (x, top), lines, small, leading)
 
 
-def _draw_total(board: Board, standing: Standing, place: Size, palette: Palette) -> None:
+def _draw_total(board: Board, passage: Passage, place: Size, palette: Palette) -> None:
     width, y = place
     size = type_size(palette)
-    if standing.score is None:
-        words = " ".join(("No score.", *standing.reasons))
+    if passage.why_none:
+        words = passage.why_none
         words = words if text_width(words, size) <= width else "No score for this borrower."
         board.words(LAYER, (0, y), shorten(words, width, size), Type(palette.caution, size))
         return
-    total = f"this borrower {format_number(standing.score, 2)}"
-    board.words(LAYER, (0, y), total, Type(palette.ink, size, Face.SANS_SEMIBOLD))
-    start = text_width(total, size, Face.SANS_SEMIBOLD) + 12
-    moved = what_it_moves(standing.model.link)
-    _draw_legend(board, (start, width, y), (contribution_scale(standing.model.link), moved), palette)
+    board.words(LAYER, (0, y), passage.end, Type(palette.ink, size, Face.SANS_SEMIBOLD))
+    start = text_width(passage.end, size, Face.SANS_SEMIBOLD) + 12
+    moved = what_it_moves(passage.link)
+    _draw_legend(board, (start, width, y), (contribution_scale(passage.link), moved), palette)
 
 
 def _draw_legend(board: Board, place: tuple[float, float, float], words: tuple[str, str], palette: Palette) -> None:

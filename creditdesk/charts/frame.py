@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from creditdesk.base.display import format_number, format_percent
 from creditdesk.case.standing import Curve, Standing
+from creditdesk.charts.key import Entry, key_entries, key_leading, key_lines, score_title
 from creditdesk.charts.placing import Box
 from creditdesk.charts.style import LINE_HEIGHT, Size, text_width
 
@@ -20,13 +21,17 @@ _STEPS = (0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0)
 
 @dataclass(frozen=True, slots=True)
 class Frame:
-    """Map scores and probabilities to points inside ``plot``; the probability axis is logarithmic."""
+    """Map scores and probabilities to points inside ``plot``; the probability axis is logarithmic.
+
+    ``key``: the lines of the key for which room is left under the plot.
+    """
 
     plot: Box
     score_low: float
     score_high: float
     pd_low: float
     pd_high: float = 1.0
+    key: tuple[tuple[Entry, ...], ...] = ()
 
     def x(self, score: float) -> float:
         """Return where ``score`` stands, held at the edges."""
@@ -67,9 +72,11 @@ def make_frame(standing: Standing, curve: Curve, size: Size, type_points: float)
     ticks = [tick_text(pd) for pd in decades(pd_low)]
     left = max(text_width(text, type_points) for text in ticks) + 6
     right = text_width("grade 12", type_points) + 20
-    bottom = (2 * LINE_HEIGHT + 0.8) * type_points
-    plot = Box(left, bottom, max(size[0] - right, left + 40), max(size[1] - 0.75 * type_points, bottom + 40))
-    return Frame(plot, low, high, pd_low)
+    width = max(size[0] - right, left + 40) - left
+    key = key_lines(key_entries(standing, curve), score_title(standing), width, type_points)
+    bottom = (2 * LINE_HEIGHT + 0.8) * type_points + (len(key) - 1) * key_leading(type_points)
+    plot = Box(left, bottom, left + width, max(size[1] - 0.75 * type_points, bottom + 40))
+    return Frame(plot, low, high, pd_low, key=tuple(tuple(line) for line in key))
 
 
 def decades(pd_low: float) -> list[float]:

@@ -23,9 +23,14 @@ def ratio_text(value: float, unit: str) -> str:
 
 def factor_value(factor: FactorStanding) -> str:
     """Write a factor's value in its unit, or in few words why it has none."""
-    if factor.value is not None:
-        return ratio_text(factor.value, factor.unit)
-    return REASON_WORDS.get(factor.reason or "", factor.reason or "")
+    return value_or_reason(factor.value, factor.reason, factor.unit)
+
+
+def value_or_reason(value: float | None, reason: str | None, unit: str) -> str:
+    """Write a ratio in its unit, or in few words the reason why it has no value."""
+    if value is not None:
+        return ratio_text(value, unit)
+    return REASON_WORDS.get(reason or "", reason or "")
 
 
 def signed(value: float, decimals: int = 2) -> str:

@@ -7,10 +7,10 @@ from creditdesk.case.standing import ModelIdentity, Standing
 from creditdesk.charts.contributions import (
     LAYER,
     ContributionsChart,
-    contribution_rows,
     contributions_figure,
     contributions_height,
 )
+from creditdesk.charts.passage import contribution_rows
 from creditdesk.charts.style import PAPER, new_figure
 from tests.charts.looking import assert_tidy, centre, words
 from tests.standings import factor, factors, standing, without_pd
