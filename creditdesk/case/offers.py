@@ -139,7 +139,7 @@ def _offer(key: str, spec: ModelSpec, role: Role, outside: tuple[str, ...]) -> M
         calibration=calibration_words(spec.calibration) if spec.link is not Link.NONE else "",
         approval=spec.approval or "not stated",
         owner=spec.owner or "not stated",
-        source=f"{spec.source}. {spec.checked}" if spec.checked else spec.source,
+        source=f"{spec.source.removesuffix('.')}. {spec.checked}".strip(),
         invented=spec.invented,
     )
 

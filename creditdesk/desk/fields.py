@@ -2,6 +2,7 @@
 
 import re
 from collections.abc import Callable, Sequence
+from typing import Generic, TypeVar
 
 from PySide6.QtCore import QEvent, QModelIndex, QPersistentModelIndex, QStringListModel, Qt, Signal
 from PySide6.QtGui import QFocusEvent, QKeyEvent, QKeySequence, QWheelEvent
@@ -246,10 +247,10 @@ class TextBlock(QPlainTextEdit):
             super().keyPressEvent(event)
 
 
-Field = TextField | ChoiceField
+Field = TypeVar("Field", bound=TextField | ChoiceField)
 
 
-class Line:
+class Line(Generic[Field]):
     """Tie a field to its title and the words beside it.
 
     ``accept`` takes what was entered and raises UserError where it cannot be: the words then say why, until the entry
@@ -263,6 +264,7 @@ class Line:
         self.words = label("second", wrap=True)
         self._accept = accept
         self._said = ""
+        self._shown = True
         field.entered.connect(self._on_entered)
         field.restored.connect(self._on_restored)
 
@@ -277,6 +279,13 @@ class Line:
         self._said = words
         if not (self.faulty and isinstance(self.field, TextField) and self.field.changed):
             self._on_restored()
+
+    def set_shown(self, *, shown: bool) -> None:
+        """Show the line, or take it out of sight."""
+        self._shown = shown
+        self.title.setVisible(shown)
+        self.field.setVisible(shown)
+        self.words.setVisible(shown and bool(self.words.text()))
 
     def say(self, words: str) -> None:
         """Say something of what is being typed."""
@@ -304,6 +313,7 @@ class Line:
     def _write(self, words: str, role: str) -> None:
         set_role(self.words, role)
         self.words.setText(words)
+        self.words.setVisible(bool(words) and self._shown)
         self.field.setAccessibleDescription(words)
 
     def _mark(self, *, faulty: bool) -> None:

@@ -1,12 +1,25 @@
 """The sheet Obligor: who the borrower is, what is asked for, when and by which model it is assessed."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
+
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QResizeEvent, QShowEvent
+from PySide6.QtWidgets import QBoxLayout, QFrame, QScrollArea, QVBoxLayout, QWidget
 
 from creditdesk.case.commands import Command
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.desk.actions import Entry
+from creditdesk.desk.panels.assessment import AssessmentPanel
+from creditdesk.desk.panels.basis import CurrencyPanel, RatesPanel
+from creditdesk.desk.panels.identity import IdentityPanel
+from creditdesk.desk.panels.models import ModelsPanel
+from creditdesk.desk.panels.texts import TextsPanel
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.house.book import HouseBook
+
+_TWO_COLUMNS = 1180
+"""Width from which two columns read better than one."""
 
 
 class ObligorSheet(Sheet):
@@ -17,7 +30,104 @@ class ObligorSheet(Sheet):
 
     def __init__(self, house: HouseBook, do: Callable[[Command], None]) -> None:
         super().__init__()
-        self._house, self._do = house, do
+        self._shown: tuple[Case, Standing] | None = None
+        self._stale = False
+        self.identity, self.currency, self.rates = IdentityPanel(do), CurrencyPanel(do), RatesPanel(house, do)
+        self.assessment, self.models, self.texts = AssessmentPanel(do), ModelsPanel(house, do), TextsPanel(do)
+        self.view = QScrollArea()
+        self._columns = QBoxLayout(QBoxLayout.Direction.TopToBottom)
+        self.setFocusProxy(self.identity.name.field)
+        self._lay_out()
 
     def show_standing(self, case: Case, standing: Standing) -> None:
-        """Show another case and what follows from it."""
+        """Show another case and what follows from it; while the sheet is out of sight it only remembers."""
+        self._shown, self._stale = (case, standing), True
+        if self.isVisible():
+            self._show()
+
+    def showEvent(self, event: QShowEvent) -> None:
+        """Catch up with the case."""
+        super().showEvent(event)
+        self._show()
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Stand the columns side by side where there is room."""
+        super().resizeEvent(event)
+        wide = self.width() >= _TWO_COLUMNS
+        direction = QBoxLayout.Direction.LeftToRight if wide else QBoxLayout.Direction.TopToBottom
+        if self._columns.direction() != direction:
+            self._columns.setDirection(direction)
+
+    def go_to(self, place: str) -> None:
+        """Move to a field, named as in the exchange file; to the models for what a scope says."""
+        target = self._target(place)
+        target.setFocus(Qt.FocusReason.ShortcutFocusReason)
+        self.view.ensureWidgetVisible(target, 0, 60)
+
+    def entries(self) -> Sequence[Entry | None]:
+        """Return the ways to each matter of the sheet."""
+        places = (
+            ("&Name and legal form", "obligor.name"),
+            ("&Sector", "obligor.sector"),
+            ("&Currency and unit", "obligor.currency"),
+            ("Exchange &rates", "obligor.rates"),
+            ("Assessment &date and period", "assessment.date"),
+            ("&Lead model", "model.lead"),
+            ("Re&quest and background", "obligor.texts"),
+        )
+        return tuple((title, None, lambda place=place: self.jump_asked.emit(place)) for title, place in places)
+
+    def stop(self) -> None:
+        """Hand on what is still being typed, because the window closes."""
+        self.view.setFocus()
+
+    def _show(self) -> None:
+        if self._shown is None or not self._stale:
+            return
+        case, standing = self._shown
+        self._stale = False
+        self.identity.show_case(case)
+        self.currency.show_case(case)
+        self.rates.show_standing(case, standing)
+        self.assessment.show_standing(case, standing)
+        self.models.show_standing(case, standing)
+        self.texts.show_case(case)
+
+    def _target(self, place: str) -> QWidget:
+        section, _, name = place.partition(".")
+        if section == "model":
+            return self.models.table
+        if section == "assessment":
+            return self.assessment.period.field if name == "period" else self.assessment.date.field
+        others: dict[str, QWidget] = {
+            "currency": self.currency.currency.field,
+            "unit": self.currency.unit.field,
+            "rates": self.rates.date.field,
+            "texts": self.texts.blocks["request"],
+        }
+        name = name.partition(".")[0]
+        return others.get(name) or self.identity.field(name) or self.identity.name.field
+
+    def _lay_out(self) -> None:
+        inside = QWidget()
+        left, right = QVBoxLayout(), QVBoxLayout()
+        for column, panels in (
+            (left, (self.identity, self.currency, self.assessment, self.rates)),
+            (right, (self.models, self.texts)),
+        ):
+            column.setSpacing(18)
+            for panel in panels:
+                column.addWidget(panel)
+            self._columns.addLayout(column, 1)
+        left.addStretch(1)
+        self._columns.setContentsMargins(22, 10, 16, 14)
+        self._columns.setSpacing(22)
+        inside.setLayout(self._columns)
+        self.view.setWidgetResizable(True)
+        self.view.setFrameShape(QFrame.Shape.NoFrame)
+        self.view.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.view.setAccessibleName("Obligor")
+        self.view.setWidget(inside)
+        whole = QVBoxLayout(self)
+        whole.setContentsMargins(0, 0, 0, 0)
+        whole.addWidget(self.view)

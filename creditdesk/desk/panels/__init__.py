@@ -1,0 +1,1 @@
+"""Parts of sheets: each shows one matter and hands its edits on as commands."""
