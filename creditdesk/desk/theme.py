@@ -51,6 +51,12 @@ QPushButton:focus, QToolButton:focus { border-color: $accent; background: $selec
 QPushButton:disabled { color: $second_ink; background: $paper; }
 QLineEdit, QPlainTextEdit, QComboBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
 QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus { border-color: $accent; }
+QLineEdit[fault="true"], QComboBox[fault="true"] { border-color: $breach; }
+QComboBox { padding: 4px 5px; }
+QComboBox::drop-down { border: 0; width: 20px; }
+QComboBox::down-arrow { width: 0; height: 0; border-left: 4px solid $sheet; border-right: 4px solid $sheet;
+  border-top: 5px solid $second_ink; }
+QComboBox QAbstractItemView { background: $sheet; border: 1px solid $rule; outline: 0; }
 QTableView { background: $paper; alternate-background-color: $paper; border: 0; gridline-color: transparent;
   outline: 0; }
 QTableView::item { border-bottom: 1px solid $rule; padding: 0 7px; }
