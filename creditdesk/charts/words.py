@@ -3,17 +3,9 @@
 from creditdesk.base.display import MINUS, format_number
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.ratios.spec import Unit
+from creditdesk.ratios.words import REASON_WORDS as REASON_WORDS
 from creditdesk.ratios.words import format_ratio
 from creditdesk.statements.period import period_label
-
-REASON_WORDS = {
-    "net_cash": "net cash",
-    "no_debt": "no debt",
-    "not_disclosed": "not disclosed",
-    "needs_prior_period": "no prior year",
-    "zero_denominator": "divisor nil",
-    "negative_denominator": "divisor negative",
-}
 
 
 def ratio_text(value: float, unit: str) -> str:

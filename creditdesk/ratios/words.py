@@ -1,6 +1,7 @@
 """Ratios and their formulas in words."""
 
 import re
+from collections.abc import Mapping
 
 from creditdesk.base.display import (
     PLAIN,
@@ -18,6 +19,15 @@ from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.compiler import Row
 from creditdesk.ratios.spec import Unit
 
+REASON_WORDS: Mapping[str, str] = {
+    "net_cash": "net cash",
+    "no_debt": "no debt",
+    "not_disclosed": "not disclosed",
+    "needs_prior_period": "no prior year",
+    "zero_denominator": "divisor nil",
+    "negative_denominator": "divisor negative",
+}
+"""Why a ratio has no value, by the reason's key, in the few words a table has room for."""
 _FUNCTION = re.compile(r"[a-z_]+\(")
 _SIGN_HINT = re.compile(r" \([^()]*[+−-]\)$")
 _BEFORE = {
