@@ -4,7 +4,7 @@ from collections.abc import Callable
 from datetime import date
 from pathlib import Path
 
-from PySide6.QtCore import QDate, Qt
+from PySide6.QtCore import QDate, QMimeData, Qt
 from PySide6.QtWidgets import (
     QComboBox,
     QDateEdit,
@@ -36,6 +36,15 @@ def open_case(parent: QWidget, chosen: Callable[[Path], None]) -> None:
     name, _ = QFileDialog.getOpenFileName(parent, "Open a case", "", CASES)
     if name:
         chosen(Path(name))
+
+
+def dropped_path(dropped: QMimeData) -> Path | None:
+    """Return the one file dropped, where it is a memo, a case or an exchange file."""
+    urls = dropped.urls()
+    if len(urls) != 1 or not urls[0].isLocalFile():
+        return None
+    path = Path(urls[0].toLocalFile())
+    return path if path.name.lower().endswith((".pdf", ".deskcase", ".case.toml")) else None
 
 
 def export_case(window: QMainWindow, session: Session) -> None:

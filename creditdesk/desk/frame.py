@@ -5,6 +5,13 @@ from collections.abc import Sequence
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
+FIND_KEY, WIDE_KEY = "Ctrl+K", "Alt+0"
+
+
+def sheet_key(number: int) -> str:
+    """Return the keys that show the sheet of this number, counted from 0."""
+    return f"Alt+{number + 1}"
+
 
 def label(role: str, text: str = "", *, wrap: bool = False) -> QLabel:
     """Make a label whose look the style sheet takes from ``role``; text is never read as markup."""
@@ -59,16 +66,28 @@ class Header(QWidget):
                 box.addWidget(widget)
         for widget in (self.state, self.warning):
             widget.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignBottom)
-        row = QHBoxLayout(self)
-        row.setContentsMargins(22, 10, 22, 2)
+        row = QHBoxLayout()
         row.addLayout(left, 1)
         row.addLayout(right)
+        self.notice = Elided("notice")
+        self.notice.hide()
+        column = QVBoxLayout(self)
+        column.setContentsMargins(22, 10, 22, 2)
+        column.setSpacing(5)
+        column.addWidget(self.notice)
+        column.addLayout(row)
+
+    def show_notice(self, text: str) -> None:
+        """Say above everything else what limits the work; "" takes the line away."""
+        self.notice.show_text(text)
+        self.notice.setVisible(bool(text))
 
 
 class SheetBar(QWidget):
-    """List the sheets by name; the chosen one is underlined."""
+    """List the sheets by name, the chosen one underlined; at the right, the way to everything else."""
 
     chosen = Signal(int)
+    find_asked = Signal()
 
     def __init__(self, names: Sequence[str]) -> None:
         super().__init__()
@@ -81,13 +100,19 @@ class SheetBar(QWidget):
             button = QPushButton(name)
             button.setCheckable(True)
             button.setAccessibleName(f"Sheet {name}")
-            button.setToolTip(f"Show the sheet {name} (Alt+{number + 1})")
-            button.setShortcut(f"Alt+{number + 1}")
+            button.setToolTip(f"Show the sheet {name} ({sheet_key(number)})")
             self._group.addButton(button, number)
             row.addWidget(button)
         row.addStretch(1)
+        find = QPushButton(f"Find any action  {FIND_KEY}")
+        find.setProperty("role", "find")
+        find.setToolTip("Type a few words of what you want to do")
+        find.clicked.connect(self.find_asked)
+        row.addWidget(find)
         self._group.idClicked.connect(self.chosen)
 
     def mark(self, number: int) -> None:
-        """Mark the sheet that is shown."""
-        self._group.button(number).setChecked(True)
+        """Mark the sheet that is shown; -1 marks none."""
+        self._group.setExclusive(number >= 0)
+        for button in self._group.buttons():
+            button.setChecked(self._group.id(button) == number)

@@ -1,217 +1,178 @@
-"""Signing, saving and verifying memos from the window."""
+"""Issuing memos from the window: sign, countersign, save, print, verify; the work is done off the main thread."""
 
 from collections.abc import Callable
 from datetime import UTC, datetime
 from pathlib import Path
+from typing import Any
 
-from PySide6.QtCore import QObject, Qt
-from PySide6.QtWidgets import (
-    QDialog,
-    QDialogButtonBox,
-    QFileDialog,
-    QFormLayout,
-    QHBoxLayout,
-    QLineEdit,
-    QMainWindow,
-    QMessageBox,
-    QPushButton,
-    QVBoxLayout,
-    QWidget,
-)
+from PySide6.QtCore import QObject, Signal
+from PySide6.QtWidgets import QDialog, QFileDialog, QMainWindow
 
 from creditdesk.base.errors import UserError
+from creditdesk.desk.busy import Busy
 from creditdesk.desk.files import show_faults
-from creditdesk.desk.frame import label
+from creditdesk.desk.printing import ask_printer, print_pdf
 from creditdesk.desk.session import Session
-from creditdesk.desk.worker import Jobs
+from creditdesk.desk.signdialogs import PDF, CountersignDialog, SignDialog
+from creditdesk.desk.worker import Jobs, Progress, Stopped
 
-PDF = "Memo (*.pdf)"
-IDENTITY = "Signing identity (*.p12);;All files (*)"
+_LONG, _SHORT = 30_000, 8_000
 
 
 class Issuer(QObject):
-    """Sign, save and verify memos; the work is done off the main thread, its outcome shown in ``window``."""
+    """Ask for what issuing a memo takes, do it in the background, hand on what came of it.
+
+    ``asked``: something is about to be issued, so what is typed and not yet in the case is to be handed on now.
+    ``issued``: what was signed; ``verified``: the file and what was found; ``shown``: one of the two has been told.
+    """
+
+    asked = Signal()
+    issued = Signal(object)
+    verified = Signal(Path, object)
+    shown = Signal()
 
     def __init__(self, window: QMainWindow, session: Session, jobs: Jobs) -> None:
         super().__init__(window)
         self._window, self._session, self._jobs = window, session, jobs
+        self.busy = Busy("Memo")
 
     def sign(self) -> None:
         """Ask for identity, passphrase and place, then write the memo signed by the preparer."""
+        self.asked.emit()
         dialog = SignDialog(self._window, f"{self._session.path.stem}.pdf")
-        if dialog.exec() != QDialog.DialogCode.Accepted:
+        if not _agreed(dialog):
             return
         key = (Path(dialog.identity.text()), dialog.passphrase.text())
         out, case, house = Path(dialog.out.text()), self._session.case, self._session.house
 
-        def work() -> str:
-            from creditdesk.memo.issue import issue_signed  # heavy, and wanted off the main thread
+        def work(progress: Progress) -> object:
+            from creditdesk.memo.issue import prepare  # heavy, and wanted off the main thread
 
-            return issue_signed(case, house, out, key, datetime.now(UTC))
+            return prepare(case, house, out, key, datetime.now(UTC), progress.step)
 
-        self._start("The memo is being written and signed.", work, "The memo was not signed")
+        self._start("The memo is being written and signed", work, self._on_issued, "The memo was not signed")
+
+    def countersign(self) -> None:
+        """Ask for memo, decision, conditions and identity, then add the approver's signature."""
+        dialog = CountersignDialog(self._window, self._look)
+        if not _agreed(dialog):
+            return
+        key = (Path(dialog.identity.text()), dialog.passphrase.text())
+        memo, out, (decision, conditions) = Path(dialog.memo.text()), Path(dialog.out.text()), dialog.chosen
+
+        def work(_progress: Progress) -> object:
+            from creditdesk.memo.decision import Decision  # heavy, and wanted off the main thread
+            from creditdesk.memo.issue import approve
+
+            return approve(memo, out, key, (Decision(decision), conditions), datetime.now(UTC))
+
+        self._start("The memo is being countersigned", work, self._on_issued, "The memo was not countersigned")
 
     def save_unsigned(self) -> None:
         """Ask for a place and write the memo without a signature."""
+        self.asked.emit()
         proposed = f"{self._session.path.stem}.pdf"
         name, _ = QFileDialog.getSaveFileName(self._window, "Save the memo unsigned", proposed, PDF)
         if not name:
             return
         case, house = self._session.case, self._session.house
 
-        def work() -> str:
+        def work(_progress: Progress) -> object:
             from creditdesk.memo.issue import issue_unsigned  # heavy, and wanted off the main thread
 
             return issue_unsigned(case, house, Path(name))
 
-        self._start("The memo is being written.", work, "The memo was not written")
+        self._start("The memo is being written", work, self._say, "The memo was not written")
+
+    def print_memo(self) -> None:
+        """Ask for a printer and print the memo of the case as it stands, without a signature."""
+        self.asked.emit()
+        case, house = self._session.case, self._session.house
+        printer = ask_printer(self._window, f"Credit memo, {case.obligor.name}")
+        if printer is None:
+            return
+
+        def work(progress: Progress) -> object:
+            from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
+
+            return print_pdf(draft_memo(case, house), printer, progress)
+
+        def done(pages: int) -> None:
+            self._say(f"{pages} {'page' if pages == 1 else 'pages'} handed to the printer")
+
+        self._start("The memo is being written", work, done, "The memo was not printed")
 
     def verify(self) -> None:
         """Ask for a memo, check it and say what was found."""
         name, _ = QFileDialog.getOpenFileName(self._window, "Verify a memo", "", PDF)
-        if not name:
-            return
+        if name:
+            self.verify_path(Path(name))
+
+    def verify_path(self, path: Path) -> None:
+        """Check a memo and say what was found."""
+
+        def done(answer: object) -> None:
+            self.verified.emit(path, answer)
+            self.shown.emit()
+
+        self._start("The memo is being checked", self._check(path), done, "The memo could not be checked")
+
+    def _check(self, path: Path) -> Callable[[Progress], object]:
         house = self._session.house
 
-        def work() -> str:
+        def work(_progress: Progress) -> object:
             from creditdesk.memo.verify import verify_file  # heavy, and wanted off the main thread
 
-            return verify_file(Path(name), house).text
+            return verify_file(path, house)
 
-        def show(text: str) -> None:
-            box = QMessageBox(QMessageBox.Icon.Information, "Verification", Path(name).name, parent=self._window)
-            box.setTextFormat(Qt.TextFormat.PlainText)
-            box.setInformativeText(text)
-            box.open()
+        return work
 
-        self._start("The memo is being checked.", work, "The memo could not be checked", show)
-
-    def _start(
-        self, words: str, work: Callable[[], str], failure: str, show: Callable[[str], None] | None = None
-    ) -> None:
-        """Run ``work``; its sentence goes to the status line, or to ``show``; faults are shown."""
-        status = self._window.statusBar()
+    def _look(self, path: Path, tell: Callable[[str], None]) -> None:
+        """Say in a line in which state a memo is."""
 
         def failed(error: BaseException) -> None:
-            status.clearMessage()
             if not isinstance(error, UserError):
                 raise error
-            show_faults(self._window, failure, error)
+            tell(" ".join(error.faults))
 
-        def done(text: str) -> None:
-            status.clearMessage()
-            if show is not None:
-                show(text)
-            else:
-                status.showMessage(text, 30_000)
-
-        status.showMessage(words)
-        self._jobs.start(work, done, failed)
-
-
-class SignDialog(QDialog):
-    """Ask which identity signs, its passphrase, and where the memo goes; the passphrase is kept nowhere."""
-
-    def __init__(self, parent: QWidget | None, proposed: str) -> None:
-        super().__init__(parent)
-        self.setWindowTitle("Sign the memo as preparer")
-        self.setMinimumWidth(560)
-        self.identity, self.passphrase, self.out = QLineEdit(), QLineEdit(), QLineEdit(proposed)
-        self.passphrase.setEchoMode(QLineEdit.EchoMode.Password)
-        self._buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Cancel)
-        self.sign = self._buttons.addButton("Sign", QDialogButtonBox.ButtonRole.AcceptRole)
-        self._buttons.accepted.connect(self.accept)
-        self._buttons.rejected.connect(self.reject)
-        for line in (self.identity, self.passphrase, self.out):
-            line.textChanged.connect(self._on_typed)
-        self._on_typed()
-        self._lay_out()
-
-    def _lay_out(self) -> None:
-        form = QFormLayout()
-        form.addRow("Identity file", self._row(self.identity, ("Choose…", self._on_choose), ("New…", self._on_new)))
-        form.addRow("Passphrase", self.passphrase)
-        form.addRow("Memo goes to", self._row(self.out, ("Choose…", self._on_place)))
-        names = ("Identity file", "Passphrase", "Memo goes to")
-        for name, line in zip(names, (self.identity, self.passphrase, self.out), strict=True):
-            line.setAccessibleName(name)
-        box = QVBoxLayout(self)
-        box.addLayout(form)
-        words = (
-            "The signature (PAdES B-B) proves that nothing changed since, and with which key. It does not prove the "
-            "time, and a self-signed key names nobody: signers are known by the fingerprints in the house book. The "
-            "memo carries the complete case; whoever gets the PDF gets it."
+        self._jobs.start(
+            lambda: self._check(path)(Progress()), lambda answer: tell(answer.text.splitlines()[0]), failed
         )
-        box.addWidget(label("second", words, wrap=True))
-        box.addWidget(self._buttons)
 
-    def _row(self, line: QLineEdit, *buttons: tuple[str, Callable[[], None]]) -> QWidget:
-        row = QWidget()
-        box = QHBoxLayout(row)
-        box.setContentsMargins(0, 0, 0, 0)
-        box.addWidget(line, 1)
-        for title, do in buttons:
-            button = QPushButton(title)
-            button.setAutoDefault(False)
-            button.clicked.connect(lambda _=False, do=do: do())
-            box.addWidget(button)
-        return row
+    def _on_issued(self, issued: Any) -> None:  # noqa: ANN401  memo.issue.Issued, which is fetched late
+        self._say(issued.words)
+        self.issued.emit(issued)
+        self.shown.emit()
 
-    def _on_typed(self) -> None:
-        self.sign.setEnabled(bool(self.identity.text() and self.passphrase.text() and self.out.text()))
+    def _say(self, words: str) -> None:
+        self._window.statusBar().showMessage(words, _LONG)
 
-    def _on_choose(self) -> None:
-        name, _ = QFileDialog.getOpenFileName(self, "Choose a signing identity", "", IDENTITY)
-        if name:
-            self.identity.setText(name)
+    def _start(
+        self, words: str, work: Callable[[Progress], object], done: Callable[[Any], object], failure: str
+    ) -> None:
+        """Run ``work`` and hand its result to ``done``; faults are shown under the words of ``failure``."""
+        progress = Progress()
 
-    def _on_place(self) -> None:
-        name, _ = QFileDialog.getSaveFileName(self, "Where the memo goes", self.out.text(), PDF)
-        if name:
-            self.out.setText(name)
+        def failed(error: BaseException) -> None:
+            self.busy.done(progress)
+            if isinstance(error, Stopped):
+                self._window.statusBar().showMessage(f"Stopped. {failure}.", _SHORT)
+            elif isinstance(error, UserError):
+                show_faults(self._window, failure, error)
+            else:
+                raise error
 
-    def _on_new(self) -> None:
-        dialog = NewIdentity(self)
-        if dialog.exec() == QDialog.DialogCode.Accepted:
-            self.identity.setText(dialog.out.text())
-            self.passphrase.setText(dialog.passphrase.text())
+        def finished(result: object) -> None:
+            self.busy.done(progress)
+            done(result)
+
+        self._window.statusBar().clearMessage()
+        self.busy.watch(progress, words)
+        self._jobs.start(lambda: work(progress), finished, failed)
 
 
-class NewIdentity(QDialog):
-    """Make a self-signed identity file, readable by its owner alone."""
-
-    def __init__(self, parent: QWidget | None) -> None:
-        super().__init__(parent)
-        self.setWindowTitle("New signing identity")
-        self.setMinimumWidth(480)
-        self.name, self.passphrase, self.again, self.out = (QLineEdit() for _ in range(4))
-        for line in (self.passphrase, self.again):
-            line.setEchoMode(QLineEdit.EchoMode.Password)
-        self.fault = label("breach", wrap=True)
-        form = QFormLayout()
-        titles = ("Your name", "Passphrase, 8 or more characters", "Passphrase again", "Identity file (.p12)")
-        for title, line in zip(titles, (self.name, self.passphrase, self.again, self.out), strict=True):
-            line.setAccessibleName(title)
-            form.addRow(title, line)
-        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Cancel)
-        buttons.addButton("Make", QDialogButtonBox.ButtonRole.AcceptRole)
-        buttons.accepted.connect(self._on_make)
-        buttons.rejected.connect(self.reject)
-        box = QVBoxLayout(self)
-        box.addLayout(form)
-        box.addWidget(self.fault)
-        box.addWidget(buttons)
-
-    def _on_make(self) -> None:
-        from creditdesk.memo.identity import new_identity, write_private  # heavy, wanted late
-
-        if self.passphrase.text() != self.again.text():
-            self.fault.setText("The two passphrases differ.")
-            return
-        try:
-            identity = new_identity(self.name.text(), self.passphrase.text(), now=datetime.now(UTC))
-            write_private(Path(self.out.text()), identity)
-        except UserError as error:
-            self.fault.setText("\n".join(error.faults))
-        else:
-            self.accept()
+def _agreed(dialog: QDialog) -> bool:
+    """Show a dialog until it is answered; its fields can still be read until the event loop comes round."""
+    agreed = dialog.exec() == QDialog.DialogCode.Accepted
+    dialog.deleteLater()
+    return agreed

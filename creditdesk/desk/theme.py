@@ -11,6 +11,7 @@ from creditdesk.house.fontfiles import font_files
 
 SANS = "Source Sans Pro"
 SERIF = "Source Serif Pro"
+_WORN = "palette worn"
 
 _STYLE = Template("""
 QWidget { color: $ink; selection-background-color: $selection; selection-color: $ink; }
@@ -32,6 +33,12 @@ QLabel[role="obligor"] { font-family: "$serif"; font-size: 19pt; font-weight: 60
 QLabel[role="heading"] { font-family: "$serif"; font-size: 11.5pt; font-weight: 600; color: $accent; }
 QLabel[role="second"] { color: $second_ink; }
 QLabel[role="caution"] { color: $caution; }
+QLabel[role="strong"] { font-weight: 600; }
+QLabel[role="strength"] { color: $strength; font-weight: 600; }
+#outcome QLabel[role="strength"], #outcome QLabel[role="breach"] { font-family: "$serif"; font-size: 14pt; }
+#facts { background: $sheet; border: 1px solid $rule; }
+#facts QLabel[role="breach"] { font-family: "$sans"; font-size: 10.5pt; }
+QLabel[role="notice"] { color: $caution; font-weight: 600; background: $band; padding: 3px 8px; }
 QLabel[role="breach"] { color: $breach; font-weight: 600; }
 QLabel[role="pd"] { font-size: 36pt; font-weight: 600; }
 QLabel[role="pd-words"] { font-size: 15pt; font-weight: 600; color: $breach; }
@@ -43,11 +50,20 @@ QLabel[role="grade"] { font-family: "$serif"; font-size: 24pt; font-weight: 600;
 #sheets QPushButton:hover { color: $ink; }
 #sheets QPushButton:checked { color: $ink; font-weight: 600; border-bottom-color: $accent; }
 #sheets QPushButton:focus { background: $selection; }
+#sheets QPushButton[role="find"] { margin-right: 0; font-size: 10.5pt; }
+#palette { background: $sheet; border: 1.5px solid $accent; }
+#palette QLineEdit { border: 0; border-bottom: 1px solid $rule; font-size: 13pt; padding: 6px 8px; }
+#palette QListView { background: $sheet; border: 0; outline: 0; }
 QPushButton, QToolButton { background: $sheet; border: 1px solid $rule; padding: 5px 13px; }
 QPushButton:hover, QToolButton:hover { border-color: $accent; }
 QPushButton:pressed, QPushButton:checked { background: $selection; }
 QPushButton:default { border-color: $accent; font-weight: 600; }
 QPushButton:focus, QToolButton:focus { border-color: $accent; background: $selection; }
+QPushButton[role="link"] { border: 0; background: transparent; color: $accent; padding: 0 4px; }
+QPushButton[role="link"]:hover, QPushButton[role="link"]:focus { background: $selection; }
+QPushButton[role="small"] { padding: 1px 9px; }
+QProgressBar { background: $band; border: 1px solid $rule; }
+QProgressBar::chunk { background: $accent; }
 QPushButton:disabled { color: $second_ink; background: $paper; }
 QLineEdit, QPlainTextEdit, QComboBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
 QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus { border-color: $accent; }
@@ -94,11 +110,14 @@ def load_fonts() -> None:
 def style_sheet(palette: Palette) -> str:
     """Return the style sheet in ``palette``."""
     colours = {name: getattr(palette, name) for name in Palette.__slots__ if name != "name"}
-    return _STYLE.substitute(colours, serif=SERIF)
+    return _STYLE.substitute(colours, serif=SERIF, sans=SANS)
 
 
 def apply(application: QApplication, palette: Palette) -> None:
-    """Dress the whole application in ``palette``."""
+    """Dress the whole application in ``palette``; nothing to do where it wears it already."""
+    if application.property(_WORN) == palette.name:
+        return
+    application.setProperty(_WORN, palette.name)
     font = QFont(SANS)
     font.setPointSizeF(10.5)
     font.setFeature(QFont.Tag("tnum"), 1)

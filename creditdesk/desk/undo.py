@@ -9,9 +9,13 @@ from creditdesk.case.trail import Kind
 
 
 class Step(QUndoCommand):
-    """Swap ``before`` and ``after``; the first redo is the edit itself and has been done by whoever pushes."""
+    """Swap ``before`` and ``after``; the first redo is the edit itself and has been done by whoever pushes.
 
-    def __init__(self, text: str, before: Case, after: Case, swap: Callable[[Kind, str, Case], None]) -> None:
+    ``swap`` says whether it could be done; a step that could not is dropped from the stack, for what it would lead
+    back to is not what the stack takes for current.
+    """
+
+    def __init__(self, text: str, before: Case, after: Case, swap: Callable[[Kind, str, Case], bool]) -> None:
         super().__init__(text)
         self._before = before
         self._after = after
@@ -20,10 +24,11 @@ class Step(QUndoCommand):
 
     def redo(self) -> None:
         """Bring the later case back."""
-        if self._pushed:
-            self._swap(Kind.REDO, self.text(), self._after)
+        if self._pushed and not self._swap(Kind.REDO, self.text(), self._after):
+            self.setObsolete(True)
         self._pushed = True
 
     def undo(self) -> None:
         """Bring the earlier case back."""
-        self._swap(Kind.UNDO, self.text(), self._before)
+        if not self._swap(Kind.UNDO, self.text(), self._before):
+            self.setObsolete(True)

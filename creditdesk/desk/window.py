@@ -1,19 +1,47 @@
 """The window: header, sheets, Standing, menus, status line."""
 
+from collections.abc import Iterator
 from datetime import datetime
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QByteArray, QSettings, QTimer, Signal
-from PySide6.QtGui import QCloseEvent, QGuiApplication, QKeySequence, QPaintEvent
-from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QSplitter, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtCore import Qt, QTimer, Signal
+from PySide6.QtGui import (
+    QAction,
+    QActionGroup,
+    QCloseEvent,
+    QDragEnterEvent,
+    QDropEvent,
+    QGuiApplication,
+    QKeySequence,
+    QPaintEvent,
+    QResizeEvent,
+    QShortcut,
+)
+from PySide6.QtWidgets import (
+    QApplication,
+    QDialog,
+    QLabel,
+    QMainWindow,
+    QSplitter,
+    QStackedWidget,
+    QVBoxLayout,
+    QWidget,
+)
 
-from creditdesk.base.palette import Palette
+from creditdesk.base.errors import UserError
+from creditdesk.base.palette import DARK, LIGHT, Palette
 from creditdesk.desk import files, theme
-from creditdesk.desk.actions import add_menu
-from creditdesk.desk.frame import Header, SheetBar
-from creditdesk.desk.headline import describe, status_words
+from creditdesk.desk.about import About, Keys, key_sections
+from creditdesk.desk.actions import Entry, add_menu, give_reason, make_action, placed_actions
+from creditdesk.desk.finds import action_finds, case_finds
+from creditdesk.desk.frame import FIND_KEY, WIDE_KEY, Header, SheetBar, sheet_key
+from creditdesk.desk.headline import describe, recorded_words, status_words
+from creditdesk.desk.palette import CommandPalette, Find
+from creditdesk.desk.revert import RevertDialog, case_after
 from creditdesk.desk.session import Session
+from creditdesk.desk.settings import Settings, Theme
 from creditdesk.desk.sheets.figures import FiguresSheet
 from creditdesk.desk.sheets.memo import MemoSheet
 from creditdesk.desk.sheets.obligor import ObligorSheet
@@ -25,10 +53,13 @@ from creditdesk.desk.worker import Jobs
 if TYPE_CHECKING:
     from types import ModuleType
 
+    from creditdesk.case.document import Case
     from creditdesk.desk.sheets.base import Sheet
 
 SHEETS = (ObligorSheet.title, FiguresSheet.title, RatiosSheet.title, MemoSheet.title)
-_FAULT_MILLISECONDS = 12_000
+STANDING = "Standing"
+_FAULT_MILLISECONDS, _CATCH_UP_MILLISECONDS = 12_000, 15
+_THEMES = {Theme.SYSTEM: "As the &system", Theme.LIGHT: "&Light", Theme.DARK: "&Dark"}
 
 
 class Window(QMainWindow):
@@ -37,11 +68,12 @@ class Window(QMainWindow):
     ready = Signal()
     open_asked = Signal(Path)
     new_asked = Signal(Path, object)
+    theme_chosen = Signal()
     closed = Signal(object)
 
     def __init__(self, session: Session, palette: Palette | None = None) -> None:
         super().__init__()
-        self.session = session
+        self.session, self.settings = session, Settings()
         self.jobs = Jobs(self)
         self._own_palette = palette
         self._warmed = False
@@ -56,41 +88,89 @@ class Window(QMainWindow):
         self.standing = StandingColumn(len(session.house.scale.grades))
         self.stack, self.split = QStackedWidget(), QSplitter()
         self.recorded, self.counts = QLabel(), QLabel()
+        self._behind: list[Sheet] = []
+        self._catch_up = QTimer(self, singleShot=True, interval=_CATCH_UP_MILLISECONDS)
+        self._split_before = self.split.saveState()
         self._lay_out()
+        self.finder = CommandPalette(self, lambda: tuple(self._finds()))
         self._add_menus()
         self._connect()
         self._recolour()
+        self._show_last_recorded()
         self._on_changed()
         self.show_sheet(SHEETS.index(FiguresSheet.title))
 
     @property
     def theme(self) -> Palette:
-        """Return the palette in use: the one asked for, else the system's."""
-        return self._own_palette or theme.system_palette()
+        """Return the palette in use: the one asked for, else the one chosen, else the system's."""
+        chosen = {Theme.LIGHT: LIGHT, Theme.DARK: DARK}.get(self.settings.theme)
+        return self._own_palette or chosen or theme.system_palette()
+
+    @property
+    def wide(self) -> bool:
+        """Say whether Standing has the whole window."""
+        return self.stack.isHidden()
 
     @property
     def settled(self) -> bool:
         """Say whether everything that follows from the case is on screen."""
-        sheet = self.sheets[self.stack.currentIndex()]
-        return self._canvas_module is not None and not self.jobs.busy and sheet.settled
+        there = self._canvas_module is not None and not self.jobs.busy and not self._behind
+        return there and (self.wide or self.sheets[self.stack.currentIndex()].settled)
 
     def show_sheet(self, number: int) -> None:
         """Bring a sheet to the front."""
+        self._bring_up(self.sheets[number])
         self.stack.setCurrentIndex(number)
+        self.show_wide(False)
         self.bar.mark(number)
         self.sheets[number].setFocus()
 
+    def show_named(self, name: str) -> None:
+        """Bring the sheet of this title to the front, or give Standing the window."""
+        if name == STANDING:
+            self.show_wide(True)
+        elif name in SHEETS:
+            self.show_sheet(SHEETS.index(name))
+
+    def show_wide(self, wide: bool) -> None:
+        """Give Standing the whole window, or the sheets their room back."""
+        if wide == self.wide:
+            return
+        if wide:
+            self._split_before = self.split.saveState()
+        self.stack.setVisible(not wide)
+        self.bar.mark(-1 if wide else self.stack.currentIndex())
+        self._escape.setEnabled(wide)
+        self._wide_action.setChecked(wide)
+        if wide:
+            self.standing.setFocus()
+        else:
+            self.split.restoreState(self._split_before)
+            self.sheets[self.stack.currentIndex()].setFocus()
+
     def go_to(self, place: str) -> None:
         """Show a place, as findings name it, on the sheet it belongs to."""
-        for number, sheet in enumerate(self.sheets):
-            if place.startswith(sheet.places):
-                self.show_sheet(number)
-                sheet.go_to(place)
-                return
+        number = self._sheet_of(place)
+        if number is not None:
+            self.show_sheet(number)
+            self.sheets[number].go_to(place)
 
     def show_fault(self, text: str) -> None:
         """Say in the status line what was wrong with an entry."""
         self.statusBar().showMessage(f"▲ {text}", _FAULT_MILLISECONDS)
+
+    def follow_theme(self) -> None:
+        """Dress anew after the system or the user has chosen another theme."""
+        self._theme_actions[self.settings.theme].setChecked(True)
+        if self._own_palette is None:
+            self._recolour()
+
+    def restore_shape(self) -> None:
+        """Take place, size, splitters and sheet from the last time; a sensible first shape where none is known."""
+        self.restoreGeometry(self.settings.geometry)
+        self.split.restoreState(self.settings.split("standing"))
+        self.memo.restore_split(self.settings.split("memo"))
+        self.show_named(self.settings.sheet)
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """Fetch the chart library once the first paint is done."""
@@ -99,29 +179,45 @@ class Window(QMainWindow):
             self._warmed = True
             QTimer.singleShot(0, self._warm)
 
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Keep what lies over the window in its middle."""
+        super().resizeEvent(event)
+        self.finder.place()
+
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:
+        """Take one file that is a memo or a case."""
+        if files.dropped_path(event.mimeData()) is not None:
+            event.acceptProposedAction()
+
+    def dropEvent(self, event: QDropEvent) -> None:
+        """Verify a memo that is dropped, open a case."""
+        path = files.dropped_path(event.mimeData())
+        if path is None:
+            return
+        event.acceptProposedAction()
+        if path.suffix.lower() == ".pdf":
+            self.issuer.verify_path(path)
+        else:
+            self.open_asked.emit(path)
+
     def closeEvent(self, event: QCloseEvent) -> None:
-        """Let running work end, remember the window's shape, close the case."""
-        self.jobs.stop()
+        """Let running work end, remember how the window stood, close the case."""
         for sheet in self.sheets:
             sheet.stop()
-        settings = QSettings()
-        settings.setValue("window/geometry", self.saveGeometry())
-        settings.setValue("window/split", self.split.saveState())
+        self.jobs.stop()
+        self._catch_up.stop()
+        self.settings.geometry = self.saveGeometry()
+        self.settings.set_split("standing", self._split_before if self.wide else self.split.saveState())
+        self.settings.set_split("memo", self.memo.split.saveState())
+        self.settings.sheet = STANDING if self.wide else SHEETS[self.stack.currentIndex()]
         self.session.close()
         super().closeEvent(event)
         self.closed.emit(self)
 
-    def restore_shape(self) -> None:
-        """Take size and splitter from the last time; a sensible first shape otherwise."""
-        settings = QSettings()
-        geometry, split = settings.value("window/geometry"), settings.value("window/split")
-        if isinstance(geometry, QByteArray) and isinstance(split, QByteArray):
-            self.restoreGeometry(geometry)
-            self.split.restoreState(split)
-
     def _lay_out(self) -> None:
         self.setMinimumSize(900, 600)
         self.resize(1440, 900)
+        self.setAcceptDrops(True)
         for sheet in self.sheets:
             self.stack.addWidget(sheet)
         self.split.addWidget(self.stack)
@@ -130,7 +226,7 @@ class Window(QMainWindow):
         self.split.setStretchFactor(1, 0)
         self.split.setHandleWidth(1)
         self.split.setSizes([900, 490])
-        self.split.setCollapsible(1, False)
+        self.split.setChildrenCollapsible(False)
         top = QWidget()
         top.setObjectName("header")
         column = QVBoxLayout(top)
@@ -147,43 +243,100 @@ class Window(QMainWindow):
         whole.addWidget(self.split, 1)
         self.setCentralWidget(central)
         self.statusBar().addWidget(self.recorded)
+        self.statusBar().addPermanentWidget(self.issuer.busy)
         self.statusBar().addPermanentWidget(self.counts)
         self.statusBar().setSizeGripEnabled(False)
 
     def _add_menus(self) -> None:
-        keys, bar = QKeySequence.StandardKey, self.menuBar()
-        add_menu(
-            bar,
-            "&Case",
-            (
-                ("&New…", keys.New, lambda: files.new_case(self, self.new_asked.emit)),
-                ("&Open…", keys.Open, lambda: files.open_case(self, self.open_asked.emit)),
-                ("&Export…", "Ctrl+E", lambda: files.export_case(self, self.session)),
-                None,
-                ("&Close", keys.Close, self.close),
-            ),
-        )
-        edit, stack = bar.addMenu("&Edit"), self.session.undo_stack
-        for action, key in (
-            (stack.createUndoAction(self, "&Undo"), keys.Undo),
-            (stack.createRedoAction(self, "&Redo"), keys.Redo),
-        ):
-            action.setShortcut(QKeySequence(key))
-            edit.addAction(action)
+        bar = self.menuBar()
+        add_menu(bar, "&Case", self._case_entries())
+        add_menu(bar, "&Edit", self._undo_actions())
+        self._add_view_menu()
         for sheet in self.sheets:
             if entries := sheet.entries():
                 add_menu(bar, f"&{sheet.title}", entries)
+        help_entries = (
+            ("&Keys", QKeySequence.StandardKey.HelpContents, self._on_keys),
+            ("&About", None, self._on_about),
+        )
+        add_menu(bar, "&Help", help_entries)
+
+    def _case_entries(self) -> tuple[Entry | QAction | None, ...]:
+        keys = QKeySequence.StandardKey
+        self._revert = make_action(self, "&Revert to…", None, self._on_revert)
+        return (
+            ("&New…", keys.New, lambda: files.new_case(self, self.new_asked.emit)),
+            ("&Open…", keys.Open, lambda: files.open_case(self, self.open_asked.emit)),
+            ("&Export…", "Ctrl+E", lambda: files.export_case(self, self.session)),
+            None,
+            self._revert,
+            None,
+            ("&Close", keys.Close, self.close),
+            ("&Quit", "Ctrl+Q", QApplication.closeAllWindows),
+        )
+
+    def _undo_actions(self) -> tuple[QAction, ...]:
+        keys, stack = QKeySequence.StandardKey, self.session.undo_stack
+        undo, redo = stack.createUndoAction(self, "&Undo"), stack.createRedoAction(self, "&Redo")
+        for action, key, reason in (
+            (undo, keys.Undo, "nothing has been edited yet"),
+            (redo, keys.Redo, "nothing has been undone"),
+        ):
+            action.setShortcuts(key)
+            give_reason(action, reason)
+        return undo, redo
+
+    def _add_view_menu(self) -> None:
+        self._wide_action = make_action(self, "Standing takes the &window", WIDE_KEY, self._on_wide)
+        self._wide_action.setCheckable(True)
+        self._find = make_action(self, "&Find any action…", FIND_KEY, self.finder.open)
+        self._escape = QShortcut(Qt.Key.Key_Escape, self, lambda: self.show_wide(False))
+        self._escape.setEnabled(False)
+        entries = [
+            make_action(self, f"Sheet {name}", sheet_key(number), partial(self.show_sheet, number))
+            for number, name in enumerate(SHEETS)
+        ]
+        view = add_menu(self.menuBar(), "&View", (*entries, self._wide_action, None, self._find))
+        themes = add_menu(view, "&Theme", ())
+        group = QActionGroup(self)
+        self._theme_actions = {}
+        for choice, title in _THEMES.items():
+            action = make_action(self, title, None, partial(self._on_theme, choice))
+            action.setCheckable(True)
+            action.setChecked(choice is self.settings.theme)
+            self._theme_actions[choice] = group.addAction(action)
+            themes.addAction(action)
 
     def _connect(self) -> None:
         self.bar.chosen.connect(self.show_sheet)
+        self.bar.find_asked.connect(self.finder.open)
         self.session.changed.connect(self._on_changed)
         self.session.recorded.connect(self._on_recorded)
+        self.session.refused.connect(self.show_fault)
+        self._catch_up.timeout.connect(self._on_catch_up)
+        self.memo.sheet_asked.connect(self.show_named)
+        self.issuer.shown.connect(lambda: self.show_named(MemoSheet.title))
         for sheet in self.sheets:
             sheet.fault.connect(self.show_fault)
             sheet.jump_asked.connect(self.go_to)
-        QGuiApplication.styleHints().colorSchemeChanged.connect(self._on_scheme)
+        QGuiApplication.styleHints().colorSchemeChanged.connect(self.follow_theme)
+
+    def _finds(self) -> Iterator[Find]:
+        yield from (find for find in action_finds(self.menuBar()) if find.keys != FIND_KEY)
+        yield from case_finds(self.session.house, self.session.standing, self.go_to)
+
+    def _sheet_of(self, place: str) -> int | None:
+        """Return the number of the sheet that claims most of the beginning of ``place``; None where none does."""
+        claims = [
+            (len(start), number)
+            for number, sheet in enumerate(self.sheets)
+            for start in sheet.places
+            if place.startswith(start)
+        ]
+        return max(claims)[1] if claims else None
 
     def _on_changed(self) -> None:
+        """Show what is in sight at once, the sheets behind it when there is time."""
         case, standing = self.session.case, self.session.standing
         headline = describe(case, standing, read_only=self.session.read_only)
         self.setWindowTitle(f"{case.obligor.name} – creditdesk")
@@ -191,17 +344,72 @@ class Window(QMainWindow):
         self.header.description.show_text(headline.description)
         self.header.state.setText(headline.state)
         self.header.warning.setText(headline.warning)
+        self.header.show_notice(headline.notice)
         self.counts.setText(status_words(standing, self.session.house))
-        for sheet in self.sheets:
-            sheet.show_standing(case, standing)
         self.standing.show_standing(standing)
+        self._behind = list(self.sheets)
+        self._bring_up(self.sheets[self.stack.currentIndex()])
+        self._catch_up.start()
+        self._offer_revert()
+
+    def _bring_up(self, sheet: "Sheet") -> None:
+        if sheet in self._behind:
+            self._behind.remove(sheet)
+            sheet.show_standing(self.session.case, self.session.standing)
+
+    def _on_catch_up(self) -> None:
+        """Bring one sheet up to date that nobody looks at, and come back for the next."""
+        if self._behind:
+            self._bring_up(self._behind[0])
+            self._catch_up.start()
+
+    def _show_last_recorded(self) -> None:
+        trail = self.session.trail()
+        if trail:
+            when = datetime.fromisoformat(trail[-1].time)
+            self.recorded.setText(recorded_words(when, self.session.path.name, now=False))
 
     def _on_recorded(self, when: datetime) -> None:
-        self.recorded.setText(f"Recorded {when.astimezone():%H:%M:%S} in {self.session.path.name}")
+        self.recorded.setText(recorded_words(when, self.session.path.name, now=True))
 
-    def _on_scheme(self) -> None:
-        if self._own_palette is None:
-            self._recolour()
+    def _on_wide(self) -> None:
+        self.show_wide(not self.wide)
+
+    def _on_theme(self, choice: Theme) -> None:
+        self.settings.theme = choice
+        self.follow_theme()
+        self.theme_chosen.emit()
+
+    def _on_keys(self) -> None:
+        _show(Keys(self, key_sections(placed_actions(self.menuBar()))))
+
+    def _on_about(self) -> None:
+        _show(About(self, self.session.standing))
+
+    def _offer_revert(self) -> None:
+        """Let nobody ask for what cannot be had."""
+        states = {entry.document for entry in self.session.trail()}
+        reason = self.session.read_only or ("" if len(states) > 1 else "there is no other state to go back to")
+        self._revert.setEnabled(not reason)
+        give_reason(self._revert, reason)
+
+    def _on_revert(self) -> None:
+        trail = self.session.trail()
+        dialog = RevertDialog(self, trail)
+        agreed, entry = dialog.exec() == RevertDialog.DialogCode.Accepted, dialog.chosen
+        dialog.deleteLater()
+        if not agreed or entry is None:
+            return
+
+        def back(earlier: "Case") -> None:
+            self.session.revert(entry, earlier)
+
+        def failed(error: BaseException) -> None:
+            if not isinstance(error, UserError):
+                raise error
+            files.show_faults(self, "The case was left as it is", error)
+
+        self.jobs.start(lambda: case_after(trail, entry), back, failed)
 
     def _recolour(self) -> None:
         application = QApplication.instance()
@@ -232,3 +440,9 @@ class Window(QMainWindow):
 
     def _on_failed(self, error: BaseException) -> None:
         raise error
+
+
+def _show(dialog: QDialog) -> None:
+    """Show a dialog that only tells something, and let it go when it is closed."""
+    dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
+    dialog.open()

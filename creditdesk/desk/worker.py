@@ -1,9 +1,37 @@
 """Long work off the main thread: a job runs a function, its result comes back by signal on the main thread."""
 
+import threading
 from collections.abc import Callable
 from typing import Any
 
 from PySide6.QtCore import QObject, QRunnable, QThreadPool, Signal
+
+
+class Stopped(Exception):
+    """Say that work was stopped because the user asked for it."""
+
+
+class Progress(QObject):
+    """Tell from a worker how far it is; between two steps it can be stopped.
+
+    ``told``: words, steps done, steps in all (0 where their number is not known).
+    """
+
+    told = Signal(str, int, int)
+
+    def __init__(self) -> None:
+        super().__init__()
+        self._stop = threading.Event()
+
+    def step(self, words: str, done: int = 0, total: int = 0) -> None:
+        """Tell what begins now; called by the worker. Raises Stopped where that was asked for."""
+        if self._stop.is_set():
+            raise Stopped(words)
+        self.told.emit(words, done, total)
+
+    def stop(self) -> None:
+        """Ask the work to end before its next step."""
+        self._stop.set()
 
 
 class _Messenger(QObject):

@@ -1,5 +1,7 @@
 """Issue memos: drawn, signed, countersigned, each written whole or not at all."""
 
+from collections.abc import Callable
+from dataclasses import dataclass
 from datetime import datetime
 from pathlib import Path
 
@@ -16,6 +18,22 @@ from creditdesk.memo.sign import sign_as_approver, sign_as_preparer
 
 Key = tuple[Path, str]
 """Identity file and passphrase."""
+Step = Callable[[str, int, int], object]
+"""Told what begins, how many steps are done, and of how many."""
+
+
+@dataclass(frozen=True, slots=True)
+class Issued:
+    """Hold what was written: the file, a sentence about it, who signed and the SHA-256 of the certificate in hex."""
+
+    path: Path
+    words: str
+    signer: str
+    fingerprint: str
+
+
+def _untold(words: str, done: int, total: int) -> None:
+    """Take no notice of a step."""
 
 
 def draft_memo(case: Case, house: HouseBook) -> bytes:
@@ -32,15 +50,31 @@ def issue_unsigned(case: Case, house: HouseBook, out: Path) -> str:
 
 def issue_signed(case: Case, house: HouseBook, out: Path, key: Key, now: datetime) -> str:
     """Write the memo signed by the preparer and return a sentence about it; the identity is opened first."""
+    return prepare(case, house, out, key, now).words
+
+
+def prepare(case: Case, house: HouseBook, out: Path, key: Key, now: datetime, step: Step = _untold) -> Issued:
+    """Write the memo signed by the preparer; ``step`` is told how far it is and may raise to end it."""
+    step("Opening the identity", 0, 3)
     identity = load_identity(*key, now=now)
-    write_file(out, sign_as_preparer(draft_memo(case, house), identity, time=now))
-    return f"Signed memo written to {out}, certificate SHA-256 {identity.fingerprint_sha256}"
+    step("Writing the memo", 1, 3)
+    memo = draft_memo(case, house)
+    step("Signing", 2, 3)
+    write_file(out, sign_as_preparer(memo, identity, time=now))
+    words = f"Signed memo written to {out}, certificate SHA-256 {identity.fingerprint_sha256}"
+    return Issued(out, words, identity.name, identity.fingerprint_sha256)
 
 
 def countersign(memo: Path, out: Path, key: Key, decision: tuple[Decision, str], now: datetime) -> str:
     """Add the approver's decision and its conditions to ``memo``, write it to ``out``, return a sentence about it."""
+    return approve(memo, out, key, decision, now).words
+
+
+def approve(memo: Path, out: Path, key: Key, decision: tuple[Decision, str], now: datetime) -> Issued:
+    """Add the approver's decision, its conditions and the signature to ``memo``, and write it to ``out``."""
     identity = load_identity(*key, now=now)
     chosen, conditions = decision
     signed = sign_as_approver(read_file(memo), identity, decision=chosen, conditions=conditions, time=now)
     write_file(out, signed)
-    return f"{DECISION_WORDS[chosen]}; countersigned memo written to {out}"
+    words = f"{DECISION_WORDS[chosen]}; countersigned memo written to {out}"
+    return Issued(out, words, identity.name, identity.fingerprint_sha256)

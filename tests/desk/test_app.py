@@ -42,7 +42,10 @@ def test_the_same_case_opened_twice_is_read_only_the_second_time(desk: Desk, sou
     assert first is not None
     assert second is not None
     assert not first.session.read_only
-    assert second.session.read_only in second.header.state.text()
+    assert second.header.state.text().startswith("Read only")
+    assert second.session.read_only in second.header.notice.accessibleName()
+    assert not second.header.notice.isHidden()
+    assert first.header.notice.isHidden()
 
 
 def test_what_cannot_be_opened_is_said_and_nothing_stays_locked(

@@ -9,7 +9,7 @@ from pytestqt.qtbot import QtBot
 from creditdesk.case.document import LegalForm
 from creditdesk.desk.app import make_application
 from creditdesk.desk.files import NewCase
-from creditdesk.desk.signing import NewIdentity, SignDialog
+from creditdesk.desk.signdialogs import NewIdentity, SignDialog
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook

@@ -126,7 +126,7 @@ def test_a_second_opener_reads_and_cannot_type(display: str, hands: Hands, tmp_p
     with CaseFile.open(path) as first, watched(path, display, tmp_path) as window:
         assert first.read_only_because == ""
         shown = window.wait(lambda _: True)
-        assert "open for" in shown["state"]
+        assert "open for" in shown["notice"]
         hands.focus("Brackwater Millworks Ltd")
         before = go_to_revenue(window, hands)["standing"]
         hands.type("1")

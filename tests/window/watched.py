@@ -32,6 +32,7 @@ def seen() -> Json:
         "settled": window.settled,
         "obligor": window.header.obligor.text(),
         "state": window.header.state.text(),
+        "notice": window.header.notice.accessibleName(),
         "recorded": window.recorded.text(),
         "message": window.statusBar().currentMessage(),
         "standing": {

@@ -2,20 +2,30 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import QTimer
-from PySide6.QtGui import QHideEvent, QShowEvent
-from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtCore import QByteArray, QEvent, QMimeData, QTimer, Signal
+from PySide6.QtGui import QFocusEvent, QHideEvent, QKeyEvent, QKeySequence, QShowEvent
+from PySide6.QtWidgets import (
+    QHBoxLayout,
+    QPlainTextEdit,
+    QPushButton,
+    QSplitter,
+    QStackedWidget,
+    QVBoxLayout,
+    QWidget,
+)
 
+from creditdesk.base.errors import UserError
 from creditdesk.case.commands import Command, SetText
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.desk.actions import Entry
-from creditdesk.desk.fields import TextBlock
+from creditdesk.desk.busy import Busy
 from creditdesk.desk.frame import label
+from creditdesk.desk.outcome import Outcome
 from creditdesk.desk.preview import Preview
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.signing import Issuer
-from creditdesk.desk.worker import Jobs
+from creditdesk.desk.worker import Jobs, Progress, Stopped
 from creditdesk.house.book import HouseBook
 
 BLOCKS = (
@@ -24,29 +34,90 @@ BLOCKS = (
     ("recommendation", "Recommendation", "Yours alone: the program drafts none."),
     ("conditions", "Conditions", "What must hold before and after drawing."),
 )
-_PAUSE = 350
+_PAUSE, _TYPING_PAUSE = 350, 1500
+
+
+class TextBlock(QPlainTextEdit):
+    """Edit one text block; what was typed is handed on when the cursor leaves it or typing pauses.
+
+    Undo takes back what was typed since; where nothing was, the keys are left to the window.
+    """
+
+    left = Signal(str)
+
+    def __init__(self, title: str, hint: str) -> None:
+        super().__init__()
+        self.setPlaceholderText(hint)
+        self.setAccessibleName(title)
+        self.setTabChangesFocus(True)
+        self._known = ""
+        self._pause = QTimer(self, singleShot=True, interval=_TYPING_PAUSE)
+        self._pause.timeout.connect(self.hand_on)
+        self.textChanged.connect(self._pause.start)
+
+    def show_text(self, text: str) -> None:
+        """Show the text of the case, if it is another one than before; what is being typed stays."""
+        if text == self._known:
+            return
+        self._known = text
+        if text != self.toPlainText():
+            place = self.textCursor().position()
+            self.setPlainText(text)
+            cursor = self.textCursor()
+            cursor.setPosition(min(place, len(text.encode("utf-16-le")) // 2))
+            self.setTextCursor(cursor)
+        self.document().clearUndoRedoStacks()
+
+    def take_back(self) -> None:
+        """Show the text of the case again in place of what was typed."""
+        self.setPlainText(self._known)
+
+    def hand_on(self) -> None:
+        """Hand on what was typed and has not been handed on yet."""
+        self._pause.stop()
+        if self.toPlainText() != self._known:
+            self.left.emit(self.toPlainText())
+
+    def focusOutEvent(self, event: QFocusEvent) -> None:
+        """Hand the text on."""
+        super().focusOutEvent(event)
+        self.hand_on()
+
+    def event(self, event: QEvent) -> bool:
+        """Leave undo and redo to the window where there is nothing of them here."""
+        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.ShortcutOverride:
+            document, keys = self.document(), QKeySequence.StandardKey
+            undo = event.matches(keys.Undo) and not document.isUndoAvailable()
+            if undo or (event.matches(keys.Redo) and not document.isRedoAvailable()):
+                event.ignore()
+                return True
+        return super().event(event)
+
+    def canInsertFromMimeData(self, source: QMimeData) -> bool:
+        """Leave files that are dropped to the window."""
+        return not source.hasUrls() and super().canInsertFromMimeData(source)
 
 
 class MemoSheet(Sheet):
-    """Write the texts, see the pages, ask to sign or verify."""
+    """Write the texts, see the pages, ask to sign or verify. ``sheet_asked``: a sheet that a page comes from."""
 
     title = "Memo"
     places = ("texts.",)
+    sheet_asked = Signal(str)
 
     def __init__(self, house: HouseBook, do: Callable[[Command], None], issuer: Issuer) -> None:
         super().__init__()
         self._house, self._do, self._issuer = house, do, issuer
         self._case: Case | None = None
         self._drawn_for: tuple[Case, int] | None = None
+        self._progress: Progress | None = None
         self.jobs = Jobs(self)
-        self.preview = Preview()
+        self.preview, self.outcome, self.busy = Preview(), Outcome(), Busy("Pages of the memo")
+        self.right, self.split = QStackedWidget(), QSplitter()
         self.blocks = {key: TextBlock(title, hint) for key, title, hint in BLOCKS}
-        self._pause = QTimer(self)
-        self._pause.setSingleShot(True)
-        self._pause.setInterval(_PAUSE)
+        self._pause = QTimer(self, singleShot=True, interval=_PAUSE)
         self._pause.timeout.connect(self.refresh)
-        for key, block in self.blocks.items():
-            block.left.connect(lambda text, key=key: self._on_text(key, text))
+        self._connect()
         self.setFocusProxy(self.blocks["request"])
         self._lay_out()
 
@@ -58,6 +129,16 @@ class MemoSheet(Sheet):
         if self.isVisible():
             self._pause.start()
 
+    def go_to(self, place: str) -> None:
+        """Put the cursor into the block ``texts.<name>``."""
+        block = self.blocks.get(place.removeprefix("texts."))
+        if block is not None:
+            block.setFocus()
+
+    def restore_split(self, state: QByteArray) -> None:
+        """Let texts and pages share the width as they did before."""
+        self.split.restoreState(state)
+
     def showEvent(self, event: QShowEvent) -> None:
         """Draw the pages when the sheet comes into sight."""
         super().showEvent(event)
@@ -67,6 +148,7 @@ class MemoSheet(Sheet):
         """Stop drawing pages that nobody sees."""
         super().hideEvent(event)
         self._pause.stop()
+        self._stop_drawing()
 
     @property
     def settled(self) -> bool:
@@ -74,70 +156,145 @@ class MemoSheet(Sheet):
         return not self._pause.isActive() and not self.jobs.busy and self._drawn_for is not None
 
     def entries(self) -> Sequence[Entry | None]:
-        """Return signing, saving and verifying."""
+        """Return signing, saving, printing and verifying."""
         return (
             ("&Sign and save…", "Ctrl+G", self._issuer.sign),
-            ("Save &unsigned…", None, self._issuer.save_unsigned),
+            ("&Countersign…", "Ctrl+Shift+G", self._issuer.countersign),
             ("&Verify a memo…", "Ctrl+Shift+V", self._issuer.verify),
+            None,
+            ("Save &unsigned as…", QKeySequence.StandardKey.SaveAs, self._issuer.save_unsigned),
+            ("&Print…", QKeySequence.StandardKey.Print, self._issuer.print_memo),
+            None,
+            ("&Draw the pages again", QKeySequence.StandardKey.Refresh, self.draw_again),
         )
 
     def stop(self) -> None:
-        """Let the page that is being drawn end."""
+        """Hand on what is typed and let the page that is being drawn end."""
+        self.hand_on()
+        self._pause.stop()
+        self._stop_drawing()
         self.jobs.stop()
+
+    def hand_on(self) -> None:
+        """Hand on what is typed in any block and has not been handed on yet."""
+        for block in self.blocks.values():
+            block.hand_on()
+
+    def draw_again(self) -> None:
+        """Draw the pages anew, whatever is shown."""
+        self._drawn_for = None
+        self.refresh()
 
     def refresh(self) -> None:
         """Draw the memo of the present case in the background."""
         case, house, width = self._case, self._house, self.preview.page_width()
         if case is None or self._drawn_for == (case, width) or self.jobs.busy:
             return
+        progress = self._progress = Progress()
 
         def draw() -> object:
-            from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
-            from creditdesk.memo.pages import page_images
+            return _drawn(case, house, width, progress)
 
-            return page_images(draft_memo(case, house), width)
-
-        def done(pages: object) -> None:
+        def done(drawn: tuple[list[object], list[object]]) -> None:
+            self._end(progress)
             self._drawn_for = (case, width)
-            if case is self._case:
-                self.preview.show_pages(pages)  # type: ignore[arg-type]
-            else:
+            self.preview.show_pages(*drawn)  # type: ignore[arg-type]  # the types are the memo's, fetched late
+            if (case, width) != (self._case, self.preview.page_width()):
                 self._pause.start()
 
-        self.jobs.start(draw, done, self._on_failed)
+        def failed(error: BaseException) -> None:
+            self._end(progress)
+            if isinstance(error, Stopped):
+                self._drawn_for = self._drawn_for or (case, 0)
+                self.preview.say("The drawing was stopped; these are not the pages of the case as it stands. F5 draws.")
+                return
+            self.preview.say(f"The pages cannot be drawn. {error}")
+            raise error
 
-    def _on_failed(self, error: BaseException) -> None:
-        self.preview.say(f"The pages cannot be drawn. {error}")
-        raise error
+        self.busy.watch(progress, "Drawing the pages")
+        self.jobs.start(draw, done, failed)
+
+    def _end(self, progress: Progress) -> None:
+        self.busy.done(progress)
+        self._progress = None
+
+    def _stop_drawing(self) -> None:
+        if self._progress is not None:
+            self._progress.stop()
 
     def _on_text(self, key: str, text: str) -> None:
-        if self._case is not None and text != self._case.texts.get(key, ""):
+        if self._case is None or text == self._case.texts.get(key, ""):
+            return
+        try:
             self._do(SetText(key, text))
+        except UserError as error:
+            self.blocks[key].take_back()
+            self.fault.emit(" ".join(error.faults))
+
+    def _on_outcome(self) -> None:
+        self.right.setCurrentWidget(self.outcome)
+
+    def _on_back(self) -> None:
+        self.right.setCurrentIndex(0)
+        self.blocks["request"].setFocus()
+
+    def _connect(self) -> None:
+        for key, block in self.blocks.items():
+            block.left.connect(lambda text, key=key: self._on_text(key, text))
+        self.preview.sheet_asked.connect(self.sheet_asked)
+        self.preview.widened.connect(self._pause.start)
+        self.outcome.back_asked.connect(self._on_back)
+        self.outcome.verify_asked.connect(self._issuer.verify_path)
+        self._issuer.asked.connect(self.hand_on)
+        self._issuer.issued.connect(self.outcome.show_issued)
+        self._issuer.verified.connect(self.outcome.show_verification)
+        self._issuer.shown.connect(self._on_outcome)
 
     def _lay_out(self) -> None:
         buttons = QHBoxLayout()
         for title, do, tip in (
             ("Sign and save…", self._issuer.sign, "Write the memo and sign it as preparer (Ctrl+G)"),
-            ("Save unsigned…", self._issuer.save_unsigned, "Write the memo without a signature"),
-            ("Verify a memo…", self._issuer.verify, "Check signatures, attachments and re-run of a memo"),
+            ("Countersign…", self._issuer.countersign, "Add the approver's decision and signature (Ctrl+Shift+G)"),
+            (
+                "Verify a memo…",
+                self._issuer.verify,
+                "Check signatures, attachments and re-run of a memo (Ctrl+Shift+V)",
+            ),
         ):
             button = QPushButton(title)
             button.setToolTip(tip)
             button.clicked.connect(lambda _=False, do=do: do())
             buttons.addWidget(button)
-        buttons.addStretch(1)
+        buttons.addWidget(self.busy, 1)
         texts = QWidget()
         box = QVBoxLayout(texts)
         box.setContentsMargins(0, 0, 10, 0)
         for key, title, _ in BLOCKS:
             box.addWidget(label("heading", title))
             box.addWidget(self.blocks[key], 1)
-        split = QSplitter()
-        split.addWidget(texts)
-        split.addWidget(self.preview)
-        split.setStretchFactor(1, 1)
-        split.setSizes([250, 480])
+        self.right.addWidget(self.preview)
+        self.right.addWidget(self.outcome)
+        self.split.addWidget(texts)
+        self.split.addWidget(self.right)
+        self.split.setStretchFactor(1, 1)
+        self.split.setChildrenCollapsible(False)
+        self.split.setSizes([250, 480])
         whole = QVBoxLayout(self)
         whole.setContentsMargins(22, 10, 16, 8)
         whole.addLayout(buttons)
-        whole.addWidget(split, 1)
+        whole.addWidget(self.split, 1)
+
+
+def _drawn(case: Case, house: HouseBook, width: int, progress: Progress) -> tuple[list[object], list[object]]:
+    """Return pages and what is on each; called by a worker."""
+    progress.step("Fetching what draws the memo")
+    from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
+    from creditdesk.memo.pages import draw_pages, page_parts
+
+    progress.step("Writing the memo")
+    pdf = draft_memo(case, house)
+    pages: list[object] = []
+    for number, total, page in draw_pages(pdf, width):
+        progress.step(f"Drawing page {number} of {total}", number, total)
+        pages.append(page)
+    return pages, list(page_parts(pdf))
