@@ -97,21 +97,25 @@ class Watched:
             time.sleep(0.05)
 
 
+def start(command: Sequence[str], display: str, drafts: Path) -> subprocess.Popen[str]:
+    """Start a program that opens the window."""
+    pipes = dict.fromkeys(("stdin", "stdout", "stderr"), subprocess.PIPE)
+    return subprocess.Popen(command, env=surroundings(display, drafts), text=True, **pipes)
+
+
 @contextmanager
 def opened(command: Sequence[str], display: str, drafts: Path) -> Iterator[subprocess.Popen[str]]:
     """Start a program that opens the window; once its window is closed it must end with 0 and without a word.
 
     Closing its standard input is how a watched one is told to end; the program itself has to be closed before.
     """
-    pipes = dict.fromkeys(("stdin", "stdout", "stderr"), subprocess.PIPE)
-    process = subprocess.Popen(command, env=surroundings(display, drafts), text=True, **pipes)
+    process = start(command, display, drafts)
     try:
         yield process
         out, messages = process.communicate(timeout=PATIENCE_SECONDS)
         assert (process.returncode, out, messages) == (0, "", "")
     finally:
-        process.kill()
-        process.wait()
+        _end(process)
 
 
 @contextmanager
@@ -121,9 +125,28 @@ def watched(case: Path, display: str, drafts: Path) -> Iterator[Watched]:
         yield Watched(process)
 
 
+@contextmanager
+def opened_to_be_killed(case: Path, display: str, drafts: Path) -> Iterator[Watched]:
+    """Open the window on ``case`` and watch it until it is killed, without a word, at the end."""
+    process = start(command_line(WATCHED, case), display, drafts)
+    try:
+        yield Watched(process)
+        assert process.poll() is None, "the window was gone before it was killed"
+    finally:
+        _end(process)
+
+
+def _end(process: "subprocess.Popen[str]") -> None:
+    """Kill what still runs, and close the pipes to it."""
+    process.kill()
+    with process:
+        pass
+
+
 def surroundings(display: str, drafts: Path) -> dict[str, str]:
-    """Return the environment of a program on ``display``."""
-    return {**os.environ, "DISPLAY": display, "QT_QPA_PLATFORM": "xcb", "CREDITDESK_DRAFTS": str(drafts)}
+    """Return the environment of a program on ``display`` that remembers nothing of other windows."""
+    own = {"CREDITDESK_DRAFTS": str(drafts), "XDG_CONFIG_HOME": str(drafts.with_name("config"))}
+    return {**os.environ, "DISPLAY": display, "QT_QPA_PLATFORM": "xcb", **own}
 
 
 def go_to_revenue(window: Watched, hands: Hands) -> Json:
