@@ -174,6 +174,7 @@ def picture(options: Namespace) -> int:
     if size is None:
         raise UsageError("size", f"--size: found {options.size!r}, expected WIDTHxHEIGHT such as 1280x800.")
     os.environ["QT_QPA_PLATFORM"] = "offscreen"  # set before Qt is imported; a picture needs no display
+    os.environ["QT_SCALE_FACTOR"] = str(options.scale)
     from creditdesk.desk.picture import take_picture  # needs Qt
 
     look = (DARK if options.theme == "dark" else LIGHT, int(size[1]), int(size[2]))

@@ -131,11 +131,12 @@ def _convert(every: Commands) -> None:
 
 def _picture(every: Commands) -> None:
     parser = _command(every, "picture", commands.picture, "write a picture of one sheet of the window")
-    parser.add_argument("sheet", metavar="SHEET")
+    parser.add_argument("sheet", metavar="SHEET", help="a sheet's name, or standing for Standing with the window alone")
     parser.add_argument("case", type=Path, metavar="CASE")
     parser.add_argument("--out", type=Path, required=True, metavar="PAGE.png")
     parser.add_argument("--theme", choices=("light", "dark"), default="light")
-    parser.add_argument("--size", default="1440x900", metavar="WIDTHxHEIGHT")
+    parser.add_argument("--size", default="1440x900", metavar="WIDTHxHEIGHT", help="as seen at 100 %% (1440x900)")
+    parser.add_argument("--scale", type=int, choices=(1, 2, 3), default=1, help="pixels per dot of that size (1)")
     _house(parser)
 
 

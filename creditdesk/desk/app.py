@@ -20,6 +20,7 @@ from creditdesk.case.trail import utc_now
 from creditdesk.desk import crash, theme
 from creditdesk.desk.files import show_faults
 from creditdesk.desk.session import Session
+from creditdesk.desk.settings import Settings
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
@@ -33,7 +34,7 @@ def make_application() -> QApplication:
         application.setApplicationName("creditdesk")
         application.setOrganizationName("creditdesk")
         theme.load_fonts()
-    theme.apply(application, theme.system_palette())
+    theme.apply(application, theme.chosen_palette(Settings().theme))
     return application
 
 
@@ -71,6 +72,7 @@ class Desk(QObject):
         window = Window(session, self._palette)
         window.open_asked.connect(self.open_path)
         window.new_asked.connect(self.new_path)
+        window.theme_chosen.connect(self._on_theme_chosen)
         window.closed.connect(self._on_closed)
         self.windows.append(window)
         window.restore_shape()
@@ -85,6 +87,11 @@ class Desk(QObject):
         self._start.open_asked.connect(self.open_path)
         self._start.new_asked.connect(self.new_path)
         self._start.show()
+
+    def _on_theme_chosen(self, where: Window) -> None:
+        for window in self.windows:
+            if window is not where:
+                window.follow_theme()
 
     def _on_closed(self, window: Window) -> None:
         self.windows.remove(window)

@@ -87,6 +87,7 @@ class SheetBar(QWidget):
     """List the sheets by name, the chosen one underlined; at the right, the way to everything else."""
 
     chosen = Signal(int)
+    wide_asked = Signal(bool)
     find_asked = Signal()
 
     def __init__(self, names: Sequence[str]) -> None:
@@ -104,15 +105,28 @@ class SheetBar(QWidget):
             self._group.addButton(button, number)
             row.addWidget(button)
         row.addStretch(1)
-        find = QPushButton(f"Find any action  {FIND_KEY}")
-        find.setProperty("role", "find")
-        find.setToolTip("Type a few words of what you want to do")
-        find.clicked.connect(self.find_asked)
-        row.addWidget(find)
+        self.wide = _right_button(
+            f"Standing  {WIDE_KEY}", "Give Standing the whole window, or the sheets their room back"
+        )
+        self.wide.setCheckable(True)
+        self.wide.clicked.connect(self.wide_asked)
+        self.find = _right_button(f"Find any action  {FIND_KEY}", "Type a few words of what you want to do")
+        self.find.clicked.connect(self.find_asked)
+        row.addWidget(self.wide)
+        row.addSpacing(18)
+        row.addWidget(self.find)
         self._group.idClicked.connect(self.chosen)
 
     def mark(self, number: int) -> None:
-        """Mark the sheet that is shown; -1 marks none."""
+        """Mark the sheet that is shown; -1 marks Standing, which then has the window."""
+        self.wide.setChecked(number < 0)
         self._group.setExclusive(number >= 0)
         for button in self._group.buttons():
             button.setChecked(self._group.id(button) == number)
+
+
+def _right_button(title: str, tip: str) -> QPushButton:
+    button = QPushButton(title)
+    button.setProperty("role", "find")
+    button.setToolTip(tip)
+    return button

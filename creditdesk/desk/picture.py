@@ -11,15 +11,19 @@ from creditdesk.case.convert import load_any
 from creditdesk.case.lead import with_lead_model
 from creditdesk.desk.app import make_application
 from creditdesk.desk.session import Session
-from creditdesk.desk.window import SHEETS, Window
+from creditdesk.desk.window import SHEETS, STANDING, Window
 from creditdesk.house.book import HouseBook
 
 _PATIENCE_MILLISECONDS = 60_000
 
 
 def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look: tuple[Palette, int, int]) -> None:
-    """Write a PNG of ``sheet`` at exactly the width and height of ``look``; raises UserError."""
-    names = [name.lower() for name in SHEETS]
+    """Write a PNG of a sheet, or of Standing with the window to itself; raises UserError.
+
+    ``look`` is palette, width and height, these as a user sees them at 100 %. Where Qt was told to scale (the
+    environment variable QT_SCALE_FACTOR), the picture has so many times more pixels, and shows the same.
+    """
+    names = {name.lower(): name for name in (*SHEETS, STANDING)}
     if sheet.lower() not in names:
         raise UsageError("sheet", f"There is no sheet {sheet!r}: choose one of {', '.join(names)}.")
     palette, width, height = look
@@ -27,7 +31,7 @@ def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look:
     case = load_any(case_path, house.chart)
     window = Window(Session(with_lead_model(house, case, case_path.parent), case, case_path), palette)
     window.resize(width, height)
-    window.show_sheet(names.index(sheet.lower()))
+    window.show_named(names[sheet.lower()])
     window.show()
     _wait(lambda: window.settled)
     for _ in range(3):

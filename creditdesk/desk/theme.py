@@ -7,6 +7,7 @@ from PySide6.QtGui import QColor, QFont, QFontDatabase, QGuiApplication, QPalett
 from PySide6.QtWidgets import QApplication
 
 from creditdesk.base.palette import DARK, LIGHT, Palette
+from creditdesk.desk.settings import Theme
 from creditdesk.house.fontfiles import font_files
 
 SANS = "Source Sans Pro"
@@ -51,6 +52,7 @@ QLabel[role="grade"] { font-family: "$serif"; font-size: 24pt; font-weight: 600;
 #sheets QPushButton:checked { color: $ink; font-weight: 600; border-bottom-color: $accent; }
 #sheets QPushButton:focus { background: $selection; }
 #sheets QPushButton[role="find"] { margin-right: 0; font-size: 10.5pt; }
+#sheets QPushButton[role="find"]:checked { font-weight: 400; }
 #palette { background: $sheet; border: 1.5px solid $accent; }
 #palette QLineEdit { border: 0; border-bottom: 1px solid $rule; font-size: 13pt; padding: 6px 8px; }
 #palette QListView { background: $sheet; border: 0; outline: 0; }
@@ -94,6 +96,11 @@ QScrollBar::handle:hover { background: $second_ink; }
 QScrollBar::add-line, QScrollBar::sub-line, QScrollBar::add-page, QScrollBar::sub-page { background: none; border: 0;
   width: 0; height: 0; }
 """)
+
+
+def chosen_palette(choice: Theme) -> Palette:
+    """Return the palette of the user's choice, the system's where that decides."""
+    return {Theme.LIGHT: LIGHT, Theme.DARK: DARK}.get(choice) or system_palette()
 
 
 def system_palette() -> Palette:

@@ -31,7 +31,7 @@ from PySide6.QtWidgets import (
 )
 
 from creditdesk.base.errors import UserError
-from creditdesk.base.palette import DARK, LIGHT, Palette
+from creditdesk.base.palette import Palette
 from creditdesk.desk import files, theme
 from creditdesk.desk.about import About, Keys, key_sections
 from creditdesk.desk.actions import Entry, add_menu, give_reason, make_action, placed_actions
@@ -68,7 +68,7 @@ class Window(QMainWindow):
     ready = Signal()
     open_asked = Signal(Path)
     new_asked = Signal(Path, object)
-    theme_chosen = Signal()
+    theme_chosen = Signal(object)
     closed = Signal(object)
 
     def __init__(self, session: Session, palette: Palette | None = None) -> None:
@@ -103,8 +103,7 @@ class Window(QMainWindow):
     @property
     def theme(self) -> Palette:
         """Return the palette in use: the one asked for, else the one chosen, else the system's."""
-        chosen = {Theme.LIGHT: LIGHT, Theme.DARK: DARK}.get(self.settings.theme)
-        return self._own_palette or chosen or theme.system_palette()
+        return self._own_palette or theme.chosen_palette(self.settings.theme)
 
     @property
     def wide(self) -> bool:
@@ -309,6 +308,7 @@ class Window(QMainWindow):
 
     def _connect(self) -> None:
         self.bar.chosen.connect(self.show_sheet)
+        self.bar.wide_asked.connect(self.show_wide)
         self.bar.find_asked.connect(self.finder.open)
         self.session.changed.connect(self._on_changed)
         self.session.recorded.connect(self._on_recorded)
@@ -378,7 +378,7 @@ class Window(QMainWindow):
     def _on_theme(self, choice: Theme) -> None:
         self.settings.theme = choice
         self.follow_theme()
-        self.theme_chosen.emit()
+        self.theme_chosen.emit(self)
 
     def _on_keys(self) -> None:
         _show(Keys(self, key_sections(placed_actions(self.menuBar()))))

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from PIL import Image
 
 from creditdesk.base.palette import DARK, LIGHT
-from creditdesk.desk.window import SHEETS
+from creditdesk.desk.window import SHEETS, STANDING
 from tests.programs import SOUND, STRETCHED, Ended, run
 
 Command = Callable[..., Ended]
@@ -35,7 +35,7 @@ def share_of(colour: str, picture: NDArray[np.uint8]) -> float:
     return float((picture == wanted).all(axis=2).mean())
 
 
-@pytest.mark.parametrize("sheet", [name.lower() for name in SHEETS])
+@pytest.mark.parametrize("sheet", [name.lower() for name in (*SHEETS, STANDING)])
 def test_every_sheet_at_the_size_asked_for(sheet: str, tmp_path: Path) -> None:
     picture = taken(sheet, tmp_path / "page.png", "--size", "1280x800")
     assert picture.shape == (800, 1280, 3)
@@ -61,6 +61,15 @@ def test_the_same_case_gives_the_same_picture_and_makes_no_draft(
     assert sorted(path.name for path in tmp_path.iterdir()) == ["a.png", "b.png"]
 
 
+def test_a_picture_of_more_pixels_shows_the_same(tmp_path: Path) -> None:
+    plain = taken("standing", tmp_path / "a.png", "--size", "1280x800")
+    fine = taken("standing", tmp_path / "b.png", "--size", "1280x800", "--scale", "2")
+    assert (plain.shape, fine.shape) == ((800, 1280, 3), (1600, 2560, 3))
+    smaller = fine.reshape(800, 2, 1280, 2, 3).mean(axis=(1, 3))
+    assert np.abs(smaller - plain).mean() < 6  # of 255: the same picture but for the edges of letters
+    assert len(np.unique(fine.reshape(-1, 3), axis=0)) > 200
+
+
 @pytest.mark.parametrize("size", ["12", "0x0", "1280x", "800 600", "1280x800x3"])
 def test_a_size_that_is_none_is_wrong_usage(command: Command, tmp_path: Path, size: str) -> None:
     done = command("picture", "figures", SOUND, "--out", tmp_path / "a.png", "--size", size)
@@ -71,7 +80,7 @@ def test_a_size_that_is_none_is_wrong_usage(command: Command, tmp_path: Path, si
 def test_what_keeps_a_picture_from_being_taken(tmp_path: Path) -> None:
     out = tmp_path / "a.png"
     for asked, words in (
-        (("nosuch", SOUND, "--out", out), "obligor, figures, ratios, memo"),
+        (("nosuch", SOUND, "--out", out), "obligor, figures, ratios, memo, standing"),
         (("figures", tmp_path / "none.case.toml", "--out", out), "no such file"),
         (("figures", SOUND, "--out", tmp_path / "no" / "a.png"), "cannot be written"),
     ):
