@@ -46,5 +46,5 @@ def _refuse_size(rows: list[list[str]], size: tuple[int, int]) -> None:
     if not any(cell.strip() for row in rows for cell in row):
         raise UserError("block", "Pasted block: there is nothing to paste.")
     if height > size[0] or width > size[1]:
-        found = f"{height} rows by {width} columns"
+        found = f"{height} {'row' if height == 1 else 'rows'} by {width} {'column' if width == 1 else 'columns'}"
         raise UserError("block", f"Pasted block: found {found}; from this cell on {size[0]} by {size[1]} fit.")
