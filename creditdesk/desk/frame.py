@@ -110,11 +110,11 @@ class SheetBar(QWidget):
         )
         self.wide.setCheckable(True)
         self.wide.clicked.connect(self.wide_asked)
-        self.find = _right_button(f"Find any action  {FIND_KEY}", "Type a few words of what you want to do")
-        self.find.clicked.connect(self.find_asked)
+        self.finder = _right_button(f"Find any action  {FIND_KEY}", "Type a few words of what you want to do")
+        self.finder.clicked.connect(self.find_asked)
         row.addWidget(self.wide)
         row.addSpacing(18)
-        row.addWidget(self.find)
+        row.addWidget(self.finder)
         self._group.idClicked.connect(self.chosen)
 
     def mark(self, number: int) -> None:

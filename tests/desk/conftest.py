@@ -31,13 +31,20 @@ def sound_case(house: HouseBook) -> Case:
 
 
 @pytest.fixture
+def stretched_case(house: HouseBook) -> Case:
+    return load_any(resources_folder() / "demo" / STRETCHED, house.chart)
+
+
+@pytest.fixture
 def open_window(qtbot: QtBot, house: HouseBook, tmp_path: Path) -> Iterator[Callable[..., Window]]:
     """Return a function that shows a session and waits until charts and pages are there."""
     make_application()
     QSettings().clear()
     windows: list[Window] = []
 
-    def show(session: Session) -> Window:
+    def show(session: Session, *, forget: bool = True) -> Window:
+        if forget:
+            QSettings().clear()
         window = Window(session)
         windows.append(window)
         window.show()

@@ -1,0 +1,216 @@
+from collections.abc import Callable
+from datetime import UTC, datetime
+from pathlib import Path
+
+import pytest
+from PySide6.QtCore import QMimeData, QPoint, QPointF, QSettings, Qt, QUrl
+from PySide6.QtGui import QAction, QColor, QDragEnterEvent, QDropEvent, QKeySequence
+from PySide6.QtWidgets import QApplication
+from pytestqt.qtbot import QtBot
+
+from creditdesk.base.palette import DARK, LIGHT
+from creditdesk.case.commands import SetText
+from creditdesk.case.document import Case
+from creditdesk.case.store import CaseFile
+from creditdesk.case.trail import utc_now
+from creditdesk.desk.actions import placed_actions, plain, reason_of
+from creditdesk.desk.app import Desk, make_application
+from creditdesk.desk.session import Session
+from creditdesk.desk.settings import Settings, Theme
+from creditdesk.desk.start import Start
+from creditdesk.desk.window import SHEETS, Window
+from creditdesk.house.book import HouseBook
+
+ALT = Qt.KeyboardModifier.AltModifier
+
+
+def _action(window: Window, title: str) -> QAction:
+    found = [placed.action for placed in placed_actions(window.menuBar()) if plain(placed.action.text()) == title]
+    assert len(found) == 1, title
+    return found[0]
+
+
+def _drop(window: Window | Start, *paths: str) -> bool:
+    """Drop files as the system does: ask first, let them fall only where that was agreed to."""
+    data = QMimeData()
+    data.setUrls([QUrl.fromLocalFile(path) if "//" not in path else QUrl(path) for path in paths])
+    action, button, keys = Qt.DropAction.CopyAction, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier
+    entering = QDragEnterEvent(QPoint(40, 40), action, data, button, keys)
+    entering.ignore()
+    window.dragEnterEvent(entering)
+    if entering.isAccepted():
+        window.dropEvent(QDropEvent(QPointF(40, 40), action, data, button, keys))
+    return entering.isAccepted()
+
+
+def test_standing_takes_the_window_and_escape_gives_it_back(qtbot: QtBot, window: Window) -> None:
+    before = window.split.sizes()
+    qtbot.keyClick(window.figures.table, Qt.Key.Key_0, ALT)
+    assert window.wide
+    assert not window.stack.isVisible()
+    qtbot.waitUntil(lambda: window.standing.width() > window.width() - 10)
+    assert window.bar.wide.isChecked()
+    qtbot.keyClick(window, Qt.Key.Key_Escape)
+    assert not window.wide
+    assert window.split.sizes() == before
+    assert window.focusWidget() is window.figures.table
+
+
+def test_the_same_key_or_a_sheets_key_gives_the_window_back_too(qtbot: QtBot, window: Window) -> None:
+    for back in (Qt.Key.Key_0, Qt.Key.Key_2):
+        qtbot.keyClick(window, Qt.Key.Key_0, ALT)
+        assert window.wide
+        qtbot.keyClick(window, back, ALT)
+        assert not window.wide
+        assert SHEETS[window.stack.currentIndex()] == "Figures"
+        assert not window.bar.wide.isChecked()
+
+
+def test_escape_closes_what_lies_over_the_window_before_it_gives_the_room_back(qtbot: QtBot, window: Window) -> None:
+    window.show_wide(True)
+    window.finder.open()
+    qtbot.keyClick(window.finder.line, Qt.Key.Key_Escape)
+    assert window.wide
+    assert not window.finder.isVisible()
+    qtbot.keyClick(window, Qt.Key.Key_Escape)
+    assert not window.wide
+
+
+def test_every_sheet_has_its_key_and_its_name_in_the_bar(qtbot: QtBot, window: Window) -> None:
+    for number, name in enumerate(SHEETS):
+        qtbot.keyClick(window, Qt.Key(Qt.Key.Key_1.value + number), ALT)
+        assert SHEETS[window.stack.currentIndex()] == name
+        assert [button.text() for button in window.bar._group.buttons() if button.isChecked()] == [name]
+
+
+def test_standard_keys_stand_where_they_are_expected(window: Window) -> None:
+    keys = QKeySequence.StandardKey
+    for title, key in (
+        ("New…", keys.New),
+        ("Open…", keys.Open),
+        ("Close", keys.Close),
+        ("Save unsigned as…", keys.SaveAs),
+        ("Print…", keys.Print),
+        ("Keys", keys.HelpContents),
+    ):
+        assert _action(window, title).shortcuts() == QKeySequence.keyBindings(key), title
+
+
+def test_a_theme_from_the_menu_is_worn_at_once_and_remembered(window: Window) -> None:
+    _action(window, "Dark").trigger()
+    assert Settings().theme is Theme.DARK
+    assert window.theme is DARK
+    colour = QColor(DARK.paper)
+    assert window.grab().toImage().pixelColor(4, 4) == colour
+    _action(window, "Light").trigger()
+    assert window.theme is LIGHT
+    assert window.grab().toImage().pixelColor(4, 4) == QColor(LIGHT.paper)
+    _action(window, "As the system").trigger()
+    assert Settings().theme is Theme.SYSTEM
+
+
+def test_all_windows_follow_one_choice(
+    qtbot: QtBot, house: HouseBook, sound_case: Case, stretched_case: Case, tmp_path: Path
+) -> None:
+    make_application()
+    QSettings().clear()
+    desk = Desk(house)
+    windows = [desk.show_session(Session(house, case, tmp_path)) for case in (sound_case, stretched_case)]
+    for window in windows:
+        qtbot.waitUntil(lambda window=window: window.settled, timeout=20_000)
+    _action(windows[0], "Dark").trigger()
+    assert _action(windows[1], "Dark").isChecked()
+    assert windows[1].figures.delegate.palette is DARK
+    for window in windows:
+        window.close()
+
+
+def test_the_status_line_says_when_the_last_edit_was_recorded(
+    open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path
+) -> None:
+    path = tmp_path / "case.deskcase"
+    begun, edited = datetime(2026, 3, 2, 9, 15, 30, tzinfo=UTC), datetime(2026, 3, 2, 9, 17, 5, tzinfo=UTC)
+    file = CaseFile.create(path, sound_case, actor="officer", clock=lambda: begun)
+    window = open_window(Session(house, sound_case, path, file, now=lambda: edited))
+    assert window.recorded.text() == "Last recorded 2026-03-02 09:15 in case.deskcase"
+    window.session.do(SetText("request", "Another request"))
+    assert window.recorded.text() == "Recorded 09:17:05 in case.deskcase"
+
+
+def test_a_case_that_cannot_be_recorded_says_so_above_everything(
+    open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path
+) -> None:
+    path = tmp_path / "case.deskcase"
+    with CaseFile.create(path, sound_case, actor="first officer", clock=utc_now):
+        second = CaseFile.open(path, actor="second officer")
+        window = open_window(Session(house, second.case, path, second))
+        assert window.header.notice.isVisible()
+        assert second.read_only_because in window.header.notice.accessibleName()
+        assert reason_of(_action(window, "Revert to…")) == second.read_only_because
+
+
+def test_an_edit_that_cannot_be_undone_is_said_and_nothing_changes(
+    open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path
+) -> None:
+    path = tmp_path / "case.deskcase"
+    file = CaseFile.create(path, sound_case, actor="officer", clock=utc_now)
+    window = open_window(Session(house, sound_case, path, file))
+    window.session.do(SetText("request", "Another request"))
+    file.close()  # as if the disk were gone
+    window.session.undo_stack.undo()
+    assert window.session.case.texts["request"] == "Another request"
+    assert "cannot be written" in window.statusBar().currentMessage()
+
+
+def test_a_case_that_is_dropped_is_opened_and_a_memo_verified(
+    qtbot: QtBot, window: Window, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    opened: list[Path] = []
+    verified: list[Path] = []
+    window.open_asked.connect(opened.append)
+    monkeypatch.setattr(window.issuer, "verify_path", verified.append)
+    for name in ("a.deskcase", "b.case.toml", "c.PDF"):
+        assert _drop(window, str(tmp_path / name)), name
+    assert opened == [tmp_path / "a.deskcase", tmp_path / "b.case.toml"]
+    assert verified == [tmp_path / "c.PDF"]
+
+
+@pytest.mark.parametrize("paths", [(), ("a.txt",), ("a.pdf", "b.pdf"), ("https://example.org/a.pdf",), ("a.toml",)])
+def test_anything_else_is_not_taken(window: Window, paths: tuple[str, ...]) -> None:
+    assert not _drop(window, *paths)
+
+
+def test_the_start_takes_a_case_and_no_memo(qtbot: QtBot, tmp_path: Path) -> None:
+    make_application()
+    start = Start()
+    qtbot.addWidget(start)
+    with qtbot.waitSignal(start.open_asked) as asked:
+        assert _drop(start, str(tmp_path / "a.deskcase"))
+    assert asked.args == [tmp_path / "a.deskcase"]
+    assert not _drop(start, str(tmp_path / "a.pdf"))
+
+
+def test_sheets_behind_catch_up_with_an_edit(qtbot: QtBot, window: Window) -> None:
+    window.session.do(SetText("request", "Another request"))
+    assert window._behind
+    qtbot.waitUntil(lambda: not window._behind)
+    assert window.memo.blocks["request"].toPlainText() == "Another request"
+
+
+def test_a_sheet_is_up_to_date_the_moment_it_is_shown(window: Window) -> None:
+    window.session.do(SetText("request", "Another request"))
+    window.show_sheet(SHEETS.index("Memo"))
+    assert window.memo.blocks["request"].toPlainText() == "Another request"
+
+
+def test_a_place_goes_to_the_sheet_that_claims_most_of_it(window: Window) -> None:
+    for place, title in (
+        ("figures.cash[2025-12-31]", "Figures"),
+        ("texts.request", "Memo"),
+        ("model.scope", "Obligor"),
+    ):
+        window.go_to(place)
+        assert SHEETS[window.stack.currentIndex()] == title, place
+    window.go_to("nowhere at all")
+    assert SHEETS[window.stack.currentIndex()] == "Obligor"
+    assert QApplication.focusWidget() is not None or not QApplication.activeWindow()
