@@ -8,6 +8,13 @@ from creditdesk.house.book import HouseBook
 from creditdesk.model.spec import ModelSpec
 from creditdesk.statements.period import is_actual
 
+_PLACES = {
+    -1: ("among the lowest {share}", "lowest {share}"),
+    0: ("higher than {share}", "above {share}"),
+    1: ("higher than at least {share}", "above {share}"),
+}
+"""Words for a place below the lowest stated quantile, between the stated ones and above the highest; long and short."""
+
 
 @dataclass(frozen=True, slots=True)
 class RatioUse:
@@ -51,9 +58,17 @@ def place_words(place: float, spec: ModelSpec) -> str:
 
     Beyond the quantiles that the model states, the words say no more than these do.
     """
+    return f"{_PLACES[_end(place, spec)][0].format(share=format_percent(place, 0))} of the sample"
+
+
+def short_place_words(place: float, spec: ModelSpec) -> str:
+    """Say the same where there is little room: above 72 %."""
+    return _PLACES[_end(place, spec)][1].format(share=format_percent(place, 0))
+
+
+def _end(place: float, spec: ModelSpec) -> int:
+    """Tell the two ends of the stated quantiles, -1 and 1, from what lies between, 0."""
     levels = spec.sample.quantile_levels if spec.sample is not None else ()
-    if levels and place <= levels[0]:
-        return f"among the lowest {format_percent(levels[0], 0)} of the sample"
-    if levels and place >= levels[-1]:
-        return f"higher than at least {format_percent(levels[-1], 0)} of the sample"
-    return f"higher than {format_percent(place, 0)} of the sample"
+    if not levels or levels[0] < place < levels[-1]:
+        return 0
+    return -1 if place <= levels[0] else 1

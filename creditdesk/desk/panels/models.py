@@ -6,9 +6,7 @@ from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
-    QGridLayout,
     QHBoxLayout,
-    QLabel,
     QPushButton,
     QTableWidget,
     QTableWidgetItem,
@@ -23,12 +21,12 @@ from creditdesk.case.offers import ModelOffer, Role, model_offers, scope_words
 from creditdesk.case.standing import Standing
 from creditdesk.desk.fields import fault_words
 from creditdesk.desk.frame import label
+from creditdesk.desk.panels.facts import Facts
 from creditdesk.desk.panels.form import Do
 from creditdesk.house.book import HouseBook
 
 _HEADS = ("Model", "Use", "Gives", "Scope check")
 _ROW, _MOST_ROWS = 25, 9
-_TOP = Qt.AlignmentFlag.AlignTop
 
 
 class ModelsTable(QTableWidget):
@@ -71,38 +69,6 @@ class ModelsTable(QTableWidget):
                 self.setItem(number, column, QTableWidgetItem(text))
         shown = min(len(rows), _MOST_ROWS)
         self.setFixedHeight(self.horizontalHeader().sizeHint().height() + shown * _ROW + 2)
-
-
-class Facts(QWidget):
-    """Show titles with their words, one below the other; those without words are left out."""
-
-    def __init__(self, titles: tuple[str, ...]) -> None:
-        super().__init__()
-        grid = QGridLayout(self)
-        grid.setContentsMargins(0, 0, 0, 0)
-        grid.setHorizontalSpacing(12)
-        grid.setVerticalSpacing(4)
-        grid.setColumnMinimumWidth(0, 124)
-        grid.setColumnStretch(1, 1)
-        self._rows: dict[str, tuple[QLabel, QLabel]] = {}
-        for row, title in enumerate(titles):
-            head, words = label("second", title), label("", wrap=True)
-            words.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
-            grid.addWidget(head, row, 0, _TOP)
-            grid.addWidget(words, row, 1, _TOP)
-            self._rows[title] = (head, words)
-
-    def words(self, title: str) -> str:
-        """Return what stands beside a title."""
-        return self._rows[title][1].text()
-
-    def show_words(self, title: str, text: str) -> None:
-        """Write the words of a title; none take the line away."""
-        head, words = self._rows[title]
-        words.setText(text)
-        words.setAccessibleName(f"{title}: {text}")
-        for widget in (head, words):
-            widget.setVisible(bool(text))
 
 
 class ModelsPanel(QWidget):
