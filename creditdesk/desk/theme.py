@@ -70,6 +70,7 @@ QPushButton:disabled { color: $second_ink; background: $paper; }
 QLineEdit, QPlainTextEdit, QComboBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
 QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus { border-color: $accent; }
 QLineEdit[fault="true"], QComboBox[fault="true"] { border-color: $breach; }
+QLineEdit, QPlainTextEdit { placeholder-text-color: $second_ink; }
 QComboBox { padding: 4px 5px; }
 QComboBox::drop-down { border: 0; width: 20px; }
 QComboBox::down-arrow { width: 0; height: 0; border-left: 4px solid $sheet; border-right: 4px solid $sheet;
