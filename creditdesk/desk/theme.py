@@ -69,6 +69,7 @@ QProgressBar::chunk { background: $accent; }
 QPushButton:disabled { color: $second_ink; background: $paper; }
 QLineEdit, QPlainTextEdit, QComboBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
 QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus { border-color: $accent; }
+QLabel[role="fault"] { color: $breach; }
 QLineEdit[fault="true"], QComboBox[fault="true"] { border-color: $breach; }
 QLineEdit, QPlainTextEdit { placeholder-text-color: $second_ink; }
 QComboBox { padding: 4px 5px; }
