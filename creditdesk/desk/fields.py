@@ -296,7 +296,7 @@ class Line(Generic[Field]):
         """Say why the entry cannot be; what was typed stays."""
         self.field.refuse()
         self._mark(faulty=True)
-        self._write(f"▲ {words}", "breach")
+        self._write(f"▲ {words}", "fault")
 
     def _on_entered(self, value: object) -> None:
         try:

@@ -30,6 +30,7 @@ class CurrencyPanel(Form):
     def __init__(self, do: Do) -> None:
         super().__init__("Figures are in")
         self._do = do
+        self._rates: Rates | None = None
         codes = [(code, "") for code in sorted(CURRENCIES)]
         self.currency = self.add(Line("Currency", CodeField("Currency", codes, "ISO 4217 code"), self._set_currency))
         self.unit = self.add(Line("Unit", ChoiceField("Unit"), self._set_unit))
@@ -37,10 +38,13 @@ class CurrencyPanel(Form):
 
     def show_case(self, case: Case) -> None:
         """Show currency and unit of ``case``."""
+        self._rates = case.obligor.rates
         self.currency.show(case.obligor.currency, "Another currency or unit converts nothing: figures stay as typed.")
         self.unit.show(case.obligor.unit)
 
     def _set_currency(self, value: object) -> None:
+        if self._rates is not None and value in self._rates.per_unit:
+            raise UserError("currency", f"The exchange rates hold a rate of {value}; take that away first")
         self._do(SetObligor("currency", str(value)))
 
     def _set_unit(self, value: object) -> None:

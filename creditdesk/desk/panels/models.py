@@ -86,7 +86,7 @@ class ModelsPanel(QWidget):
         )
         self.lead = QPushButton("Make it the lead model")
         self.leave = QPushButton("Leave the choice to the house")
-        self.fault = label("breach", wrap=True)
+        self.fault = label("fault", wrap=True)
         self.table.itemSelectionChanged.connect(self._show_offer)
         self.table.lead_asked.connect(self._on_lead)
         self.lead.clicked.connect(self._on_lead)
@@ -116,7 +116,7 @@ class ModelsPanel(QWidget):
         if offer is None:
             return
         self.fault.hide()
-        self.about.setText(f"{offer.label} {offer.version}{', invented' if offer.invented else ''}")
+        self.about.setText(f"{offer.label}, version {offer.version}{', invented' if offer.invented else ''}")
         for title, text in _facts(offer):
             self.facts.show_words(title, text)
         leads = offer.role is Role.LEAD

@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping
 
+from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
 from creditdesk.base.errors import UserError
@@ -33,6 +34,11 @@ class GrowingBlock(TextBlock):
         self.document().documentLayout().documentSizeChanged.connect(self._fit)
         self._fit()
 
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Fit the lines as they are wrapped now."""
+        super().resizeEvent(event)
+        self._fit()
+
     def _fit(self, _size: object = None) -> None:
         """Count lines as they are wrapped; the layout of plain text gives its height in lines."""
         fewest, most = _LINES
@@ -49,7 +55,7 @@ class TextsPanel(QWidget):
         self._do = do
         self._case: Case | None = None
         self.blocks = {key: GrowingBlock(title, TEXT_BLOCKS[key]) for key, title in TITLES.items()}
-        self.faults = {key: label("breach", wrap=True) for key in TITLES}
+        self.faults = {key: label("fault", wrap=True) for key in TITLES}
         box = QVBoxLayout(self)
         box.setContentsMargins(0, 0, 0, 0)
         box.setSpacing(5)

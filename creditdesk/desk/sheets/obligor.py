@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QPoint, Qt
 from PySide6.QtGui import QResizeEvent, QShowEvent
 from PySide6.QtWidgets import QBoxLayout, QFrame, QScrollArea, QVBoxLayout, QWidget
 
@@ -20,6 +20,8 @@ from creditdesk.house.book import HouseBook
 
 _TWO_COLUMNS = 1180
 """Width from which two columns read better than one."""
+_ABOVE = 46
+"""Room for a heading above what is jumped to."""
 
 
 class ObligorSheet(Sheet):
@@ -34,7 +36,7 @@ class ObligorSheet(Sheet):
         self._stale = False
         self.identity, self.currency, self.rates = IdentityPanel(do), CurrencyPanel(do), RatesPanel(house, do)
         self.assessment, self.models, self.texts = AssessmentPanel(do), ModelsPanel(house, do), TextsPanel(do)
-        self.view = QScrollArea()
+        self.view, self._inside = QScrollArea(), QWidget()
         self._columns = QBoxLayout(QBoxLayout.Direction.TopToBottom)
         self.setFocusProxy(self.identity.name.field)
         self._lay_out()
@@ -62,7 +64,7 @@ class ObligorSheet(Sheet):
         """Move to a field, named as in the exchange file; to the models for what a scope says."""
         target = self._target(place)
         target.setFocus(Qt.FocusReason.ShortcutFocusReason)
-        self.view.ensureWidgetVisible(target, 0, 60)
+        self._bring_into_sight(target)
 
     def entries(self) -> Sequence[Entry | None]:
         """Return the ways to each matter of the sheet."""
@@ -93,6 +95,13 @@ class ObligorSheet(Sheet):
         self.models.show_standing(case, standing)
         self.texts.show_case(case)
 
+    def _bring_into_sight(self, target: QWidget) -> None:
+        """Scroll to the whole of ``target``, its heading included, where it is not in sight."""
+        top = target.mapTo(self._inside, QPoint(0, 0)).y()
+        bar, height = self.view.verticalScrollBar(), self.view.viewport().height()
+        if not bar.value() + _ABOVE <= top <= bar.value() + height - target.height():
+            bar.setValue(top - _ABOVE)
+
     def _target(self, place: str) -> QWidget:
         section, _, name = place.partition(".")
         if section == "model":
@@ -109,7 +118,6 @@ class ObligorSheet(Sheet):
         return others.get(name) or self.identity.field(name) or self.identity.name.field
 
     def _lay_out(self) -> None:
-        inside = QWidget()
         left, right = QVBoxLayout(), QVBoxLayout()
         for column, panels in (
             (left, (self.identity, self.currency, self.assessment, self.rates)),
@@ -122,12 +130,12 @@ class ObligorSheet(Sheet):
         left.addStretch(1)
         self._columns.setContentsMargins(22, 10, 16, 14)
         self._columns.setSpacing(22)
-        inside.setLayout(self._columns)
+        self._inside.setLayout(self._columns)
         self.view.setWidgetResizable(True)
         self.view.setFrameShape(QFrame.Shape.NoFrame)
         self.view.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.view.setAccessibleName("Obligor")
-        self.view.setWidget(inside)
+        self.view.setWidget(self._inside)
         whole = QVBoxLayout(self)
         whole.setContentsMargins(0, 0, 0, 0)
         whole.addWidget(self.view)

@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 
 TREND = 50
-_NAME = (140, 262)
+_NAME = (132, 262)
 _PERIOD_FULL = 92
 """Wide enough for the longest reason, “divisor negative” excepted; narrower columns show the shortest words."""
 _SAMPLE = (58, 138, 186, 260)
