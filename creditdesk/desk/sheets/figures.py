@@ -1,75 +1,43 @@
 """The sheet Figures: the statements as received, typed into and recomputed with each entry."""
 
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
 
-from PySide6.QtCore import QLocale, QModelIndex, Qt, Signal
-from PySide6.QtGui import QKeyEvent, QKeySequence
-from PySide6.QtWidgets import (
-    QAbstractItemView,
-    QApplication,
-    QHBoxLayout,
-    QPushButton,
-    QTableView,
-    QVBoxLayout,
-)
+from PySide6.QtCore import QModelIndex, Qt
+from PySide6.QtWidgets import QAbstractItemView, QHBoxLayout, QMenu, QPushButton, QVBoxLayout
 
-from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
-from creditdesk.case.commands import Command, Figure, SetFigures, SetPrinted
+from creditdesk.case.commands import Command
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.desk.actions import Entry
+from creditdesk.desk.blockactions import BlockActions
 from creditdesk.desk.frame import label
+from creditdesk.desk.legend import Legend
+from creditdesk.desk.periodactions import PeriodActions, fill_menu
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.figures import FiguresModel
-from creditdesk.desk.tables.rows import Row, RowKind
+from creditdesk.desk.tables.rows import RowKind
+from creditdesk.desk.tables.view import FiguresTable
+from creditdesk.desk.tracestrip import TraceStrip
 from creditdesk.house.book import HouseBook
-from creditdesk.intake.amounts import Amount, AmountKind, parse_amount
-from creditdesk.intake.block import read_block
-from creditdesk.intake.numerals import DecimalMark
 
 Do = Callable[[Command], None]
 _CELL = re.compile(r"figures\.(?P<line>\w+)\[(?P<end>[\d-]+)\]")
+_PERIOD = re.compile(r"periods\[(?P<end>[\d-]+)\]")
+_PLACES_KEPT = 200
 
 
-class FiguresTable(QTableView):
-    """Let a block be copied, pasted and cleared, and Enter open a cell as in a spreadsheet."""
+@dataclass(frozen=True, slots=True)
+class _Place:
+    """Remember where the cursor stood and how far the table was scrolled."""
 
-    pasted = Signal(str)
-    cleared = Signal()
-
-    def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Take copy, paste, clear and Enter; leave the rest to the table."""
-        if event.matches(QKeySequence.StandardKey.Copy):
-            QApplication.clipboard().setText(self.selected_text())
-        elif event.matches(QKeySequence.StandardKey.Paste):
-            self.pasted.emit(QApplication.clipboard().text())
-        elif event.key() in (Qt.Key.Key_Delete, Qt.Key.Key_Backspace):
-            self.cleared.emit()
-        elif event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter):
-            self._on_enter()
-        else:
-            super().keyPressEvent(event)
-
-    def _on_enter(self) -> None:
-        """Open the cell; a key that an editor has just used to close itself comes by here too and does nothing."""
-        editable = self.currentIndex().flags() & Qt.ItemFlag.ItemIsEditable
-        if editable and self.state() != QAbstractItemView.State.EditingState:
-            self.edit(self.currentIndex())
-
-    def selected_text(self) -> str:
-        """Return the selected block as a spreadsheet takes it: tabs between cells, one line per row."""
-        chosen = sorted((index.row(), index.column()) for index in self.selectedIndexes())
-        if not chosen:
-            return ""
-        columns = range(min(c for _, c in chosen), max(c for _, c in chosen) + 1)
-        model = self.model()
-        lines = []
-        for row in sorted({r for r, _ in chosen}):
-            cells = (model.index(row, column) for column in columns)
-            lines.append("\t".join(_plain(index) for index in cells))
-        return "\n".join(lines)
+    key: str
+    kind: RowKind
+    column: int
+    scrolled: tuple[int, int]
 
 
 class FiguresSheet(Sheet):
@@ -80,158 +48,219 @@ class FiguresSheet(Sheet):
 
     def __init__(self, house: HouseBook, do: Do) -> None:
         super().__init__()
-        self._house, self._do = house, do
         self._case: Case | None = None
-        self._standing: Standing | None = None
-        self.model = FiguresModel(self._on_entered, self)
-        self.delegate = FiguresDelegate(self)
-        self.table = _table(self.model, self.delegate)
-        self.table.pasted.connect(self._on_pasted)
-        self.table.cleared.connect(self._on_cleared)
-        self.table.selectionModel().currentChanged.connect(self._on_current)
-        self.only_figures = QPushButton("Only lines with figures")
-        self.only_figures.setCheckable(True)
-        self.only_figures.setChecked(True)
-        self.only_figures.setToolTip("Hide the lines that have no figure in any period (Ctrl+L)")
-        self.only_figures.setShortcut("Ctrl+L")
-        self.only_figures.toggled.connect(self._on_filter)
-        self.about = label("second", wrap=True)
+        self._places: dict[int, tuple[Case, _Place]] = {}
+        self.model = FiguresModel(lambda row, period, text: self.blocks.enter(row, period, text), self)
+        self.delegate = FiguresDelegate(self.model, self)
+        self.table = FiguresTable(self.model, self.delegate)
+        self.blocks = BlockActions(do, self.table)
+        self.periods = PeriodActions(do, self)
+        self.strip = TraceStrip(house.catalogue)
+        self.legend = Legend()
+        self.only_figures, self.period_button = QPushButton("Only lines with figures"), QPushButton("Period")
         self.setFocusProxy(self.table)
         self._lay_out()
+        self._connect()
 
     def show_standing(self, case: Case, standing: Standing) -> None:
-        """Show another case and what follows from it."""
+        """Show another case and what follows from it; one shown before, as undo does, where it was left."""
         empty = not any(amount == amount for row in case.figures.values() for amount in row)
-        if self._standing is None and empty:
+        if self._case is None and empty:
             self.only_figures.setChecked(False)
-        columns = self.model.columnCount()
-        self._case, self._standing = case, standing
+        left = self._place() if self._case is not None else None
+        if self._case is not None and left is not None and self._case is not case:
+            self._keep_place(self._case, left)
+        fresh = self._case is None
+        known = self._places.get(id(case)) if self._case is not case else None
+        self._case = self.periods.case = case
         self.model.show_standing(case, standing)
-        if columns != self.model.columnCount():
-            self._size_columns()
-        self._on_current(self.table.currentIndex(), QModelIndex())
+        self.table.fit()
+        if known is not None:
+            self._restore(known[1])
+        elif left is not None and not self.table.currentIndex().isValid():
+            self._restore(left)
+        if fresh:
+            self._go_to_first(standing.period_index)
+        self._show_trace()
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""
-        self.delegate.palette = palette
-        self.model.recolour(palette)
+        for part in (self.table, self.strip, self.legend):
+            part.recolour(palette)
 
     def go_to(self, place: str) -> None:
-        """Move to the cell ``figures.<line>[<period end>]``, showing all lines if it is hidden."""
-        found = _CELL.fullmatch(place)
+        """Move to the cell ``figures.<line>[<period end>]``, bringing its row back if it is hidden, or to a period."""
+        found = _CELL.fullmatch(place) or _PERIOD.fullmatch(place)
         ends = [period.ends.isoformat() for period in self._case.periods] if self._case is not None else []
-        if found is not None and found["end"] in ends:
-            self._go_to_cell(found["line"], ends.index(found["end"]))
+        if found is None or found["end"] not in ends:
+            return
+        period = ends.index(found["end"])
+        if found.re is _PERIOD:
+            self.table.header.enter(period + 1)
+        else:
+            self._go_to_cell(found["line"], period)
+
+    def entries(self) -> Sequence[Entry | None]:
+        """Return what can be done here; of keys without a modifier and of copy and paste only the name is given."""
+        blocks, keys = self.blocks, iter(("Ctrl+D", "Ctrl+Shift+N", "Ctrl+Shift+B", None, *_MOVES, None))
+        of_periods = [
+            None if choice is None else (choice[0], next(keys), self._here(choice[1]))
+            for choice in self.periods.choices(self._period)
+        ]
+        return (
+            ("&Note on the cell…", "Ctrl+M", self._here(blocks.note, choose=True)),
+            ("&Fill right", "Ctrl+R", self._here(blocks.fill_right, choose=True)),
+            ("&Copy the block (Ctrl+C)", None, self._here(blocks.copy, choose=True)),
+            ("&Paste a block (Ctrl+V)", None, self._here(blocks.paste, choose=True)),
+            ("C&lear the cells (Del)", None, self._here(blocks.clear, choose=True)),
+            None,
+            *of_periods,
+            None,
+            ("Only &lines with figures", "Ctrl+L", self._here(self.only_figures.toggle)),
+            ("Every &total as printed", "Ctrl+Shift+T", self._here(self._toggle_printed)),
+            ("F&old or unfold all", "Ctrl+Shift+F", self._here(self._toggle_folds)),
+            ("What &uses the cell (F6)", None, self._here(self.strip.setFocus)),
+        )
+
+    def _here(self, do: Callable[[], object], *, choose: bool = False) -> Callable[[], None]:
+        """Let an action first bring this sheet to the front; one on chosen cells waits until they are in sight."""
+
+        def run() -> None:
+            hidden = not self.isVisible()
+            if hidden:
+                self.jump_asked.emit("figures.")
+            if hidden and choose:
+                self.fault.emit("Choose the cells first.")
+            else:
+                do()
+
+        return run
+
+    # Places
+
+    def _place(self) -> _Place | None:
+        current = self.table.currentIndex()
+        if not current.isValid():
+            return None
+        row = self.model.rows[current.row()]
+        scrolled = (self.table.verticalScrollBar().value(), self.table.horizontalScrollBar().value())
+        return _Place(row.key, row.kind, current.column(), scrolled)
+
+    def _keep_place(self, case: Case, place: _Place) -> None:
+        """Remember the place with its case, the oldest one forgotten; the case is kept so that its id stays its own."""
+        self._places.pop(id(case), None)
+        self._places[id(case)] = (case, place)
+        if len(self._places) > _PLACES_KEPT:
+            del self._places[next(iter(self._places))]
+
+    def _restore(self, place: _Place) -> None:
+        found = [n for n, row in enumerate(self.model.rows) if (row.key, row.kind) == (place.key, place.kind)]
+        column = min(place.column, self.model.columnCount() - 1)
+        if found:
+            self.table.setCurrentIndex(self.model.index(found[0], column))
+        for bar, value in zip(
+            (self.table.verticalScrollBar(), self.table.horizontalScrollBar()), place.scrolled, strict=True
+        ):
+            bar.setValue(value)
+
+    def _go_to_first(self, period: int) -> None:
+        """Put the cursor on the first line, without opening anything."""
+        number = next((number for number, row in enumerate(self.model.rows) if row.kind is RowKind.LINE), -1)
+        if number >= 0:
+            self.table.setCurrentIndex(self.model.index(number, period + 1))
 
     def _go_to_cell(self, line: str, period: int) -> None:
         index = self.model.place(line, period)
         if not index.isValid():
+            self.model.choose(replace(self.model.choice, folded=frozenset()))
+            index = self.model.place(line, period)
+        if not index.isValid():
             self.only_figures.setChecked(False)
             index = self.model.place(line, period)
-        self.table.setCurrentIndex(index)
-        self.table.scrollTo(index, QAbstractItemView.ScrollHint.PositionAtCenter)
+        if index.isValid():
+            self.table.setCurrentIndex(index)
+            self.table.scrollTo(index, QAbstractItemView.ScrollHint.PositionAtCenter)
         self.table.setFocus()
 
-    @property
-    def _unit(self) -> int:
-        return self._case.obligor.unit if self._case is not None else 1
+    def _period(self) -> int:
+        """Return the period at hand: where the keyboard is in the heading, else the cursor's, else the assessed one."""
+        column = self.table.header.at if self.table.header.hasFocus() else self.table.currentIndex().column()
+        return column - 1 if self.model.is_period(column) else self.model.facts.standing.period_index
+
+    def _on_period(self, period: int) -> None:
+        current = self.table.currentIndex()
+        self.table.setCurrentIndex(self.model.index(max(current.row(), 0), period + 1))
+        self.table.setFocus()
+
+    # What is shown
+
+    def _toggle_printed(self) -> None:
+        self.model.choose(replace(self.model.choice, all_printed=not self.model.choice.all_printed))
+
+    def _toggle_folds(self) -> None:
+        sections = frozenset(row.section for row in self.model.rows)
+        folded = frozenset() if self.model.choice.folded else sections
+        self.model.choose(replace(self.model.choice, folded=folded))
+
+    def _on_filter(self, only: bool) -> None:
+        self.model.choose(replace(self.model.choice, figures_only=only))
+
+    def _on_current(self, _current: QModelIndex, _previous: QModelIndex) -> None:
+        self._show_trace()
+
+    def _show_trace(self) -> None:
+        current = self.table.currentIndex()
+        row = self.model.rows[current.row()] if current.isValid() else None
+        words = self.model.words(row, current.column()) if row is not None else ()
+        if row is None or not words:
+            self.strip.show_nothing()
+        else:
+            self.strip.show_cell(self.model.facts, row, current.column() - 1, words)
+
+    # Making
 
     def _lay_out(self) -> None:
+        self.only_figures.setCheckable(True)
+        self.only_figures.setChecked(True)
+        self.only_figures.setToolTip("Hide the lines that have no figure in any period (Ctrl+L)")
+        self.period_button.setToolTip("Describe, add, move or remove a period (double click on its heading)")
+        menu = QMenu(self.period_button)
+        fill_menu(menu, self.periods.choices(self._period))
+        self.period_button.setMenu(menu)
         top = QHBoxLayout()
-        top.addWidget(
-            label(
-                "second", "Blank is not disclosed, 0 is nil, costs are positive. On a sum, type the total as printed."
-            ),
-            1,
-        )
+        top.addWidget(label("second", "Costs are positive. On a sum, type the total as printed."), 1)
         top.addWidget(self.only_figures)
+        top.addWidget(self.period_button)
         box = QVBoxLayout(self)
-        box.setContentsMargins(22, 10, 16, 8)
+        box.setContentsMargins(22, 10, 16, 6)
         box.setSpacing(6)
         box.addLayout(top)
         box.addWidget(self.table, 1)
-        box.addWidget(self.about)
+        box.addWidget(self.legend)
+        box.addWidget(self.strip)
 
-    def _size_columns(self) -> None:
-        header, periods = self.table.horizontalHeader(), self.model.periods
-        header.setStretchLastSection(False)
-        widths = [250, *[92] * periods, 84, 74, 30]
-        for column, width in enumerate(widths):
-            header.resizeSection(column, width)
-        header.setSectionResizeMode(0, header.ResizeMode.Stretch)
+    def _connect(self) -> None:
+        table, strip = self.table, self.strip
+        table.copied.connect(self.blocks.copy)
+        table.pasted.connect(self.blocks.paste)
+        table.cleared.connect(self.blocks.clear)
+        table.left.connect(lambda onwards: (strip if onwards else self.period_button).setFocus())
+        table.selectionModel().currentChanged.connect(self._on_current)
+        self.model.modelReset.connect(self._show_trace)
+        table.header.described.connect(self.periods.describe)
+        table.header.removed.connect(self.periods.remove)
+        table.header.menu_asked.connect(self.periods.pop_up)
+        table.header.left.connect(self._on_heading_left)
+        self.periods.went_to.connect(self._on_period)
+        strip.jump_asked.connect(self.jump_asked)
+        strip.left.connect(table.setFocus)
+        self.only_figures.toggled.connect(self._on_filter)
+        for source in (self.blocks, self.periods):
+            source.fault.connect(self.fault)
 
-    def _on_filter(self, only: bool) -> None:
-        self.model.lines_with_figures_only = only
-        if self._case is not None and self._standing is not None:
-            self.model.show_standing(self._case, self._standing)
-
-    def _on_entered(self, row: Row, period: int, text: str) -> bool:
-        set_cells = SetFigures if row.kind is RowKind.LINE else SetPrinted
-        try:
-            amount = parse_amount(text, _decimal_mark(), self._unit)
-            self._do(set_cells((_figure(row.key, period, amount),)))
-        except UserError as error:
-            self.fault.emit(" ".join(error.faults))
-            return False
-        return True
-
-    def _on_pasted(self, text: str) -> None:
-        """Put a block of amounts in, its first cell at the current one; headings and sums are passed over."""
-        start = self.table.currentIndex()
-        if not start.isValid() or not 0 < start.column() <= self.model.periods:
-            self.fault.emit("Choose the cell of a line and period where the first pasted amount belongs.")
-            return
-        lines = [row.key for row in self.model.rows[start.row() :] if row.kind is RowKind.LINE]
-        first = start.column() - 1
-        try:
-            block = read_block(text, _decimal_mark(), self._unit, (len(lines), self.model.periods - first))
-            self._do(SetFigures(tuple(_figure(lines[one.row], first + one.column, one.amount) for one in block)))
-        except UserError as error:
-            self.fault.emit(" ".join(error.faults))
-
-    def _on_cleared(self) -> None:
-        chosen = [index for index in self.table.selectedIndexes() if index.flags() & Qt.ItemFlag.ItemIsEditable]
-        for kind, set_cells in ((RowKind.LINE, SetFigures), (RowKind.SUBTOTAL, SetPrinted)):
-            places = [(self.model.rows[index.row()], index.column() - 1) for index in chosen]
-            cells = [Figure(row.key, period, float("nan")) for row, period in places if row.kind is kind]
-            if cells:
-                self._do(set_cells(tuple(cells)))
-
-    def _on_current(self, current: QModelIndex, _previous: QModelIndex) -> None:
-        tip = current.data(Qt.ItemDataRole.ToolTipRole) if current.isValid() else None
-        self.about.setText(str(tip).replace("\n", " · ") if tip else " ")
+    def _on_heading_left(self, column: int) -> None:
+        self.table.setCurrentIndex(self.model.index(max(self.table.currentIndex().row(), 0), column))
+        self.table.setFocus(Qt.FocusReason.OtherFocusReason)
 
 
-def _decimal_mark() -> DecimalMark:
-    """Return the decimal mark of the user's locale, for what does not say itself which it uses."""
-    return "," if QLocale().decimalPoint() == "," else "."
-
-
-def _figure(line: str, period: int, amount: Amount) -> Figure:
-    if amount.kind is AmountKind.AMBIGUOUS:
-        raise UserError("amount", f"{amount.text}: it is not clear which mark is the decimal one.")
-    return Figure(line, period, amount.value, amount.typed)
-
-
-def _table(model: FiguresModel, delegate: FiguresDelegate) -> FiguresTable:
-    table = FiguresTable()
-    table.setModel(model)
-    table.setItemDelegate(delegate)
-    table.setAccessibleName("Figures")
-    table.verticalHeader().hide()
-    table.verticalHeader().setDefaultSectionSize(24)
-    table.verticalHeader().setMinimumSectionSize(20)
-    table.setShowGrid(False)
-    table.setTabKeyNavigation(True)
-    table.setWordWrap(False)
-    table.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
-    table.setSelectionMode(QAbstractItemView.SelectionMode.ContiguousSelection)
-    triggers = QAbstractItemView.EditTrigger
-    table.setEditTriggers(triggers.DoubleClicked | triggers.AnyKeyPressed | triggers.EditKeyPressed)
-    return table
-
-
-def _plain(index: QModelIndex) -> str:
-    """Return a cell for a spreadsheet: the bare number where it has one."""
-    typed = index.data(Qt.ItemDataRole.EditRole)
-    return str(typed if typed is not None else index.data(Qt.ItemDataRole.DisplayRole) or "").strip()
+_MOVES = ("Alt+Shift+Left", "Alt+Shift+Right")

@@ -1,63 +1,204 @@
-"""How cells of the figures table are painted and edited beyond their text: trend lines, finding marks, typed sums."""
+"""How cells of the figures table are painted and edited: each state of an amount looks different without colour too."""
+
+from enum import StrEnum
 
 import numpy as np
-from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QPointF, QRectF, Qt
-from PySide6.QtGui import QColor, QPainter, QPen, QPolygonF
-from PySide6.QtWidgets import QLineEdit, QStyledItemDelegate, QStyleOptionViewItem, QWidget
+from PySide6.QtCore import QEvent, QModelIndex, QObject, QPersistentModelIndex, QPointF, QRectF, Qt, Signal
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QKeyEvent, QPainter, QPen
+from PySide6.QtWidgets import QLineEdit, QStyle, QStyledItemDelegate, QStyleOptionViewItem, QWidget
 
-from creditdesk.base.findings import Severity
 from creditdesk.base.palette import LIGHT, Palette
-from creditdesk.desk.tables.figures import FigureRole
+from creditdesk.desk.tables.cells import Cell, Look
+from creditdesk.desk.tables.figures import FiguresModel
+from creditdesk.desk.tables.marks import DIFFERS, NOTED, paint_blank, paint_fold, paint_severity, paint_sum_line
 from creditdesk.desk.tables.rows import Row, RowKind
+from creditdesk.desk.theme import SERIF
 
 Index = QModelIndex | QPersistentModelIndex
 
+LABEL_INDENT, RIGHT_PADDING, MARK_PLACE = 16, 10, 9
+_SUB_INDENT = 14
+_SMALLER = 0.92
+_LEAVING = (
+    Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Tab, Qt.Key.Key_Backtab, Qt.Key.Key_Up, Qt.Key.Key_Down,
+)  # fmt: skip
+_SIDEWAYS = (Qt.Key.Key_Left, Qt.Key.Key_Right)
+_ITALIC = (Look.STANDS_FOR, Look.REST, Look.PRINTED, Look.OTHERWISE)
+_SECOND_INK = (*_ITALIC, Look.NOT_DISCLOSED, Look.PROVEN_NIL)
+
+
+class Hand(StrEnum):
+    """Name the fonts of the table."""
+
+    PLAIN = "plain"
+    BOLD = "bold"
+    ITALIC = "italic"
+    HEADING = "heading"
+    SMALL = "small"
+
 
 class FiguresDelegate(QStyledItemDelegate):
-    """Paint trends and marks, draw the line above a sum, and edit amounts as text so that sums may be typed."""
+    """Paint each cell whole, and edit amounts as text so that sums may be typed.
 
-    palette: Palette = LIGHT
+    ``left(key, shift)``: a cell was left by a key after what was typed in it was taken. A text that is refused stays in
+    its cell for mending. ``typing``: the editor was opened by typing over the cell, so that arrows leave it.
+    """
+
+    left = Signal(int, bool)
+
+    def __init__(self, model: FiguresModel, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self.palette: Palette = LIGHT
+        self.typing = False
+        self._model = model
+        self._fonts: dict[Hand, QFont] = {}
+        self._edited = QPersistentModelIndex()
+
+    # Editing
 
     def createEditor(self, parent: QWidget, option: QStyleOptionViewItem, index: Index) -> QWidget:
         """Open a line of text over the cell."""
         editor = QLineEdit(parent)
         editor.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
-        row: Row = index.data(FigureRole.ROW)
-        editor.setAccessibleName(row.label)
+        editor.setAccessibleName(self._model.rows[index.row()].label)
+        self._edited = QPersistentModelIndex(index)
         return editor
 
     def setModelData(self, editor: QWidget, model: object, index: Index) -> None:
         """Hand the text over only where it was changed, so that leaving a cell is no edit."""
         assert isinstance(editor, QLineEdit)
-        if editor.text() != (index.data(Qt.ItemDataRole.EditRole) or ""):
-            super().setModelData(editor, model, index)  # type: ignore[arg-type]
+        self._hand_over(editor, index)
+
+    def eventFilter(self, editor: QObject, event: QEvent) -> bool:
+        """Take the keys that leave a cell; leave the rest to the editor."""
+        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress and isinstance(editor, QLineEdit):
+            plain = event.modifiers() == Qt.KeyboardModifier.NoModifier
+            if event.key() in _LEAVING or (self.typing and plain and event.key() in _SIDEWAYS):
+                shift = bool(event.modifiers() & Qt.KeyboardModifier.ShiftModifier)
+                self._leave(editor, event.key(), shift=shift)
+                return True
+        return super().eventFilter(editor, event)
+
+    def _leave(self, editor: QLineEdit, key: int, *, shift: bool) -> None:
+        if not self._hand_over(editor, self._edited):
+            editor.selectAll()
+            return
+        self.closeEditor.emit(editor, QStyledItemDelegate.EndEditHint.NoHint)
+        self.left.emit(key, shift)
+
+    def _hand_over(self, editor: QLineEdit, index: Index) -> bool:
+        """Hand the text to the model; say whether it was taken or needed no taking."""
+        if not index.isValid() or editor.text() == (self._model.data(index, Qt.ItemDataRole.EditRole) or ""):
+            return True
+        return self._model.setData(index, editor.text())
+
+    # Painting
 
     def paint(self, painter: QPainter, option: QStyleOptionViewItem, index: Index) -> None:
-        """Paint the cell, then what this delegate adds to it."""
-        super().paint(painter, option, index)
+        """Paint ground and rules, then what the column shows."""
+        if not self._fonts:
+            self._fonts = _fonts(option.font)
+        row, column, model = self._model.rows[index.row()], index.column(), self._model
         rect = QRectF(option.rect)
         painter.save()
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-        row: Row = index.data(FigureRole.ROW)
-        if row.kind is RowKind.SUBTOTAL:
-            painter.setPen(QPen(QColor(self.palette.second_ink), 0.8))
-            painter.drawLine(rect.topLeft(), rect.topRight())
-        trend = index.data(FigureRole.TREND)
-        if trend is not None:
-            self._paint_trend(painter, rect, np.asarray(trend, dtype=float))
-        severity = index.data(FigureRole.MARK)
-        if severity is not None:
-            self._paint_mark(painter, rect, Severity(severity))  # Qt hands an enumeration's text through
+        cell = model.period_cell(row, column)
+        self._paint_ground(painter, rect, option, (row, cell))
+        if column == 0:
+            self._paint_label(painter, rect, row)
+        elif cell is not None:
+            self._paint_amount(painter, rect, row, cell)
+        elif column == model.periods + 1:
+            self._write(painter, rect, model.change(row), Hand.PLAIN, self.palette.second_ink)
+        elif column == model.periods + 2:
+            self._paint_trend(painter, rect, model.trend(row))
+        elif column == model.periods + 3:
+            severity = model.mark(row)
+            if severity is not None:
+                paint_severity(painter, rect.center(), severity, self.palette)
         painter.restore()
 
-    def _paint_trend(self, painter: QPainter, rect: QRectF, amounts: np.ndarray) -> None:
-        known = np.isfinite(amounts)
-        if len(amounts) < 2 or not known.any() or (amounts[known] == 0).all():
+    def _paint_ground(
+        self, painter: QPainter, rect: QRectF, option: QStyleOptionViewItem, what: tuple[Row, Cell | None]
+    ) -> None:
+        row, cell = what
+        if option.state & QStyle.StateFlag.State_Selected:
+            painter.fillRect(rect, QColor(self.palette.selection))
+        painter.setPen(QPen(QColor(self.palette.rule), 1.0))
+        painter.drawLine(QPointF(rect.left(), rect.bottom() - 0.5), QPointF(rect.right(), rect.bottom() - 0.5))
+        if row.kind is RowKind.SUBTOTAL:
+            look = cell.look if cell is not None else Look.AMOUNT
+            paint_sum_line(painter, rect.topLeft(), rect.topRight(), look, self.palette)
+        if option.state & QStyle.StateFlag.State_HasFocus:
+            painter.setPen(QPen(QColor(self.palette.accent), 1.6))
+            painter.setBrush(Qt.BrushStyle.NoBrush)
+            painter.drawRect(rect.adjusted(1, 1, -1.4, -1.4))
+
+    def _paint_label(self, painter: QPainter, rect: QRectF, row: Row) -> None:
+        if row.kind is RowKind.HEADING:
+            self._paint_heading(painter, rect, row)
+            return
+        under = row.kind in (RowKind.NOT_DIVIDED, RowKind.PRINTED)
+        hand = Hand.SMALL if under else Hand.BOLD if row.kind is RowKind.SUBTOTAL else Hand.PLAIN
+        ink = self.palette.second_ink if under else self.palette.ink
+        area = rect.adjusted(LABEL_INDENT + (_SUB_INDENT if under else 0), 0, -4, 0)
+        self._write(painter, area, row.label, hand, ink, left=True)
+
+    def _paint_heading(self, painter: QPainter, rect: QRectF, row: Row) -> None:
+        folded = self._model.is_folded(row)
+        paint_fold(painter, QPointF(rect.left() + 7, rect.center().y() + 1), folded=folded, palette=self.palette)
+        area = rect.adjusted(LABEL_INDENT, 0, -4, 0)
+        self._write(painter, area, row.label, Hand.HEADING, self.palette.accent, left=True)
+        if folded and row.total:
+            taken = QFontMetricsF(self._fonts[Hand.HEADING]).horizontalAdvance(row.label) + 12
+            label = self._model.facts.label(row.total)
+            self._write(painter, area.adjusted(taken, 0, 0, 0), label, Hand.PLAIN, self.palette.second_ink, left=True)
+
+    def _paint_amount(self, painter: QPainter, rect: QRectF, row: Row, cell: Cell) -> None:
+        hand = Hand.ITALIC if cell.look in _ITALIC else Hand.BOLD if row.kind is RowKind.SUBTOTAL else Hand.PLAIN
+        if row.kind in (RowKind.NOT_DIVIDED, RowKind.PRINTED):
+            hand = Hand.SMALL
+        ink = self.palette.second_ink if cell.look in _SECOND_INK else self.palette.ink
+        text = f"{DIFFERS} {cell.text}" if cell.look is Look.OTHERWISE else cell.text
+        end = rect.right() - RIGHT_PADDING
+        middle = rect.center().y()
+        start = end - QFontMetricsF(self._fonts[hand]).horizontalAdvance(text)
+        self._write(painter, rect, text, hand, ink)
+        if cell.look is Look.BLANKS_AS_NIL:
+            paint_blank(painter, QPointF(start - 8, middle), cell.look, self.palette)
+        elif not text and row.kind is RowKind.LINE:
+            paint_blank(painter, QPointF(end - 4, middle), cell.look, self.palette)
+        if cell.adjusted:
+            painter.setPen(QPen(QColor(ink), 1.0))
+            painter.drawLine(QPointF(min(start, end - 8), rect.bottom() - 4), QPointF(end, rect.bottom() - 4))
+        if cell.noted:
+            area = QRectF(end + 1, rect.top() - 1, RIGHT_PADDING, rect.height())
+            self._write(painter, area, NOTED, Hand.BOLD, self.palette.accent, left=True)
+        if cell.severity is not None:
+            paint_severity(painter, QPointF(rect.left() + MARK_PLACE, middle), cell.severity, self.palette)
+
+    def _write(self, painter: QPainter, rect: QRectF, text: str, hand: Hand, ink: str, *, left: bool = False) -> None:
+        if not text:
+            return
+        font = self._fonts[hand]
+        painter.setFont(font)
+        painter.setPen(QColor(ink))
+        if left:
+            text = QFontMetricsF(font).elidedText(text, Qt.TextElideMode.ElideRight, rect.width())
+        align = Qt.AlignmentFlag.AlignLeft if left else Qt.AlignmentFlag.AlignRight
+        area = rect if left else rect.adjusted(0, 0, -RIGHT_PADDING, 0)
+        painter.drawText(area, align | Qt.AlignmentFlag.AlignVCenter | Qt.TextFlag.TextSingleLine, text)
+
+    def _paint_trend(self, painter: QPainter, rect: QRectF, trend: np.ndarray | None) -> None:
+        if trend is None or len(trend) < 2:
+            return
+        known = np.isfinite(trend)
+        if not known.any() or (trend[known] == 0).all():
             return
         area = rect.adjusted(8, 6, -8, -6)
-        low, high = float(amounts[known].min()), float(amounts[known].max())
-        share = (amounts - low) / (high - low) if high > low else np.where(known, 0.5, np.nan)
-        step = area.width() / (len(amounts) - 1)
+        low, high = float(trend[known].min()), float(trend[known].max())
+        share = (trend - low) / (high - low) if high > low else np.where(known, 0.5, np.nan)
+        step = area.width() / (len(trend) - 1)
         points = [QPointF(area.left() + i * step, area.bottom() - s * area.height()) for i, s in enumerate(share)]
         painter.setPen(QPen(QColor(self.palette.second_ink), 1.1))
         for first, second, both in zip(points, points[1:], known[:-1] & known[1:], strict=False):
@@ -68,20 +209,15 @@ class FiguresDelegate(QStyledItemDelegate):
             painter.setPen(Qt.PenStyle.NoPen)
             painter.drawEllipse(points[-1], 2.0, 2.0)
 
-    def _paint_mark(self, painter: QPainter, rect: QRectF, severity: Severity) -> None:
-        colour = {Severity.STOP: self.palette.breach, Severity.QUERY: self.palette.caution}
-        painter.setPen(Qt.PenStyle.NoPen)
-        painter.setBrush(QColor(colour.get(severity, self.palette.accent)))
-        centre = rect.center()
-        paint_mark(painter, centre, severity)
 
-
-def paint_mark(painter: QPainter, centre: QPointF, severity: Severity) -> None:
-    """Paint the shape of a severity: square for stop, triangle for query, dot for note."""
-    if severity is Severity.STOP:
-        painter.drawRect(QRectF(centre.x() - 4, centre.y() - 4, 8, 8))
-    elif severity is Severity.QUERY:
-        x, y = centre.x(), centre.y()
-        painter.drawPolygon(QPolygonF([QPointF(x, y - 5), QPointF(x + 5.5, y + 4), QPointF(x - 5.5, y + 4)]))
-    else:
-        painter.drawEllipse(centre, 3.2, 3.2)
+def _fonts(base: QFont) -> dict[Hand, QFont]:
+    """Return the fonts of the table from that of the window, which has figures of one width."""
+    fonts = {hand: QFont(base) for hand in Hand}
+    fonts[Hand.BOLD].setWeight(QFont.Weight.DemiBold)
+    fonts[Hand.ITALIC].setItalic(True)
+    fonts[Hand.SMALL].setItalic(True)
+    fonts[Hand.SMALL].setPointSizeF(base.pointSizeF() * _SMALLER)
+    fonts[Hand.HEADING] = QFont(SERIF)
+    fonts[Hand.HEADING].setPointSizeF(11)
+    fonts[Hand.HEADING].setWeight(QFont.Weight.DemiBold)
+    return fonts
