@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import Any
 
 from tests.programs import command_line
+from tests.window.charts import number
 
 Json = dict[str, Any]
 WATCHED = Path(__file__).with_name("watched.py")
@@ -77,24 +78,28 @@ class Watched:
     def __init__(self, process: subprocess.Popen[str]) -> None:
         self.process = process
 
-    def look(self) -> Json:
+    def look(self, question: str = "look") -> Json:
         """Return what the window shows now."""
         assert self.process.stdin is not None
         assert self.process.stdout is not None
-        self.process.stdin.write("look\n")
+        self.process.stdin.write(f"{question}\n")
         self.process.stdin.flush()
         shown: Json = json.loads(self.process.stdout.readline())
         return shown
 
-    def wait(self, until: Callable[[Json], bool]) -> Json:
+    def wait(self, until: Callable[[Json], bool], question: str = "look") -> Json:
         """Look until the window has settled and ``until`` holds; the last look is the answer."""
         end = time.monotonic() + PATIENCE_SECONDS
         while True:
-            shown = self.look()
+            shown = self.look(question)
             if shown["settled"] and until(shown):
                 return shown
-            assert time.monotonic() < end, f"the window never came to show that; it shows {shown}"
+            assert time.monotonic() < end, f"the window never came to show that; it shows {str(shown)[:3000]}"
             time.sleep(0.05)
+
+    def stare(self, until: Callable[[Json], bool] = lambda _: True) -> Json:
+        """Wait as well, and take in every pixel."""
+        return self.wait(until, "stare")
 
 
 def start(command: Sequence[str], display: str, drafts: Path) -> subprocess.Popen[str]:
@@ -149,16 +154,30 @@ def surroundings(display: str, drafts: Path) -> dict[str, str]:
     return {**os.environ, "DISPLAY": display, "QT_QPA_PLATFORM": "xcb", **own}
 
 
-def go_to_revenue(window: Watched, hands: Hands) -> Json:
+def go_to_revenue(window: Watched, hands: Hands) -> None:
     """Walk with the arrow keys from the first cell to the revenue of the last year."""
     hands.press("ctrl+Home")
-    rows = list(window.wait(lambda shown: shown["current"][0] == 0)["standing"]["cells"])
+    window.wait(lambda shown: shown["current"][0] in (0, 1))
     hands.press("Right", "Right", "Right")
-    for _ in range(len(rows) + 10):
-        row, key, period = window.look()["current"]
+    back_to_revenue(window, hands)
+
+
+def back_to_revenue(window: Watched, hands: Hands) -> None:
+    """Walk up or down to the revenue; headings on the way may be passed over."""
+    for _ in range(10):
+        shown = window.wait(lambda _: True)
+        (row, key, period), wanted = shown["current"], shown["rows"]["revenue"]
         if key == "revenue":
             assert period == 2
-            return window.wait(lambda shown: "revenue" in shown["places"])
-        hands.press("Down")
+            return
+        hands.press(*["Up" if row > wanted else "Down"] * max(1, abs(wanted - row) - 3))
         window.wait(lambda shown, row=row: shown["current"][0] != row)
-    raise AssertionError("the arrow keys never reached the revenue")
+    raise AssertionError("the arrow keys never came to the revenue")
+
+
+def enter_revenue(window: Watched, hands: Hands, amount: int) -> None:
+    """Type a revenue over the one the cursor stands on, wait until it is shown, and stand on it again."""
+    hands.type(str(amount))
+    hands.press("Return")
+    window.wait(lambda shown: number(shown["standing"]["cells"]["revenue"][2]) == amount)
+    back_to_revenue(window, hands)

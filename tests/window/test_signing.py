@@ -8,7 +8,7 @@ import pikepdf
 import pytest
 
 from tests.programs import run
-from tests.window.hands import Hands, Watched, go_to_revenue
+from tests.window.hands import Hands, Watched, enter_revenue, go_to_revenue
 
 pytestmark = pytest.mark.window_xvfb
 
@@ -41,8 +41,8 @@ def fill(window: Watched, hands: Hands, field: str, text: str) -> None:
 def test_the_memo_is_signed_by_keys_and_verifies(window: Watched, hands: Hands, identity: Path, tmp_path: Path) -> None:
     out = tmp_path / "memo.pdf"
     go_to_revenue(window, hands)
-    hands.type(str(TYPED))
-    hands.press("Return", "ctrl+g")
+    enter_revenue(window, hands, TYPED)
+    hands.press("ctrl+g")
     window.wait(lambda shown: shown["dialog"] is not None)
     hands.focus("Sign the memo as preparer")
     fill(window, hands, "Identity file", str(identity))

@@ -12,7 +12,16 @@ from creditdesk.base.display import format_pd
 from creditdesk.case.store import CaseFile
 from tests.programs import SOUND, command_line, run
 from tests.window.charts import bars, marker, number
-from tests.window.hands import PATIENCE_SECONDS, Hands, Watched, go_to_revenue, opened, watched
+from tests.window.hands import (
+    PATIENCE_SECONDS,
+    Hands,
+    Watched,
+    back_to_revenue,
+    enter_revenue,
+    go_to_revenue,
+    opened,
+    watched,
+)
 
 pytestmark = pytest.mark.window_xvfb
 Json = dict[str, Any]
@@ -65,13 +74,13 @@ def agrees(shown: Json, result: Json) -> None:
 
 
 def test_a_new_revenue_moves_everything_and_undo_restores_it(window: Watched, hands: Hands, drafts: Path) -> None:
-    before = go_to_revenue(window, hands)["standing"]
+    go_to_revenue(window, hands)
+    before = window.stare()["standing"]
     original = assessed(SOUND)
     agrees(before, original)
 
-    hands.type(str(TYPED))
-    hands.press("Return")
-    after = window.wait(lambda shown: number(shown["standing"]["cells"]["revenue"][2]) == TYPED)["standing"]
+    enter_revenue(window, hands, TYPED)
+    after = window.stare()["standing"]
     assert {key: number(after["cells"][key][2]) for key in FOLLOWS} == FOLLOWS
     assert after["cells"] != before["cells"]
     assert [row for row, cells in after["cells"].items() if cells[:2] != before["cells"][row][:2]] == []
@@ -85,23 +94,29 @@ def test_a_new_revenue_moves_everything_and_undo_restores_it(window: Watched, ha
     assert kept(draft(drafts)) == (TYPED, ["create", "edit"])
 
     hands.press("ctrl+z")
-    window.wait(lambda shown: shown["standing"] == before)  # each text, each mark, each pixel
+    window.wait(lambda shown: number(shown["standing"]["cells"]["revenue"][2]) == 43900)
+    back_to_revenue(window, hands)
+    window.stare(lambda shown: shown["standing"] == before)  # each text, each mark, each pixel
     assert kept(draft(drafts)) == (43900, ["create", "edit", "undo"])
     assert assessed(draft(drafts)) == original
 
     hands.press("ctrl+shift+z")
-    window.wait(lambda shown: shown["standing"] == after)
+    window.wait(lambda shown: number(shown["standing"]["cells"]["revenue"][2]) == TYPED)
+    back_to_revenue(window, hands)
+    window.stare(lambda shown: shown["standing"] == after)
     assert kept(draft(drafts)) == (TYPED, ["create", "edit", "undo", "redo"])
 
 
 def test_what_is_no_amount_is_refused_in_words_and_changes_nothing(window: Watched, hands: Hands, drafts: Path) -> None:
-    before = go_to_revenue(window, hands)["standing"]
+    go_to_revenue(window, hands)
+    before = window.stare()["standing"]
     hands.type("4x")
     hands.press("Return")
     shown = window.wait(lambda shown: shown["message"] != "")
     assert "4x" in shown["message"]
     hands.press("Escape")
-    window.wait(lambda shown: shown["standing"] == before)
+    back_to_revenue(window, hands)
+    window.stare(lambda shown: shown["standing"] == before)
     assert kept(draft(drafts)) == (43900, ["create"])
 
 
@@ -128,13 +143,14 @@ def test_a_second_opener_reads_and_cannot_type(display: str, hands: Hands, tmp_p
         shown = window.wait(lambda _: True)
         assert "open for" in shown["notice"]
         hands.focus("Brackwater Millworks Ltd")
-        before = go_to_revenue(window, hands)["standing"]
+        go_to_revenue(window, hands)
+        before = window.stare()["standing"]
         hands.type("1")
         hands.press("Return")
         shown = window.wait(lambda shown: shown["message"] != "")
         assert "read-only" in shown["message"]
         hands.press("Escape")
-        window.wait(lambda shown: shown["standing"] == before)
+        window.stare(lambda shown: shown["standing"] == before)
         assert kept(path) == (43900, ["create"])
 
 

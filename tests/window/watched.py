@@ -1,4 +1,5 @@
-"""The real window with an eye in it: each line on standard input asks what it shows, the answer is a line of JSON.
+"""The real window with an eye in it: each line on standard input, ``look`` or ``stare``, asks what it shows, the
+answer is a line of JSON.
 
 Nothing of the program is replaced. What is read are the widgets themselves and the marks on the charts, in pixels.
 """
@@ -21,7 +22,7 @@ from creditdesk.house.shipped import resources_folder
 Json = dict[str, Any]
 
 
-def seen() -> Json:
+def seen(*, with_pixels: bool) -> Json:
     """Return everything a test wants to know of the open window, or that there is none yet."""
     windows = [widget for widget in QApplication.topLevelWidgets() if isinstance(widget, Window)]
     if not windows or not windows[0].isVisible():
@@ -42,9 +43,10 @@ def seen() -> Json:
             "counts": window.counts.text(),
             "cells": cells(window),
             **charts(window),
-            "pixels": [pixels(window.standing), pixels(window.figures)],
+            "pixels": [pixels(window.standing), pixels(window.figures)] if with_pixels else [],
         },
         "current": current(window),
+        "rows": {row.key: number for number, row in enumerate(window.figures.model.rows)},
         "places": places(window),
         "buttons": {one.text(): middle(one) for one in window.findChildren(QPushButton) if one.isVisible()},
         "dialog": dialog(),
@@ -111,7 +113,12 @@ def drawn(canvas: Any) -> Json:  # noqa: ANN401  a matplotlib canvas, which is n
 
 
 def pixels(widget: QWidget) -> str:
-    """Return a digest of what the display itself shows where ``widget`` is."""
+    """Return a digest of what the display itself shows where ``widget`` is, once all of it is painted anew.
+
+    What is painted bit by bit may leave half-covered pixels at its edges, and those are no part of a state.
+    """
+    for part in (widget, *widget.findChildren(QWidget)):
+        part.repaint()
     corner = widget.mapToGlobal(QPoint(0, 0))
     image = widget.screen().grabWindow(0, corner.x(), corner.y(), widget.width(), widget.height()).toImage()
     return hashlib.sha256(bytes(image.constBits())).hexdigest()
@@ -139,10 +146,11 @@ def dialog() -> Json | None:
 
 def answer() -> None:
     """Answer one question, or end with the one who asks."""
-    if not sys.stdin.readline():
+    question = sys.stdin.readline()
+    if not question:
         QApplication.quit()
         return
-    sys.stdout.write(json.dumps(seen()) + "\n")
+    sys.stdout.write(json.dumps(seen(with_pixels=question == "stare\n")) + "\n")
     sys.stdout.flush()
 
 
