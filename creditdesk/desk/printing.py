@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
 
 from PySide6.QtCore import QMarginsF, QRect, Qt
 from PySide6.QtGui import QImage, QPageLayout, QPageSize, QPainter
@@ -48,6 +49,7 @@ def print_pdf(pdf: bytes, printer: QPrinter, progress: Progress) -> int:
 
 @contextmanager
 def _painting(printer: QPrinter) -> Iterator[QPainter]:
+    _refuse_unwritable(printer.outputFileName())
     painter = QPainter()
     if not painter.begin(printer):
         raise UserError("print", f"Nothing can be printed to {printer.outputFileName() or printer.printerName()}.")
@@ -58,6 +60,15 @@ def _painting(printer: QPrinter) -> Iterator[QPainter]:
         raise
     finally:
         painter.end()
+
+
+def _refuse_unwritable(name: str) -> None:
+    """Say in words that a file to print into cannot be written; Qt would only say that nothing began."""
+    if name:
+        try:
+            Path(name).touch()
+        except OSError as error:
+            raise UserError("print", f"{name}: cannot be written ({error.strerror}).") from error
 
 
 def _fitted(image: QImage, paper: QRect) -> QRect:

@@ -115,7 +115,7 @@ class CountersignDialog(_Signing):
         self._conditions_title = label("")
         self.decision.setAccessibleName("Decision")
         for decision, words in DECISION_WORDS.items():
-            self.decision.addItem(words, decision)
+            self.decision.addItem(words, decision.value)
         self.decision.setCurrentIndex(-1)
         self.decision.setPlaceholderText("Choose one: it is yours alone")
         self.conditions.setTabChangesFocus(True)
@@ -139,8 +139,7 @@ class CountersignDialog(_Signing):
     @property
     def chosen(self) -> tuple[str, str]:
         """Return the decision, as the command line names it, and its conditions or grounds."""
-        value = self.decision.currentData()
-        return ("" if value is None else str(value.value)), self.conditions.toPlainText().strip()
+        return str(self.decision.currentData() or ""), self.conditions.toPlainText().strip()
 
     def complete(self) -> bool:
         """Say whether everything is there, and the conditions fit the decision."""
@@ -156,13 +155,13 @@ class CountersignDialog(_Signing):
         super().on_typed()
 
     def _fault(self) -> str:
-        from creditdesk.memo.decision import as_reason
+        from creditdesk.memo.decision import Decision, as_reason
 
-        decision = self.decision.currentData()
-        if decision is None:
+        decision, conditions = self.chosen
+        if not decision:
             return ""
         try:
-            as_reason(decision, self.chosen[1])
+            as_reason(Decision(decision), conditions)
         except UserError as error:
             return " ".join(error.faults)
         return ""

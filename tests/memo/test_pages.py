@@ -1,58 +1,90 @@
-"""Pages as pictures: all of them, as wide as asked for, with what stands in the signature fields."""
+import threading
 
-import numpy as np
 import pypdfium2
 import pytest
 
-from creditdesk.memo.pages import PageImage, page_images
-from tests.memos import finished, ratio_table, small_story
+from creditdesk.case.convert import load_any
+from creditdesk.house.load import load_house_book
+from creditdesk.house.shipped import resources_folder
+from creditdesk.memo.issue import draft_memo
+from creditdesk.memo.origins import ORIGINS
+from creditdesk.memo.pages import PagePart, draw_pages, page_images, page_parts, paper_width
 
 
-def pixels(image: PageImage) -> np.ndarray:
-    return np.frombuffer(image.pixels, dtype=np.uint8).reshape(image.height, image.width, 3)
+@pytest.fixture(scope="module")
+def memo() -> bytes:
+    house = load_house_book(resources_folder() / "housebook")
+    return draft_memo(load_any(resources_folder() / "demo" / "tarnside-castings.case.toml", house.chart), house)
 
 
-@pytest.mark.parametrize("width", [76, 304, 600, 613, 1_240])
-def test_a_page_is_as_wide_as_asked_for_and_a4_high(unsigned_memo: bytes, width: int) -> None:
-    (image,) = page_images(unsigned_memo, width)
-    assert image.width == width
-    assert image.height == pytest.approx(width * 297 / 210, abs=1)
-    assert len(image.pixels) == image.width * image.height * 3
+def test_pages_come_in_the_width_and_the_shape_of_the_paper(memo: bytes) -> None:
+    images = page_images(memo, 400)
+    assert len(images) >= 4
+    for image in images:
+        assert image.width == 400
+        assert image.height == pytest.approx(400 * 297 / 210, abs=1)
+        assert len(image.pixels) == 3 * image.width * image.height
 
 
-def test_no_width_is_missed_by_a_pixel(unsigned_memo: bytes) -> None:
-    document = pypdfium2.PdfDocument(unsigned_memo)
-    page_width = document[0].get_width()
+def test_a_range_of_pages_is_drawn_one_at_a_time(memo: bytes) -> None:
+    whole = page_images(memo, 200)
+    some = list(draw_pages(memo, 200, 2, 3))
+    assert [(number, total) for number, total, _ in some] == [(2, len(whole)), (3, len(whole))]
+    assert [image for _, _, image in some] == list(whole[1:3])
+
+
+def test_paper_of_three_hundred_dots_per_inch() -> None:
+    assert paper_width(300) == 2480  # 210 mm of ISO 216 at 25.4 mm per inch
+
+
+def test_two_threads_may_draw_at_the_same_time(memo: bytes) -> None:
+    alone = page_images(memo, 300)
+    drawn: list[object] = []
+    threads = [threading.Thread(target=lambda: drawn.append(page_images(memo, 300))) for _ in range(4)]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert drawn == [alone] * 4
+
+
+def test_every_page_says_which_sections_are_on_it(memo: bytes) -> None:
+    parts = page_parts(memo)
+    assert len(parts) == len(page_images(memo, 50))
+    assert parts[0] == (PagePart("The decision on one page", parts[0][0].top, ORIGINS["The decision on one page"]),)
+    headings = [part.heading for page in parts for part in page]
+    assert headings.index("Figures") < headings.index("Ratios") < headings.index("Cautions")
+    for page in parts:
+        assert page, "a page without a section"
+        assert [part.top for part in page] == sorted(part.top for part in page)
+        assert all(0 <= part.top <= 1 for part in page)
+
+
+def test_a_section_that_runs_over_stands_at_the_top_of_the_next_page(memo: bytes) -> None:
+    parts = page_parts(memo)
+    later = [page for before, page in zip(parts, parts[1:], strict=False) if page[0].heading == before[-1].heading]
+    assert later, "the demonstration has a section of more than one page"
+    assert all(page[0].top == 0 for page in later)
+
+
+def test_a_part_begins_where_its_heading_stands(memo: bytes) -> None:
+    document = pypdfium2.PdfDocument(memo)
+    checked = 0
+    for number, page in enumerate(page_parts(memo)):
+        for part in page:
+            if part.top > 0 and number > 0:
+                tops = _tops(document[number], part.heading)
+                assert any(top == pytest.approx(part.top, abs=0.04) for top in tops), (part, tops)
+                checked += 1
     document.close()
-    awkward = [width for width in range(50, 2_000) if -(-page_width * (width / page_width) // 1) != width]
-    assert awkward  # a plain quotient would miss these
-    assert [page_images(unsigned_memo, width)[0].width for width in awkward[:12]] == awkward[:12]
+    assert checked >= 8
 
 
-def test_every_page_is_drawn_in_order_and_upright() -> None:
-    pages = page_images(finished([*small_story(), ratio_table(90)]), 400)
-    assert len(pages) > 2
-    ink = [float((pixels(page) < 128).mean()) for page in pages]
-    assert all(share > 0.002 for share in ink)
-    for page in map(pixels, pages):
-        assert (page[:30] < 128).any()  # the running head stands at the top
-        assert (page[-30:] > 250).all()
-
-
-def test_a_signature_is_seen_where_it_was_made(unsigned_memo: bytes, prepared_memo: bytes) -> None:
-    (before,), (after,) = page_images(unsigned_memo, 800), page_images(prepared_memo, 800)
-    changed = (pixels(before) != pixels(after)).any(axis=2)
-    rows, columns = np.nonzero(changed)
-    assert changed.any()
-    assert rows.max() - rows.min() < 200  # within the preparer's field, and nowhere else
-    assert columns.max() - columns.min() < 400
-
-
-def test_a_picture_s_colours_are_red_green_blue_in_this_order() -> None:
-    figure_ink = pixels(page_images(finished(small_story()), 800)[0]).reshape(-1, 3)
-    blue = figure_ink[(figure_ink[:, 2].astype(int) - figure_ink[:, 0]) > 60]
-    assert len(blue) > 100  # the small chart's line is matplotlib's blue
-
-
-def test_the_same_memo_gives_the_same_pictures(unsigned_memo: bytes) -> None:
-    assert page_images(unsigned_memo, 300) == page_images(unsigned_memo, 300)
+def _tops(page: pypdfium2.PdfPage, words: str) -> list[float]:
+    """Return how far down a page, from 0 to 1, each occurrence of ``words`` stands."""
+    text = page.get_textpage()
+    search, found = text.search(words), []
+    while (place := search.get_next()) is not None:
+        *_, top = text.get_charbox(place[0])
+        found.append(1 - top / page.get_height())
+    return found

@@ -57,16 +57,19 @@ class TextBlock(QPlainTextEdit):
 
     def show_text(self, text: str) -> None:
         """Show the text of the case, if it is another one than before; what is being typed stays."""
-        if text == self._known:
-            return
-        self._known = text
-        if text != self.toPlainText():
-            place = self.textCursor().position()
-            self.setPlainText(text)
-            cursor = self.textCursor()
-            cursor.setPosition(min(place, len(text.encode("utf-16-le")) // 2))
-            self.setTextCursor(cursor)
-        self.document().clearUndoRedoStacks()
+        if text != self._known:
+            self._known = text
+            if text != self.toPlainText():
+                self._replace(text)
+        if text == self.toPlainText():  # from here on undo and redo are those of the case
+            self.document().clearUndoRedoStacks()
+
+    def _replace(self, text: str) -> None:
+        place = self.textCursor().position()
+        self.setPlainText(text)
+        cursor = self.textCursor()
+        cursor.setPosition(min(place, len(text.encode("utf-16-le")) // 2))
+        self.setTextCursor(cursor)
 
     def take_back(self) -> None:
         """Show the text of the case again in place of what was typed."""
