@@ -13,6 +13,7 @@ from creditdesk.charts.placing import Box
 from creditdesk.charts.style import CAP_HEIGHT, LINE_HEIGHT, Pen, Type, type_size
 
 BIN_HALF = 2.3
+_UNDER_NUMBERS = 0.28
 
 
 def draw_backdrop(board: Board, layer: str, frame: Frame, standing: Standing, palette: Palette) -> None:
@@ -27,6 +28,11 @@ def draw_backdrop(board: Board, layer: str, frame: Frame, standing: Standing, pa
         _draw_bin(board, layer, frame, bin_, palette)
     below = frame.plot.bottom - (0.6 + CAP_HEIGHT / 2 + LINE_HEIGHT) * type_size(palette)
     draw_key(board, layer, (frame.plot.left, below), frame.key, palette)
+
+
+def key_height(frame: Frame, palette: Palette) -> float:
+    """Return the height in points of what stands below the numbers of the score axis: its title and the key."""
+    return frame.plot.bottom - (0.6 + CAP_HEIGHT + _UNDER_NUMBERS) * type_size(palette)
 
 
 def curve_boxes(frame: Frame, curve: Curve) -> list[Box]:

@@ -10,7 +10,7 @@ from creditdesk.charts.backdrop import BIN_HALF
 from creditdesk.charts.borrower import DOT, SMALL_DOT
 from creditdesk.charts.frame import Frame
 from creditdesk.charts.placing import Box, around
-from creditdesk.charts.pointing import Mark, Marks, Step, holds, nearest, neighbour
+from creditdesk.charts.pointing import Mark, Marks, Step, end_of, holds, nearest, neighbour
 from creditdesk.charts.style import Size
 from creditdesk.charts.words import period_name
 
@@ -51,6 +51,8 @@ class CurveMarks(Marks):
 
     def step(self, start: Mark | None, step: Step) -> Mark | None:
         """Walk years and bins, grades, or along the curve; from outside it begins at the borrower."""
+        if step in (Step.FIRST, Step.LAST):
+            return end_of(self.along, step)
         if start is None:
             return self._points[0] if self._points else self._point(self._middle())
         if step in (Step.BACK, Step.ON):
@@ -58,12 +60,9 @@ class CurveMarks(Marks):
             return self._point(score + (WALK if step is Step.ON else -WALK)) or start
         if step in (Step.UP, Step.DOWN):
             return self._next_grade(start, 1 if step is Step.UP else -1)
-        far = len(self.along)
-        by = {Step.LEFT: -1, Step.RIGHT: 1, Step.FIRST: -far, Step.LAST: far}[step]
         if start in self.along:
-            return neighbour(self.along, start, by)
-        here = nearest(self.along, start.spot, float("inf"))
-        return here if abs(by) == 1 else neighbour(self.along, here, by)
+            return neighbour(self.along, start, 1 if step is Step.RIGHT else -1)
+        return nearest(self.along, start.spot, float("inf"))
 
     def again(self, mark: Mark) -> Mark | None:
         """Return the mark of the same key; a point of the curve at the same score."""

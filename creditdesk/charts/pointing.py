@@ -71,13 +71,19 @@ class RowMarks(Marks):
 
     def step(self, start: Mark | None, step: Step) -> Mark | None:
         """Return the row above or below, or at an end; the first one from outside."""
-        far = len(self.rows)
-        by = {Step.UP: -1, Step.DOWN: 1, Step.FIRST: -far, Step.LAST: far}.get(step)
+        if step in (Step.FIRST, Step.LAST):
+            return end_of(self.rows, step)
+        by = {Step.UP: -1, Step.DOWN: 1}.get(step)
         return None if by is None else neighbour(self.rows, start, by)
 
     def again(self, mark: Mark) -> Mark | None:
         """Return the row of the same key."""
         return next((row for row in self.rows if row.key == mark.key), None)
+
+
+def end_of(marks: Sequence[Mark], step: Step) -> Mark | None:
+    """Return the first or the last mark; None where there is none."""
+    return None if not marks else marks[0 if step is Step.FIRST else -1]
 
 
 def neighbour(marks: Sequence[Mark], start: Mark | None, by: int) -> Mark | None:

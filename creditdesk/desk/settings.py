@@ -8,6 +8,7 @@ from enum import StrEnum
 from PySide6.QtCore import QByteArray, QSettings
 
 _SHEET, _THEME, _GEOMETRY = "window/sheet", "window/theme", "window/geometry"
+_SINCE_LAST_YEAR = "standing/since-last-year"
 
 
 class Theme(StrEnum):
@@ -51,6 +52,15 @@ class Settings:
     @geometry.setter
     def geometry(self, geometry: QByteArray) -> None:
         self._stored.setValue(_GEOMETRY, geometry)
+
+    @property
+    def since_last_year(self) -> bool:
+        """Say whether the contributions were last shown from last year's borrower."""
+        return self._text(_SINCE_LAST_YEAR) == "yes"
+
+    @since_last_year.setter
+    def since_last_year(self, wanted: bool) -> None:
+        self._stored.setValue(_SINCE_LAST_YEAR, "yes" if wanted else "no")
 
     def split(self, name: str) -> QByteArray:
         """Return how a splitter stood, as Qt wrote it; empty where that is not known."""

@@ -3,247 +3,302 @@
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QSize, Qt
-from PySide6.QtGui import QResizeEvent
-from PySide6.QtWidgets import QFrame, QGridLayout, QHBoxLayout, QLabel, QScrollArea, QSizePolicy, QVBoxLayout, QWidget
+from PySide6.QtCore import QEvent, QSize, Qt, QTimer, Signal
+from PySide6.QtGui import QKeyEvent, QResizeEvent
+from PySide6.QtWidgets import QBoxLayout, QFrame, QHBoxLayout, QScrollArea, QSizePolicy, QVBoxLayout, QWidget
 
-from creditdesk.base.display import format_pd
-from creditdesk.base.findings import Finding, Severity
 from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.case.standing import Standing
+from creditdesk.desk.actions import Entry
+from creditdesk.desk.factorlook import FactorLook
+from creditdesk.desk.findings import FindingsList
 from creditdesk.desk.frame import label
-from creditdesk.desk.tables.figures import MARKS
+from creditdesk.desk.switch import WaySwitch
+from creditdesk.desk.verdict import Verdict
 
 if TYPE_CHECKING:
-    from creditdesk.desk.canvases import ChartCanvases
+    from creditdesk.desk.canvases import ChartCanvas, ChartCanvases
 
-_CURVE_HEIGHTS = (200, 330)
-_HEADINGS = 120
+WIDE = 900
+"""From this width in pixels on, verdict and curve stand beside contributions and findings."""
+_CURVE_HEIGHTS = (202, 340)
+_WIDE_CURVE_HEIGHTS = (240, 520)
+_HEADINGS = 110
 """Height of the two headings above the charts with the margins around them."""
+_TIGHT = 0.9
+"""How much closer the rows of the contributions stand where the column is low."""
+_MARGIN = 15
+_CHART_MARGIN = 5
+"""Between the frame that shows the focus and the chart; with the column's margin it lines up with the texts."""
+_REFERENCE_HEADING, _MOVED_HEADING = "From the reference borrower to this one", "From last year to this one"
+_MODEL = "model."
+
+# The colours are those of the application's palette, which the theme sets.
+_STYLE = """
+QPushButton[role="switch"] { padding: 1px 8px; }
+QPushButton[role="switch"]:checked { border-color: palette(link); font-weight: 600; }
+QPushButton[role="link"] { border: 0; background: transparent; color: palette(link); padding: 1px 5px; }
+QPushButton[role="link"]:hover { text-decoration: underline; }
+QPushButton[role="link"]:focus { background: palette(highlight); text-decoration: underline; }
+QLabel[role="place"] { color: palette(link); }
+#look { background: palette(window); border: 1px solid palette(link); }
+#chart { border: 1px solid transparent; }
+#chart[focused="true"] { border-color: palette(link); }
+"""
 
 
-class GradePlate(QFrame):
-    """Show the grade large, with what it is out of and the model's grade where it differs."""
+class ChartPlace(QFrame):
+    """Hold one chart, with a frame around it while it takes the keys."""
 
-    def __init__(self) -> None:
+    def __init__(self, height: int) -> None:
         super().__init__()
-        self.setObjectName("grade")
-        self.setFixedWidth(96)
-        self.grade = label("grade")
-        self.note = label("second")
-        box = QVBoxLayout(self)
-        box.setContentsMargins(6, 5, 6, 6)
-        box.setSpacing(0)
-        for widget in (label("second", "grade"), self.grade, self.note):
-            widget.setAlignment(Qt.AlignmentFlag.AlignHCenter)
-            box.addWidget(widget)
+        self.setObjectName("chart")
+        self.setFixedHeight(height)
+        self.setMinimumWidth(340)
+        self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
+        self._box = QVBoxLayout(self)
+        self._box.setContentsMargins(_CHART_MARGIN, 0, _CHART_MARGIN, 0)
 
-    def show_standing(self, standing: Standing, grades: int) -> None:
-        """Show the final grade of ``standing`` on a scale of so many grades."""
-        final, model = standing.grade.final, standing.grade.model
-        self.grade.setText("–" if final == "none" else final)
-        self.note.setText("no grade" if final == "none" else f"of {grades}" if final == model else f"model {model}")
-        self.setAccessibleName(f"Grade {final} of {grades}, by the model {model}")
+    def put(self, canvas: "ChartCanvas") -> None:
+        """Put the chart in."""
+        self._box.addWidget(canvas)
+        canvas.focus_changed.connect(self.show_focus)
 
-
-class Verdict(QWidget):
-    """Show PD, interval and grade."""
-
-    def __init__(self) -> None:
-        super().__init__()
-        self.pd = label("pd")
-        self.interval = label("", wrap=True)
-        self.change = label("second", wrap=True)
-        self.plate = GradePlate()
-        self._caption = label("second", "Probability of default within a year")
-        left = QVBoxLayout()
-        left.setSpacing(0)
-        for widget in (self._caption, self.pd, self.interval, self.change):
-            left.addWidget(widget)
-        left.addStretch(1)
-        row = QHBoxLayout(self)
-        row.setContentsMargins(0, 0, 0, 0)
-        row.addLayout(left, 1)
-        row.addWidget(self.plate, 0, Qt.AlignmentFlag.AlignTop)
-
-    def show_standing(self, standing: Standing, grades: int) -> None:
-        """Show the numbers of ``standing``, or in words why there are none."""
-        known = standing.pd_final is not None and standing.usable
-        self.pd.setProperty("role", "pd" if known else "pd-words")
-        self.pd.style().unpolish(self.pd)
-        self.pd.style().polish(self.pd)
-        self.pd.setWordWrap(not known)
-        self.pd.setText(format_pd(standing.pd_final or 0.0) if known else _no_pd(standing))
-        self.interval.setText(interval_words(standing))
-        self.change.setText(change_words(standing))
-        self.change.setVisible(bool(self.change.text()))
-        self.plate.show_standing(standing, grades)
-
-
-class FindingsList(QWidget):
-    """List findings with their mark, the gravest first."""
-
-    def __init__(self) -> None:
-        super().__init__()
-        self._grid = QGridLayout(self)
-        self._grid.setContentsMargins(0, 0, 0, 0)
-        self._grid.setVerticalSpacing(4)
-        self._grid.setColumnStretch(1, 1)
-        self._grid.setColumnMinimumWidth(0, 14)
-        self._labels: list[QLabel] = []
-
-    def show_findings(self, findings: Sequence[Finding]) -> None:
-        """Show ``findings``; a sentence says so where there are none."""
-        order = list(Severity)
-        ranked = sorted(findings, key=lambda finding: order.index(finding.severity))
-        texts = [(MARKS[f.severity], f.severity, f.text) for f in ranked] or [("", Severity.NOTE, "No findings.")]
-        while len(self._labels) < 2 * len(texts):
-            self._add_row()
-        for row, (mark, severity, text) in enumerate(texts):
-            sign, words = self._labels[2 * row : 2 * row + 2]
-            role = {Severity.STOP: "breach", Severity.QUERY: "caution"}.get(severity, "second")
-            sign.setText(mark)
-            if sign.property("role") != role:
-                sign.setProperty("role", role)
-                sign.style().unpolish(sign)
-                sign.style().polish(sign)
-            words.setText(text)
-            words.setAccessibleName(f"{severity.value}: {text}")
-        for number, widget in enumerate(self._labels):
-            widget.setVisible(number < 2 * len(texts))
-
-    def _add_row(self) -> None:
-        row = len(self._labels) // 2
-        sign, words = label("second"), label("", wrap=True)
-        sign.setAlignment(Qt.AlignmentFlag.AlignTop)
-        words.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
-        self._grid.addWidget(sign, row, 0)
-        self._grid.addWidget(words, row, 1)
-        self._labels += [sign, words]
+    def show_focus(self, focused: bool) -> None:
+        """Show or hide the frame."""
+        self.setProperty("focused", focused)
+        self.style().unpolish(self)
+        self.style().polish(self)
 
 
 class StandingColumn(QWidget):
-    """Hold verdict, curve, contributions, findings and cautions; charts are put in when their library is there."""
+    """Hold verdict, curve, contributions, findings and cautions; charts are put in when their library is there.
+
+    ``jump_asked``: a place, as findings name it, to be shown by the sheet it belongs to. Wider than ``WIDE`` it lays
+    itself out in two columns, which ``wide_changed`` tells.
+    """
+
+    jump_asked = Signal(str)
+    wide_changed = Signal(bool)
 
     def __init__(self, grades: int) -> None:
         super().__init__()
         self.setObjectName("standing")
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
+        self.setStyleSheet(_STYLE)
         self._grades = grades
         self._standing: Standing | None = None
         self._palette = LIGHT
         self._canvases: ChartCanvases | None = None
-        self.verdict = Verdict()
-        self.findings = FindingsList()
+        self.verdict, self.findings, self.look = Verdict(), FindingsList(), FactorLook()
+        self.switch, self.switch_note = WaySwitch(), label("second", wrap=True)
+        self.heading = label("heading", _REFERENCE_HEADING)
         self.cautions = label("second", wrap=True)
-        self.curve_place = _place(QSize(400, 262))
-        self.contributions_place = _place(QSize(400, 190))
+        self.curve_place, self.contributions_place = ChartPlace(262), ChartPlace(190)
         self._lay_out()
+        self._connect()
 
     def sizeHint(self) -> QSize:
         """Ask for the width the charts read well at."""
         return QSize(490, 700)
 
+    @property
+    def wide(self) -> bool:
+        """Say whether the column stands in two."""
+        return self._columns.direction() is QBoxLayout.Direction.LeftToRight
+
     def show_standing(self, standing: Standing) -> None:
         """Show another standing, everything at once."""
         self._standing = standing
         self.verdict.show_standing(standing, self._grades)
-        self.findings.show_findings(standing.findings)
-        self.cautions.setText("\n".join(f"▲ {caution}" for caution in standing.cautions))
+        self.findings.show_standing(standing)
+        cautions = "\n".join(f"▲ {caution}" for caution in standing.cautions)
+        if self.cautions.text() != cautions:
+            self.cautions.setText(cautions)
+        self.switch.allow(standing.what_moved_reason)
+        self.switch_note.setText(_in_short(standing.what_moved_reason))
+        self.switch_note.setToolTip(standing.what_moved_reason)
+        self.switch_note.setVisible(bool(standing.what_moved_reason))
         self._show_charts()
 
+    def entries(self) -> Sequence[Entry | None]:
+        """Return what can be done here, for menu and palette."""
+        return (
+            ("&Reference or last year", "Ctrl+Shift+Y", self.switch.turn),
+            None,
+            ("Copy the &curve as a picture", None, lambda: self._copy("curve", picture=True)),
+            ("Copy the curve's &numbers", None, lambda: self._copy("curve", picture=False)),
+            ("Copy the c&ontributions as a picture", None, lambda: self._copy("contributions", picture=True)),
+            ("Copy the contributions' n&umbers", None, lambda: self._copy("contributions", picture=False)),
+        )
+
+    def show_factor(self, key: str) -> None:
+        """Open the second look at a factor; nothing happens where the model has none of that key."""
+        look = None if self._canvases is None else self._canvases.look(key)
+        if look is not None:
+            self.look.show_look(look)
+            QTimer.singleShot(0, self._scroll_to_look)
+
     def resizeEvent(self, event: QResizeEvent) -> None:
-        """Share the new height."""
+        """Share the new width and height."""
         super().resizeEvent(event)
+        wide = self.width() >= WIDE
+        if wide != self.wide:
+            self._lay_out_wide(wide=wide)
+            self.wide_changed.emit(wide)
         self._fit_curve()
+
+    def event(self, event: QEvent) -> bool:
+        """Keep Escape while there is a second look to close."""
+        if event.type() is QEvent.Type.ShortcutOverride and self._closes(event):
+            event.accept()
+            return True
+        return super().event(event)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Close the second look with Escape."""
+        if self._closes(event):
+            self._on_look_closed()
+        else:
+            super().keyPressEvent(event)
 
     def put_charts(self, canvases: "ChartCanvases", palette: Palette) -> None:
         """Put the chart canvases in their places; they follow every standing from now on."""
         self._take_charts_out()
         self._canvases, self._palette = canvases, palette
-        for place, canvas in ((self.curve_place, canvases.curve), (self.contributions_place, canvases.contributions)):
-            layout = place.layout()
-            assert layout is not None
-            layout.addWidget(canvas)
+        self.curve_place.put(canvases.curve)
+        self.contributions_place.put(canvases.contributions)
+        canvases.curve.chosen.connect(self._on_curve_chosen)
+        canvases.contributions.chosen.connect(self._on_factor_chosen)
+        self.setFocusProxy(canvases.curve)
+        QWidget.setTabOrder(canvases.curve, self.switch.reference)
+        QWidget.setTabOrder(self.switch.reference, self.switch.last_year)
+        QWidget.setTabOrder(self.switch.last_year, canvases.contributions)
+        QWidget.setTabOrder(canvases.contributions, self.look.link)
         self._show_charts()
 
     def _take_charts_out(self) -> None:
         if self._canvases is not None:
+            self.setFocusProxy(self.view)
             for canvas in (self._canvases.curve, self._canvases.contributions):
                 canvas.setParent(None)
                 canvas.deleteLater()
 
     def _show_charts(self) -> None:
+        moved = self.switch.since_last_year
+        self.heading.setText(_MOVED_HEADING if moved else _REFERENCE_HEADING)
         if self._canvases is not None and self._standing is not None:
+            if self._canvases.moved != moved:
+                self._canvases.show_moved(moved=moved)
             self._canvases.show_standing(self._standing)
-            self.contributions_place.setFixedHeight(self._canvases.contributions_height(self._standing))
+            if self.look.look is not None:
+                self.look.show_look(self._canvases.look(self.look.look.key))
             self._fit_curve()
 
     def _fit_curve(self) -> None:
-        """Give the curve what the column has left beside verdict and contributions, within what it reads well at."""
-        taken = self.verdict.sizeHint().height() + self.contributions_place.height() + _HEADINGS
-        lowest, highest = _CURVE_HEIGHTS
-        self.curve_place.setFixedHeight(min(max(self.height() - taken, lowest), highest))
+        """Give the curve what the column has left beside what else stands in it, within what it reads well at."""
+        lowest, highest = _WIDE_CURVE_HEIGHTS if self.wide else _CURVE_HEIGHTS
+        left = self.height() - self.verdict.sizeHint().height() - _HEADINGS
+        if self._canvases is not None and self._standing is not None:
+            rows = self._canvases.contributions_height(self._standing)
+            rows = rows if self.wide or left - rows >= lowest else round(_TIGHT * rows)
+            self.contributions_place.setFixedHeight(rows)
+        left -= 0 if self.wide else self.contributions_place.height()
+        self.curve_place.setFixedHeight(min(max(left, lowest), highest))
+
+    def _closes(self, event: QEvent) -> bool:
+        return isinstance(event, QKeyEvent) and event.key() == Qt.Key.Key_Escape and self.look.look is not None
+
+    def _scroll_to_look(self) -> None:
+        self.view.ensureWidgetVisible(self.look, 0, 8)
+
+    def _copy(self, chart: str, *, picture: bool) -> None:
+        if self._canvases is not None:
+            canvas = self._canvases.curve if chart == "curve" else self._canvases.contributions
+            (canvas.copy_picture if picture else canvas.copy_numbers)()
+
+    def _on_way(self) -> None:
+        self._show_charts()
+
+    def _on_curve_chosen(self, _key: str, place: str) -> None:
+        if place:
+            self.jump_asked.emit(place)
+
+    def _on_factor_chosen(self, key: str, _place: str) -> None:
+        self.show_factor(key)
+
+    def _on_look_closed(self) -> None:
+        self.look.show_look(None)
+        if self._canvases is not None:
+            self._canvases.contributions.setFocus(Qt.FocusReason.TabFocusReason)
+
+    def _on_finding(self, place: str) -> None:
+        """Follow a finding; what concerns a factor of the model is laid open here."""
+        if place.startswith(_MODEL):
+            self.show_factor(place.removeprefix(_MODEL))
+        self.jump_asked.emit(place)
+
+    def _connect(self) -> None:
+        self.switch.chosen.connect(self._on_way)
+        self.look.jump_asked.connect(self.jump_asked)
+        self.look.closed.connect(self._on_look_closed)
+        self.findings.followed.connect(self._on_finding)
+
+    def _lay_out_wide(self, *, wide: bool) -> None:
+        """Put the two columns beside each other or below each other; the cautions stand where there is room."""
+        way = QBoxLayout.Direction
+        self._columns.setDirection(way.LeftToRight if wide else way.TopToBottom)
+        self._columns.setSpacing(24 if wide else 9)
+        self._columns.setStretch(0, 1 if wide else 0)
+        where = (self._left if wide else self._right).layout()
+        assert isinstance(where, QVBoxLayout)
+        where.insertWidget(where.count() - 1, self._minded)
 
     def _lay_out(self) -> None:
+        way, heading = QHBoxLayout(), label("heading", "On the fitted curve")
+        way.setContentsMargins(0, 0, _CHART_MARGIN, 0)
+        way.addWidget(self.heading, 1)
+        way.addWidget(self.switch)
+        findings, cautions = label("heading", "Findings"), label("heading", "Cautions")
+        self._left = _column((self.verdict, 10, heading, self.curve_place))
+        self._right = _column((way, self.switch_note, self.contributions_place, self.look, findings, self.findings))
+        self._minded = _column((cautions, self.cautions))
+        for widget in (self.verdict, heading, self.heading, self.switch_note, findings, cautions, self.cautions):
+            widget.setContentsMargins(_CHART_MARGIN, 0, _CHART_MARGIN, 0)
         inside = QWidget()
-        box = QVBoxLayout(inside)
-        box.setContentsMargins(20, 14, 20, 14)
-        box.setSpacing(6)
-        box.addWidget(self.verdict)
-        for heading, widget in (
-            ("On the fitted curve", self.curve_place),
-            ("From the reference borrower to this one", self.contributions_place),
-            ("Findings", self.findings),
-            ("Cautions", self.cautions),
-        ):
-            box.addSpacing(6)
-            box.addWidget(label("heading", heading))
-            box.addWidget(widget)
-        box.addStretch(1)
-        scroll = QScrollArea()
-        scroll.setWidgetResizable(True)
-        scroll.setFrameShape(QFrame.Shape.NoFrame)
-        scroll.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-        scroll.setAccessibleName("Standing")
-        scroll.setWidget(inside)
+        self._columns = QBoxLayout(QBoxLayout.Direction.TopToBottom, inside)
+        self._columns.setContentsMargins(_MARGIN, 14, _MARGIN, 14)
+        for part in (self._left, self._right):
+            self._columns.addWidget(part, 1)
+        self._lay_out_wide(wide=False)
+        self.view = QScrollArea()
+        self.view.setWidgetResizable(True)
+        self.view.setFrameShape(QFrame.Shape.NoFrame)
+        self.view.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.view.setAccessibleName("Standing")
+        self.view.setWidget(inside)
         whole = QVBoxLayout(self)
         whole.setContentsMargins(0, 0, 0, 0)
-        whole.addWidget(scroll)
+        whole.addWidget(self.view)
 
 
-def interval_words(standing: Standing) -> str:
-    """Word the interval and what it covers."""
-    interval = standing.pd_interval
-    if standing.pd_final is None or not standing.usable:
-        return ""
-    if interval is None:
-        return "no interval: the model states no covariance"
-    bounds = f"{100 * interval.level:.0f} % interval {format_pd(interval.low)} to {format_pd(interval.high)}"
-    moved = standing.pd_calibrated is not None and standing.pd_final != standing.pd_calibrated
-    model = f"by the model {format_pd(standing.pd_calibrated or 0.0)}, " if moved else ""
-    return f"{model}{bounds}, uncertainty of the fitted coefficients only"
+def _in_short(reason: str) -> str:
+    """Keep what a reason says first; the factors it goes on to list stand in the chart."""
+    return reason.partition(":")[0].rstrip(".") + "." if reason else ""
 
 
-def change_words(standing: Standing) -> str:
-    """Word PD and grade of the year before."""
-    before = standing.last_year
-    if before is None or before.pd is None:
-        return ""
-    return f"{before.label}: {format_pd(before.pd)}, grade {before.grade}"
-
-
-def _no_pd(standing: Standing) -> str:
-    if standing.pd_final is not None:
-        return "Not usable until the findings marked ■ are resolved"
-    return "No probability of default: " + "; ".join(standing.reasons)
-
-
-def _place(size: QSize) -> QWidget:
-    place = QWidget()
-    place.setFixedHeight(size.height())
-    place.setMinimumWidth(size.width() - 60)
-    place.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
-    layout = QVBoxLayout(place)
-    layout.setContentsMargins(0, 0, 0, 0)
-    return place
+def _column(parts: Sequence[QWidget | QHBoxLayout | int]) -> QWidget:
+    """Stack widgets and layouts from the top; a number is a space in pixels."""
+    result = QWidget()
+    box = QVBoxLayout(result)
+    box.setContentsMargins(0, 0, 0, 0)
+    box.setSpacing(6)
+    for part in parts:
+        if isinstance(part, int):
+            box.addSpacing(part)
+        elif isinstance(part, QHBoxLayout):
+            box.addLayout(part)
+        else:
+            box.addWidget(part)
+    box.addStretch(1)
+    return result

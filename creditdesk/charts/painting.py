@@ -1,0 +1,97 @@
+"""Quick painting for the window: a layer that stays is painted once, and so is every word.
+
+What is painted is what a full draw paints, but that words stand on whole pixels.
+"""
+
+from collections import OrderedDict
+from collections.abc import Iterable
+from dataclasses import dataclass
+from math import ceil
+
+import numpy as np
+from matplotlib.artist import Artist
+from matplotlib.backends.backend_agg import RendererAgg
+from matplotlib.colors import to_rgba
+from matplotlib.text import Text
+from numpy.typing import NDArray
+
+from creditdesk.charts.board import Board
+
+_MOST_WORDS = 600
+_MARGIN = 3
+"""Pixels around the measured word: hinting may move a glyph by less."""
+
+
+@dataclass(frozen=True, slots=True)
+class _Word:
+    """Hold a painted word: rows of RGBA from the bottom, its width in pixels, and its rows below the baseline."""
+
+    pixels: NDArray[np.uint8]
+    width: float
+    below: int
+
+
+class Painter:
+    """Paint a board again and again; the layer ``kept`` is painted anew only when its marks or the size change."""
+
+    def __init__(self, board: Board, kept: str = "") -> None:
+        self._board = board
+        self._kept = kept
+        self._words: OrderedDict[tuple[object, ...], _Word] = OrderedDict()
+        self._state: tuple[object, ...] = ()
+        self._ground: object = None
+
+    def paint(self, renderer: RendererAgg) -> None:
+        """Paint all marks on ``renderer``, whatever stood there before."""
+        figure, kept = self._board.figure, self._board.marks(self._kept)
+        state = (renderer.width, renderer.height, renderer.dpi, kept)
+        if state != self._state:
+            renderer.clear()  # type: ignore[no-untyped-call]
+            figure.patch.draw(renderer)
+            self._paint(kept, renderer)
+            self._ground = renderer.copy_from_bbox(figure.bbox)
+            self._state = state
+        else:
+            renderer.restore_region(self._ground)  # type: ignore[no-untyped-call]
+        self._paint(self._board.marks_but(self._kept), renderer)
+
+    def _paint(self, marks: Iterable[Artist], renderer: RendererAgg) -> None:
+        for mark in sorted(marks, key=lambda one: one.get_zorder()):
+            if isinstance(mark, Text):
+                self._write(mark, renderer)
+            else:
+                mark.draw(renderer)
+
+    def _write(self, text: Text, renderer: RendererAgg) -> None:
+        word = self._word(text, renderer)
+        scale = renderer.dpi / 72
+        x, y = text.get_position()
+        before = {"left": 0.0, "center": word.width / 2, "right": word.width}[text.get_horizontalalignment()]
+        left, bottom = round(x * scale - before) - _MARGIN, round(y * scale) - word.below
+        renderer.draw_image(renderer.new_gc(), left, bottom, word.pixels)
+
+    def _word(self, text: Text, renderer: RendererAgg) -> _Word:
+        font = text.get_fontproperties()
+        key = (text.get_text(), font.get_file(), font.get_size_in_points(), text.get_color(), renderer.dpi)
+        found = self._words.get(key)
+        if found is None:
+            found = self._words[key] = _painted(text, renderer)
+            if len(self._words) > _MOST_WORDS:
+                self._words.popitem(last=False)
+        else:
+            self._words.move_to_end(key)
+        return found
+
+
+def _painted(text: Text, renderer: RendererAgg) -> _Word:
+    """Paint one word on a ground of its own."""
+    words, font = text.get_text(), text.get_fontproperties()
+    width, height, descent = renderer.get_text_width_height_descent(words, font, False)  # type: ignore[no-untyped-call]
+    below = ceil(descent) + _MARGIN
+    columns, rows = ceil(width) + 2 * _MARGIN, ceil(height) + below + _MARGIN
+    ground = RendererAgg(columns, rows, renderer.dpi)  # type: ignore[no-untyped-call]
+    pen = ground.new_gc()
+    pen.set_foreground(to_rgba(text.get_color()), isRGBA=True)
+    ground.draw_text(pen, _MARGIN, rows - below, words, font, 0)  # type: ignore[no-untyped-call]
+    pixels = np.asarray(ground.buffer_rgba())[::-1].copy()  # type: ignore[no-untyped-call]
+    return _Word(pixels, float(width), below)
