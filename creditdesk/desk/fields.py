@@ -12,7 +12,7 @@ from creditdesk.base.errors import UserError
 from creditdesk.desk.frame import label
 from creditdesk.house.decode import fault_of
 
-_PLACE = re.compile(r"(?:[\w.\[\]-]+: )+")
+_PLACE = re.compile(r"^(?:[\w.\[\]-]+: )+")
 _STAYS = (Qt.FocusReason.PopupFocusReason,)
 """Reasons to lose the focus that end no entry: a menu or list of the field's own."""
 _HISTORY = (QKeySequence.StandardKey.Undo, QKeySequence.StandardKey.Redo)
@@ -123,6 +123,13 @@ class CodeField(TextField):
         if self.text() != tidy:
             self.setText(tidy)
         super().enter()
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Let Escape close the list of offers first; the completer sends its keys here before it takes them."""
+        if event.key() == Qt.Key.Key_Escape and self.completer().popup().isVisible():
+            event.ignore()
+        else:
+            super().keyPressEvent(event)
 
     def _on_chosen(self, code: str) -> None:
         self.setText(code)

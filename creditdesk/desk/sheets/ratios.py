@@ -79,7 +79,8 @@ class RatiosTable(QTableView):
         chosen = self.selectedIndexes()
         rows, columns = sorted({index.row() for index in chosen}), sorted({index.column() for index in chosen})
         if 0 in columns and len(columns) == self._model.columnCount():
-            return self._model.spreadsheet(range(rows[0], rows[-1] + 1))
+            heading = rows[0] > 0 and not self._model.rows[rows[0] - 1].key  # which cannot be chosen itself
+            return self._model.spreadsheet(range(rows[0] - heading, rows[-1] + 1))
         return "\n".join(
             "\t".join(self._model.plain(self._model.index(row, column)) for column in columns) for row in rows
         )

@@ -142,4 +142,4 @@ def as_spreadsheet(facts: RatioFacts, rows: Sequence[RatioRow], period: int) -> 
 def plain_cell(facts: RatioFacts, key: str, period: int) -> str:
     """Write one value as a bare number, or why there is none."""
     value = facts.value(key, period)
-    return facts.text(key, period, narrow=False) if value is None else f"{value:.15g}"
+    return facts.text(key, period, narrow=False) if value is None else repr(value)
