@@ -80,7 +80,7 @@ def seconds_to_paint(script: str, drafts: Path, *arguments: Path) -> float:
 
 
 @pytest.mark.long
-@pytest.mark.xfail(reason="the aim is not met: about five times when last measured", strict=False)
+@pytest.mark.xfail(reason="the aim is not met: five times and more when last measured", strict=False)
 def test_start_up_against_an_empty_window(benchmark: BenchmarkFixture, tmp_path: Path) -> None:
     benchmark.pedantic(seconds_to_paint, (OURS, tmp_path, SOUND), rounds=1)
     if benchmark.enabled:
