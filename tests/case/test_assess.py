@@ -240,6 +240,8 @@ def test_the_assessment_date_is_the_period_s_end_where_none_is_given() -> None:
     assert one.assessed_on == one.period == date(2025, 12, 31)
     assert findings_of(one, "assessment_date") == [Severity.NOTE]
     assert (one.pd_runs_from, one.pd_runs_to) == (date(2025, 12, 31), date(2026, 12, 31))
+    earlier = assess(case_of(assessment=Assessment(None, date(2024, 12, 31))), HOUSE)
+    assert earlier.assessed_on == earlier.period == date(2024, 12, 31)
 
 
 def test_projections_change_neither_pd_nor_grade_nor_prior_nor_curve() -> None:
@@ -251,11 +253,21 @@ def test_projections_change_neither_pd_nor_grade_nor_prior_nor_curve() -> None:
     assert (one.period, one.period_index) == (date(2025, 12, 31), 1)
     for name in ("score", "pd_final", "pd_interval", "grade", "factors", "past", "last_year", "reasons"):
         assert getattr(one, name) == getattr(plain, name), name
-    assert one.curve is not None
-    assert plain.curve is not None
-    assert np.array_equal(one.curve.scores, plain.curve.scores)
     with pytest.raises(UserError, match="a projection"):
         assess(with_period(case_of(figures, periods=(year(2024), year(2025), ahead)), ahead.ends), HOUSE)
+
+
+def test_a_projection_does_not_stretch_the_curve() -> None:
+    ahead = year(2026, basis=Basis.PROJECTION)
+    figures = {key: (amount, amount, amount) for key, amount in CLEAN.items()} | {"revenue": (24e3, 24e3, 24e6)}
+    plain = assess(case_of(), HOUSE, "three-ratio-1968").curve  # a model without caps
+    one = assess(case_of(figures, periods=(year(2024), year(2025), ahead)), HOUSE, "three-ratio-1968").curve
+    stretched = assess(case_of(CLEAN | {"revenue": (24e6, 24e3)}), HOUSE, "three-ratio-1968").curve
+    assert one is not None
+    assert plain is not None
+    assert stretched is not None
+    assert np.array_equal(one.scores, plain.scores)
+    assert stretched.scores[0] < plain.scores[0] - 1_000  # a past year does
 
 
 def test_a_case_of_projections_only_is_refused() -> None:

@@ -122,6 +122,9 @@ def test_rules_see_the_assessed_period_alone() -> None:
     periods = (year(2024, going_concern_doubt=True, basis=Basis.UNAUDITED), year(2025))
     one = assess(case_of(periods=periods), HOUSE)
     assert one.grade.final == one.grade.model
+    staffed = case_of(CLEAN | {"employees": (900.0, 90.0)})
+    assert assess(staffed, with_rules(rule("employees > 500", Effect.CAP, "9"))).grade.final == "4"
+    assert assess(staffed, with_rules(rule("employees < 500", Effect.CAP, "9"))).grade.final == "9"
     house = with_rules(rule('opinion == "none" and basis == "audited" and revenue_growth > 0.5', Effect.CAP, "9"))
     assert assess(case_of(CLEAN | {"revenue": (10_000.0, 24_000.0)}), house).grade.final == "9"
 

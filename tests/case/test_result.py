@@ -11,6 +11,7 @@ from creditdesk.case.assess import assess
 from creditdesk.case.document import Case
 from creditdesk.case.result import result, result_bytes
 from creditdesk.house.book import with_model
+from creditdesk.model.spec import Calibration
 from tests.borrowers import STRETCHED, case_of, demo, generated, shipped_house, with_spec
 from tests.statements.books import CLEAN, without, year
 
@@ -101,6 +102,24 @@ def test_numbers_are_the_standing_s_own_to_the_last_bit() -> None:
                 reason = standing.ratios.reason(key, period).key
                 expected = standing.ratios.value(key, period) if reason == "value" else reason
                 assert (cell["missing"] if isinstance(cell, dict) else cell) == expected
+
+
+def test_each_step_of_the_chain_stands_under_its_own_key() -> None:
+    """With a calibration, a floor and a rule in force no two of them are equal."""
+    settings = msgspec.structs.replace(HOUSE.settings, pd_floor=0.02)
+    house = replace(with_spec(HOUSE, calibration=Calibration("intercept_and_slope", intercept=-1.0)), settings=settings)
+    standing = assess(case_of(country="DE"), house)
+    found = json.loads(result_bytes(standing))
+    names = ("pd_model", "pd_calibrated", "pd", "pd_final")
+    assert len({found[name] for name in names}) == len(names)
+    assert found["pd_judged"] == found["pd_calibrated"]
+    assert [found[name] for name in names] == [getattr(standing, name) for name in names]
+    assert found["grade"] == {
+        "model": "6",
+        "judged": "6",
+        "final": "8",
+        "reasons": list(standing.grade.reasons),
+    }
 
 
 def test_a_ratio_without_a_value_says_why_and_what_it_needs() -> None:

@@ -4,6 +4,7 @@ import json
 import re
 from collections.abc import Callable
 from dataclasses import replace
+from io import BytesIO
 from pathlib import Path
 from typing import Any
 
@@ -11,12 +12,14 @@ import msgspec
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
 
 from creditdesk.base.errors import UserError
 from creditdesk.case.assess import assess
 from creditdesk.case.exchange import write_case
 from creditdesk.case.result import result_bytes
 from creditdesk.house.book import HouseBook, Signer
+from creditdesk.memo.attach import attachments
 from creditdesk.memo.build import unsigned_memo
 from creditdesk.memo.decision import Decision
 from creditdesk.memo.identity import Identity
@@ -164,10 +167,25 @@ def test_nothing_is_run_from_a_file_that_is_not_as_signed(signed: bytes) -> None
     assert first_line(answer).startswith("NOT VALID")
 
 
-def test_what_was_appended_is_told_and_the_preparer_s_attachments_are_run(signed: bytes) -> None:
-    answer = verify_bytes(signed + b"%", HOUSE)
-    assert not answer.valid
-    assert first_line(answer).startswith("NOT VALID")
+def with_another_result_appended(memo: bytes) -> bytes:
+    """Append a revision in which the attached result is another."""
+    writer = IncrementalPdfFileWriter(BytesIO(memo))
+    specification = next(one for one in writer.root["/AF"] if one.get_object()["/UF"] == "result.json")
+    stream = specification.get_object()["/EF"]["/F"]
+    stream._encoded_data, stream._data = None, b"{}"
+    writer.update_container(stream)
+    target = BytesIO()
+    writer.write(target)
+    return target.getvalue()
+
+
+def test_only_what_the_preparer_signed_is_run_whatever_was_appended(signed: bytes) -> None:
+    appended = with_another_result_appended(signed)
+    assert attachments(appended)["result.json"] == b"{}"
+    answer = verify_bytes(appended, HOUSE)
+    assert (answer.signatures.intact, answer.signatures.complete, answer.valid) == (True, False, False)
+    assert answer.rerun.answer == "equal"
+    assert first_line(answer) == "NOT VALID: this is not the memo as signed."
 
 
 # ------------------------------------------------------------------------------------------------------ the signers
