@@ -6,7 +6,7 @@ from typing import Generic, TypeVar
 
 from PySide6.QtCore import QEvent, QModelIndex, QPersistentModelIndex, QStringListModel, Qt, Signal
 from PySide6.QtGui import QFocusEvent, QKeyEvent, QKeySequence, QWheelEvent
-from PySide6.QtWidgets import QComboBox, QCompleter, QLineEdit, QPlainTextEdit, QWidget
+from PySide6.QtWidgets import QComboBox, QCompleter, QLineEdit, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.desk.frame import label
@@ -126,7 +126,8 @@ class CodeField(TextField):
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
         """Let Escape close the list of offers first; the completer sends its keys here before it takes them."""
-        if event.key() == Qt.Key.Key_Escape and self.completer().popup().isVisible():
+        offers = self.completer().popup()
+        if event.key() == Qt.Key.Key_Escape and offers is not None and offers.isVisible():
             event.ignore()
         else:
             super().keyPressEvent(event)
@@ -217,41 +218,6 @@ class ChoiceField(QComboBox):
             self.restored.emit()
         else:
             self.entered.emit(value)
-
-
-class TextBlock(QPlainTextEdit):
-    """Edit one text block; the edit is handed on when the cursor leaves it, Escape brings the recorded text back."""
-
-    left = Signal(str)
-
-    def __init__(self, title: str, hint: str) -> None:
-        super().__init__()
-        self._recorded, self._shown = "", ""
-        self.setPlaceholderText(hint)
-        self.setAccessibleName(title)
-        self.setTabChangesFocus(True)
-
-    def show_text(self, text: str) -> None:
-        """Show the recorded text; what is being typed stays unless the recorded text itself has changed."""
-        if text == self._recorded:
-            return
-        self._recorded = text
-        if self.toPlainText() != text:
-            self.setPlainText(text)
-        self._shown = self.toPlainText()
-
-    def focusOutEvent(self, event: QFocusEvent) -> None:
-        """Hand on a text that was changed."""
-        super().focusOutEvent(event)
-        if event.reason() not in _STAYS and self.toPlainText() != self._shown:
-            self.left.emit(self.toPlainText())
-
-    def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Take Escape as the way back to the recorded text."""
-        if event.key() == Qt.Key.Key_Escape and self.toPlainText() != self._shown:
-            self.setPlainText(self._shown)
-        else:
-            super().keyPressEvent(event)
 
 
 Field = TypeVar("Field", bound=TextField | ChoiceField)

@@ -7,7 +7,7 @@ from PySide6.QtWidgets import QApplication, QLineEdit, QVBoxLayout, QWidget
 from pytestqt.qtbot import QtBot
 
 from creditdesk.base.errors import UserError
-from creditdesk.desk.fields import ChoiceField, CodeField, Line, TextBlock, TextField, fault_words
+from creditdesk.desk.fields import ChoiceField, CodeField, Line, TextField, fault_words
 
 CODES = [("DE", "Germany"), ("GB", "United Kingdom"), ("NE", "Niger")]
 
@@ -173,30 +173,6 @@ def test_a_refused_choice_goes_back_and_says_why(qtbot: QtBot, shown: Callable[[
     assert paper.line.words.text().startswith("▲ Found")
     field.choose(2)
     assert (field.currentText(), paper.line.words.text()) == ("two", "in order")
-
-
-def test_a_text_is_handed_on_when_it_is_left_and_only_where_it_was_changed(qtbot: QtBot) -> None:
-    block, other = TextBlock("Request", "hint"), QLineEdit()
-    paper = QWidget()
-    box = QVBoxLayout(paper)
-    box.addWidget(block)
-    box.addWidget(other)
-    qtbot.addWidget(paper)
-    taken: list[str] = []
-    block.left.connect(taken.append)
-    block.show_text("first\r\nsecond")  # the editor keeps other line ends than the case
-    paper.show()
-    block.setFocus()
-    qtbot.waitUntil(block.hasFocus)
-    qtbot.keyClick(block, Qt.Key.Key_Tab)
-    assert taken == []
-    block.setFocus()
-    qtbot.keyClicks(block, "x")
-    qtbot.keyClick(block, Qt.Key.Key_Escape)
-    assert block.toPlainText() == "first\nsecond"
-    qtbot.keyClicks(block, "x")
-    other.setFocus()
-    assert taken == ["xfirst\nsecond"]
 
 
 @pytest.mark.parametrize(

@@ -8,9 +8,10 @@ from PySide6.QtWidgets import QVBoxLayout, QWidget
 from creditdesk.base.errors import UserError
 from creditdesk.case.commands import SetText
 from creditdesk.case.document import TEXT_BLOCKS, Case
-from creditdesk.desk.fields import TextBlock, fault_words
+from creditdesk.desk.fields import fault_words
 from creditdesk.desk.frame import label
 from creditdesk.desk.panels.form import Do
+from creditdesk.desk.textblock import TextBlock
 
 TITLES: Mapping[str, str] = {
     "request": "Request",

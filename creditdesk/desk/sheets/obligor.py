@@ -82,6 +82,8 @@ class ObligorSheet(Sheet):
     def stop(self) -> None:
         """Hand on what is still being typed, because the window closes."""
         self.view.setFocus()
+        for block in self.texts.blocks.values():
+            block.hand_on()
 
     def _show(self) -> None:
         if self._shown is None or not self._stale:
