@@ -144,7 +144,9 @@ def pasted_text(text: str, target: Target, facts: Facts, reading: Reading) -> Co
     grid = _without_labels(grid)
     grid, periods = _columns(grid, facts.heads, target.period)
     rows = target.rows
-    if len(grid) in (target.chosen, len(rows)) and len(grid) > 1:
+    if len(grid) > 1 and len(grid) not in (target.chosen, len(rows)) and not _holds_amounts(grid[0]):
+        grid = grid[1:]
+    if len(grid) > 1 and len(grid) in (target.chosen, len(rows)):
         grid = [cells if row.editable else [""] * len(cells) for row, cells in zip(rows, grid, strict=False)]
     else:
         rows = [row for row in rows if row.kind is RowKind.LINE]
@@ -183,7 +185,13 @@ def _columns(grid: Grid, heads: Sequence[str], first: int) -> tuple[Grid, Sequen
     if _are_years(names):
         found, here = ", ".join(names), ", ".join(heads)
         raise UserError("block", f"Pasted block: its first row names {found}; the periods here are {here}.")
-    return (grid, onwards) if any(_is_amount(name) for name in names if name) else (grid[1:], onwards)
+    return grid, onwards
+
+
+def _holds_amounts(cells: Sequence[str]) -> bool:
+    """Say whether a row holds an amount, or nothing at all, rather than words alone."""
+    words = [cell.strip() for cell in cells if cell.strip()]
+    return not words or any(_is_amount(word) for word in words)
 
 
 def _are_years(names: Sequence[str]) -> bool:
@@ -215,5 +223,9 @@ def _figure(line: str, period: int, amount: Amount) -> Figure:
 
 def _refuse_size(found: tuple[int, int], most: tuple[int, int]) -> None:
     if found[0] > most[0] or found[1] > most[1]:
-        size = f"{found[0]} rows by {found[1]} columns"
+        size = f"{_counted(found[0], 'row')} by {_counted(found[1], 'column')}"
         raise UserError("block", f"Copied block: found {size}; from this cell on {most[0]} by {most[1]} fit.")
+
+
+def _counted(number: int, word: str) -> str:
+    return f"{number} {word}" if number == 1 else f"{number} {word}s"

@@ -8,14 +8,14 @@ from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.desk.tables.cells import Look
 from creditdesk.desk.tables.marks import DIFFERS, NOTED, paint_blank, paint_sum_line
 
-_SAMPLE, _GAP = 17, 16
+_SAMPLE, _GAP = 17, 13
 _SMALLER = 0.86
 ITEMS = (
     ("dot", "not disclosed"),
     ("0", "nil"),
     ("–", "proven nil"),
     ("ring", "taken as nil"),
-    ("italic", "another line stands for it"),
+    ("italic", "from another line"),
     ("broken", "not divided"),
     (DIFFERS, "printed otherwise"),
     ("under", "adjusted"),

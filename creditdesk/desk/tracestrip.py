@@ -3,7 +3,7 @@
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from PySide6.QtCore import QEvent, QObject, Qt, Signal
+from PySide6.QtCore import QEvent, QObject, QSize, Qt, Signal
 from PySide6.QtGui import QColor, QKeyEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
@@ -22,7 +22,9 @@ from creditdesk.desk.tables.rows import Row, RowKind
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.trace import trace_ratio, users_of
 
-_ROWS, _ROW_HEIGHT = 3, 20
+_ROWS, _MORE_ROWS, _ROW_HEIGHT = 3, 6, 19
+_TALL = 800
+"""From this height of the sheet on the strip shows more rows."""
 _FACTOR = "◆"
 _HINT = "Choose a cell to see where it comes from and what uses it."
 
@@ -86,6 +88,10 @@ class TraceStrip(QWidget):
         self._palette = palette
         self._dye()
 
+    def fit(self, height: int) -> None:
+        """Take the rows that a sheet of this height can spare."""
+        self.uses.setFixedHeight((_MORE_ROWS if height >= _TALL else _ROWS) * _ROW_HEIGHT)
+
     def show_nothing(self) -> None:
         """Say what the strip is for."""
         self.title.setText("")
@@ -108,6 +114,7 @@ class TraceStrip(QWidget):
             item.setData(0, Qt.ItemDataRole.UserRole, use.place)
             item.setTextAlignment(2, Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
             item.setToolTip(3, use.formula)
+            item.setSizeHint(0, QSize(0, _ROW_HEIGHT))
             items.append(item)
         self.uses.addTopLevelItems(items)
         self._dye()
@@ -160,11 +167,11 @@ def _uses() -> QTreeWidget:
     tree.setHeaderHidden(True)
     tree.setRootIsDecorated(False)
     tree.setUniformRowHeights(True)
-    tree.setFixedHeight(_ROWS * _ROW_HEIGHT + 4)
+    tree.setIndentation(0)
     tree.setSelectionMode(QAbstractItemView.SelectionMode.SingleSelection)
     tree.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
     tree.setTabKeyNavigation(False)
     tree.viewport().setCursor(Qt.CursorShape.PointingHandCursor)
-    for column, width in enumerate((20, 210, 74)):
+    for column, width in enumerate((20, 215, 74)):
         tree.setColumnWidth(column, width)
     return tree

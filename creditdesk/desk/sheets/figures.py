@@ -5,6 +5,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 from PySide6.QtCore import QModelIndex, Qt
+from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QAbstractItemView, QHBoxLayout, QMenu, QPushButton, QVBoxLayout
 
 from creditdesk.base.palette import Palette
@@ -101,7 +102,7 @@ class FiguresSheet(Sheet):
             self._go_to_cell(found["line"], period)
 
     def entries(self) -> Sequence[Entry | None]:
-        """Return what can be done here; of keys without a modifier and of copy and paste only the name is given."""
+        """Return what can be done here; keys that other sheets or fields have too stand in the title, unbound."""
         blocks, keys = self.blocks, iter(("Ctrl+D", "Ctrl+Shift+N", "Ctrl+Shift+B", None, *_MOVES, None))
         of_periods = [
             None if choice is None else (choice[0], next(keys), self._here(choice[1]))
@@ -116,7 +117,7 @@ class FiguresSheet(Sheet):
             None,
             *of_periods,
             None,
-            ("Only &lines with figures", "Ctrl+L", self._here(self.only_figures.toggle)),
+            ("Only &lines with figures (Ctrl+L)", None, self._here(self.only_figures.toggle)),
             ("Every &total as printed", "Ctrl+Shift+T", self._here(self._toggle_printed)),
             ("F&old or unfold all", "Ctrl+Shift+F", self._here(self._toggle_folds)),
             ("What &uses the cell (F6)", None, self._here(self.strip.setFocus)),
@@ -135,6 +136,11 @@ class FiguresSheet(Sheet):
                 do()
 
         return run
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Share the new height between table and strip."""
+        super().resizeEvent(event)
+        self.strip.fit(self.height())
 
     # Places
 
@@ -254,6 +260,7 @@ class FiguresSheet(Sheet):
         self.periods.went_to.connect(self._on_period)
         strip.jump_asked.connect(self.jump_asked)
         strip.left.connect(table.setFocus)
+        self.only_figures.setShortcut("Ctrl+L")  # on the button: there it counts only while this sheet is shown
         self.only_figures.toggled.connect(self._on_filter)
         for source in (self.blocks, self.periods):
             source.fault.connect(self.fault)

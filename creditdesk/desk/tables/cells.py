@@ -237,16 +237,16 @@ class Facts:
         """Word what was received and what an adjustment made of it."""
         if row.kind not in (RowKind.LINE, RowKind.SUBTOTAL):
             return ""
-        moved = self.adjustment(row.key, period)
+        moved, entered = self.adjustment(row.key, period), self.entered(row.key, period)
         if moved is None:
-            entered = self.entered(row.key, period)
             said = row.kind is RowKind.LINE and np.isfinite(entered)
             return f"received {self.amount_text(entered)}, no adjustment" if said else ""
-        received, adjusted = (self.amount_text(amount) or "blank" for amount in moved)
-        added = np.nan_to_num(moved[1]) - np.nan_to_num(moved[0])
+        received, adjusted = moved
+        before = self.amount_text(entered if row.kind is RowKind.LINE else received) or "blank"
+        added = self.amount_text(float(np.nan_to_num(adjusted) - np.nan_to_num(received)))
         reasons = "; ".join(self._reasons(row.key, period))
         why = f" ({reasons})" if reasons else ""
-        return f"received {received}, adjustment {self.amount_text(added)}{why}, adjusted {adjusted}"
+        return f"received {before}, adjustment {added}{why}, adjusted {self.amount_text(adjusted) or 'blank'}"
 
     def _reasons(self, key: str, period: int) -> list[str]:
         ends = self.periods[period].ends

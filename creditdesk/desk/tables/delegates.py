@@ -124,8 +124,7 @@ class FiguresDelegate(QStyledItemDelegate):
         row, cell = what
         if option.state & QStyle.StateFlag.State_Selected:
             painter.fillRect(rect, QColor(self.palette.selection))
-        painter.setPen(QPen(QColor(self.palette.rule), 1.0))
-        painter.drawLine(QPointF(rect.left(), rect.bottom() - 0.5), QPointF(rect.right(), rect.bottom() - 0.5))
+        painter.fillRect(QRectF(rect.left(), rect.bottom() - 1, rect.width(), 1), QColor(self.palette.rule))
         if row.kind is RowKind.SUBTOTAL:
             look = cell.look if cell is not None else Look.AMOUNT
             paint_sum_line(painter, rect.topLeft(), rect.topRight(), look, self.palette)
@@ -155,9 +154,7 @@ class FiguresDelegate(QStyledItemDelegate):
             self._write(painter, area.adjusted(taken, 0, 0, 0), label, Hand.PLAIN, self.palette.second_ink, left=True)
 
     def _paint_amount(self, painter: QPainter, rect: QRectF, row: Row, cell: Cell) -> None:
-        hand = Hand.ITALIC if cell.look in _ITALIC else Hand.BOLD if row.kind is RowKind.SUBTOTAL else Hand.PLAIN
-        if row.kind in (RowKind.NOT_DIVIDED, RowKind.PRINTED):
-            hand = Hand.SMALL
+        hand = _hand(row, cell)
         ink = self.palette.second_ink if cell.look in _SECOND_INK else self.palette.ink
         text = f"{DIFFERS} {cell.text}" if cell.look is Look.OTHERWISE else cell.text
         end = rect.right() - RIGHT_PADDING
@@ -208,6 +205,15 @@ class FiguresDelegate(QStyledItemDelegate):
             painter.setBrush(QColor(self.palette.ink))
             painter.setPen(Qt.PenStyle.NoPen)
             painter.drawEllipse(points[-1], 2.0, 2.0)
+
+
+def _hand(row: Row, cell: Cell) -> Hand:
+    """Return the font of an amount: sums bold, what was not received itself in italics."""
+    if row.kind in (RowKind.NOT_DIVIDED, RowKind.PRINTED):
+        return Hand.SMALL
+    if cell.look in _ITALIC:
+        return Hand.ITALIC
+    return Hand.BOLD if row.kind is RowKind.SUBTOTAL and cell.look is not Look.NOT_DISCLOSED else Hand.PLAIN
 
 
 def _fonts(base: QFont) -> dict[Hand, QFont]:

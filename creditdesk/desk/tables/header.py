@@ -9,7 +9,7 @@ from creditdesk.desk.tables.delegates import LABEL_INDENT, MARK_PLACE, RIGHT_PAD
 from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.marks import paint_severity
 
-_HEIGHT = 42
+_HEIGHT, _NARROWEST = 42, 16
 _SMALLER = 0.86
 
 
@@ -30,6 +30,7 @@ class PeriodHeader(QHeaderView):
         self.colours: Palette = LIGHT
         self._model = model
         self._at = 1
+        self.setMinimumSectionSize(_NARROWEST)
         self.setSectionsClickable(True)
         self.setHighlightSections(False)
         self.setAccessibleName("Periods")

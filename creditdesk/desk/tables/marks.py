@@ -1,6 +1,6 @@
 """The small marks of the figures table, painted alike in cells and in the legend below them."""
 
-from PySide6.QtCore import QPointF, QRectF, Qt
+from PySide6.QtCore import QPointF, QRectF, QSizeF, Qt
 from PySide6.QtGui import QBrush, QColor, QPainter, QPen, QPolygonF
 
 from creditdesk.base.findings import Severity
@@ -39,10 +39,12 @@ def paint_blank(painter: QPainter, centre: QPointF, look: Look, palette: Palette
 
 def paint_sum_line(painter: QPainter, left: QPointF, right: QPointF, look: Look, palette: Palette) -> None:
     """Paint the line above a sum, broken where the disclosed parts do not reach it."""
-    pen = QPen(QColor(palette.second_ink), 0.8)
-    if look is Look.UNREACHED:
-        pen.setWidthF(1.2)
-        pen.setDashPattern([3, 3])
+    colour = QColor(palette.second_ink)
+    if look is not Look.UNREACHED:
+        painter.fillRect(QRectF(left, QSizeF(right.x() - left.x(), 1)), colour)
+        return
+    pen = QPen(colour, 1.2)
+    pen.setDashPattern([3, 3])
     painter.setPen(pen)
     painter.drawLine(left, right)
 

@@ -2,9 +2,9 @@
 
 from collections.abc import Callable
 
-from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRect, Qt, Signal
+from PySide6.QtCore import QEvent, QItemSelectionModel, QModelIndex, QPersistentModelIndex, QRect, Qt, Signal
 from PySide6.QtGui import QFont, QFontMetricsF, QKeyEvent, QKeySequence, QResizeEvent
-from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView
+from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView, QWidget
 
 from creditdesk.base.palette import Palette
 from creditdesk.desk.tables.delegates import FiguresDelegate
@@ -25,6 +25,7 @@ _STEPS: dict[int, tuple[int, int]] = {
 }
 _FOLDING: dict[int, bool] = {Qt.Key.Key_Left: True, Qt.Key.Key_Right: False}
 _ARROWS = {Action.MoveUp: (-1, 0), Action.MoveDown: (1, 0), Action.MoveLeft: (0, -1), Action.MoveRight: (0, 1)}
+SHIFT_CONTROL = Qt.KeyboardModifier.ShiftModifier | Qt.KeyboardModifier.ControlModifier
 _ENTER = (Qt.Key.Key_Return, Qt.Key.Key_Enter)
 
 
@@ -173,6 +174,14 @@ class FiguresTable(QTableView):
             return self.figures.index(row, column)
         return super().moveCursor(action, modifiers)
 
+    def selectionCommand(self, index: Index, event: QEvent | None = None) -> QItemSelectionModel.SelectionFlag:
+        """Let Shift widen the block also where Ctrl carries the cursor far."""
+        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress:
+            both = SHIFT_CONTROL & event.modifiers() == SHIFT_CONTROL
+            if both and event.key() in (*_STEPS, Qt.Key.Key_Home, Qt.Key.Key_End):
+                return QItemSelectionModel.SelectionFlag.SelectCurrent
+        return super().selectionCommand(index, event)
+
     def _end(self, *, home: bool, whole: bool) -> QModelIndex:
         model, current = self.figures, self.currentIndex()
         if whole:
@@ -273,6 +282,7 @@ class FrozenLabels(QTableView):
 def _dress(view: QTableView) -> None:
     """Give a view the manners of the figures table."""
     view.setAccessibleName("Figures")
+    view.setCornerWidget(QWidget(view))
     view.verticalHeader().hide()
     view.verticalHeader().setSectionResizeMode(QHeaderView.ResizeMode.Fixed)
     view.verticalHeader().setDefaultSectionSize(_ROW_HEIGHT)

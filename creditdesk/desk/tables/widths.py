@@ -2,9 +2,9 @@
 
 from dataclasses import dataclass
 
-_LABEL = (190, 460)
-_PERIOD = (58, 92, 120)
-_CHANGE, _TREND = (66, 84), (52, 74, 130)
+_LABEL = (215, 500)
+_PERIOD = (58, 92, 150)
+_CHANGE, _TREND = (66, 84), (52, 74, 180)
 _MARK = 24
 _BESIDE_AMOUNT, _BESIDE_HEAD = 30, 20
 

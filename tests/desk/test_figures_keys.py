@@ -1,0 +1,279 @@
+"""The keys and the mouse on the figures, as in a spreadsheet."""
+
+import pytest
+from PySide6.QtCore import QPoint, Qt
+from PySide6.QtWidgets import QApplication, QLineEdit, QTableView
+from pytestqt.qtbot import QtBot
+
+from creditdesk.case.document import Case
+from creditdesk.desk.tables.rows import RowKind
+from creditdesk.house.book import HouseBook
+from tests.desk.figuresheets import CONTROL, SHIFT, Hands, empty, filleted, long_run, open_sheet
+
+Key = Qt.Key
+
+
+@pytest.fixture
+def hands(qtbot: QtBot, house: HouseBook, sound_case: Case) -> Hands:
+    return open_sheet(qtbot, house, sound_case)
+
+
+def test_enter_takes_what_was_typed_and_goes_down(hands: Hands) -> None:
+    hands.at("cash", 1)
+    hands.type("1200+340-15")
+    assert hands.case.figures["cash"][1] == 1_525
+    assert hands.case.typed["cash"][1] == "1200+340-15"
+    assert hands.current == ("trade_receivables", 1)
+    hands.type("7", Key.Key_Return, SHIFT)
+    assert hands.current == ("cash", 1)
+
+
+def test_tab_goes_right_and_enter_returns_below_the_first_cell(hands: Hands) -> None:
+    hands.at("cash", 0)
+    for text in ("1", "2"):
+        hands.type(text, Key.Key_Tab)
+    hands.type("3")
+    assert hands.case.figures["cash"] == (1, 2, 3)
+    assert hands.current == ("trade_receivables", 0)
+    hands.key(Key.Key_Tab, times=3)
+    assert hands.current == ("inventories", 0)
+    hands.key(Key.Key_Backtab, SHIFT)
+    assert hands.current == ("trade_receivables", 2)
+
+
+def test_arrows_leave_a_cell_typed_over_but_not_one_opened_by_f2(hands: Hands) -> None:
+    hands.at("cash", 1)
+    hands.type("5", Key.Key_Left)
+    assert (hands.case.figures["cash"][1], hands.current) == (5, ("cash", 0))
+    hands.key(Key.Key_F2)
+    editor = hands.sheet.table.findChild(QLineEdit)
+    assert editor is not None
+    assert editor.text() == "1180"
+    hands.qtbot.keyClick(editor, Key.Key_Left)
+    assert hands.sheet.table.state() == QTableView.State.EditingState
+    hands.qtbot.keyClick(editor, Key.Key_Escape)
+    hands.qtbot.waitUntil(lambda: hands.sheet.table.state() != QTableView.State.EditingState)
+    assert hands.session.undo_stack.count() == 1
+
+
+def test_what_is_refused_stays_open_with_its_text(hands: Hands, sound_case: Case) -> None:
+    hands.at("cash", 1)
+    editor = hands.begin("1200+34x")
+    hands.qtbot.keyClick(editor, Key.Key_Return)
+    assert hands.case == sound_case
+    assert "1200+34x" in hands.faults[0]
+    assert editor.text() == editor.selectedText() == "1200+34x"
+    assert hands.current == ("cash", 1)
+
+
+def test_leaving_a_cell_as_it_was_is_no_edit(hands: Hands) -> None:
+    hands.at("revenue", 2)
+    hands.key(Key.Key_F2)
+    editor = hands.sheet.table.findChild(QLineEdit)
+    assert editor is not None
+    assert editor.text() == "41250+2650"
+    hands.qtbot.keyClick(editor, Key.Key_Return)
+    assert hands.session.undo_stack.count() == 0
+
+
+def test_home_and_end_go_along_the_row_and_with_ctrl_to_the_corners(hands: Hands) -> None:
+    hands.at("inventories", 1)
+    hands.key(Key.Key_End)
+    assert hands.current == ("inventories", 2)
+    hands.key(Key.Key_Home)
+    assert hands.current == ("inventories", 0)
+    hands.key(Key.Key_Home)
+    assert hands.current == ("inventories", -1)  # the label
+    hands.key(Key.Key_End, CONTROL)
+    assert hands.sheet.table.currentIndex().row() == hands.sheet.model.rowCount() - 1
+    hands.key(Key.Key_Home, CONTROL)
+    assert hands.current == ("assets", -1)
+
+
+def test_ctrl_with_an_arrow_goes_to_the_edge_of_what_is_filled(qtbot: QtBot, house: HouseBook) -> None:
+    hands = open_sheet(qtbot, house, filleted())
+    hands.at("cash", 0)
+    hands.key(Key.Key_Down, CONTROL)
+    assert hands.current == ("inventories", 0)  # over the receivables, which are blank
+    hands.key(Key.Key_Down, CONTROL)
+    assert hands.current_row.kind is RowKind.SUBTOTAL
+    assert hands.current == ("total_assets", 0)  # the heading below is blank
+    hands.key(Key.Key_Up, CONTROL)
+    assert hands.current == ("inventories", 0)
+    hands.key(Key.Key_Right, CONTROL)
+    assert hands.current == ("inventories", 1)
+    hands.key(Key.Key_Left, CONTROL)
+    assert hands.current == ("inventories", 0)
+    hands.key(Key.Key_Up, CONTROL | SHIFT)
+    assert len(hands.sheet.table.selectedIndexes()) == 3
+
+
+def test_in_an_empty_table_ctrl_with_an_arrow_goes_to_its_end(qtbot: QtBot, house: HouseBook) -> None:
+    hands = open_sheet(qtbot, house, empty())
+    hands.at("cash", 0)
+    hands.key(Key.Key_Right, CONTROL)
+    assert hands.current == ("cash", 1)
+
+
+def test_a_heading_folds_by_keys_and_unfolds(hands: Hands) -> None:
+    hands.key(Key.Key_Home, CONTROL)
+    before = hands.sheet.model.rowCount()
+    hands.key(Key.Key_Left)
+    assert hands.sheet.model.rowCount() < before
+    assert hands.sheet.model.rows[1].key == "liabilities"
+    folded = hands.sheet.model.index(0, 3)
+    assert folded.data() == "28\u202f700"  # the total stands for what is hidden
+    hands.key(Key.Key_Right)
+    assert hands.sheet.model.rowCount() == before
+    hands.key(Key.Key_Right)
+    assert hands.current == ("assets", 0)  # nothing left to unfold: it walks on
+    hands.key(Key.Key_Space)
+    assert hands.sheet.model.rows[1].key == "liabilities"
+    hands.key(Key.Key_Return)
+    assert hands.sheet.model.rowCount() == before
+
+
+def test_a_click_on_a_heading_folds_and_edits_leave_it_folded(hands: Hands) -> None:
+    table, model = hands.sheet.table, hands.sheet.model
+    place = table.visualRect(model.index(0, 0)).center()
+    hands.qtbot.mouseClick(table.viewport(), Qt.MouseButton.LeftButton, pos=place)
+    assert model.rows[1].key == "liabilities"
+    hands.at("short_term_debt", 2)
+    hands.type("1700")
+    assert model.rows[1].key == "liabilities"
+    place = table.visualRect(model.index(0, 0)).center()
+    hands.qtbot.mouseClick(table.viewport(), Qt.MouseButton.LeftButton, pos=place)
+    assert model.rows[1].key == "cash"
+
+
+def test_all_fold_and_unfold_together(hands: Hands) -> None:
+    before = hands.sheet.model.rows
+    hands.sheet._toggle_folds()
+    assert all(row.kind is RowKind.HEADING for row in hands.sheet.model.rows)
+    hands.sheet._toggle_folds()
+    assert hands.sheet.model.rows == before
+
+
+def test_a_jump_opens_what_hides_the_cell(hands: Hands) -> None:
+    hands.sheet._toggle_folds()
+    hands.sheet.go_to("figures.inventories[2024-12-31]")
+    assert hands.current == ("inventories", 1)
+    hands.sheet.go_to("figures.contract_assets[2025-12-31]")  # proven nil: not among the lines with figures
+    assert hands.current == ("contract_assets", 2)
+    assert not hands.sheet.only_figures.isChecked()
+    hands.sheet.go_to("figures.inventories[1999-12-31]")
+    assert hands.current == ("contract_assets", 2)
+
+
+def test_the_finding_of_a_folded_row_marks_its_heading(qtbot: QtBot, house: HouseBook) -> None:
+    hands = open_sheet(qtbot, house, filleted())
+    model = hands.sheet.model
+    marks = {row.key: model.mark(row) for row in model.rows}
+    assert marks["current_assets"] is not None
+    assert marks["assets"] is None
+    hands.sheet._toggle_folds()
+    assert {row.key: model.mark(row) for row in model.rows}["assets"] == marks["current_assets"]
+
+
+def test_undo_brings_the_cursor_back_to_where_it_was(hands: Hands) -> None:
+    hands.at("cash", 1)
+    hands.type("5")
+    hands.at("revenue", 0)
+    hands.session.undo_stack.undo()
+    assert hands.current == ("cash", 1)
+    hands.session.undo_stack.redo()
+    assert hands.current == ("revenue", 0)
+
+
+def test_rows_that_come_and_go_leave_the_cursor_on_its_line(hands: Hands) -> None:
+    hands.at("trade_payables", 2)
+    hands.sheet.only_figures.setChecked(False)
+    assert hands.current == ("trade_payables", 2)
+    hands.sheet.only_figures.setChecked(True)
+    assert hands.current == ("trade_payables", 2)
+
+
+def test_tab_at_the_last_cell_and_f6_leave_the_table(hands: Hands) -> None:
+    hands.at("cash", 2)
+    hands.key(Key.Key_F6)
+    assert QApplication.focusWidget() is hands.sheet.strip.uses
+    hands.qtbot.keyClick(hands.sheet.strip.uses, Key.Key_Escape)
+    assert QApplication.focusWidget() is hands.sheet.table
+    hands.sheet.table.setCurrentIndex(hands.sheet.model.index(hands.sheet.model.rowCount() - 1, 3))
+    hands.key(Key.Key_Tab)
+    assert QApplication.focusWidget() is hands.sheet.strip.uses
+    hands.sheet.table.setFocus()
+    hands.sheet.table.setCurrentIndex(hands.sheet.model.index(1, 1))
+    hands.key(Key.Key_Backtab, SHIFT)
+    assert QApplication.focusWidget() is hands.sheet.period_button
+
+
+def test_up_from_the_first_row_walks_along_the_periods(hands: Hands) -> None:
+    hands.sheet.table.setCurrentIndex(hands.sheet.model.index(0, 2))
+    hands.key(Key.Key_Up)
+    header = hands.sheet.table.header
+    assert header.hasFocus()
+    assert header.at == 2
+    asked: list[int] = []
+    header.described.disconnect()
+    header.described.connect(asked.append)
+    hands.qtbot.keyClick(header, Key.Key_Right)
+    hands.qtbot.keyClick(header, Key.Key_Return)
+    assert asked == [2]
+    hands.qtbot.keyClick(header, Key.Key_Down)
+    assert hands.sheet.table.hasFocus()
+    assert hands.current == ("assets", 2)
+
+
+def test_labels_stay_when_many_periods_scroll_and_cells_come_out_beside_them(
+    qtbot: QtBot, house: HouseBook, sound_case: Case
+) -> None:
+    hands = open_sheet(qtbot, house, long_run(sound_case), (760, 640))
+    table = hands.sheet.table
+    assert table.horizontalScrollBar().maximum() > 0
+    hands.at("cash", 7)
+    assert table.labels.isVisible()
+    assert table.labels.geometry().left() == table.frameWidth()
+    hands.at("cash", 0)
+    left = table.visualRect(table.currentIndex()).left()
+    assert left >= table.columnWidth(0)
+    place = table.labels.visualRect(hands.sheet.model.index(0, 0)).center()
+    hands.at("cash", 7)
+    hands.qtbot.mouseClick(table.labels.viewport(), Qt.MouseButton.LeftButton, pos=place)
+    assert hands.sheet.model.rows[1].key == "liabilities"
+
+
+def test_with_room_enough_nothing_scrolls_sideways(hands: Hands) -> None:
+    assert hands.sheet.table.horizontalScrollBar().maximum() == 0
+    assert not hands.sheet.table.labels.isVisible()
+
+
+def test_a_double_click_on_a_heading_describes_its_period(hands: Hands) -> None:
+    header = hands.sheet.table.header
+    asked: list[int] = []
+    header.described.disconnect()
+    header.described.connect(asked.append)
+    for column in (2, 0):
+        place = QPoint(header.sectionViewportPosition(column) + 20, 10)
+        hands.qtbot.mouseDClick(header.viewport(), Qt.MouseButton.LeftButton, pos=place)
+    assert asked == [1]
+
+
+def test_entries_name_every_action_once_and_bind_no_key_twice(hands: Hands) -> None:
+    entries = [entry for entry in hands.sheet.entries() if entry is not None]
+    titles, keys = [entry[0] for entry in entries], [entry[1] for entry in entries if entry[1] is not None]
+    assert len(titles) == len(set(titles)) >= 16
+    assert len(keys) == len(set(keys))
+
+
+def test_actions_on_cells_wait_until_the_sheet_is_in_sight(hands: Hands, sound_case: Case) -> None:
+    fill = next(entry[2] for entry in hands.sheet.entries() if entry is not None and entry[0] == "&Fill right")
+    hands.at("cash", 1)
+    hands.sheet.hide()
+    fill()
+    assert hands.case == sound_case
+    assert hands.jumps == ["figures."]
+    assert hands.faults == ["Choose the cells first."]
+    hands.sheet.show()
+    fill()
+    assert hands.case.figures["cash"][1] == 1_180
