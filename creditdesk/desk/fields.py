@@ -93,10 +93,9 @@ class TextField(QLineEdit):
 
     def event(self, event: QEvent) -> bool:
         """Leave undo and redo to the window where nothing was typed here."""
-        if event.type() == QEvent.Type.ShortcutOverride and isinstance(event, QKeyEvent) and not self.changed:
-            asked = any(event.matches(key) for key in _HISTORY)
-            event.setAccepted(not asked)
-            return True if asked else super().event(event)
+        if not self.changed and _asks_for_history(event):
+            event.ignore()
+            return True
         return super().event(event)
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
@@ -106,6 +105,13 @@ class TextField(QLineEdit):
             self.restore()
         else:
             super().keyPressEvent(event)
+
+
+def _asks_for_history(event: QEvent) -> bool:
+    """Say whether a widget is being asked if it takes undo or redo for itself."""
+    if not isinstance(event, QKeyEvent) or event.type() != QEvent.Type.ShortcutOverride:
+        return False
+    return any(event.matches(key) for key in _HISTORY)
 
 
 class CodeField(TextField):

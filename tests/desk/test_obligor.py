@@ -270,6 +270,19 @@ def test_texts_are_edits_and_unreadable_ones_are_refused(qtbot: QtBot, window: W
     assert sheet.texts.faults["group"].isHidden()
 
 
+def test_the_window_s_keys_work_while_a_field_has_the_focus(
+    qtbot: QtBot, window: Window, sheet: ObligorSheet, sound_case: Case
+) -> None:
+    field = sheet.identity.country.field
+    _type(qtbot, field, "NL")
+    qtbot.keyClick(field, Qt.Key.Key_Z, Qt.KeyboardModifier.ControlModifier)
+    assert window.session.case == sound_case
+    qtbot.keyClick(field, Qt.Key.Key_Z, Qt.KeyboardModifier.ControlModifier | Qt.KeyboardModifier.ShiftModifier)
+    assert window.session.case.obligor.country == "NL"
+    qtbot.keyClick(field, Qt.Key.Key_3, Qt.KeyboardModifier.AltModifier)
+    assert (window.stack.currentIndex(), field.text()) == (SHEETS.index("Ratios"), "NL")
+
+
 @pytest.mark.parametrize(
     ("place", "name"),
     [
@@ -280,6 +293,7 @@ def test_texts_are_edits_and_unreadable_ones_are_refused(qtbot: QtBot, window: W
         ("assessment.date", "Assessment date"),
         ("model.scope", "Models of the house book"),
         ("obligor.texts", "Request"),
+        ("texts.management", "Management"),
     ],
 )
 def test_places_lead_to_their_field_and_into_sight(window: Window, place: str, name: str) -> None:

@@ -14,7 +14,7 @@ from creditdesk.desk.panels.assessment import AssessmentPanel
 from creditdesk.desk.panels.basis import CurrencyPanel, RatesPanel
 from creditdesk.desk.panels.identity import IdentityPanel
 from creditdesk.desk.panels.models import ModelsPanel
-from creditdesk.desk.panels.texts import TextsPanel
+from creditdesk.desk.panels.texts import TITLES, TextsPanel
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.house.book import HouseBook
 
@@ -28,7 +28,9 @@ class ObligorSheet(Sheet):
     """Show and edit what is known of the borrower beside its figures; every edit is a command handed to ``do``."""
 
     title = "Obligor"
-    places = ("obligor.", "assessment.", "model.lead", "model.scope")
+    places = (
+        "obligor.", "assessment.", "model.lead", "model.scope", *(f"texts.{key}" for key in TITLES if key != "request"),
+    )  # fmt: skip
 
     def __init__(self, house: HouseBook, do: Callable[[Command], None]) -> None:
         super().__init__()
@@ -110,6 +112,8 @@ class ObligorSheet(Sheet):
             return self.models.table
         if section == "assessment":
             return self.assessment.period.field if name == "period" else self.assessment.date.field
+        if section == "texts":
+            return self.texts.blocks[name]
         others: dict[str, QWidget] = {
             "currency": self.currency.currency.field,
             "unit": self.currency.unit.field,
