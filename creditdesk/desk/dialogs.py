@@ -5,6 +5,7 @@ from collections.abc import Callable
 from PySide6.QtWidgets import QDialog, QDialogButtonBox, QVBoxLayout, QWidget
 
 from creditdesk.base.errors import UserError
+from creditdesk.desk.fields import fault_words
 from creditdesk.desk.frame import label
 
 
@@ -35,7 +36,7 @@ class Question(QDialog):
         try:
             self._answer()
         except UserError as error:
-            self.fault.setText("\n".join(f"▲ {fault}" for fault in error.faults))
+            self.fault.setText(f"▲ {fault_words(error)}.")
             self.fault.show()
         else:
             self.accept()

@@ -142,12 +142,13 @@ class TraceStrip(QWidget):
         first = QHBoxLayout()
         first.setSpacing(14)
         first.addWidget(self.title)
-        first.addWidget(self.provenance, 1)
+        first.addStretch(1)
         first.addWidget(self.count)
         box = QVBoxLayout(self)
         box.setContentsMargins(0, 4, 0, 0)
-        box.setSpacing(2)
+        box.setSpacing(1)
         box.addLayout(first)
+        box.addWidget(self.provenance)
         box.addWidget(self.uses)
 
 

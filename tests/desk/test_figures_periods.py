@@ -147,17 +147,21 @@ def test_every_field_of_a_period_is_in_the_dialog(qtbot: QtBot) -> None:
     assert nameless == []
 
 
-def test_a_refusal_is_said_in_the_dialog_which_stays(qtbot: QtBot) -> None:
-    def refuse(_: Period) -> None:
-        raise UserError("edit", ["periods[1].ends: found twice", "and more"])
-
+def test_a_refusal_is_said_in_the_dialog_which_stays(qtbot: QtBot, sound_case: Case, house: HouseBook) -> None:
     make_application()
-    dialog = PeriodDialog(None, "2025", annual(2025), refuse)
+    dialog = PeriodDialog(
+        None, "2025", sound_case.periods[2], lambda period: apply(sound_case, SetPeriod(2, period), house.chart)
+    )
     qtbot.addWidget(dialog)
     dialog.show()
+    dialog.ends.setDate(QDate(2024, 12, 31))
     dialog.accept_button.click()
     assert dialog.isVisible()
-    assert dialog.fault.text() == "▲ periods[1].ends: found twice\n▲ and more"
+    assert "2024-12-31 a second time" in dialog.fault.text()
+    assert "one of them restated" in dialog.fault.text()
+    dialog.restated.setChecked(True)
+    dialog.accept_button.click()
+    assert not dialog.isVisible()
 
 
 # On the sheet

@@ -246,7 +246,7 @@ class Facts:
         added = self.amount_text(float(np.nan_to_num(adjusted) - np.nan_to_num(received)))
         reasons = "; ".join(self._reasons(row.key, period))
         why = f" ({reasons})" if reasons else ""
-        return f"received {before}, adjustment {added}{why}, adjusted {self.amount_text(adjusted) or 'blank'}"
+        return f"received {before}, adjustment {added}, adjusted {self.amount_text(adjusted) or 'blank'}{why}"
 
     def _reasons(self, key: str, period: int) -> list[str]:
         ends = self.periods[period].ends

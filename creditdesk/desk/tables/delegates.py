@@ -18,6 +18,7 @@ Index = QModelIndex | QPersistentModelIndex
 
 LABEL_INDENT, RIGHT_PADDING, MARK_PLACE = 16, 10, 9
 _SUB_INDENT = 14
+_SELECTED, _FOCUSED = QStyle.StateFlag.State_Selected.value, QStyle.StateFlag.State_HasFocus.value
 _SMALLER = 0.92
 _LEAVING = (
     Qt.Key.Key_Return, Qt.Key.Key_Enter, Qt.Key.Key_Tab, Qt.Key.Key_Backtab, Qt.Key.Key_Up, Qt.Key.Key_Down,
@@ -122,13 +123,14 @@ class FiguresDelegate(QStyledItemDelegate):
         self, painter: QPainter, rect: QRectF, option: QStyleOptionViewItem, what: tuple[Row, Cell | None]
     ) -> None:
         row, cell = what
-        if option.state & QStyle.StateFlag.State_Selected:
+        state = option.state.value
+        if state & _SELECTED:
             painter.fillRect(rect, QColor(self.palette.selection))
         painter.fillRect(QRectF(rect.left(), rect.bottom() - 1, rect.width(), 1), QColor(self.palette.rule))
         if row.kind is RowKind.SUBTOTAL:
             look = cell.look if cell is not None else Look.AMOUNT
             paint_sum_line(painter, rect.topLeft(), rect.topRight(), look, self.palette)
-        if option.state & QStyle.StateFlag.State_HasFocus:
+        if state & _FOCUSED:
             painter.setPen(QPen(QColor(self.palette.accent), 1.6))
             painter.setBrush(Qt.BrushStyle.NoBrush)
             painter.drawRect(rect.adjusted(1, 1, -1.4, -1.4))

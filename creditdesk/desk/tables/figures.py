@@ -19,6 +19,8 @@ Enter = Callable[[Row, int, str], bool]
 
 MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "●"}
 _AFTER_PERIODS = ("change", "trend", "")
+_READ = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
+_TYPED = _READ | Qt.ItemFlag.ItemIsEditable
 _INDENTS = {RowKind.HEADING: 0, RowKind.NOT_DIVIDED: 2, RowKind.PRINTED: 2}
 
 
@@ -178,8 +180,7 @@ class FiguresModel(QAbstractTableModel):
     def flags(self, index: Index) -> Qt.ItemFlag:
         """Allow typing in the cells of lines, and of sums that a borrower prints."""
         row = self._rows[index.row()]
-        base = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
-        return base | Qt.ItemFlag.ItemIsEditable if row.editable and self.is_period(index.column()) else base
+        return _TYPED if row.editable and self.is_period(index.column()) else _READ
 
     def setData(self, index: Index, value: object, role: int = Qt.ItemDataRole.EditRole) -> bool:
         """Hand what was typed on; what it means is decided there."""
