@@ -29,7 +29,7 @@ def _lines(case: Case, standing: Standing) -> Iterator[str]:
     for factor in standing.factors:
         yield _factor(factor)
     if standing.score is not None:
-        yield f"  {'score':<{_WIDTH}}{'':>14}  {standing.score:+.4f}"
+        yield f"  {'score':<{_WIDTH}}{'':>20}  {standing.score:+.4f}"
     for title, texts in (
         ("Reasons", standing.reasons),
         (
@@ -69,7 +69,7 @@ def _factor(factor: FactorStanding) -> str:
         percent = factor.unit == Unit.PERCENT.value
         value = f"{format_number(100 * factor.value, 1)} %" if percent else format_number(factor.value, 2)
     amount = "" if factor.log_odds is None else f"  {factor.log_odds:+.4f}"
-    return f"  {factor.label:<{_WIDTH}}{value:>14}{amount}{'  (capped)' if factor.capped else ''}"
+    return f"  {factor.label:<{_WIDTH}}{value:>20}{amount}{'  (capped)' if factor.capped else ''}"
 
 
 def _opinion(one: SecondOpinion) -> str:
