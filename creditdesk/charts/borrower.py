@@ -7,7 +7,6 @@ import numpy as np
 
 from creditdesk.base.palette import Palette
 from creditdesk.case.standing import Curve, PeriodStanding, Standing
-from creditdesk.charts.backdrop import curve_boxes
 from creditdesk.charts.board import Board
 from creditdesk.charts.frame import DEEPEST, Frame
 from creditdesk.charts.placing import Box, Taken, around, leader, spaced
@@ -21,13 +20,19 @@ _ABOVE_FIRST = (135.0, 115.0, 155.0, 180.0, 90.0, 315.0, 295.0, 270.0, 0.0, 45.0
 _BELOW_FIRST = (315.0, 295.0, 335.0, 270.0, 135.0, 115.0, 155.0, 0.0, 90.0, 180.0, 45.0, 225.0)
 
 
-def draw_borrower(board: Board, layer: str, frame: Frame, standing: Standing, palette: Palette) -> None:
-    """Draw the borrower, its other years and its grade. Its score and PDs are known."""
+def draw_borrower(
+    board: Board, layer: str, frame: Frame, standing: Standing, look: tuple[Palette, Sequence[Box]]
+) -> None:
+    """Draw the borrower, its other years and its grade. Its score and PDs are known.
+
+    ``look``: the palette, and the boxes in which no label may stand.
+    """
+    palette, obstacles = look
     curve = standing.curve
     if curve is None or standing.score is None or standing.pd_calibrated is None:
         return
     point = frame.x(standing.score), frame.y(standing.pd_calibrated)
-    taken = Taken(frame.plot, curve_boxes(frame, curve))
+    taken = Taken(frame.plot, list(obstacles))
     taken.add([around(point, DOT + 1), *_interval_boxes(frame, standing, point)])
     past = _past_points(frame, standing.past)
     taken.add(around(place, SMALL_DOT + 1) for _, place in past)
@@ -41,11 +46,14 @@ def draw_borrower(board: Board, layer: str, frame: Frame, standing: Standing, pa
         _label_past(board, layer, taken, (place, year.label), palette)
 
 
-def write_reason(board: Board, layer: str, frame: Frame, standing: Standing, palette: Palette) -> None:
-    """Say on the curve without a borrower why there is no PD."""
+def write_reason(
+    board: Board, layer: str, frame: Frame, standing: Standing, look: tuple[Palette, Sequence[Box]]
+) -> None:
+    """Say on the curve without a borrower why there is no PD; ``look`` as for a borrower."""
+    palette, obstacles = look
     size = type_size(palette)
     words = " ".join(("No PD.", *standing.reasons))
-    taken = Taken(frame.plot, curve_boxes(frame, standing.curve) if standing.curve else [])
+    taken = Taken(frame.plot, list(obstacles))
     _draw_inset(board, layer, taken, standing, palette)
     _write_grades(board, layer, frame, standing, palette)
     width = 0.42 * (frame.plot.right - frame.plot.left)

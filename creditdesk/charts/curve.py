@@ -1,16 +1,21 @@
 """The PD curve: where the borrower stands on the fitted curve, among sample, grades and its own past."""
 
+from typing import TYPE_CHECKING
+
 from matplotlib.backend_bases import Event
 from matplotlib.figure import Figure
 
 from creditdesk.base.display import format_number
 from creditdesk.base.palette import Palette
 from creditdesk.case.standing import Curve, Standing
-from creditdesk.charts.backdrop import draw_backdrop
+from creditdesk.charts.backdrop import curve_boxes, draw_backdrop
 from creditdesk.charts.board import Board
 from creditdesk.charts.borrower import draw_borrower, write_reason
 from creditdesk.charts.frame import Frame, make_frame
 from creditdesk.charts.style import Size, Type, house_style, new_figure, type_size, wrap
+
+if TYPE_CHECKING:
+    from creditdesk.charts.placing import Box
 
 BACKDROP, BORROWER = "backdrop", "borrower"
 
@@ -28,6 +33,7 @@ class CurveChart:
         self._palette = palette
         self._standing: Standing | None = None
         self._drawn: tuple[object, ...] = ()
+        self._obstacles: list[Box] = []
         figure.canvas.mpl_connect("resize_event", self._on_resize)
 
     def show(self, standing: Standing) -> None:
@@ -44,9 +50,9 @@ class CurveChart:
         self.frame = make_frame(standing, standing.curve, self.board.size, type_size(self._palette))
         self._show_backdrop(standing, standing.curve, self.frame)
         if standing.score is None or standing.pd is None or standing.pd_calibrated is None:
-            write_reason(self.board, BORROWER, self.frame, standing, self._palette)
+            write_reason(self.board, BORROWER, self.frame, standing, (self._palette, self._obstacles))
         else:
-            draw_borrower(self.board, BORROWER, self.frame, standing, self._palette)
+            draw_borrower(self.board, BORROWER, self.frame, standing, (self._palette, self._obstacles))
 
     def _show_backdrop(self, standing: Standing, curve: Curve, frame: Frame) -> None:
         digests = (standing.model.digest, standing.house.digest, standing.model.link)
@@ -55,7 +61,7 @@ class CurveChart:
             return
         self.board.clear(BACKDROP)
         draw_backdrop(self.board, BACKDROP, frame, standing, self._palette)
-        self._drawn = drawn
+        self._drawn, self._obstacles = drawn, curve_boxes(frame, curve)
 
     def _show_words(self, standing: Standing) -> None:
         """Say why there is no curve, in the middle of the figure."""

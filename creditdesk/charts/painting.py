@@ -16,10 +16,13 @@ from matplotlib.text import Text
 from numpy.typing import NDArray
 
 from creditdesk.charts.board import Board
+from creditdesk.charts.style import face_of, text_width
 
 _MOST_WORDS = 600
 _MARGIN = 3
 """Pixels around the measured word: hinting may move a glyph by less."""
+_ASCENT, _DESCENT = 1.05, 0.35
+"""How far letters reach over and under the baseline, as shares of the type size, in both font families."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,7 +78,7 @@ class Painter:
         key = (text.get_text(), font.get_file(), font.get_size_in_points(), text.get_color(), renderer.dpi)
         found = self._words.get(key)
         if found is None:
-            found = self._words[key] = _painted(text, renderer)
+            found = self._words[key] = _painted(text, renderer.dpi)
             if len(self._words) > _MOST_WORDS:
                 self._words.popitem(last=False)
         else:
@@ -83,15 +86,15 @@ class Painter:
         return found
 
 
-def _painted(text: Text, renderer: RendererAgg) -> _Word:
-    """Paint one word on a ground of its own."""
+def _painted(text: Text, dpi: float) -> _Word:
+    """Paint one word on a ground of its own, high enough for any letter."""
     words, font = text.get_text(), text.get_fontproperties()
-    width, height, descent = renderer.get_text_width_height_descent(words, font, False)  # type: ignore[no-untyped-call]
-    below = ceil(descent) + _MARGIN
-    columns, rows = ceil(width) + 2 * _MARGIN, ceil(height) + below + _MARGIN
-    ground = RendererAgg(columns, rows, renderer.dpi)  # type: ignore[no-untyped-call]
+    size = font.get_size_in_points() * dpi / 72
+    width = text_width(words, size, face_of(font))
+    above, below = ceil(_ASCENT * size) + _MARGIN, ceil(_DESCENT * size) + _MARGIN
+    ground = RendererAgg(ceil(width) + 2 * _MARGIN, above + below, dpi)  # type: ignore[no-untyped-call]
     pen = ground.new_gc()
     pen.set_foreground(to_rgba(text.get_color()), isRGBA=True)
-    ground.draw_text(pen, _MARGIN, rows - below, words, font, 0)  # type: ignore[no-untyped-call]
+    ground.draw_text(pen, _MARGIN, above, words, font, 0)  # type: ignore[no-untyped-call]
     pixels = np.asarray(ground.buffer_rgba())[::-1].copy()  # type: ignore[no-untyped-call]
-    return _Word(pixels, float(width), below)
+    return _Word(pixels, width, below)

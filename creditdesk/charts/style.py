@@ -1,7 +1,8 @@
 """The look of the charts: paper's palette, type, pens, and how wide a word is."""
 
 import re
-from contextlib import AbstractContextManager
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass, replace
 from functools import cache
 from typing import Any, Literal
@@ -83,6 +84,12 @@ def font(face: Face) -> FontProperties:
 
 
 @cache
+def face_of(font: FontProperties) -> Face:
+    """Return the face of what ``font`` made."""
+    return next(face for face in Face if str(font_path(face)) == font.get_file())
+
+
+@cache
 def _opened(face: Face) -> FT2Font:
     opened = FT2Font(str(font_path(face)))
     opened.set_size(100, 72)
@@ -136,9 +143,15 @@ def wrap(text: str, width: float, size: float, face: Face = Face.SANS) -> list[s
     return lines
 
 
-def house_style() -> AbstractContextManager[None]:
+@contextmanager
+def house_style() -> Iterator[None]:
     """Hold matplotlib's settings to ours while marks are made."""
-    return matplotlib.rc_context(RC)
+    before = {name: matplotlib.rcParams[name] for name in RC}
+    matplotlib.rcParams.update(RC)
+    try:
+        yield
+    finally:
+        matplotlib.rcParams.update(before)
 
 
 def new_figure(size: Size) -> Figure:

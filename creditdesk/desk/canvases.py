@@ -94,7 +94,7 @@ class ChartCanvas(FigureCanvasQTAgg):
         self._tint.setAlphaF(0.16)
         self._showing: Showing | None = None
         self._marks: Marks | None = None
-        self._stale = True
+        self._stale, self._picture = True, QImage()
         self._callout = Callout(self, palette)
         self.setAccessibleName(name)
         self.setAccessibleDescription(HINT)
@@ -143,14 +143,24 @@ class ChartCanvas(FigureCanvasQTAgg):
         """Paint the chart, and a line around the mark that is read."""
         if self._stale and self._showing is not None and min(self.width(), self.height()) > 0:
             self._stale = False
-            self._showing.painter.paint(self.get_renderer())  # type: ignore[no-untyped-call]
-        super().paintEvent(event)  # type: ignore[no-untyped-call]
+            self._picture = self._painted(self._showing.painter)
         painter = QPainter(self)
+        painter.drawImage(0, 0, self._picture)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         painter.setPen(QPen(self._colour, 1.4))
         if self.mark is not None:
             self._show_mark(painter, self._place(self.mark.box))
         painter.end()
+
+    def _painted(self, painter: Painter) -> QImage:
+        """Paint the chart and return it as Qt shows it fastest; the ground is opaque."""
+        renderer = self.get_renderer()  # type: ignore[no-untyped-call]
+        painter.paint(renderer)
+        width, height = int(renderer.width), int(renderer.height)
+        image = QImage(renderer.buffer_rgba(), width, height, 4 * width, QImage.Format.Format_RGBX8888)
+        shown = image.convertToFormat(QImage.Format.Format_RGB32)
+        shown.setDevicePixelRatio(self.device_pixel_ratio)
+        return shown
 
     def event(self, event: QEvent) -> bool:
         """Keep the keys that copy, and Escape where there is a mark to let go, for the chart that has the focus."""

@@ -3,7 +3,7 @@
 from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QEvent, QSize, Qt, QTimer, Signal
+from PySide6.QtCore import QCoreApplication, QEvent, QSize, Qt, QTimer, Signal
 from PySide6.QtGui import QKeyEvent, QResizeEvent
 from PySide6.QtWidgets import QBoxLayout, QFrame, QHBoxLayout, QScrollArea, QSizePolicy, QVBoxLayout, QWidget
 
@@ -120,6 +120,9 @@ class StandingColumn(QWidget):
         self.switch_note.setToolTip(standing.what_moved_reason)
         self.switch_note.setVisible(bool(standing.what_moved_reason))
         self._show_charts()
+        if self.isVisible():  # what everyone looks at first comes before the sheets
+            QCoreApplication.sendPostedEvents(None, QEvent.Type.LayoutRequest)
+            self.view.viewport().repaint()
 
     def entries(self) -> Sequence[Entry | None]:
         """Return what can be done here, for menu and palette."""
