@@ -1,6 +1,6 @@
 """What can be done with the chosen block of the figures: copy, paste, clear, fill, note."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 
 from PySide6.QtCore import QLocale, QMimeData, QObject, Signal
 from PySide6.QtWidgets import QApplication
@@ -27,6 +27,17 @@ class BlockActions(QObject):
     def __init__(self, do: Do, table: FiguresTable) -> None:
         super().__init__(table)
         self._do, self._table, self._model = do, table, table.figures
+
+    def choices(self) -> Sequence[tuple[str, Callable[[], object]] | None]:
+        """List what can be done with the chosen cells, by title; None parts groups."""
+        return (
+            ("Copy the block", self.copy),
+            ("Paste a block", self.paste),
+            ("Clear the cells", self.clear),
+            None,
+            ("Fill right", self.fill_right),
+            ("Note on the cell…", self.note),
+        )
 
     def enter(self, row: Row, period: int, text: str) -> bool:
         """Set one cell to what was typed; say whether it was taken."""

@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import QObject, QPoint, Signal
+from PySide6.QtCore import QObject, QPoint, Qt, Signal
 from PySide6.QtWidgets import QMenu, QMessageBox, QWidget
 
 from creditdesk.base.errors import UserError
@@ -48,6 +48,7 @@ class PeriodActions(QObject):
     def pop_up(self, index: int, at: QPoint) -> None:
         """Show the menu of a period at a place on the screen."""
         menu = QMenu(self._window)
+        menu.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
         fill_menu(menu, self.choices(lambda: index))
         menu.popup(at)
 

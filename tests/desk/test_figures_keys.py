@@ -2,7 +2,7 @@
 
 import pytest
 from PySide6.QtCore import QPoint, Qt
-from PySide6.QtWidgets import QApplication, QLineEdit, QTableView
+from PySide6.QtWidgets import QApplication, QLineEdit, QMenu, QTableView
 from pytestqt.qtbot import QtBot
 
 from creditdesk.case.document import Case
@@ -277,3 +277,38 @@ def test_actions_on_cells_wait_until_the_sheet_is_in_sight(hands: Hands, sound_c
     hands.sheet.show()
     fill()
     assert hands.case.figures["cash"][1] == 1_180
+
+
+def test_the_right_button_on_cells_offers_what_can_be_done_with_them(hands: Hands) -> None:
+    hands.at("cash", 1)
+    hands.sheet.table.customContextMenuRequested.emit(QPoint(300, 60))
+    menu = next(one for one in hands.sheet.table.findChildren(QMenu) if one.isVisible())
+    assert [action.text() for action in menu.actions() if not action.isSeparator()] == [
+        choice[0] for choice in hands.sheet.blocks.choices() if choice is not None
+    ]
+    next(action for action in menu.actions() if action.text() == "Fill right").trigger()
+    assert hands.case.figures["cash"][1] == 1_180
+    menu.close()
+
+
+def test_a_total_as_printed_is_typed_and_cleared_in_its_own_row_too(hands: Hands) -> None:
+    hands.sheet._toggle_printed()
+    hands.at("current_assets", 2, RowKind.PRINTED)
+    hands.type("14221")
+    assert hands.case.printed["current_assets"][2] == 14_221
+    hands.at("current_assets", 2, RowKind.PRINTED)
+    hands.key(Key.Key_Delete)
+    assert str(hands.case.printed["current_assets"][2]) == "nan"
+    assert hands.sheet.model.index(hands.row("current_assets", RowKind.PRINTED), 3).data() == ""
+
+
+def test_what_nobody_prints_cannot_be_typed(hands: Hands, sound_case: Case) -> None:
+    hands.at("ebitda", 2)
+    hands.qtbot.keyClicks(hands.sheet.table, "5")
+    assert hands.sheet.table.findChild(QLineEdit) is None
+    assert hands.case == sound_case
+
+
+def test_the_cursor_begins_where_typing_begins(hands: Hands, qtbot: QtBot, house: HouseBook) -> None:
+    assert hands.current == ("cash", 2)  # the assessed period
+    assert open_sheet(qtbot, house, empty()).current == ("cash", 0)

@@ -4,7 +4,7 @@ import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
-from PySide6.QtCore import QModelIndex, Qt
+from PySide6.QtCore import QModelIndex, QPoint, Qt
 from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QAbstractItemView, QHBoxLayout, QMenu, QPushButton, QVBoxLayout
 
@@ -81,7 +81,7 @@ class FiguresSheet(Sheet):
         elif left is not None and not self.table.currentIndex().isValid():
             self._restore(left)
         if fresh:
-            self._go_to_first(standing.period_index)
+            self._go_to_first(0 if empty else standing.period_index)
         self._show_trace()
 
     def recolour(self, palette: Palette) -> None:
@@ -252,6 +252,8 @@ class FiguresSheet(Sheet):
         table.cleared.connect(self.blocks.clear)
         table.left.connect(lambda onwards: (strip if onwards else self.period_button).setFocus())
         table.selectionModel().currentChanged.connect(self._on_current)
+        table.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
+        table.customContextMenuRequested.connect(self._on_menu)
         self.model.modelReset.connect(self._show_trace)
         table.header.described.connect(self.periods.describe)
         table.header.removed.connect(self.periods.remove)
@@ -264,6 +266,12 @@ class FiguresSheet(Sheet):
         self.only_figures.toggled.connect(self._on_filter)
         for source in (self.blocks, self.periods):
             source.fault.connect(self.fault)
+
+    def _on_menu(self, at: QPoint) -> None:
+        menu = QMenu(self.table)
+        menu.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
+        fill_menu(menu, self.blocks.choices())
+        menu.popup(self.table.viewport().mapToGlobal(at))
 
     def _on_heading_left(self, column: int) -> None:
         self.table.setCurrentIndex(self.model.index(max(self.table.currentIndex().row(), 0), column))

@@ -37,6 +37,7 @@ class FiguresModel(QAbstractTableModel):
         self._rows: tuple[Row, ...] = ()
         self._facts: Facts | None = None
         self._cells: dict[tuple[Row, int], Cell] = {}
+        self._section_marks: dict[str, Severity | None] = {}
 
     # What is shown
 
@@ -46,13 +47,13 @@ class FiguresModel(QAbstractTableModel):
         So an open editor, the selection and the place scrolled to outlive an edit that brings or takes rows.
         """
         before, self._facts = self._facts, Facts(case, standing)
+        self._cells.clear()
+        self._section_marks.clear()
         if before is None or before.periods != standing.statements.periods:
             self.beginResetModel()
-            self._cells.clear()
             self._rows = self._wanted_rows()
             self.endResetModel()
             return
-        self._cells.clear()
         self._show_rows()
         self._tell_all()
 
@@ -268,13 +269,14 @@ class FiguresModel(QAbstractTableModel):
         return gravest([one for period in range(self.periods) for one in self.facts.findings(row.key, period)])
 
     def _mark_of_section(self, section: str) -> Severity | None:
-        keys = {item.key for item in _items_of(self.facts, section)}
-        return gravest(
-            [one for key in keys for period in range(self.periods) for one in self.facts.findings(key, period)]
-        )
+        if section not in self._section_marks:
+            keys = {row.key for row in _rows_of(self.facts, section)}
+            found = [one for key in keys for period in range(self.periods) for one in self.facts.findings(key, period)]
+            self._section_marks[section] = gravest(found)
+        return self._section_marks[section]
 
 
-def _items_of(facts: Facts, section: str) -> Iterator[Row]:
+def _rows_of(facts: Facts, section: str) -> Iterator[Row]:
     """List the rows a folded section would show."""
     opened = Choice(figures_only=False)
     return (row for row in figure_rows(facts.received, facts.statements, opened) if row.section == section)
