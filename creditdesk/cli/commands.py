@@ -65,9 +65,13 @@ def _passphrase(variable: str) -> str:
 def open_window(options: Namespace) -> int:
     """Open the window."""
     _refuse_without_display()
-    from creditdesk.desk.app import run  # the only command but one that needs Qt
+    from creditdesk.desk.fetching import fetching  # needs no Qt, but belongs to it
 
-    return run(options.case, house_book(options))
+    with fetching():
+        from creditdesk.desk.app import run  # the only command but one that needs Qt
+
+        house = house_book(options)
+    return run(options.case, house)
 
 
 def _refuse_without_display() -> None:

@@ -25,6 +25,12 @@ class Placed:
 def add_menu(bar: QMenuBar | QMenu, title: str, entries: Sequence[Entry | QAction | None]) -> QMenu:
     """Add a menu to ``bar``; None among the entries draws a line, an action is taken as it is."""
     menu = bar.addMenu(title)
+    fill_menu(menu, entries)
+    return menu
+
+
+def fill_menu(menu: QMenu, entries: Sequence[Entry | QAction | None]) -> None:
+    """Add entries at the end of a menu."""
     for entry in entries:
         if entry is None:
             menu.addSeparator()
@@ -32,7 +38,6 @@ def add_menu(bar: QMenuBar | QMenu, title: str, entries: Sequence[Entry | QActio
             menu.addAction(entry)
         else:
             menu.addAction(make_action(menu, *entry))
-    return menu
 
 
 def make_action(parent: QObject, title: str, key: Key, do: Callable[[], object]) -> QAction:

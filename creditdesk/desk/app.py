@@ -6,7 +6,7 @@ from datetime import UTC, datetime
 from pathlib import Path
 
 import platformdirs
-from PySide6.QtCore import QObject, Signal
+from PySide6.QtCore import QObject, QTimer, Signal
 from PySide6.QtGui import QFontDatabase
 from PySide6.QtWidgets import QApplication, QMessageBox
 
@@ -18,12 +18,16 @@ from creditdesk.case.lead import with_lead_model
 from creditdesk.case.store import CaseFile
 from creditdesk.case.trail import utc_now
 from creditdesk.desk import crash, theme
+from creditdesk.desk.fetching import spare_what_is_loaded
 from creditdesk.desk.files import show_faults
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
+
+_BREATH = 10
+"""Milliseconds between two parts of long work on the main thread, in which whatever else waits is done."""
 
 
 def make_application() -> QApplication:
@@ -59,6 +63,19 @@ class Desk(QObject):
             show_faults(None, f"{path.name} was not opened", error)
             return None
 
+    def open_soon(self, path: Path) -> None:
+        """Open a file beside open windows: read it first, make its window in a later turn of the event loop."""
+
+        def read() -> None:
+            try:
+                session = open_session(path, self.house)
+            except UserError as error:
+                show_faults(None, f"{path.name} was not opened", error)
+                return
+            QTimer.singleShot(_BREATH, self, lambda: self.show_session(session))
+
+        QTimer.singleShot(_BREATH, self, read)
+
     def new_path(self, path: Path, case: Case) -> Window | None:
         """Make a new case file and open it."""
         try:
@@ -70,7 +87,7 @@ class Desk(QObject):
     def show_session(self, session: Session) -> Window:
         """Show a session in a window of its own."""
         window = Window(session, self._palette)
-        window.open_asked.connect(self.open_path)
+        window.open_asked.connect(self.open_soon)
         window.new_asked.connect(self.new_path)
         window.theme_chosen.connect(self._on_theme_chosen)
         window.closed.connect(self._on_closed)
@@ -110,6 +127,7 @@ def run(path: Path | None, house: HouseBook) -> int:
     application = make_application()
     desk = Desk(house)
     crash.install(desk.crashed.emit)
+    spare_what_is_loaded()
     if path is None:
         desk.show_start()
     elif desk.open_path(path) is None:

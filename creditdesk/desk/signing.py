@@ -10,8 +10,8 @@ from PySide6.QtWidgets import QDialog, QFileDialog, QMainWindow
 
 from creditdesk.base.errors import UserError
 from creditdesk.desk.busy import Busy
+from creditdesk.desk.fetching import fetching
 from creditdesk.desk.files import show_faults
-from creditdesk.desk.printing import ask_printer, print_pdf
 from creditdesk.desk.session import Session
 from creditdesk.desk.signdialogs import PDF, CountersignDialog, SignDialog
 from creditdesk.desk.worker import Jobs, Progress, Stopped
@@ -22,7 +22,8 @@ _LONG, _SHORT = 30_000, 8_000
 class Issuer(QObject):
     """Ask for what issuing a memo takes, do it in the background, hand on what came of it.
 
-    ``asked``: something is about to be issued, so what is typed and not yet in the case is to be handed on now.
+    ``asked``: something is about to be done, so what is typed and not yet in the case is to be handed on now, and what
+    comes of it will want a place to be told.
     ``issued``: what was signed; ``verified``: the file and what was found; ``shown``: one of the two has been told.
     """
 
@@ -46,7 +47,8 @@ class Issuer(QObject):
         out, case, house = Path(dialog.out.text()), self._session.case, self._session.house
 
         def work(progress: Progress) -> object:
-            from creditdesk.memo.issue import prepare  # heavy, and wanted off the main thread
+            with fetching():
+                from creditdesk.memo.issue import prepare  # heavy, and wanted off the main thread
 
             return prepare(case, house, out, key, datetime.now(UTC), progress.step)
 
@@ -61,8 +63,9 @@ class Issuer(QObject):
         memo, out, (decision, conditions) = Path(dialog.memo.text()), Path(dialog.out.text()), dialog.chosen
 
         def work(_progress: Progress) -> object:
-            from creditdesk.memo.decision import Decision  # heavy, and wanted off the main thread
-            from creditdesk.memo.issue import approve
+            with fetching():
+                from creditdesk.memo.decision import Decision  # heavy, and wanted off the main thread
+                from creditdesk.memo.issue import approve
 
             return approve(memo, out, key, (Decision(decision), conditions), datetime.now(UTC))
 
@@ -78,7 +81,8 @@ class Issuer(QObject):
         case, house = self._session.case, self._session.house
 
         def work(_progress: Progress) -> object:
-            from creditdesk.memo.issue import issue_unsigned  # heavy, and wanted off the main thread
+            with fetching():
+                from creditdesk.memo.issue import issue_unsigned  # heavy, and wanted off the main thread
 
             return issue_unsigned(case, house, Path(name))
 
@@ -86,6 +90,8 @@ class Issuer(QObject):
 
     def print_memo(self) -> None:
         """Ask for a printer and print the memo of the case as it stands, without a signature."""
+        from creditdesk.desk.printing import ask_printer, print_pdf  # printers are looked for when they are wanted
+
         self.asked.emit()
         case, house = self._session.case, self._session.house
         printer = ask_printer(self._window, f"Credit memo, {case.obligor.name}")
@@ -93,7 +99,8 @@ class Issuer(QObject):
             return
 
         def work(progress: Progress) -> object:
-            from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
+            with fetching():
+                from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
 
             return print_pdf(draft_memo(case, house), printer, progress)
 
@@ -121,7 +128,8 @@ class Issuer(QObject):
         house = self._session.house
 
         def work(_progress: Progress) -> object:
-            from creditdesk.memo.verify import verify_file  # heavy, and wanted off the main thread
+            with fetching():
+                from creditdesk.memo.verify import verify_file  # heavy, and wanted off the main thread
 
             return verify_file(path, house)
 
@@ -151,6 +159,7 @@ class Issuer(QObject):
         self, words: str, work: Callable[[Progress], object], done: Callable[[Any], object], failure: str
     ) -> None:
         """Run ``work`` and hand its result to ``done``; faults are shown under the words of ``failure``."""
+        self.asked.emit()
         progress = Progress()
 
         def failed(error: BaseException) -> None:

@@ -126,14 +126,20 @@ def apply(application: QApplication, palette: Palette) -> None:
     """Dress the whole application in ``palette``; nothing to do where it wears it already."""
     if application.property(_WORN) == palette.name:
         return
+    if application.property(_WORN) is None:
+        _prepare(application)
     application.setProperty(_WORN, palette.name)
+    application.setPalette(_qt_palette(palette))
+    application.setStyleSheet(style_sheet(palette))
+
+
+def _prepare(application: QApplication) -> None:
+    """Set what is the same in every palette; each of these has every widget looked at again, so once is enough."""
     font = QFont(SANS)
     font.setPointSizeF(10.5)
     font.setFeature(QFont.Tag("tnum"), 1)
     application.setStyle("Fusion")
     application.setFont(font)
-    application.setPalette(_qt_palette(palette))
-    application.setStyleSheet(style_sheet(palette))
 
 
 def _qt_palette(palette: Palette) -> QPalette:

@@ -34,7 +34,8 @@ from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
 from creditdesk.desk import files, theme
 from creditdesk.desk.about import About, Keys, key_sections
-from creditdesk.desk.actions import Entry, add_menu, give_reason, make_action, placed_actions
+from creditdesk.desk.actions import Entry, add_menu, fill_menu, give_reason, make_action, placed_actions
+from creditdesk.desk.fetching import fetching
 from creditdesk.desk.finds import action_finds, case_finds
 from creditdesk.desk.frame import FIND_KEY, WIDE_KEY, Header, SheetBar, sheet_key
 from creditdesk.desk.headline import describe, recorded_words, status_words
@@ -42,21 +43,25 @@ from creditdesk.desk.palette import CommandPalette, Find
 from creditdesk.desk.revert import RevertDialog, case_after
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings, Theme
-from creditdesk.desk.sheets.figures import FiguresSheet
-from creditdesk.desk.sheets.memo import MemoSheet
-from creditdesk.desk.sheets.obligor import ObligorSheet
-from creditdesk.desk.sheets.ratios import RatiosSheet
 from creditdesk.desk.signing import Issuer
 from creditdesk.desk.standing import StandingColumn
 from creditdesk.desk.worker import Jobs
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
     from types import ModuleType
+    from typing import TypeVar
 
     from creditdesk.case.document import Case
     from creditdesk.desk.sheets.base import Sheet
+    from creditdesk.desk.sheets.figures import FiguresSheet
+    from creditdesk.desk.sheets.memo import MemoSheet
+    from creditdesk.desk.sheets.obligor import ObligorSheet
+    from creditdesk.desk.sheets.ratios import RatiosSheet
 
-SHEETS = (ObligorSheet.title, FiguresSheet.title, RatiosSheet.title, MemoSheet.title)
+    Made = TypeVar("Made", bound=Sheet)
+
+SHEETS = OBLIGOR, FIGURES, RATIOS, MEMO = "Obligor", "Figures", "Ratios", "Memo"
 STANDING = "Standing"
 _FAULT_MILLISECONDS, _CATCH_UP_MILLISECONDS = 12_000, 15
 _THEMES = {Theme.SYSTEM: "As the &system", Theme.LIGHT: "&Light", Theme.DARK: "&Dark"}
@@ -80,15 +85,11 @@ class Window(QMainWindow):
         self._canvas_module: ModuleType | None = None
         self.header, self.bar = Header(), SheetBar(SHEETS)
         self.issuer = Issuer(self, session, self.jobs)
-        self.obligor = ObligorSheet(session.house, session.do)
-        self.figures = FiguresSheet(session.house, session.do)
-        self.ratios = RatiosSheet(session.house)
-        self.memo = MemoSheet(session.house, session.do, self.issuer)
-        self.sheets: tuple[Sheet, ...] = (self.obligor, self.figures, self.ratios, self.memo)
+        self._built: dict[str, Sheet] = {}
         self.standing = StandingColumn(len(session.house.scale.grades))
         self.stack, self.split = QStackedWidget(), QSplitter()
         self.recorded, self.counts = QLabel(), QLabel()
-        self._behind: list[Sheet] = []
+        self._behind: list[str] = []
         self._catch_up = QTimer(self, singleShot=True, interval=_CATCH_UP_MILLISECONDS)
         self._split_before = self.split.saveState()
         self._lay_out()
@@ -98,7 +99,46 @@ class Window(QMainWindow):
         self._recolour()
         self._show_last_recorded()
         self._on_changed()
-        self.show_sheet(SHEETS.index(FiguresSheet.title))
+        self.show_named(FIGURES)
+
+    @property
+    def obligor(self) -> "ObligorSheet":
+        """Return the sheet Obligor."""
+        from creditdesk.desk.sheets.obligor import ObligorSheet  # a sheet is fetched when it is needed
+
+        return self._sheet(OBLIGOR, lambda: ObligorSheet(self.session.house, self.session.do))
+
+    @property
+    def figures(self) -> "FiguresSheet":
+        """Return the sheet Figures."""
+        from creditdesk.desk.sheets.figures import FiguresSheet
+
+        return self._sheet(FIGURES, lambda: FiguresSheet(self.session.house, self.session.do))
+
+    @property
+    def ratios(self) -> "RatiosSheet":
+        """Return the sheet Ratios."""
+        from creditdesk.desk.sheets.ratios import RatiosSheet
+
+        return self._sheet(RATIOS, lambda: RatiosSheet(self.session.house))
+
+    @property
+    def memo(self) -> "MemoSheet":
+        """Return the sheet Memo."""
+        from creditdesk.desk.sheets.memo import MemoSheet
+
+        def make() -> MemoSheet:
+            sheet = MemoSheet(self.session.house, self.session.do, self.issuer)
+            sheet.restore_split(self.settings.split("memo"))
+            sheet.sheet_asked.connect(self.show_named)
+            return sheet
+
+        return self._sheet(MEMO, make)
+
+    @property
+    def sheets(self) -> "tuple[Sheet, ...]":
+        """Return all sheets, in the order of their names in the bar."""
+        return self.obligor, self.figures, self.ratios, self.memo
 
     @property
     def theme(self) -> Palette:
@@ -114,15 +154,19 @@ class Window(QMainWindow):
     def settled(self) -> bool:
         """Say whether everything that follows from the case is on screen."""
         there = self._canvas_module is not None and not self.jobs.busy and not self._behind
-        return there and (self.wide or self.sheets[self.stack.currentIndex()].settled)
+        return there and (self.wide or self._current.settled)
+
+    @property
+    def _current(self) -> "Sheet":
+        return self._built[SHEETS[self.stack.currentIndex()]]
 
     def show_sheet(self, number: int) -> None:
         """Bring a sheet to the front."""
-        self._bring_up(self.sheets[number])
+        self._bring_up(SHEETS[number])
         self.stack.setCurrentIndex(number)
         self.show_wide(False)
         self.bar.mark(number)
-        self.sheets[number].setFocus()
+        self._current.setFocus()
 
     def show_named(self, name: str) -> None:
         """Bring the sheet of this title to the front, or give Standing the window."""
@@ -145,7 +189,7 @@ class Window(QMainWindow):
             self.standing.setFocus()
         else:
             self.split.restoreState(self._split_before)
-            self.sheets[self.stack.currentIndex()].setFocus()
+            self._current.setFocus()
 
     def go_to(self, place: str) -> None:
         """Show a place, as findings name it, on the sheet it belongs to."""
@@ -168,15 +212,15 @@ class Window(QMainWindow):
         """Take place, size, splitters and sheet from the last time; a sensible first shape where none is known."""
         self.restoreGeometry(self.settings.geometry)
         self.split.restoreState(self.settings.split("standing"))
-        self.memo.restore_split(self.settings.split("memo"))
         self.show_named(self.settings.sheet)
 
     def paintEvent(self, event: QPaintEvent) -> None:
-        """Fetch the chart library once the first paint is done."""
+        """Once the first paint is done, fetch the chart library and make the sheets that are not in sight."""
         super().paintEvent(event)
         if not self._warmed:
             self._warmed = True
             QTimer.singleShot(0, self._warm)
+            self._catch_up.start()
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Keep what lies over the window in its middle."""
@@ -201,13 +245,14 @@ class Window(QMainWindow):
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Let running work end, remember how the window stood, close the case."""
-        for sheet in self.sheets:
+        self._catch_up.stop()
+        for sheet in self._built.values():
             sheet.stop()
         self.jobs.stop()
-        self._catch_up.stop()
         self.settings.geometry = self.saveGeometry()
         self.settings.set_split("standing", self._split_before if self.wide else self.split.saveState())
-        self.settings.set_split("memo", self.memo.split.saveState())
+        if MEMO in self._built:
+            self.settings.set_split("memo", self.memo.split.saveState())
         self.settings.sheet = STANDING if self.wide else SHEETS[self.stack.currentIndex()]
         self.session.close()
         super().closeEvent(event)
@@ -217,8 +262,8 @@ class Window(QMainWindow):
         self.setMinimumSize(900, 600)
         self.resize(1440, 900)
         self.setAcceptDrops(True)
-        for sheet in self.sheets:
-            self.stack.addWidget(sheet)
+        for _ in SHEETS:
+            self.stack.addWidget(QWidget())
         self.split.addWidget(self.stack)
         self.split.addWidget(self.standing)
         self.split.setStretchFactor(0, 1)
@@ -251,9 +296,9 @@ class Window(QMainWindow):
         add_menu(bar, "&Case", self._case_entries())
         add_menu(bar, "&Edit", self._undo_actions())
         self._add_view_menu()
-        for sheet in self.sheets:
-            if entries := sheet.entries():
-                add_menu(bar, f"&{sheet.title}", entries)
+        self._sheet_menus = {name: add_menu(bar, f"&{name}", ()) for name in SHEETS}
+        for menu in self._sheet_menus.values():
+            menu.menuAction().setVisible(False)
         help_entries = (
             ("&Keys", QKeySequence.StandardKey.HelpContents, self._on_keys),
             ("&About", None, self._on_about),
@@ -314,14 +359,13 @@ class Window(QMainWindow):
         self.session.recorded.connect(self._on_recorded)
         self.session.refused.connect(self.show_fault)
         self._catch_up.timeout.connect(self._on_catch_up)
-        self.memo.sheet_asked.connect(self.show_named)
-        self.issuer.shown.connect(lambda: self.show_named(MemoSheet.title))
-        for sheet in self.sheets:
-            sheet.fault.connect(self.show_fault)
-            sheet.jump_asked.connect(self.go_to)
+        self.issuer.asked.connect(lambda: self.memo.hand_on())
+        self.issuer.shown.connect(lambda: self.show_named(MEMO))
         QGuiApplication.styleHints().colorSchemeChanged.connect(self.follow_theme)
 
     def _finds(self) -> Iterator[Find]:
+        for name in SHEETS:  # what a sheet can do is known once it is there
+            self._bring_up(name)
         yield from (find for find in action_finds(self.menuBar()) if find.keys != FIND_KEY)
         yield from case_finds(self.session.house, self.session.standing, self.go_to)
 
@@ -347,14 +391,39 @@ class Window(QMainWindow):
         self.header.show_notice(headline.notice)
         self.counts.setText(status_words(standing, self.session.house))
         self.standing.show_standing(standing)
-        self._behind = list(self.sheets)
-        self._bring_up(self.sheets[self.stack.currentIndex()])
-        self._catch_up.start()
+        self._behind = list(SHEETS)
+        if self._built:
+            self._bring_up(SHEETS[self.stack.currentIndex()])
+        if self._warmed:
+            self._catch_up.start()
         self._offer_revert()
 
-    def _bring_up(self, sheet: "Sheet") -> None:
-        if sheet in self._behind:
-            self._behind.remove(sheet)
+    def _sheet(self, name: str, make: "Callable[[], Made]") -> "Made":
+        """Return a sheet, made now and put in its place if this is the first time it is needed."""
+        if name not in self._built:
+            sheet = self._built[name] = make()
+            sheet.fault.connect(self.show_fault)
+            sheet.jump_asked.connect(self.go_to)
+            sheet.recolour(self.theme)
+            self._put_in_place(sheet)
+            menu = self._sheet_menus[name]
+            fill_menu(menu, sheet.entries())
+            menu.menuAction().setVisible(not menu.isEmpty())
+        return self._built[name]  # type: ignore[return-value]  # what was put there under this name
+
+    def _put_in_place(self, sheet: "Sheet") -> None:
+        number = SHEETS.index(sheet.title)
+        stood_in = self.stack.widget(number)
+        assert stood_in is not None
+        self.stack.insertWidget(number, sheet)
+        self.stack.removeWidget(stood_in)
+        stood_in.deleteLater()
+
+    def _bring_up(self, name: str) -> None:
+        """Bring a sheet up to date, made now if need be."""
+        sheet: Sheet = getattr(self, name.lower())
+        if name in self._behind:
+            self._behind.remove(name)
             sheet.show_standing(self.session.case, self.session.standing)
 
     def _on_catch_up(self) -> None:
@@ -415,7 +484,7 @@ class Window(QMainWindow):
         application = QApplication.instance()
         assert isinstance(application, QApplication)
         theme.apply(application, self.theme)
-        for sheet in self.sheets:
+        for sheet in self._built.values():
             sheet.recolour(self.theme)
         self._put_charts()
 
@@ -423,7 +492,8 @@ class Window(QMainWindow):
         """Import the chart library in a worker: on the main thread it would hold the window for half a second."""
 
         def work() -> object:
-            from creditdesk.desk import canvases  # this is the late import
+            with fetching():
+                from creditdesk.desk import canvases  # this is the late import
 
             return canvases
 

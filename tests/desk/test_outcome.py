@@ -154,21 +154,15 @@ def test_verify_asks_for_a_file(qtbot: QtBot, window: Window, signed: Path, monk
     ("decision", "conditions"),
     [("Approved", ""), ("Approved with conditions", "Half-yearly figures."), ("Declined", "Too much debt.")],
 )
+@pytest.mark.usefixtures("approver")
 def test_the_approver_countersigns_through_the_dialog(
-    qtbot: QtBot,
-    window: Window,
-    house: HouseBook,
-    signed: Path,
-    approver: Path,
-    monkeypatch: pytest.MonkeyPatch,
-    decision: str,
-    conditions: str,
+    qtbot: QtBot, window: Window, signed: Path, monkeypatch: pytest.MonkeyPatch, decision: str, conditions: str
 ) -> None:
+    approver, out = signed.with_name("approver.p12"), signed.with_name("memo-countersigned.pdf")
     _fill_countersigning(monkeypatch, signed, approver, decision, conditions)
     window.issuer.countersign()
     _wait(qtbot, window)
-    out = signed.with_name("memo-countersigned.pdf")
-    answer = verify_file(out, house)
+    answer = verify_file(out, window.session.house)
     assert answer.valid, answer.text
     facts = answer.signatures.signatures[1]
     assert (facts.name, facts.conditions) == ("Ben Approver", conditions)

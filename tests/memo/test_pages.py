@@ -1,4 +1,5 @@
 import threading
+from itertools import pairwise
 
 import pypdfium2
 import pytest
@@ -62,7 +63,7 @@ def test_every_page_says_which_sections_are_on_it(memo: bytes) -> None:
 
 def test_a_section_that_runs_over_stands_at_the_top_of_the_next_page(memo: bytes) -> None:
     parts = page_parts(memo)
-    later = [page for before, page in zip(parts, parts[1:], strict=False) if page[0].heading == before[-1].heading]
+    later = [page for before, page in pairwise(parts) if page[0].heading == before[-1].heading]
     assert later, "the demonstration has a section of more than one page"
     assert all(page[0].top == 0 for page in later)
 

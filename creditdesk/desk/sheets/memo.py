@@ -20,6 +20,7 @@ from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.desk.actions import Entry
 from creditdesk.desk.busy import Busy
+from creditdesk.desk.fetching import fetching
 from creditdesk.desk.frame import label
 from creditdesk.desk.outcome import Outcome
 from creditdesk.desk.preview import Preview
@@ -248,7 +249,6 @@ class MemoSheet(Sheet):
         self.preview.widened.connect(self._pause.start)
         self.outcome.back_asked.connect(self._on_back)
         self.outcome.verify_asked.connect(self._issuer.verify_path)
-        self._issuer.asked.connect(self.hand_on)
         self._issuer.issued.connect(self.outcome.show_issued)
         self._issuer.verified.connect(self.outcome.show_verification)
         self._issuer.shown.connect(self._on_outcome)
@@ -291,8 +291,9 @@ class MemoSheet(Sheet):
 def _drawn(case: Case, house: HouseBook, width: int, progress: Progress) -> tuple[list[object], list[object]]:
     """Return pages and what is on each; called by a worker."""
     progress.step("Fetching what draws the memo")
-    from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
-    from creditdesk.memo.pages import draw_pages, page_parts
+    with fetching():
+        from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
+        from creditdesk.memo.pages import draw_pages, page_parts
 
     progress.step("Writing the memo")
     pdf = draft_memo(case, house)
