@@ -117,11 +117,18 @@ def _asks_for_history(event: QEvent) -> bool:
 class CodeField(TextField):
     """Edit a code; names that contain what is typed are offered, capitals and spaces are seen to."""
 
-    def __init__(self, title: str, codes: Sequence[tuple[str, str]], hint: str = "") -> None:
+    def __init__(self, title: str, codes: Callable[[], Sequence[tuple[str, str]]], hint: str = "") -> None:
         super().__init__(title, hint)
-        completer = _Codes([f"{code}  {name}".strip() for code, name in codes], self)
-        completer.activated.connect(self._on_chosen)
-        self.setCompleter(completer)
+        self._codes = codes
+        self._offers: _Codes | None = None
+
+    def focusInEvent(self, event: QFocusEvent) -> None:
+        """Make the offers when they are first wanted: naming every country takes time."""
+        if self._offers is None:
+            self._offers = _Codes([f"{code}  {name}".strip() for code, name in self._codes()], self)
+            self._offers.activated.connect(self._on_chosen)
+            self.setCompleter(self._offers)
+        super().focusInEvent(event)
 
     def enter(self) -> None:
         """Hand the code on in capitals."""
@@ -132,8 +139,8 @@ class CodeField(TextField):
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
         """Let Escape close the list of offers first; the completer sends its keys here before it takes them."""
-        offers = self.completer().popup()
-        if event.key() == Qt.Key.Key_Escape and offers is not None and offers.isVisible():
+        offered = self._offers.popup() if self._offers is not None and event.key() == Qt.Key.Key_Escape else None
+        if offered is not None and offered.isVisible():
             event.ignore()
         else:
             super().keyPressEvent(event)

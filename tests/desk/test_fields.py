@@ -100,7 +100,7 @@ def test_a_recorded_value_that_changes_replaces_what_was_refused(qtbot: QtBot, s
 
 
 def test_a_code_is_found_by_its_name_and_stands_in_capitals(qtbot: QtBot, shown: Callable[[Paper], Paper]) -> None:
-    field = CodeField("Country", CODES)
+    field = CodeField("Country", lambda: CODES)
     paper = shown(Paper(field))
     field.selectAll()
     qtbot.keyClicks(field, "germ")
@@ -116,7 +116,7 @@ def test_a_code_is_found_by_its_name_and_stands_in_capitals(qtbot: QtBot, shown:
 def test_escape_closes_the_offers_first_and_then_takes_back_what_was_typed(
     qtbot: QtBot, shown: Callable[[Paper], Paper]
 ) -> None:
-    field = CodeField("Country", CODES)
+    field = CodeField("Country", lambda: CODES)
     paper = shown(Paper(field))
     field.selectAll()
     qtbot.keyClicks(field, "uni")

@@ -31,8 +31,7 @@ class CurrencyPanel(Form):
         super().__init__("Figures are in")
         self._do = do
         self._rates: Rates | None = None
-        codes = [(code, "") for code in sorted(CURRENCIES)]
-        self.currency = self.add(Line("Currency", CodeField("Currency", codes, "ISO 4217 code"), self._set_currency))
+        self.currency = self.add(Line("Currency", CodeField("Currency", _codes, "ISO 4217 code"), self._set_currency))
         self.unit = self.add(Line("Unit", ChoiceField("Unit"), self._set_unit))
         self.unit.field.offer(list(_UNITS.items()))
 
@@ -61,9 +60,7 @@ class RatesPanel(Form):
         self._case: Case | None = None
         self._ends: date | None = None
         self.date = self.add(Line("Rates of", TextField("Date of the exchange rates"), self._set_date))
-        self.other = self.add(
-            Line("Another", CodeField("Another currency", [(c, "") for c in sorted(CURRENCIES)], "code"), self._add)
-        )
+        self.other = self.add(Line("Another", CodeField("Another currency", _codes, "code"), self._add))
         self.rates: dict[str, Line[TextField]] = {}
 
     def show_standing(self, case: Case, standing: Standing) -> None:
@@ -133,6 +130,10 @@ class RatesPanel(Form):
         line.set_shown(shown=True)
         line.title.setText(f"{code} per {self._case.obligor.currency}")
         line.field.setFocus()
+
+
+def _codes() -> list[tuple[str, str]]:
+    return [(code, "") for code in sorted(CURRENCIES)]
 
 
 def _rate(text: str) -> float | None:

@@ -38,14 +38,18 @@ def country_name(code: str) -> str:
     return "" if territory == QLocale.Country.AnyCountry else QLocale.territoryToString(territory)
 
 
+def _countries() -> list[tuple[str, str]]:
+    return [(code, country_name(code)) for code in sorted(COUNTRIES)]
+
+
 class IdentityPanel(Form):
     """Edit who the borrower is, one command per entry."""
 
     def __init__(self, do: Do) -> None:
         super().__init__("Borrower")
         self._do = do
-        codes = [(code, country_name(code)) for code in sorted(COUNTRIES)]
-        country, activity = CodeField("Country", codes, "ISO 3166 code or name"), TextField("Activity", "such as 25.11")
+        country = CodeField("Country", _countries, "ISO 3166 code or name")
+        activity = TextField("Activity", "such as 25.11")
         self.name = self.add(Line("Name", TextField("Name"), self._setter("name", str.strip)), wide=True)
         self.legal_form = self.add(Line("Legal form", ChoiceField("Legal form"), self._setter("legal_form")))
         self.lei = self.add(Line("LEI", TextField("LEI", "20 characters"), self._set_lei))

@@ -124,24 +124,25 @@ class ObligorSheet(Sheet):
         return others.get(name) or self.identity.field(name) or self.identity.name.field
 
     def _lay_out(self) -> None:
-        left, right = QVBoxLayout(), QVBoxLayout()
-        for column, panels in (
-            (left, (self.identity, self.currency, self.assessment, self.rates)),
-            (right, (self.models, self.texts)),
-        ):
-            column.setSpacing(18)
-            for panel in panels:
-                column.addWidget(panel)
-            self._columns.addLayout(column, 1)
-        left.addStretch(1)
-        self._columns.setContentsMargins(22, 10, 16, 14)
-        self._columns.setSpacing(22)
-        self._inside.setLayout(self._columns)
+        """Lay out from the outside in: a widget that is dressed before it has its place is dressed again there."""
+        whole = QVBoxLayout(self)
+        whole.setContentsMargins(0, 0, 0, 0)
+        whole.addWidget(self.view)
         self.view.setWidgetResizable(True)
         self.view.setFrameShape(QFrame.Shape.NoFrame)
         self.view.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.view.setAccessibleName("Obligor")
         self.view.setWidget(self._inside)
-        whole = QVBoxLayout(self)
-        whole.setContentsMargins(0, 0, 0, 0)
-        whole.addWidget(self.view)
+        self._inside.setLayout(self._columns)
+        self._columns.setContentsMargins(22, 10, 16, 14)
+        self._columns.setSpacing(22)
+        left, right = QVBoxLayout(), QVBoxLayout()
+        for column, panels in (
+            (left, (self.identity, self.currency, self.assessment, self.rates)),
+            (right, (self.models, self.texts)),
+        ):
+            self._columns.addLayout(column, 1)
+            column.setSpacing(18)
+            for panel in panels:
+                column.addWidget(panel)
+        left.addStretch(1)
