@@ -142,7 +142,9 @@ class SetObligor(Edit, frozen=True, tag="set_obligor"):
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name the field and its value."""
-        return f"{self.field.replace('_', ' ').capitalize()} to {self.value or 'nothing'}"
+        name = "LEI" if self.field == "lei" else self.field.replace("_", " ").capitalize()
+        value = str(self.value).replace("_", " ") if self.field == "legal_form" else self.value
+        return f"{name} to {value or 'nothing'}"
 
 
 class _ObligorOnly(msgspec.Struct, frozen=True):
