@@ -4,14 +4,15 @@ from collections.abc import Iterator
 from math import sqrt
 
 from creditdesk.base.display import format_number, format_pd, format_percent
+from creditdesk.case.offers import calibration_words
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.case.words import long_date
 from creditdesk.charts.words import contribution_scale, factor_value, ratio_text, signed
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Pairs, Row, RowKind, Section, Subheading, Tone, text_row
 from creditdesk.memo.blocks import without_empty as _without_empty
-from creditdesk.memo.text import NIL, pd_text
-from creditdesk.model.spec import INTERCEPT, Calibration, Factor, Link, ModelSpec, Rule, terms_of
+from creditdesk.memo.text import NIL
+from creditdesk.model.spec import INTERCEPT, Factor, Link, ModelSpec, Rule, terms_of
 
 _LINKS = {
     Link.LOGIT: "logistic function",
@@ -93,7 +94,7 @@ def _facts(standing: Standing, spec: ModelSpec, house: HouseBook) -> Iterator[tu
     if spec.fit is not None:
         fit = f"{spec.fit.method}, log-likelihood {format_number(spec.fit.log_likelihood, 2)}"
         yield "Fit", f"{fit} (constant alone {format_number(spec.fit.null_log_likelihood, 2)})"
-    yield "Calibration", _calibration_words(spec.calibration)
+    yield "Calibration", calibration_words(spec.calibration)
     yield "Reference borrower", f"{standing.reference.text}; score {format_number(standing.reference.score, 3)}"
     yield "PD floor of the house", format_pd(house.settings.pd_floor) if house.settings.pd_floor > 0 else "none"
     yield "Owner", spec.owner or "not stated"
@@ -114,17 +115,6 @@ def _horizon(standing: Standing, spec: ModelSpec) -> str:
     if spec.link is Link.NONE:
         return ""
     return f"{spec.horizon_months} months, {long_date(standing.pd_runs_from)} to {long_date(standing.pd_runs_to)}"
-
-
-def _calibration_words(calibration: Calibration | None) -> str:
-    if calibration is None:
-        return "none: PDs are those of the fitted model"
-    if calibration.method == "prior_shift":
-        moved = f"shifted from the sample's rate {pd_text(calibration.sample_rate)} to {pd_text(calibration.base_rate)}"
-        return f"{moved} (King and Zeng 2001). {calibration.text}".strip()
-    intercept, slope = calibration.intercept or 0.0, 1.0 if calibration.slope is None else calibration.slope
-    moved = f"log-odds = {format_number(intercept, 4)} + {format_number(slope, 4)} × model log-odds"
-    return f"{moved}. {calibration.text}".strip()
 
 
 def _coefficients(spec: ModelSpec, standing: Standing) -> Grid:
