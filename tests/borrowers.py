@@ -38,6 +38,11 @@ def shipped_house() -> HouseBook:
     return load_house_book(resources_folder() / "housebook")
 
 
+def intercept_as_written() -> str:
+    """Return the lead model's intercept as its file states it, to be replaced in copies of the file."""
+    return repr(shipped_house().models[LEAD].spec.intercept)
+
+
 def demo(name: str = SOUND) -> Case:
     path = resources_folder() / "demo" / f"{name}.case.toml"
     return read_case(path.read_bytes(), shipped_house().chart, file=path.name)

@@ -150,7 +150,7 @@ def _unit_jumps(statements: StatementSet) -> Iterator[Finding]:
     for before, after in pairwise(range(len(statements.periods))):
         pair = np.abs(first[np.ix_(lines, [before, after])])
         both = pair[np.all((pair > 0) & np.isfinite(pair), axis=1)]
-        jumps = np.log10(both[:, 1] / both[:, 0])
+        jumps = np.log10(both[:, 1]) - np.log10(both[:, 0])  # a quotient of extremes would overflow
         for power in (sign * size for size in UNIT_JUMPS for sign in (1, -1)):
             count = int(np.count_nonzero(np.abs(jumps - power) < _JUMP_SLACK))
             if count >= _JUMP_LINES and 2 * count > len(jumps):

@@ -128,7 +128,7 @@ def test_a_factor_states_its_treatment_and_the_rule_that_was_used(house: HouseBo
     case = apply(demo(house), SetFigures((Figure("finance_costs", 2, math.nan),)))
     factors = {factor.key: factor for factor in assess(case, house).factors}
     cover = factors["interest_cover"].treatment
-    assert (cover.cap_low, cover.cap_high, cover.transform) == (-4.06, 29.6, "signed_log")
+    assert (cover.cap_low, cover.cap_high, cover.transform) == (0.0, 29.6, "signed_log")
     assert cover.rule == "own coefficient, not disclosed"
     assert cover.evidence.startswith("Accounts without interest expense")
     assert factors["equity_ratio"].treatment.rule == ""

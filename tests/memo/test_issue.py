@@ -23,10 +23,11 @@ from creditdesk.memo.issue import Key, countersign, draft_memo, issue_signed, is
 from creditdesk.memo.parts import CASE, HOUSE_BOOK, LEAD_MODEL, RESULT
 from creditdesk.memo.signatures import State, inspect
 from creditdesk.memo.verify import verify_file
-from tests.borrowers import LEAD, demo, shipped_house
+from tests.borrowers import LEAD, demo, intercept_as_written, shipped_house
 from tests.memos import NOW
 
 HOUSE = shipped_house()
+INTERCEPT = intercept_as_written()
 PASSPHRASE = "correct horse"
 APPROVED = (Decision.APPROVE, "")
 
@@ -129,7 +130,7 @@ def test_a_case_that_cannot_be_assessed_gets_no_memo(keys: tuple[Key, Key], old:
 def led(tmp_path: Path) -> tuple[Case, Path]:
     """Return a case that a model file from beside it leads, and the folder."""
     own = HOUSE.files[f"models/{LEAD}.toml"].replace(f'name = "{LEAD}"'.encode(), b'name = "own"')
-    (tmp_path / "own.toml").write_bytes(own.replace(b"-4.184175981007511", b"-3.0"))
+    (tmp_path / "own.toml").write_bytes(own.replace(INTERCEPT.encode(), b"-3.0"))
     return msgspec.structs.replace(demo(), model=ModelChoice("own.toml")), tmp_path
 
 

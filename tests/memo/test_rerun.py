@@ -20,9 +20,10 @@ from creditdesk.house.load import model_from_bytes
 from creditdesk.house.pack import FILE_LIMIT, SIZE_LIMIT, pack
 from creditdesk.memo.parts import CASE, HOUSE_BOOK, LEAD_MODEL, RESULT
 from creditdesk.memo.rerun import TOLERANCE, _differences, rerun
-from tests.borrowers import LEAD, SOUND, STRETCHED, case_of, demo, shipped_house
+from tests.borrowers import LEAD, SOUND, STRETCHED, case_of, demo, intercept_as_written, shipped_house
 
 HOUSE = shipped_house()
+INTERCEPT = intercept_as_written()
 Parts = dict[str, bytes]
 
 
@@ -50,7 +51,7 @@ def with_result(change: Callable[[dict[str, Any]], object]) -> Parts:
 def own_model(intercept: str) -> bytes:
     """Return the shipped model under another name and with another intercept."""
     text = HOUSE.files[f"models/{LEAD}.toml"].decode()
-    return text.replace(f'name = "{LEAD}"', 'name = "own"').replace("-4.184175981007511", intercept).encode()
+    return text.replace(f'name = "{LEAD}"', 'name = "own"').replace(INTERCEPT, intercept).encode()
 
 
 def numbers_in(value: Any, steps: tuple[Any, ...] = ()) -> Iterator[tuple[Any, ...]]:  # noqa: ANN401  any JSON value
@@ -269,7 +270,7 @@ def test_without_it_or_with_another_one_it_does_not(led: Parts) -> None:
 
 def test_no_attached_model_stands_in_for_one_of_the_house_book() -> None:
     """A model under the house's own name would let any PD pass as the house's."""
-    tuned = HOUSE.files[f"models/{LEAD}.toml"].replace(b"-4.184175981007511", b"-9.0")
+    tuned = HOUSE.files[f"models/{LEAD}.toml"].replace(INTERCEPT.encode(), b"-9.0")
     house = with_model(HOUSE, model_from_bytes(tuned, HOUSE, file="x"))
     flattering = result_bytes(assess(demo(SOUND), house))
     assert json.loads(flattering)["pd_model"] < json.loads(sound()[RESULT])["pd_model"] / 50
