@@ -10,7 +10,8 @@ from creditdesk.case.document import Case
 from creditdesk.case.store import CaseFile
 from creditdesk.case.trail import utc_now
 from creditdesk.desk.session import Session
-from creditdesk.desk.sheets.memo import MemoSheet, TextBlock
+from creditdesk.desk.sheets.memo import MemoSheet
+from creditdesk.desk.textblock import TextBlock
 from creditdesk.desk.window import SHEETS, STANDING, Window
 from creditdesk.desk.worker import Progress
 from creditdesk.house.book import HouseBook

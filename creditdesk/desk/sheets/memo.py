@@ -2,11 +2,10 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import QByteArray, QEvent, QMimeData, QTimer, Signal
-from PySide6.QtGui import QFocusEvent, QHideEvent, QKeyEvent, QKeySequence, QShowEvent
+from PySide6.QtCore import QByteArray, QTimer, Signal
+from PySide6.QtGui import QHideEvent, QKeySequence, QShowEvent
 from PySide6.QtWidgets import (
     QHBoxLayout,
-    QPlainTextEdit,
     QPushButton,
     QSplitter,
     QStackedWidget,
@@ -26,6 +25,7 @@ from creditdesk.desk.outcome import Outcome
 from creditdesk.desk.preview import Preview
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.signing import Issuer
+from creditdesk.desk.textblock import TextBlock
 from creditdesk.desk.worker import Jobs, Progress, Stopped
 from creditdesk.house.book import HouseBook
 
@@ -35,71 +35,7 @@ BLOCKS = (
     ("recommendation", "Recommendation", "Yours alone: the program drafts none."),
     ("conditions", "Conditions", "What must hold before and after drawing."),
 )
-_PAUSE, _TYPING_PAUSE = 350, 1500
-
-
-class TextBlock(QPlainTextEdit):
-    """Edit one text block; what was typed is handed on when the cursor leaves it or typing pauses.
-
-    Undo takes back what was typed since; where nothing was, the keys are left to the window.
-    """
-
-    left = Signal(str)
-
-    def __init__(self, title: str, hint: str) -> None:
-        super().__init__()
-        self.setPlaceholderText(hint)
-        self.setAccessibleName(title)
-        self.setTabChangesFocus(True)
-        self._known = ""
-        self._pause = QTimer(self, singleShot=True, interval=_TYPING_PAUSE)
-        self._pause.timeout.connect(self.hand_on)
-        self.textChanged.connect(self._pause.start)
-
-    def show_text(self, text: str) -> None:
-        """Show the text of the case, if it is another one than before; what is being typed stays."""
-        if text != self._known:
-            self._known = text
-            if text != self.toPlainText():
-                self._replace(text)
-        if text == self.toPlainText():  # from here on undo and redo are those of the case
-            self.document().clearUndoRedoStacks()
-
-    def _replace(self, text: str) -> None:
-        place = self.textCursor().position()
-        self.setPlainText(text)
-        cursor = self.textCursor()
-        cursor.setPosition(min(place, len(text.encode("utf-16-le")) // 2))
-        self.setTextCursor(cursor)
-
-    def take_back(self) -> None:
-        """Show the text of the case again in place of what was typed."""
-        self.setPlainText(self._known)
-
-    def hand_on(self) -> None:
-        """Hand on what was typed and has not been handed on yet."""
-        self._pause.stop()
-        if self.toPlainText() != self._known:
-            self.left.emit(self.toPlainText())
-
-    def focusOutEvent(self, event: QFocusEvent) -> None:
-        """Hand the text on."""
-        super().focusOutEvent(event)
-        self.hand_on()
-
-    def event(self, event: QEvent) -> bool:
-        """Leave undo and redo to the window where there is nothing of them here."""
-        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.ShortcutOverride:
-            document, keys = self.document(), QKeySequence.StandardKey
-            undo = event.matches(keys.Undo) and not document.isUndoAvailable()
-            if undo or (event.matches(keys.Redo) and not document.isRedoAvailable()):
-                event.ignore()
-                return True
-        return super().event(event)
-
-    def canInsertFromMimeData(self, source: QMimeData) -> bool:
-        """Leave files that are dropped to the window."""
-        return not source.hasUrls() and super().canInsertFromMimeData(source)
+_PAUSE = 350
 
 
 class MemoSheet(Sheet):
