@@ -8,7 +8,7 @@ from creditdesk.base.palette import DARK, Palette
 from creditdesk.case.standing import Curve, SampleBin, Standing
 from creditdesk.charts.board import Board
 from creditdesk.charts.frame import Frame, decades, score_ticks, tick_text
-from creditdesk.charts.key import draw_key, score_title
+from creditdesk.charts.key import draw_key
 from creditdesk.charts.placing import Box
 from creditdesk.charts.style import CAP_HEIGHT, LINE_HEIGHT, Pen, Type, type_size
 
@@ -22,7 +22,7 @@ def draw_backdrop(board: Board, layer: str, frame: Frame, standing: Standing, pa
     if curve is None:
         return
     _draw_grade_bands(board, layer, frame, curve, palette)
-    _draw_axes(board, layer, frame, standing, palette)
+    _draw_axes(board, layer, frame, palette)
     _draw_curve(board, layer, frame, curve, palette)
     for bin_ in curve.bins:
         _draw_bin(board, layer, frame, bin_, palette)
@@ -66,7 +66,7 @@ def _draw_grade_bands(board: Board, layer: str, frame: Frame, curve: Curve, pale
             board.box(layer, (plot.left, bottom), size, Pen(palette.band), z=0.5)
 
 
-def _draw_axes(board: Board, layer: str, frame: Frame, standing: Standing, palette: Palette) -> None:
+def _draw_axes(board: Board, layer: str, frame: Frame, palette: Palette) -> None:
     plot, size = frame.plot, type_size(palette)
     style = Type(palette.second_ink, size, align="right")
     for pd in decades(frame.pd_low):
@@ -80,7 +80,7 @@ def _draw_axes(board: Board, layer: str, frame: Frame, standing: Standing, palet
         board.line(layer, [(x, plot.bottom), (x, plot.bottom - 2)], Pen(palette.rule, 0.8), z=0.8)
         if x > plot.left + size or decades(frame.pd_low)[-1] > frame.pd_low * 1.1:  # else it would touch the corner's
             board.text(layer, (x, baseline), label, style.but(align="center"))
-    board.text(layer, (plot.right, baseline - LINE_HEIGHT * size), score_title(standing), style)
+    board.text(layer, (plot.right, baseline - LINE_HEIGHT * size), frame.title, style)
 
 
 def _draw_curve(board: Board, layer: str, frame: Frame, curve: Curve, palette: Palette) -> None:

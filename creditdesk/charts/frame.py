@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from creditdesk.base.display import format_number, format_percent
 from creditdesk.case.standing import Curve, Standing
-from creditdesk.charts.key import Entry, key_entries, key_leading, key_lines, score_title
+from creditdesk.charts.key import Entry, key_leading, title_and_key
 from creditdesk.charts.placing import Box
 from creditdesk.charts.style import LINE_HEIGHT, Size, text_width
 
@@ -23,7 +23,7 @@ _STEPS = (0.5, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0)
 class Frame:
     """Map scores and probabilities to points inside ``plot``; the probability axis is logarithmic.
 
-    ``key``: the lines of the key for which room is left under the plot.
+    ``key``: the lines of the key for which room is left under the plot; ``title``: the score axis' name.
     """
 
     plot: Box
@@ -32,6 +32,7 @@ class Frame:
     pd_low: float
     pd_high: float = 1.0
     key: tuple[tuple[Entry, ...], ...] = ()
+    title: str = ""
 
     def x(self, score: float) -> float:
         """Return where ``score`` stands, held at the edges."""
@@ -73,10 +74,10 @@ def make_frame(standing: Standing, curve: Curve, size: Size, type_points: float)
     left = max(text_width(text, type_points) for text in ticks) + 6
     right = text_width("grade 12", type_points) + 20
     width = max(size[0] - right, left + 40) - left
-    key = key_lines(key_entries(standing, curve), score_title(standing), width, type_points)
+    title, key = title_and_key(standing, curve, width, type_points)
     bottom = (2 * LINE_HEIGHT + 0.8) * type_points + (len(key) - 1) * key_leading(type_points)
     plot = Box(left, bottom, left + width, max(size[1] - 0.75 * type_points, bottom + 40))
-    return Frame(plot, low, high, pd_low, key=tuple(tuple(line) for line in key))
+    return Frame(plot, low, high, pd_low, key=tuple(tuple(line) for line in key), title=title)
 
 
 def decades(pd_low: float) -> list[float]:

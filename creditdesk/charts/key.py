@@ -12,14 +12,12 @@ from creditdesk.charts.style import Pen, Size, Type, text_width, type_size
 Entry = tuple[str, str]
 """Shape and the words beside it."""
 
-SCORE_TITLES = {"logit": "score (log-odds of default)", "probit": "score (index units)"}
+SCORE_TITLES = {
+    "logit": ("score (log-odds of default)", "score (log-odds)", "score"),
+    "probit": ("score (index units)", "score"),
+}
 _SHAPE, _GAP, _BEFORE_TITLE = 9.0, 10.0, 10.0
 _MOST_LINES = 2
-
-
-def score_title(standing: Standing) -> str:
-    """Name the axis of scores."""
-    return SCORE_TITLES.get(standing.model.link, "score")
 
 
 def key_entries(standing: Standing, curve: Curve) -> list[Entry]:
@@ -50,6 +48,13 @@ def key_lines(entries: Sequence[Entry], title: str, width: float, size: float) -
             lines[-1].append(entry)
             left -= needed + _GAP
     return lines
+
+
+def title_and_key(standing: Standing, curve: Curve, width: float, size: float) -> tuple[str, list[list[Entry]]]:
+    """Name the axis of scores as fully as the key leaves room for, and return the key's lines."""
+    entries, titles = key_entries(standing, curve), SCORE_TITLES.get(standing.model.link, ("score",))
+    ways = [(title, key_lines(entries, title, width, size)) for title in titles]
+    return max(ways, key=lambda way: sum(map(len, way[1])))  # of equals the first
 
 
 def draw_key(board: Board, layer: str, start: Size, lines: Sequence[Sequence[Entry]], palette: Palette) -> None:

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
 
 WIDE = 900
 """From this width in pixels on, verdict and curve stand beside contributions and findings."""
+NARROWEST = 400
 _CURVE_HEIGHTS = (202, 340)
 _WIDE_CURVE_HEIGHTS = (240, 520)
 _HEADINGS = 110
@@ -86,13 +87,14 @@ class StandingColumn(QWidget):
         self.setObjectName("standing")
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
         self.setStyleSheet(_STYLE)
+        self.setMinimumWidth(NARROWEST)
         self._grades = grades
         self._standing: Standing | None = None
         self._palette = LIGHT
         self._canvases: ChartCanvases | None = None
         self.verdict, self.findings, self.look = Verdict(), FindingsList(), FactorLook()
         self.switch, self.switch_note = WaySwitch(), label("second", wrap=True)
-        self.heading = label("heading", _REFERENCE_HEADING)
+        self.heading = label("heading", _REFERENCE_HEADING, wrap=True)
         self.cautions = label("second", wrap=True)
         self.curve_place, self.contributions_place = ChartPlace(262), ChartPlace(190)
         self._lay_out()

@@ -49,6 +49,13 @@ def test_other_years_and_uncertainty_are_named_on_the_curve(width: float) -> Non
     assert_tidy(figure)
 
 
+def test_a_shorter_name_of_the_axis_makes_room_for_the_key() -> None:
+    said = words(curve_figure(standing(), LIGHT, (268, 170)))
+    assert set(NAMES) <= set(said)
+    assert "score (log-odds)" in said or "score" in said
+    assert TITLE in words(curve_figure(standing(), LIGHT, (345, 170)))
+
+
 def _without_band() -> Standing:
     shown = standing(past=())
     assert shown.curve is not None
