@@ -4,7 +4,7 @@ import threading
 from collections.abc import Callable
 from typing import Any
 
-from PySide6.QtCore import QObject, QRunnable, QThreadPool, Signal
+from PySide6.QtCore import QObject, QThreadPool, Signal
 
 
 class Stopped(Exception):
@@ -41,8 +41,8 @@ class _Messenger(QObject):
     failed = Signal(object)
 
 
-class Job(QRunnable):
-    """Run ``work`` in the thread pool and hand its result to ``done``, or its exception to ``failed``."""
+class Job:
+    """Run ``work`` in a thread and hand its result to ``done``, or its exception to ``failed``, on the main thread."""
 
     def __init__(
         self,
@@ -50,12 +50,15 @@ class Job(QRunnable):
         done: Callable[[Any], None],
         failed: Callable[[BaseException], None],
     ) -> None:
-        super().__init__()
-        self.setAutoDelete(False)
         self._work = work
         self._messenger = _Messenger()
         self._messenger.done.connect(done)
         self._messenger.failed.connect(failed)
+
+    def let_go(self) -> None:
+        """Let go of work and callbacks once they are over: a connection keeps what it calls, and whatever that knows."""
+        self._messenger.deleteLater()
+        del self._work
 
     def run(self) -> None:
         """Do the work; called by the pool."""
@@ -95,6 +98,7 @@ class Jobs(QObject):
                 if job not in self._running:  # stopped meanwhile: nobody waits for it any more
                     return
                 self._running.remove(job)
+                job.let_go()
                 then(result)
                 if not self._running:
                     self.idle.emit()
@@ -103,10 +107,12 @@ class Jobs(QObject):
 
         job = Job(work, finish(done), finish(failed))
         self._running.append(job)
-        self._pool.start(job)
+        self._pool.start(job.run)
 
     def stop(self) -> None:
         """Wait for what runs; nothing that waits in the queue is begun."""
         self._pool.clear()
         self._pool.waitForDone()
+        for job in self._running:
+            job.let_go()
         self._running.clear()
