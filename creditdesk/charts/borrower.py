@@ -1,6 +1,7 @@
 """The borrower on the curve: dot, interval, way to its grade, the trail of other years, the plain curve in small."""
 
-from collections.abc import Sequence
+import re
+from collections.abc import Iterator, Sequence
 from math import isfinite
 
 import numpy as np
@@ -51,17 +52,26 @@ def write_reason(
 ) -> None:
     """Say on the curve without a borrower why there is no PD; ``look`` as for a borrower."""
     palette, obstacles = look
-    size = type_size(palette)
-    words = " ".join(("No PD.", *standing.reasons))
     taken = Taken(frame.plot, list(obstacles))
     _draw_inset(board, layer, taken, standing, palette)
     _write_grades(board, layer, frame, standing, palette)
-    width = 0.42 * (frame.plot.right - frame.plot.left)
-    lines = wrap(words, width, size, Face.SANS_SEMIBOLD)
-    height = len(lines) * LINE_HEIGHT * size
-    top = min(frame.plot.bottom + height + 6, frame.plot.top)
-    style = Type(palette.caution, size, Face.SANS_SEMIBOLD)
-    board.lines(layer, (frame.plot.right - width - 6, top), lines, style, LINE_HEIGHT * size)
+    style = Type(palette.caution, type_size(palette), Face.SANS_SEMIBOLD)
+    leading = LINE_HEIGHT * style.size
+    for lines in _reason_lines(standing, frame, style):
+        width = max(text_width(line, style.size, style.face) for line in lines)
+        box = Box(0, 0, width, len(lines) * leading).moved(frame.plot.right - width - 6, frame.plot.bottom + 6)
+        if taken.free(box):
+            board.lines(layer, (box.left, box.top), lines, style, leading)
+            return
+
+
+def _reason_lines(standing: Standing, frame: Frame, style: Type) -> Iterator[list[str]]:
+    """Offer the reason why there is no PD in full, then without what stands in parentheses, then the fact alone."""
+    room = frame.plot.right - frame.plot.left
+    full = " ".join(("No PD.", *standing.reasons))
+    for words in (full, re.sub(r" \([^()]*\)", "", full), "No PD."):
+        for share in (0.42, 0.5, 0.6):
+            yield wrap(words, share * room, style.size, style.face)
 
 
 def _own_label(standing: Standing) -> str:

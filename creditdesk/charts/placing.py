@@ -40,6 +40,10 @@ class Box:
         """Return the box with a margin around it."""
         return Box(self.left - margin, self.bottom - margin, self.right + margin, self.top + margin)
 
+    def moved(self, x: float, y: float) -> "Box":
+        """Return the box moved to the right and up."""
+        return Box(self.left + x, self.bottom + y, self.right + x, self.top + y)
+
     @property
     def centre(self) -> Size:
         """Return the middle of the box."""

@@ -4,6 +4,7 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QVBoxLayout, QWidget
 
 from creditdesk.base.display import format_pd
+from creditdesk.base.findings import Severity
 from creditdesk.case.standing import Standing
 from creditdesk.desk.frame import label
 
@@ -107,10 +108,14 @@ def no_pd_words(standing: Standing) -> str:
 
 
 def why_no_pd(standing: Standing) -> str:
-    """Say why no PD is shown: for want of one, or because of findings."""
+    """Say why no PD is shown: for want of one, or because of findings, the first of which is named."""
     if standing.pd_final is None:
         return ". ".join(reason.rstrip(".") for reason in standing.reasons) + "."
-    return "The findings marked ■ have to be resolved first."
+    stops = [finding.text for finding in standing.findings if finding.severity is Severity.STOP]
+    first = f"■ {stops[0]} " if stops else ""
+    return (
+        f"{first}{'To be resolved first.' if len(stops) < 2 else f'To be resolved first, with {len(stops) - 1} more.'}"
+    )
 
 
 def _moved_by_hand(standing: Standing) -> bool:

@@ -121,6 +121,23 @@ def test_without_a_pd_the_curve_stands_with_the_reason() -> None:
     assert chart.board.marks(BACKDROP)
 
 
+@pytest.mark.parametrize("size", [(345, 128), (345, 150), (260, 150), (512, 200), (700, 420)], ids=str)
+def test_the_reason_never_covers_the_curve(size: tuple[float, float]) -> None:
+    reason = (
+        "Northlight SME gives no score: 4 of 7 factors are missing (Operating profit / assets, Interest cover, Debt / "
+        "EBITDA, Revenue growth), at most 3 may be"
+    )
+    shown = replace(without_pd(past=()), reasons=(reason,))
+    chart, frame = _chart(shown, size)
+    curve_points = frame.points(curve().scores, curve().pd)
+    said = [text for text in texts(chart.board.figure) if text.get_color() == LIGHT.caution]
+    assert said
+    assert said[0].get_text().startswith("No PD.")
+    left = min(text.get_position()[0] for text in said)
+    top = max(text.get_position()[1] for text in said) + 6
+    assert not any(x > left and y < top for x, y in curve_points)
+
+
 def test_a_model_without_a_link_has_words_instead_of_a_curve() -> None:
     figure = curve_figure(standing(curve=None), LIGHT, SIZE)
     said = " ".join(words(figure))

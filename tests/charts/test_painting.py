@@ -13,10 +13,11 @@ from numpy.typing import NDArray
 from creditdesk.base.numbers import sigmoid
 from creditdesk.base.palette import DARK, LIGHT, Palette
 from creditdesk.case.standing import Standing
+from creditdesk.charts.board import Board
 from creditdesk.charts.contributions import ContributionsChart
 from creditdesk.charts.curve import BACKDROP, CurveChart
 from creditdesk.charts.painting import Painter
-from creditdesk.charts.style import new_figure
+from creditdesk.charts.style import Align, Type, new_figure
 from tests.standings import curve, standing, without_pd
 
 Chart = CurveChart | ContributionsChart
@@ -95,6 +96,20 @@ def test_a_quick_painting_shows_what_a_full_draw_shows(
         assert np.abs(quick - full).mean() < 4  # words stand on whole pixels: at most half of one away
         ink = [np.abs(picture - picture[0, -1]).sum() for picture in (quick, full)]
         assert ink[0] == pytest.approx(ink[1], rel=0.02)
+
+
+@pytest.mark.parametrize("align", ["left", "center", "right"])
+@pytest.mark.parametrize("words", ["uncertainty of the coefficients", "−1 234.50x", "i", "Wj", "Ågrade 12"])
+def test_a_word_stands_where_a_full_draw_puts_it_and_is_never_cut(words: str, align: Align) -> None:
+    figure = _figure((400, 40), LIGHT)
+    board = Board(figure)
+    board.text("words", (200, 15), words, Type(LIGHT.ink, 9, align=align))
+    quick, full = (
+        np.flatnonzero((picture[:, :, 0] < 200).any(axis=0))
+        for picture in (_painted(Painter(board), figure), _drawn(figure))
+    )
+    assert abs(quick[0] - full[0]) <= 1
+    assert abs(quick[-1] - full[-1]) <= 1
 
 
 @pytest.mark.parametrize("make", [_curve, _contributions])

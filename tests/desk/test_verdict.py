@@ -3,6 +3,7 @@ from datetime import date
 
 import pytest
 
+from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import GradeStanding, PeriodStanding, Standing
 from creditdesk.desk.verdict import change_words, interval_words, no_pd_words, why_no_pd
 from tests.standings import standing, without_pd
@@ -60,4 +61,7 @@ def test_without_a_pd_the_reason_is_a_sentence() -> None:
     assert no_pd_words(without_pd()) == "No probability of default"
     assert why_no_pd(without_pd()) == "5 of 7 factors are missing; the model allows 3."
     assert no_pd_words(standing(usable=False)) == "Not usable yet"
-    assert why_no_pd(standing(usable=False)) == "The findings marked ■ have to be resolved first."
+    stop = Finding("statements.balance", Severity.STOP, "figures.total_assets[2025-12-31]", "Assets are 7 more.")
+    shown = standing(usable=False, findings=(stop,))
+    assert why_no_pd(shown) == "■ Assets are 7 more. To be resolved first."
+    assert why_no_pd(replace(shown, findings=(stop, stop, stop))).endswith("To be resolved first, with 2 more.")
