@@ -46,9 +46,15 @@ def make_action(parent: QObject, title: str, key: Key, do: Callable[[], object])
     if isinstance(key, str):
         action.setShortcut(QKeySequence(key))
     elif key is not None:
-        action.setShortcuts(key)
+        action.setShortcuts(sorted(QKeySequence.keyBindings(key), key=_rarity))
     action.triggered.connect(lambda _=False: do())
     return action
+
+
+def _rarity(keys: QKeySequence) -> int:
+    """Rank bindings: what every keyboard has comes before keys of its own, short ones before long ones."""
+    text = keys.toString(QKeySequence.SequenceFormat.PortableText)
+    return len(text) + (0 if "+" in text or text[1:].isdigit() else 100)
 
 
 def give_reason(action: QAction, reason: str) -> None:

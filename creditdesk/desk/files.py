@@ -86,6 +86,7 @@ class NewCase(QDialog):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.setWindowTitle("New case")
+        self.setMinimumWidth(460)
         self.name = QLineEdit()
         self.country, self.sector, self.currency = QLineEdit("GB"), QLineEdit("C"), QLineEdit("GBP")
         self.legal_form, self.unit, self.presentation = QComboBox(), QComboBox(), QComboBox()

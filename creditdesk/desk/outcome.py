@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     from creditdesk.memo.signatures import SignatureFacts
     from creditdesk.memo.verify import Verification
 
+_WIDEST = 820
 Fact = tuple[str, str, str]
 """Name, words, and the role that gives them their look."""
 
@@ -49,14 +50,23 @@ class Outcome(QWidget):
         self.copy.clicked.connect(lambda: QApplication.clipboard().setText(self.text))
         self.verify.clicked.connect(lambda: self.verify_asked.emit(self._path))
         buttons = QHBoxLayout()
-        buttons.setContentsMargins(24, 0, 24, 14)
         for button in (self.verify, self.back, self.copy):
             buttons.addWidget(button)
         buttons.addStretch(1)
+        self.told = QWidget()
+        inside = QWidget()
+        inside.setObjectName("outcome")
+        self._box = QVBoxLayout(inside)
+        self._box.setContentsMargins(24, 18, 24, 18)
+        self._box.setSpacing(14)
+        self._box.addWidget(self.told)
+        self._box.addLayout(buttons)
+        self._box.addStretch(1)
+        inside.setMaximumWidth(_WIDEST)
+        self.page.setWidget(inside)
         whole = QVBoxLayout(self)
         whole.setContentsMargins(0, 0, 0, 0)
-        whole.addWidget(self.page, 1)
-        whole.addLayout(buttons)
+        whole.addWidget(self.page)
 
     def show_issued(self, issued: "Issued") -> None:
         """Say what was written, who signed with which key, and offer to verify it."""
@@ -89,10 +99,9 @@ class Outcome(QWidget):
         self, path: Path, head: tuple[str, str], tables: list[list[Fact]], notes: list[tuple[str, str]], text: str
     ) -> None:
         self._path, self.text = path, text
-        page = QWidget()
-        page.setObjectName("outcome")
-        box = QVBoxLayout(page)
-        box.setContentsMargins(24, 18, 24, 18)
+        told = QWidget()
+        box = QVBoxLayout(told)
+        box.setContentsMargins(0, 0, 0, 0)
         box.setSpacing(10)
         box.addWidget(label("second", path.name, wrap=True))
         box.addWidget(_selectable(label(head[0], head[1], wrap=True)))
@@ -100,9 +109,11 @@ class Outcome(QWidget):
             box.addWidget(_table(facts))
         for role, words in notes:
             box.addWidget(_selectable(label(role, words, wrap=True)))
-        box.addStretch(1)
-        page.setAccessibleName(f"{path.name}: {head[1]}")
-        self.page.setWidget(page)
+        told.setAccessibleName(f"{path.name}: {head[1]}")
+        self._box.replaceWidget(self.told, told)
+        self.told.deleteLater()
+        self.told = told
+        self.page.verticalScrollBar().setValue(0)
 
 
 def grouped(fingerprint: str) -> str:

@@ -4,7 +4,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from PySide6.QtCore import QAbstractListModel, QEvent, QModelIndex, QObject, QPersistentModelIndex, QRect, QSize, Qt
-from PySide6.QtGui import QColor, QKeyEvent, QPainter, QPalette
+from PySide6.QtGui import QColor, QKeyEvent, QPainter
 from PySide6.QtWidgets import (
     QFrame,
     QLineEdit,
@@ -16,6 +16,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.desk.frame import label
 
 Index = QModelIndex | QPersistentModelIndex
@@ -52,12 +53,15 @@ class Find:
 
 
 def found(finds: Sequence[Find], typed: str) -> tuple[Find, ...]:
-    """Return what every word typed occurs in, in whatever order; titles that begin so come first."""
+    """Return what every word typed occurs in, in whatever order; titles that begin so come first.
+
+    Of equals, what can be done now comes before what cannot.
+    """
     words = typed.casefold().split()
     if not words:
         return tuple(find for find in finds if not find.searched_only)
-    hits = [(_distance(find, words), find) for find in finds]
-    return tuple(find for distance, find in sorted(hits, key=lambda hit: hit[0]) if distance < _NOWHERE)
+    hits = [(_distance(find, words), not find.enabled, find) for find in finds]
+    return tuple(find for distance, _, find in sorted(hits, key=lambda hit: hit[:2]) if distance < _NOWHERE)
 
 
 _NOWHERE = 4
@@ -103,6 +107,8 @@ class _Finds(QAbstractListModel):
 class _Rows(QStyledItemDelegate):
     """Draw title, menu and keys in one row; what cannot be done is grey and says so."""
 
+    palette = LIGHT
+
     def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:
         return QSize(200, _ROW)
 
@@ -110,15 +116,14 @@ class _Rows(QStyledItemDelegate):
         model = index.model()
         assert isinstance(model, _Finds)
         find = model.finds[index.row()]
-        palette: QPalette = option.palette
         area: QRect = option.rect
         state: QStyle.StateFlag = option.state
         painter.save()
         if state & QStyle.StateFlag.State_Selected:
-            painter.fillRect(area, palette.highlight())
+            painter.fillRect(area, QColor(self.palette.selection))
         room = area.adjusted(_MARGIN, 0, -_MARGIN, 0)
-        faint = palette.color(QPalette.ColorRole.PlaceholderText)
-        strong = palette.color(QPalette.ColorRole.Text) if find.enabled else faint
+        faint = QColor(self.palette.second_ink)
+        strong = QColor(self.palette.ink) if find.enabled else faint
         room.setRight(room.right() - _draw(painter, find.keys, room, faint, right=True))
         room.setLeft(room.left() + _draw(painter, find.title, room, strong))
         _draw(painter, find.note, room, faint)
@@ -155,6 +160,11 @@ class CommandPalette(QFrame):
         self.list.clicked.connect(lambda _: self.run_chosen())
         self.line.installEventFilter(self)
         self.hide()
+
+    def recolour(self, palette: Palette) -> None:
+        """Draw in another palette."""
+        self._rows.palette = palette
+        self.list.viewport().update()
 
     def open(self) -> None:
         """Come up empty, with the cursor in the line; what had the keyboard gets it back afterwards."""

@@ -131,6 +131,8 @@ class Window(QMainWindow):
             sheet = MemoSheet(self.session.house, self.session.do, self.issuer)
             sheet.restore_split(self.settings.split("memo"))
             sheet.sheet_asked.connect(self.show_named)
+            for block in sheet.blocks.values():
+                block.setReadOnly(bool(self.session.read_only))
             return sheet
 
         return self._sheet(MEMO, make)
@@ -358,6 +360,7 @@ class Window(QMainWindow):
         self.session.changed.connect(self._on_changed)
         self.session.recorded.connect(self._on_recorded)
         self.session.refused.connect(self.show_fault)
+        self.standing.jump_asked.connect(self.go_to)
         self._catch_up.timeout.connect(self._on_catch_up)
         self.issuer.asked.connect(lambda: self.memo.hand_on())
         self.issuer.shown.connect(lambda: self.show_named(MEMO))
@@ -486,6 +489,7 @@ class Window(QMainWindow):
         theme.apply(application, self.theme)
         for sheet in self._built.values():
             sheet.recolour(self.theme)
+        self.finder.recolour(self.theme)
         self._put_charts()
 
     def _warm(self) -> None:

@@ -56,7 +56,7 @@ class Job:
         self._messenger.failed.connect(failed)
 
     def let_go(self) -> None:
-        """Let go of work and callbacks once they are over: a connection keeps what it calls, and whatever that knows."""
+        """Let go of work and callbacks once they are over: a connection keeps what it calls and all that knows."""
         self._messenger.deleteLater()
         del self._work
 

@@ -99,7 +99,10 @@ def test_a_text_that_cannot_be_recorded_is_taken_back_and_said(
         window = open_window(Session(house, second.case, path, second))
         window.show_sheet(SHEETS.index("Memo"))
         block = window.memo.blocks["request"]
+        assert block.isReadOnly()
         _type(qtbot, block, "Mine")
+        assert block.toPlainText() == sound_case.texts["request"]
+        block.setPlainText("Mine")
         block.hand_on()
         assert block.toPlainText() == sound_case.texts["request"]
         assert "read-only" in window.statusBar().currentMessage()

@@ -45,9 +45,7 @@ def _fingerprint(path: Path) -> str:
 
 
 def _words(window: Window) -> str:
-    page = window.memo.outcome.page.widget()
-    assert page is not None
-    return "\n".join(shown.text() for shown in page.findChildren(QLabel))
+    return "\n".join(shown.text() for shown in window.memo.outcome.told.findChildren(QLabel))
 
 
 def _wait(qtbot: QtBot, window: Window) -> None:

@@ -42,6 +42,12 @@ def test_titles_that_begin_as_typed_come_before_those_that_hold_it_before_their_
     assert found((beside, inside, word, begins), "print") == (begins, word, inside, beside)
 
 
+def test_of_equals_what_can_be_done_comes_first() -> None:
+    cannot, can = Find("Redo", "Edit", lambda: None, enabled=False), Find("Request", "Obligor", lambda: None)
+    assert found((cannot, can), "re") == (can, cannot)
+    assert found((cannot, can), "") == (cannot, can)
+
+
 def test_what_is_only_searched_is_not_listed_before_something_is_typed() -> None:
     line = Find("Revenue", "Line", lambda: None, searched_only=True)
     assert found((line,), "  ") == ()
