@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import QLocale, QMimeData, QObject, Signal
+from PySide6.QtCore import QLocale, QObject, Signal
 from PySide6.QtWidgets import QApplication
 
 from creditdesk.base.errors import UserError
@@ -27,6 +27,7 @@ class BlockActions(QObject):
     def __init__(self, do: Do, table: FiguresTable) -> None:
         super().__init__(table)
         self._do, self._table, self._model = do, table, table.figures
+        self._copied = ("", b"")  # the text last put on the clipboard, and what was entered in its cells
 
     def choices(self) -> Sequence[tuple[str, Callable[[], object]] | None]:
         """List what can be done with the chosen cells, by title; None parts groups."""
@@ -49,11 +50,9 @@ class BlockActions(QObject):
         if not rows:
             return
         facts, periods = self._model.facts, [column - 1 for column in columns if self._model.is_period(column)]
-        data = QMimeData()
-        data.setText(blocks.copied_text(facts, rows, columns, usual_mark()))
-        if periods:
-            data.setData(blocks.OWN_FORMAT, blocks.copied_entries(facts, rows, periods))
-        QApplication.clipboard().setMimeData(data)
+        text = blocks.copied_text(facts, rows, columns, usual_mark())
+        self._copied = (text, blocks.copied_entries(facts, rows, periods) if periods else b"")
+        QApplication.clipboard().setText(text)
 
     def paste(self) -> None:
         """Put in what is on the clipboard, its first cell at the current one."""
@@ -64,12 +63,11 @@ class BlockActions(QObject):
         chosen, columns = self._chosen()
         rows = self._model.rows[min(self._numbers(), default=current.row()) :]
         target = blocks.Target(rows, len(chosen), max(min(columns, default=current.column()) - 1, 0))
-        data = QApplication.clipboard().mimeData()
-        if data.hasFormat(blocks.OWN_FORMAT):
-            entries = bytes(data.data(blocks.OWN_FORMAT).data())
+        text, (copied, entries) = QApplication.clipboard().text(), self._copied
+        if entries and text == copied:
             self._try(lambda: blocks.pasted_entries(entries, target, self._model.periods))
         else:
-            self._try(lambda: blocks.pasted_text(data.text(), target, self._model.facts, self._reading()))
+            self._try(lambda: blocks.pasted_text(text, target, self._model.facts, self._reading()))
 
     def clear(self) -> None:
         """Make the chosen cells not disclosed."""

@@ -16,7 +16,6 @@ from creditdesk.intake.amounts import Amount, AmountKind, Convention, Verdict, d
 from creditdesk.intake.block import Placed, read_block
 from creditdesk.intake.numerals import DecimalMark
 
-OWN_FORMAT = "application/x-creditdesk-figures"
 Ask = Callable[[Convention], DecimalMark | None]
 Grid = Sequence[Sequence[str]]
 
