@@ -15,6 +15,15 @@ from tests.window.charts import number
 Json = dict[str, Any]
 WATCHED = Path(__file__).with_name("watched.py")
 PATIENCE_SECONDS = 60
+_HOLD = """
+import sys
+from PySide6.QtGui import QGuiApplication
+application = QGuiApplication(["copied"])
+application.clipboard().setText(sys.stdin.read())
+application.processEvents()
+print("held", flush=True)
+application.exec()
+"""
 
 
 @contextmanager
@@ -55,10 +64,11 @@ class Hands:
         """Type a text."""
         self._do("type", "--delay", "15", "--", text)
 
-    def click(self, place: list[int], times: int = 1) -> None:
-        """Click at a place of the display."""
+    def click(self, place: list[int], times: int = 1, button: int = 1) -> None:
+        """Click at a place of the display; ``button`` 3 is the right one."""
         x, y = place
-        self._do("mousemove", "--sync", str(x), str(y), "click", "--repeat", str(times), "--delay", "60", "1")
+        clicks = ("click", "--repeat", str(times), "--delay", "60", str(button))
+        self._do("mousemove", str(x), str(y), *clicks)
 
     def _do(self, *asked: str) -> str:
         done = subprocess.run(
@@ -97,6 +107,10 @@ class Watched:
             assert time.monotonic() < end, f"the window never came to show that; it shows {str(shown)[:3000]}"
             time.sleep(0.05)
 
+    def scene(self, until: Callable[[Json], bool] = lambda _: True) -> Json:
+        """Wait for what is to be answered now: a menu, a dialog, a window."""
+        return self.wait(until, "scene")
+
     def stare(self, until: Callable[[Json], bool] = lambda _: True) -> Json:
         """Wait as well, and take in every pixel."""
         return self.wait(until, "stare")
@@ -124,10 +138,25 @@ def opened(command: Sequence[str], display: str, drafts: Path) -> Iterator[subpr
 
 
 @contextmanager
-def watched(case: Path, display: str, drafts: Path) -> Iterator[Watched]:
-    """Open the window on ``case`` and watch it."""
-    with opened(command_line(WATCHED, case), display, drafts) as process:
+def watched(case: Path | None, display: str, drafts: Path) -> Iterator[Watched]:
+    """Open the window on ``case``, or on nothing, and watch it."""
+    with opened(command_line(WATCHED, *([] if case is None else [case])), display, drafts) as process:
         yield Watched(process)
+
+
+@contextmanager
+def clipboard(display: str, text: str) -> Iterator[None]:
+    """Hold ``text`` on the clipboard of the display, as another program does that it was copied in."""
+    environment = {**os.environ, "DISPLAY": display, "QT_QPA_PLATFORM": "xcb"}
+    pipes = dict.fromkeys(("stdin", "stdout"), subprocess.PIPE)
+    holder = subprocess.Popen(command_line("-c", _HOLD), env=environment, text=True, **pipes)  # type: ignore[call-overload]
+    try:
+        holder.stdin.write(text)
+        holder.stdin.close()
+        assert holder.stdout.readline() == "held\n"
+        yield
+    finally:
+        _end(holder)
 
 
 @contextmanager
@@ -151,6 +180,7 @@ def _end(process: "subprocess.Popen[str]") -> None:
 def surroundings(display: str, drafts: Path) -> dict[str, str]:
     """Return the environment of a program on ``display`` that remembers nothing of other windows."""
     own = {"CREDITDESK_DRAFTS": str(drafts), "XDG_CONFIG_HOME": str(drafts.with_name("config"))}
+    own |= {"XDG_CURRENT_DESKTOP": ""}  # so that dialogs are Qt's own, whatever the machine has
     return {**os.environ, "DISPLAY": display, "QT_QPA_PLATFORM": "xcb", **own}
 
 
@@ -181,3 +211,17 @@ def enter_revenue(window: Watched, hands: Hands, amount: int) -> None:
     hands.press("Return")
     window.wait(lambda shown: number(shown["standing"]["cells"]["revenue"][2]) == amount)
     back_to_revenue(window, hands)
+
+
+def go_to_cell(window: Watched, hands: Hands, key: str, period: int) -> None:
+    """Walk with the arrow keys to the cell of a line and period: up or down first, for sideways a heading folds."""
+    for _ in range(12):
+        shown = window.wait(lambda _: True)
+        (row, at, column), wanted = shown["current"], shown["rows"][key]
+        if (at, column) == (key, period):
+            return
+        upright = ("Up" if row > wanted else "Down", abs(row - wanted))
+        arrow, steps = ("Left" if column > period else "Right", abs(column - period)) if at == key else upright
+        hands.press(*[arrow] * steps)
+        window.wait(lambda shown, before=shown["current"]: shown["current"] != before)
+    raise AssertionError(f"the arrow keys never came to {key}")

@@ -1,5 +1,6 @@
-"""The real window with an eye in it: each line on standard input, ``look`` or ``stare``, asks what it shows, the
-answer is a line of JSON.
+"""The real window with an eye in it: each line on standard input asks what it shows, the answer is a line of JSON.
+
+``look`` and ``stare`` ask for the window on a case, ``scene`` for whatever is to be answered now: menu, dialog, window.
 
 Nothing of the program is replaced. What is read are the widgets themselves and the marks on the charts, in pixels.
 """
@@ -11,7 +12,17 @@ from pathlib import Path
 from typing import Any
 
 from PySide6.QtCore import QPoint, QSocketNotifier
-from PySide6.QtWidgets import QApplication, QLineEdit, QPushButton, QWidget
+from PySide6.QtWidgets import (
+    QAbstractButton,
+    QAbstractSpinBox,
+    QApplication,
+    QComboBox,
+    QLineEdit,
+    QMenu,
+    QMenuBar,
+    QPushButton,
+    QWidget,
+)
 
 from creditdesk.desk.app import make_application, run
 from creditdesk.desk.tables.rows import RowKind
@@ -47,7 +58,10 @@ def seen(*, with_pixels: bool) -> Json:
         },
         "current": current(window),
         "rows": {row.key: number for number, row in enumerate(window.figures.model.rows)},
-        "places": places(window),
+        "places": places(window, window.figures.model.periods - 1),
+        "firsts": places(window, 0),
+        "sheet": sheet(window),
+        "ratios": ratios(window),
         "buttons": {one.text(): middle(one) for one in window.findChildren(QPushButton) if one.isVisible()},
         "dialog": dialog(),
     }
@@ -72,12 +86,29 @@ def current(window: Window) -> list[object]:
     return [index.row(), window.figures.model.rows[index.row()].key, index.column() - 1]
 
 
-def places(window: Window) -> dict[str, list[Any]]:
-    """Return row number and the screen position of the last period's cell, for the rows in sight."""
+def sheet(window: Window) -> str:
+    """Return the title of the sheet in front."""
+    return str(getattr(window.stack.currentWidget(), "title", ""))
+
+
+def ratios(window: Window) -> dict[str, list[str]]:
+    """Return what the sheet Ratios shows of each ratio, period by period; nothing while it is not in front."""
+    if sheet(window) != "Ratios":
+        return {}
+    model = window.ratios.model
+    return {
+        row.key: [str(model.cell(row.key, period).data() or "") for period in range(model.periods)]
+        for row in model.rows
+        if row.key
+    }
+
+
+def places(window: Window, period: int) -> dict[str, list[Any]]:
+    """Return row number and the screen position of a period's cell, for the rows in sight."""
     table, model = window.figures.table, window.figures.model
     found = {}
     for row in model.rows:
-        index = model.place(row.key, model.periods - 1)
+        index = model.place(row.key, period)
         rect = table.visualRect(index)
         if row.kind is RowKind.LINE and table.viewport().rect().contains(rect.center()):
             at = table.viewport().mapToGlobal(rect.center())
@@ -144,13 +175,62 @@ def dialog() -> Json | None:
     }
 
 
+def scene() -> Json:
+    """Return title, focus, fields, buttons and menu entries of what is to be answered now, with where to click them."""
+    over = QApplication.activePopupWidget() or QApplication.activeModalWidget()
+    roots = [over] if over is not None else [one for one in QApplication.topLevelWidgets() if one.isVisible()]
+    inside = [widget for root in roots for widget in (root, *root.findChildren(QWidget)) if widget.isVisible()]
+    focus = QApplication.focusWidget()
+    things: dict[str, Json] = {}
+    for widget in inside:
+        if isinstance(widget, (QAbstractButton, QLineEdit, QComboBox, QAbstractSpinBox)) and name_of(widget):
+            things.setdefault(name_of(widget), thing(widget))
+    return {
+        "settled": True,
+        "title": roots[0].windowTitle() if roots else "",
+        "focus": name_of(focus) if focus is not None else "",
+        "chosen": chosen_in(focus),
+        "things": things,
+        "menu": {name: at for widget in inside for name, at in entries(widget)},
+    }
+
+
+def name_of(widget: QWidget) -> str:
+    """Return what a person who hears the screen is told, else what is written on it, else its name in the code."""
+    written = widget.text().replace("&", "") if isinstance(widget, QAbstractButton) else ""
+    return widget.accessibleName() or written or widget.objectName()
+
+
+def chosen_in(widget: QWidget | None) -> list[object]:
+    """Return what is selected in a field and where the cursor stands: Tab goes through the parts of a date."""
+    lines = [widget] if isinstance(widget, QLineEdit) else widget.findChildren(QLineEdit) if widget is not None else []
+    return [(line.selectedText(), line.cursorPosition()) for line in lines]
+
+
+def thing(widget: QWidget) -> Json:
+    """Return where a field or button is, what it holds, and where its lower arrow would be if it has one."""
+    text = widget.currentText() if isinstance(widget, QComboBox) else widget.text()  # type: ignore[attr-defined]
+    corner = widget.mapToGlobal(QPoint(widget.width() - 8, 3 * widget.height() // 4))
+    return {"at": middle(widget), "text": text, "enabled": widget.isEnabled(), "lower": [corner.x(), corner.y()]}
+
+
+def entries(widget: QWidget) -> list[tuple[str, list[int]]]:
+    """Return the entries of a menu or menu bar with where to click them."""
+    if not isinstance(widget, (QMenu, QMenuBar)):
+        return []
+    shown = [(action, widget.actionGeometry(action)) for action in widget.actions() if action.isVisible()]
+    places = [(action.text(), widget.mapToGlobal(rect.center())) for action, rect in shown]
+    return [(text.partition("\t")[0].replace("&", ""), [at.x(), at.y()]) for text, at in places]
+
+
 def answer() -> None:
     """Answer one question, or end with the one who asks."""
     question = sys.stdin.readline()
     if not question:
         QApplication.quit()
         return
-    sys.stdout.write(json.dumps(seen(with_pixels=question == "stare\n")) + "\n")
+    shown = scene() if question == "scene\n" else seen(with_pixels=question == "stare\n")
+    sys.stdout.write(json.dumps(shown) + "\n")
     sys.stdout.flush()
 
 
@@ -158,4 +238,5 @@ if __name__ == "__main__":
     make_application()
     notifier = QSocketNotifier(sys.stdin.fileno(), QSocketNotifier.Type.Read)
     notifier.activated.connect(answer)
-    sys.exit(run(Path(sys.argv[1]), load_house_book(resources_folder() / "housebook")))
+    case = Path(sys.argv[1]) if len(sys.argv) > 1 else None
+    sys.exit(run(case, load_house_book(resources_folder() / "housebook")))
