@@ -4,6 +4,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import (
     QApplication,
     QFrame,
@@ -81,7 +82,6 @@ class Outcome(QWidget):
         )
         self._show(issued.path, ("heading", _first_clause(issued.words)), [facts], [("second", words)], issued.words)
         self.verify.show()
-        self.verify.setFocus()
 
     def show_verification(self, path: Path, answer: "Verification") -> None:
         """Say in words in which state a memo is, list its signatures, and tell how the re-run went."""
@@ -93,7 +93,17 @@ class Outcome(QWidget):
         head = ("strength" if answer.valid else "breach", state)
         self._show(path, head, signed, [*notes, ("second", rest[-1])], text)
         self.verify.hide()
-        self.back.setFocus()
+
+    def take_keyboard(self) -> None:
+        """Put the keyboard on what is most likely wanted next."""
+        (self.back if self.verify.isHidden() else self.verify).setFocus()
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Go back to the pages with Escape."""
+        if event.key() == Qt.Key.Key_Escape:
+            self.back_asked.emit()
+        else:
+            super().keyPressEvent(event)
 
     def _show(
         self, path: Path, head: tuple[str, str], tables: list[list[Fact]], notes: list[tuple[str, str]], text: str

@@ -91,7 +91,8 @@ def test_after_signing_the_fingerprint_is_shown_and_verifying_offered(
     assert str(out) in words
     assert "Ada Preparer" in words
     assert grouped(_fingerprint(preparer)) in words
-    qtbot.mouseClick(window.memo.outcome.verify, Qt.MouseButton.LeftButton)
+    assert window.focusWidget() is window.memo.outcome.verify
+    qtbot.keyClick(window.memo.outcome.verify, Qt.Key.Key_Space)
     _wait(qtbot, window)
     assert "Valid: signed by the preparer, awaiting countersignature." in _words(window)
     assert verify_file(out, house).valid
@@ -104,6 +105,7 @@ def test_a_memo_dropped_is_told_calmly_with_its_signatures_and_the_rerun(
     _wait(qtbot, window)
     assert SHEETS[window.stack.currentIndex()] == "Memo"
     assert window.memo.right.currentWidget() is window.memo.outcome
+    assert window.focusWidget() is window.memo.outcome.back
     words = _words(window)
     for part in ("Valid: signed by the preparer", "Ada Preparer", "sound", "Re-run from the attachments: every number"):
         assert part in words
@@ -113,7 +115,7 @@ def test_a_memo_dropped_is_told_calmly_with_its_signatures_and_the_rerun(
     qtbot.mouseClick(window.memo.outcome.copy, Qt.MouseButton.LeftButton)
     assert str(signed) in QApplication.clipboard().text()
     assert _fingerprint(preparer) in QApplication.clipboard().text()
-    qtbot.mouseClick(window.memo.outcome.back, Qt.MouseButton.LeftButton)
+    qtbot.keyClick(window.memo.outcome.back, Qt.Key.Key_Escape)
     assert window.memo.right.currentWidget() is window.memo.preview
 
 

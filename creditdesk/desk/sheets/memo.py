@@ -173,6 +173,7 @@ class MemoSheet(Sheet):
 
     def _on_outcome(self) -> None:
         self.right.setCurrentWidget(self.outcome)
+        self.outcome.take_keyboard()
 
     def _on_back(self) -> None:
         self.right.setCurrentIndex(0)
