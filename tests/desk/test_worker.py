@@ -1,8 +1,11 @@
+import gc
 import threading
+import weakref
 
+from PySide6.QtCore import QCoreApplication, QEvent
 from pytestqt.qtbot import QtBot
 
-from creditdesk.desk.worker import Jobs
+from creditdesk.desk.worker import Jobs, Progress, Stopped
 
 
 def test_a_result_comes_back_on_the_main_thread(qtbot: QtBot) -> None:
@@ -39,3 +42,38 @@ def test_results_of_stopped_jobs_are_dropped(qtbot: QtBot) -> None:
 
 def _unexpected(result: object) -> None:
     raise AssertionError(result)
+
+
+def test_the_way_is_told_on_the_main_thread_and_ends_where_it_is_stopped(qtbot: QtBot) -> None:
+    jobs, progress, ended = Jobs(), Progress(), []
+    told: list[tuple[str, int, int, int]] = []
+    progress.told.connect(lambda *step: told.append((*step, threading.get_ident())))
+    go = threading.Event()
+
+    def work() -> None:
+        progress.step("first", 0, 2)
+        go.wait(10)
+        progress.step("second", 1, 2)
+
+    jobs.start(work, _unexpected, ended.append)
+    qtbot.waitUntil(lambda: bool(told))
+    progress.stop()
+    go.set()
+    qtbot.waitUntil(lambda: not jobs.busy)
+    assert told == [("first", 0, 2, threading.get_ident())]
+    assert [str(error) for error in ended] == ["second"]
+    assert isinstance(ended[0], Stopped)
+
+
+def test_a_job_that_is_over_keeps_nothing_alive(qtbot: QtBot) -> None:
+    class Thing:
+        pass
+
+    jobs, thing = Jobs(), Thing()
+    kept = weakref.ref(thing)
+    jobs.start(lambda thing=thing: str(thing), lambda _result, thing=thing: None, _unexpected)
+    qtbot.waitUntil(lambda: not jobs.busy)
+    del thing
+    QCoreApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
+    gc.collect()
+    assert kept() is None

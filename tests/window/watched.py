@@ -61,6 +61,8 @@ def seen(*, with_pixels: bool) -> Json:
         "places": places(window, window.figures.model.periods - 1),
         "firsts": places(window, 0),
         "sheet": sheet(window),
+        "standing width": window.standing.width(),
+        "focus": focused(),
         "ratios": ratios(window),
         "buttons": {one.text(): middle(one) for one in window.findChildren(QPushButton) if one.isVisible()},
         "dialog": dialog(),
@@ -84,6 +86,12 @@ def current(window: Window) -> list[object]:
     if not index.isValid():
         return [-1, "", -1]
     return [index.row(), window.figures.model.rows[index.row()].key, index.column() - 1]
+
+
+def focused() -> str:
+    """Return the name of what has the keyboard."""
+    widget = QApplication.focusWidget()
+    return widget.accessibleName() if widget is not None else ""
 
 
 def sheet(window: Window) -> str:
