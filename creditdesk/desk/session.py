@@ -89,7 +89,8 @@ class Session(QObject):
         return self._record.trail() if self._record is not None else ()
 
     def close(self) -> None:
-        """Let the file go."""
+        """Let the file go, and the steps: Qt does not bear a stack that the collector takes apart with its steps."""
+        self.undo_stack.clear()
         if self._record is not None:
             self._record.close()
             self._record = None

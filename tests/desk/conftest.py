@@ -25,6 +25,22 @@ def house() -> HouseBook:
     return load_house_book(resources_folder() / "housebook")
 
 
+@pytest.fixture(autouse=True)
+def _sessions_are_closed(monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
+    """Close every session made in a test, as the program does when a window goes."""
+    made: list[Session] = []
+    begin = Session.__init__
+
+    def keep(session: Session, *arguments: object, **named: object) -> None:
+        begin(session, *arguments, **named)  # type: ignore[arg-type]
+        made.append(session)
+
+    monkeypatch.setattr(Session, "__init__", keep)
+    yield
+    for session in made:
+        session.close()
+
+
 @pytest.fixture
 def sound_case(house: HouseBook) -> Case:
     return load_any(resources_folder() / "demo" / SOUND, house.chart)
