@@ -133,7 +133,7 @@ def pasted_entries(data: bytes, target: Target, periods: int) -> Command:
 
 
 def pasted_text(text: str, target: Target, facts: Facts, reading: Reading) -> Command | None:
-    """Return the edit that pastes a block from elsewhere, None where the decimal mark was asked for and not answered.
+    """Return the edit that pastes a block from elsewhere; None where it changes nothing, or the mark was not answered.
 
     A first row that names periods places its columns by name; a first column of words is passed over. With as many
     rows as were chosen, or as there are from the current one down, the block goes row by row, a sum taking its total as
@@ -153,7 +153,14 @@ def pasted_text(text: str, target: Target, facts: Facts, reading: Reading) -> Co
     if mark is None:
         return None
     placed = read_block("\n".join("\t".join(cells) for cells in grid), mark, reading.unit, (len(rows), len(periods)))
-    return set_cells(_cells(placed, rows, periods))
+    changing = [pair for pair in _cells(placed, rows, periods) if not _blank_on_blank(facts, *pair)]
+    return set_cells(changing) if changing else None
+
+
+def _blank_on_blank(facts: Facts, row: Row, cell: Figure) -> bool:
+    """Say whether a cell would blank what is blank: such cells would make rows of nothing."""
+    entered = facts.entered if row.kind is RowKind.LINE else facts.printed
+    return bool(np.isnan(cell.amount) and np.isnan(entered(row.key, cell.period)))
 
 
 def _cells(placed: Iterable[Placed], rows: Sequence[Row], periods: Sequence[int]) -> Iterable[tuple[Row, Figure]]:

@@ -119,5 +119,6 @@ def why_no_pd(standing: Standing) -> str:
 
 
 def _moved_by_hand(standing: Standing) -> bool:
-    """Say whether floor, judgement or rules moved the PD that counts away from the model's."""
-    return standing.pd_calibrated is not None and standing.pd_final != standing.pd_calibrated
+    """Say whether floor, judgement or rules moved the PD that counts, as it is read, away from the model's."""
+    own, final = standing.pd_calibrated, standing.pd_final
+    return own is not None and final is not None and format_pd(own) != format_pd(final)

@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Iterator
 from pathlib import Path
+from weakref import ref
 
 import pytest
 from PySide6.QtCore import QSettings
@@ -28,17 +29,18 @@ def house() -> HouseBook:
 @pytest.fixture(autouse=True)
 def _sessions_are_closed(monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
     """Close every session made in a test, as the program does when a window goes."""
-    made: list[Session] = []
+    made: list[ref[Session]] = []
     begin = Session.__init__
 
     def keep(session: Session, *arguments: object, **named: object) -> None:
         begin(session, *arguments, **named)  # type: ignore[arg-type]
-        made.append(session)
+        made.append(ref(session))
 
     monkeypatch.setattr(Session, "__init__", keep)
     yield
-    for session in made:
-        session.close()
+    for held in made:
+        if (session := held()) is not None:
+            session.close()
 
 
 @pytest.fixture
