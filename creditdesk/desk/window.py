@@ -4,7 +4,7 @@ from collections.abc import Iterator
 from datetime import datetime
 from functools import partial
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, cast
 
 from PySide6.QtCore import Qt, QTimer, Signal
 from PySide6.QtGui import (
@@ -25,7 +25,6 @@ from PySide6.QtWidgets import (
     QLabel,
     QMainWindow,
     QSplitter,
-    QStackedWidget,
     QVBoxLayout,
     QWidget,
 )
@@ -43,14 +42,13 @@ from creditdesk.desk.palette import CommandPalette, Find
 from creditdesk.desk.revert import RevertDialog, case_after
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings, Theme
+from creditdesk.desk.sheetstack import SheetStack
 from creditdesk.desk.signing import Issuer
 from creditdesk.desk.standing import StandingColumn
 from creditdesk.desk.worker import Jobs
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
     from types import ModuleType
-    from typing import TypeVar
 
     from creditdesk.case.document import Case
     from creditdesk.desk.sheets.base import Sheet
@@ -59,11 +57,9 @@ if TYPE_CHECKING:
     from creditdesk.desk.sheets.obligor import ObligorSheet
     from creditdesk.desk.sheets.ratios import RatiosSheet
 
-    Made = TypeVar("Made", bound=Sheet)
-
 SHEETS = OBLIGOR, FIGURES, RATIOS, MEMO = "Obligor", "Figures", "Ratios", "Memo"
 STANDING = "Standing"
-_FAULT_MILLISECONDS, _CATCH_UP_MILLISECONDS = 12_000, 15
+_FAULT_MILLISECONDS = 12_000
 _THEMES = {Theme.SYSTEM: "As the &system", Theme.LIGHT: "&Light", Theme.DARK: "&Dark"}
 
 
@@ -85,12 +81,10 @@ class Window(QMainWindow):
         self._canvas_module: ModuleType | None = None
         self.header, self.bar = Header(), SheetBar(SHEETS)
         self.issuer = Issuer(self, session, self.jobs)
-        self._built: dict[str, Sheet] = {}
         self.standing = StandingColumn(len(session.house.scale.grades))
-        self.stack, self.split = QStackedWidget(), QSplitter()
+        makers = (self._make_obligor, self._make_figures, self._make_ratios, self._make_memo)
+        self.stack, self.split = SheetStack(dict(zip(SHEETS, makers, strict=True))), QSplitter()
         self.recorded, self.counts = QLabel(), QLabel()
-        self._behind: list[str] = []
-        self._catch_up = QTimer(self, singleShot=True, interval=_CATCH_UP_MILLISECONDS)
         self._split_before = self.split.saveState()
         self._lay_out()
         self.finder = CommandPalette(self, lambda: tuple(self._finds()))
@@ -104,43 +98,27 @@ class Window(QMainWindow):
     @property
     def obligor(self) -> "ObligorSheet":
         """Return the sheet Obligor."""
-        from creditdesk.desk.sheets.obligor import ObligorSheet  # a sheet is fetched when it is needed
-
-        return self._sheet(OBLIGOR, lambda: ObligorSheet(self.session.house, self.session.do))
+        return cast("ObligorSheet", self.stack.bring_up(OBLIGOR))
 
     @property
     def figures(self) -> "FiguresSheet":
         """Return the sheet Figures."""
-        from creditdesk.desk.sheets.figures import FiguresSheet
-
-        return self._sheet(FIGURES, lambda: FiguresSheet(self.session.house, self.session.do))
+        return cast("FiguresSheet", self.stack.bring_up(FIGURES))
 
     @property
     def ratios(self) -> "RatiosSheet":
         """Return the sheet Ratios."""
-        from creditdesk.desk.sheets.ratios import RatiosSheet
-
-        return self._sheet(RATIOS, lambda: RatiosSheet(self.session.house))
+        return cast("RatiosSheet", self.stack.bring_up(RATIOS))
 
     @property
     def memo(self) -> "MemoSheet":
         """Return the sheet Memo."""
-        from creditdesk.desk.sheets.memo import MemoSheet
-
-        def make() -> MemoSheet:
-            sheet = MemoSheet(self.session.house, self.session.do, self.issuer)
-            sheet.restore_split(self.settings.split("memo"))
-            sheet.sheet_asked.connect(self.show_named)
-            for block in sheet.blocks.values():
-                block.setReadOnly(bool(self.session.read_only))
-            return sheet
-
-        return self._sheet(MEMO, make)
+        return cast("MemoSheet", self.stack.bring_up(MEMO))
 
     @property
     def sheets(self) -> "tuple[Sheet, ...]":
         """Return all sheets, in the order of their names in the bar."""
-        return self.obligor, self.figures, self.ratios, self.memo
+        return self.stack.bring_all_up()
 
     @property
     def theme(self) -> Palette:
@@ -155,20 +133,16 @@ class Window(QMainWindow):
     @property
     def settled(self) -> bool:
         """Say whether everything that follows from the case is on screen."""
-        there = self._canvas_module is not None and not self.jobs.busy and not self._behind
-        return there and (self.wide or self._current.settled)
-
-    @property
-    def _current(self) -> "Sheet":
-        return self._built[SHEETS[self.stack.currentIndex()]]
+        there = self._canvas_module is not None and not self.jobs.busy and not self.stack.behind
+        return there and (self.wide or self.stack.current.settled)
 
     def show_sheet(self, number: int) -> None:
         """Bring a sheet to the front."""
-        self._bring_up(SHEETS[number])
+        self.stack.bring_up(SHEETS[number])
         self.stack.setCurrentIndex(number)
         self.show_wide(False)
         self.bar.mark(number)
-        self._current.setFocus()
+        self.stack.current.setFocus()
 
     def show_named(self, name: str) -> None:
         """Bring the sheet of this title to the front, or give Standing the window."""
@@ -191,14 +165,14 @@ class Window(QMainWindow):
             self.standing.setFocus()
         else:
             self.split.restoreState(self._split_before)
-            self._current.setFocus()
+            self.stack.current.setFocus()
 
     def go_to(self, place: str) -> None:
         """Show a place, as findings name it, on the sheet it belongs to."""
         number = self._sheet_of(place)
         if number is not None:
             self.show_sheet(number)
-            self.sheets[number].go_to(place)
+            self.stack.current.go_to(place)
 
     def show_fault(self, text: str) -> None:
         """Say in the status line what was wrong with an entry."""
@@ -222,7 +196,7 @@ class Window(QMainWindow):
         if not self._warmed:
             self._warmed = True
             QTimer.singleShot(0, self._warm)
-            self._catch_up.start()
+            self.stack.wake()
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Keep what lies over the window in its middle."""
@@ -247,15 +221,13 @@ class Window(QMainWindow):
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Let running work end, remember how the window stood, close the case."""
-        self._catch_up.stop()
-        for sheet in self._built.values():
-            sheet.stop()
+        self.stack.stop()
         self.jobs.stop()
         self.settings.geometry = self.saveGeometry()
         self.settings.set_split("standing", self._split_before if self.wide else self.split.saveState())
-        if MEMO in self._built:
+        if self.stack.has(MEMO):
             self.settings.set_split("memo", self.memo.split.saveState())
-        self.settings.sheet = STANDING if self.wide else SHEETS[self.stack.currentIndex()]
+        self.settings.sheet = STANDING if self.wide else self.stack.current_name
         self.session.close()
         super().closeEvent(event)
         self.closed.emit(self)
@@ -264,8 +236,6 @@ class Window(QMainWindow):
         self.setMinimumSize(900, 600)
         self.resize(1440, 900)
         self.setAcceptDrops(True)
-        for _ in SHEETS:
-            self.stack.addWidget(QWidget())
         self.split.addWidget(self.stack)
         self.split.addWidget(self.standing)
         self.split.setStretchFactor(0, 1)
@@ -361,14 +331,13 @@ class Window(QMainWindow):
         self.session.recorded.connect(self._on_recorded)
         self.session.refused.connect(self.show_fault)
         self.standing.jump_asked.connect(self.go_to)
-        self._catch_up.timeout.connect(self._on_catch_up)
+        self.stack.made.connect(self._on_made)
         self.issuer.asked.connect(lambda: self.memo.hand_on())
         self.issuer.shown.connect(lambda: self.show_named(MEMO))
         QGuiApplication.styleHints().colorSchemeChanged.connect(self.follow_theme)
 
     def _finds(self) -> Iterator[Find]:
-        for name in SHEETS:  # what a sheet can do is known once it is there
-            self._bring_up(name)
+        self.stack.bring_all_up()  # what a sheet can do is known once it is there
         yield from (find for find in action_finds(self.menuBar()) if find.keys != FIND_KEY)
         yield from case_finds(self.session.house, self.session.standing, self.go_to)
 
@@ -376,7 +345,7 @@ class Window(QMainWindow):
         """Return the number of the sheet that claims most of the beginning of ``place``; None where none does."""
         claims = [
             (len(start), number)
-            for number, sheet in enumerate(self.sheets)
+            for number, sheet in enumerate(self.stack.bring_all_up())
             for start in sheet.places
             if place.startswith(start)
         ]
@@ -394,46 +363,41 @@ class Window(QMainWindow):
         self.header.show_notice(headline.notice)
         self.counts.setText(status_words(standing, self.session.house))
         self.standing.show_standing(standing)
-        self._behind = list(SHEETS)
-        if self._built:
-            self._bring_up(SHEETS[self.stack.currentIndex()])
-        if self._warmed:
-            self._catch_up.start()
+        self.stack.show_standing(case, standing)
         self._offer_revert()
 
-    def _sheet(self, name: str, make: "Callable[[], Made]") -> "Made":
-        """Return a sheet, made now and put in its place if this is the first time it is needed."""
-        if name not in self._built:
-            sheet = self._built[name] = make()
-            sheet.fault.connect(self.show_fault)
-            sheet.jump_asked.connect(self.go_to)
-            sheet.recolour(self.theme)
-            self._put_in_place(sheet)
-            menu = self._sheet_menus[name]
-            fill_menu(menu, sheet.entries())
-            menu.menuAction().setVisible(not menu.isEmpty())
-        return self._built[name]  # type: ignore[return-value]  # what was put there under this name
+    def _make_obligor(self) -> "Sheet":
+        from creditdesk.desk.sheets.obligor import ObligorSheet  # a sheet is fetched when it is needed
 
-    def _put_in_place(self, sheet: "Sheet") -> None:
-        number = SHEETS.index(sheet.title)
-        stood_in = self.stack.widget(number)
-        assert stood_in is not None
-        self.stack.insertWidget(number, sheet)
-        self.stack.removeWidget(stood_in)
-        stood_in.deleteLater()
+        return ObligorSheet(self.session.house, self.session.do)
 
-    def _bring_up(self, name: str) -> None:
-        """Bring a sheet up to date, made now if need be."""
-        sheet: Sheet = getattr(self, name.lower())
-        if name in self._behind:
-            self._behind.remove(name)
-            sheet.show_standing(self.session.case, self.session.standing)
+    def _make_figures(self) -> "Sheet":
+        from creditdesk.desk.sheets.figures import FiguresSheet
 
-    def _on_catch_up(self) -> None:
-        """Bring one sheet up to date that nobody looks at, and come back for the next."""
-        if self._behind:
-            self._bring_up(self._behind[0])
-            self._catch_up.start()
+        return FiguresSheet(self.session.house, self.session.do)
+
+    def _make_ratios(self) -> "Sheet":
+        from creditdesk.desk.sheets.ratios import RatiosSheet
+
+        return RatiosSheet(self.session.house)
+
+    def _make_memo(self) -> "Sheet":
+        from creditdesk.desk.sheets.memo import MemoSheet
+
+        sheet = MemoSheet(self.session.house, self.session.do, self.issuer)
+        sheet.restore_split(self.settings.split("memo"))
+        sheet.sheet_asked.connect(self.show_named)
+        for block in sheet.blocks.values():
+            block.setReadOnly(bool(self.session.read_only))
+        return sheet
+
+    def _on_made(self, sheet: "Sheet") -> None:
+        sheet.fault.connect(self.show_fault)
+        sheet.jump_asked.connect(self.go_to)
+        sheet.recolour(self.theme)
+        menu = self._sheet_menus[sheet.title]
+        fill_menu(menu, sheet.entries())
+        menu.menuAction().setVisible(not menu.isEmpty())
 
     def _show_last_recorded(self) -> None:
         trail = self.session.trail()
@@ -487,7 +451,7 @@ class Window(QMainWindow):
         application = QApplication.instance()
         assert isinstance(application, QApplication)
         theme.apply(application, self.theme)
-        for sheet in self._built.values():
+        for sheet in self.stack.present:
             sheet.recolour(self.theme)
         self.finder.recolour(self.theme)
         self._put_charts()

@@ -17,6 +17,7 @@ from creditdesk.desk.actions import keys_of, placed_actions, plain, reason_of
 from creditdesk.desk.app import Desk, make_application
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings, Theme
+from creditdesk.desk.sheets.memo import MemoSheet
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import SHEETS, Window
 from creditdesk.house.book import HouseBook
@@ -191,17 +192,41 @@ def test_the_start_takes_a_case_and_no_memo(qtbot: QtBot, tmp_path: Path) -> Non
     assert not _drop(start, str(tmp_path / "a.pdf"))
 
 
+def _request_shown(window: Window) -> str:
+    """Return what the Memo shows, without asking for it to be brought up to date."""
+    memo = window.stack.sheet("Memo")
+    assert isinstance(memo, MemoSheet)
+    return memo.blocks["request"].toPlainText()
+
+
 def test_sheets_behind_catch_up_with_an_edit(qtbot: QtBot, window: Window) -> None:
     window.session.do(SetText("request", "Another request"))
-    assert window._behind
-    qtbot.waitUntil(lambda: not window._behind)
-    assert window.memo.blocks["request"].toPlainText() == "Another request"
+    assert window.stack.behind
+    assert _request_shown(window) != "Another request"
+    qtbot.waitUntil(lambda: not window.stack.behind)
+    assert _request_shown(window) == "Another request"
+
+
+def test_sheets_out_of_sight_are_made_after_the_first_paint(
+    qtbot: QtBot, house: HouseBook, sound_case: Case, tmp_path: Path
+) -> None:
+    make_application()
+    QSettings().clear()
+    window = Window(Session(house, sound_case, tmp_path / "case.deskcase"))
+    qtbot.addWidget(window)
+    assert [sheet.title for sheet in window.stack.present] == ["Figures"]
+    window.show()
+    qtbot.waitUntil(lambda: window.settled, timeout=20_000)
+    assert sorted(sheet.title for sheet in window.stack.present) == sorted(SHEETS)
+    assert [window.stack.sheet(name).title for name in SHEETS] == list(SHEETS)
+    menus = [action.text() for action in window.menuBar().actions() if action.isVisible()]
+    assert [menu for menu in menus if menu.removeprefix("&") in SHEETS] == [f"&{name}" for name in SHEETS]
 
 
 def test_a_sheet_is_up_to_date_the_moment_it_is_shown(window: Window) -> None:
     window.session.do(SetText("request", "Another request"))
     window.show_sheet(SHEETS.index("Memo"))
-    assert window.memo.blocks["request"].toPlainText() == "Another request"
+    assert _request_shown(window) == "Another request"
 
 
 def test_a_place_goes_to_the_sheet_that_claims_most_of_it(window: Window) -> None:

@@ -1,0 +1,103 @@
+"""The sheets one behind the other: each made when it is first needed, those out of sight brought up to date later."""
+
+from collections.abc import Callable, Mapping
+
+from PySide6.QtCore import QTimer, Signal
+from PySide6.QtWidgets import QStackedWidget, QWidget
+
+from creditdesk.case.document import Case
+from creditdesk.case.standing import Standing
+from creditdesk.desk.sheets.base import Sheet
+
+_BREATH_MILLISECONDS = 15
+
+
+class SheetStack(QStackedWidget):
+    """Hold the sheets by name. ``made``: a sheet that was made just now and stands in its place.
+
+    What is in sight follows the case at once; the others follow one at a time, with a breath between, so that none of
+    them holds up what the user does.
+    """
+
+    made = Signal(object)
+
+    def __init__(self, makers: Mapping[str, Callable[[], Sheet]]) -> None:
+        super().__init__()
+        self._makers = makers
+        self._made: dict[str, Sheet] = {}
+        self._shown: tuple[Case, Standing] | None = None
+        self.behind: list[str] = []
+        self._later = QTimer(self, singleShot=True, interval=_BREATH_MILLISECONDS)
+        self._later.timeout.connect(self._on_later)
+        self._awake = False
+        for _ in makers:
+            self.addWidget(QWidget())
+
+    @property
+    def present(self) -> tuple[Sheet, ...]:
+        """Return the sheets that have been made."""
+        return tuple(self._made.values())
+
+    @property
+    def current_name(self) -> str:
+        """Return the name of the sheet in front."""
+        return tuple(self._makers)[self.currentIndex()]
+
+    @property
+    def current(self) -> Sheet:
+        """Return the sheet in front."""
+        return self.sheet(self.current_name)
+
+    def has(self, name: str) -> bool:
+        """Say whether a sheet has been made."""
+        return name in self._made
+
+    def sheet(self, name: str) -> Sheet:
+        """Return a sheet, made now if this is the first time it is needed."""
+        if name not in self._made:
+            sheet = self._made[name] = self._makers[name]()
+            number = list(self._makers).index(name)
+            stood_in = self.widget(number)
+            assert stood_in is not None
+            self.insertWidget(number, sheet)
+            self.removeWidget(stood_in)
+            stood_in.deleteLater()
+            self.made.emit(sheet)
+        return self._made[name]
+
+    def bring_up(self, name: str) -> Sheet:
+        """Return a sheet that shows the case as it stands."""
+        sheet = self.sheet(name)
+        if name in self.behind and self._shown is not None:
+            self.behind.remove(name)
+            sheet.show_standing(*self._shown)
+        return sheet
+
+    def bring_all_up(self) -> tuple[Sheet, ...]:
+        """Return all sheets in their order, every one of them showing the case as it stands."""
+        return tuple(self.bring_up(name) for name in self._makers)
+
+    def show_standing(self, case: Case, standing: Standing) -> None:
+        """Show another case, at once where it is in sight."""
+        self._shown, self.behind = (case, standing), list(self._makers)
+        if self._made:
+            self.bring_up(self.current_name)
+        if self._awake:
+            self._later.start()
+
+    def wake(self) -> None:
+        """Begin to make and bring up to date what is out of sight: what is in sight has been painted."""
+        self._awake = True
+        self._later.start()
+
+    def stop(self) -> None:
+        """Let running work end, because the window closes."""
+        self._awake = False
+        self._later.stop()
+        for sheet in self.present:
+            sheet.stop()
+
+    def _on_later(self) -> None:
+        if self.behind:
+            self.bring_up(self.behind[0])
+            self._later.start()
