@@ -70,3 +70,25 @@ def test_windows_are_let_go_when_closed(desk: Desk, qtbot: QtBot) -> None:
     qtbot.waitUntil(lambda: window.settled, timeout=20_000)
     window.close()
     assert desk.windows == []
+
+
+def test_a_case_opened_from_a_window_gets_a_window_of_its_own(qtbot: QtBot, desk: Desk) -> None:
+    first = desk.open_path(resources_folder() / "demo" / "brackwater-millworks.case.toml")
+    assert first is not None
+    first.open_asked.emit(resources_folder() / "demo" / "tarnside-castings.case.toml")
+    assert desk.windows == [first]  # it is read and shown in later turns of the event loop
+    qtbot.waitUntil(lambda: len(desk.windows) == 2)
+    assert desk.windows[1].header.obligor.accessibleName() == "Tarnside Castings Ltd"
+    for window in desk.windows:
+        qtbot.waitUntil(lambda window=window: window.settled, timeout=20_000)
+
+
+def test_what_cannot_be_opened_from_a_window_is_said(
+    qtbot: QtBot, desk: Desk, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    said: list[str] = []
+    monkeypatch.setattr(QMessageBox, "exec", lambda box: said.append(box.informativeText()))
+    desk.open_soon(tmp_path / "nowhere.deskcase")
+    qtbot.waitUntil(lambda: bool(said))
+    assert "nowhere.deskcase" in said[0]
+    assert desk.windows == []
