@@ -271,6 +271,7 @@ class Window(QMainWindow):
         self._sheet_menus = {name: add_menu(bar, f"&{name}", ()) for name in SHEETS}
         for menu in self._sheet_menus.values():
             menu.menuAction().setVisible(False)
+        add_menu(bar, "S&tanding", self.standing.entries())
         help_entries = (
             ("&Keys", QKeySequence.StandardKey.HelpContents, self._on_keys),
             ("&About", None, self._on_about),

@@ -247,3 +247,10 @@ def test_standing_leads_to_a_cell_and_gives_the_room_back_for_it(window: Window)
     window.standing.jump_asked.emit("figures.inventories[2024-12-31]")
     assert not window.wide
     assert window.figures.table.currentIndex() == window.figures.model.place("inventories", 1)
+
+
+def test_what_the_standing_can_do_stands_in_a_menu(window: Window) -> None:
+    menus = {action.text().replace("&", ""): action.menu() for action in window.menuBar().actions()}
+    titles = [action.text().replace("&", "") for action in menus["Standing"].actions() if action.text()]
+    assert titles[0] == "Reference or last year"
+    assert "Copy the curve's numbers" in titles
