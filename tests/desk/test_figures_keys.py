@@ -2,6 +2,7 @@
 
 import pytest
 from PySide6.QtCore import QPoint, Qt
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QLineEdit, QMenu, QTableView
 from pytestqt.qtbot import QtBot
 
@@ -26,6 +27,14 @@ def test_enter_takes_what_was_typed_and_goes_down(hands: Hands) -> None:
     assert hands.current == ("trade_receivables", 1)
     hands.type("7", Key.Key_Return, SHIFT)
     assert hands.current == ("cash", 1)
+
+
+@pytest.mark.parametrize("held", [CONTROL, SHIFT])
+def test_a_move_of_the_program_begins_a_new_block_whatever_key_is_held(hands: Hands, held: Qt.KeyboardModifier) -> None:
+    hands.at("cash", 2)
+    QTest.keyPress(hands.sheet.legend, Key.Key_A, held)  # nothing takes it; Qt remembers the modifier
+    hands.at("cash", 1)
+    assert [index.column() for index in hands.sheet.table.selectedIndexes()] == [2]
 
 
 def test_tab_goes_right_and_enter_returns_below_the_first_cell(hands: Hands) -> None:

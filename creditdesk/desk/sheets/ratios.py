@@ -11,7 +11,6 @@ from PySide6.QtWidgets import (
     QHBoxLayout,
     QPushButton,
     QSplitter,
-    QTableView,
     QVBoxLayout,
 )
 
@@ -22,6 +21,7 @@ from creditdesk.desk.actions import Entry
 from creditdesk.desk.frame import label
 from creditdesk.desk.panels.ratio import RatioPanel
 from creditdesk.desk.sheets.base import Sheet
+from creditdesk.desk.tables.plain import PlainTable
 from creditdesk.desk.tables.ratiocells import ANNUALISED_MARK, FACTOR_MARK, RatioFacts
 from creditdesk.desk.tables.ratiopaint import PADDING, TIGHT, RatiosDelegate
 from creditdesk.desk.tables.ratios import RatiosModel
@@ -35,7 +35,7 @@ _SIDE_BY_SIDE = 1180
 """Width from which the laid-open ratio reads better beside the table than below it."""
 
 
-class RatiosTable(QTableView):
+class RatiosTable(PlainTable):
     """Let cells be copied to a spreadsheet, and Enter go to the numbers of the chosen ratio."""
 
     opened = Signal()

@@ -11,6 +11,7 @@ from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.edges import edge
 from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.header import PeriodHeader
+from creditdesk.desk.tables.plain import PlainTable
 from creditdesk.desk.tables.rows import RowKind
 from creditdesk.desk.tables.widths import Widths, share_out
 
@@ -29,7 +30,7 @@ SHIFT_CONTROL = Qt.KeyboardModifier.ShiftModifier | Qt.KeyboardModifier.ControlM
 _ENTER = (Qt.Key.Key_Return, Qt.Key.Key_Enter)
 
 
-class FiguresTable(QTableView):
+class FiguresTable(PlainTable):
     """Show the figures and take keys: arrows, Enter down, Tab right, Home and End, Ctrl with an arrow to an edge.
 
     ``copied``, ``pasted``, ``cleared``: a key for the block asked for it. ``left``: Tab or F6 leaves the table,
