@@ -1,0 +1,1 @@
+"""What-if on one borrower: marks, stress events, grids, break-evens, reach and simulation."""
