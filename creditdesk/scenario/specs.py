@@ -40,7 +40,7 @@ class GridSpec(_Study, frozen=True, tag="grid", kw_only=True):
 
 
 class LimitKind(StrEnum):
-    """Say what breaks: the final grade gets worse than ``key``, an amount or ratio falls below or rises above ``at``."""
+    """Say what breaks: a final grade worse than ``key``, an amount or ratio below or above ``at``."""
 
     GRADE = "grade"
     BELOW = "below"
@@ -63,7 +63,7 @@ class BreakEvenSpec(_Study, frozen=True, tag="break_even", kw_only=True):
 
 
 class Lever(_Spec, frozen=True):
-    """Let reach pull one lever within ``range``; ``cost`` per unit of its movement, ``step`` where it moves in steps."""
+    """Let reach pull one lever within ``range``; ``cost`` per unit moved, ``step`` where it moves in steps."""
 
     range: Range
     cost: float
@@ -71,7 +71,7 @@ class Lever(_Spec, frozen=True):
 
 
 class ReachSpec(_Study, frozen=True, tag="reach", kw_only=True):
-    """Ask for the cheapest change over the levers that brings the borrower to ``grade`` or better, after house rules."""
+    """Ask for the cheapest change over the levers to ``grade`` or better, after house rules."""
 
     grade: str
     levers: tuple[Lever, ...]
