@@ -8,7 +8,7 @@ from argparse import Namespace
 from datetime import UTC, datetime
 from pathlib import Path
 
-from creditdesk.base.errors import UsageError, UserError
+from creditdesk.base.errors import UsageError
 from creditdesk.base.palette import DARK, LIGHT
 from creditdesk.case.assess import assess as assess_case
 from creditdesk.case.convert import load_any, save_any
@@ -60,25 +60,6 @@ def _passphrase(variable: str) -> str:
     if passphrase is None:
         raise UsageError("passphrase", f"--passphrase-env {variable}: no environment variable has this name.")
     return passphrase
-
-
-def open_window(options: Namespace) -> int:
-    """Open the window."""
-    _refuse_without_display()
-    from creditdesk.desk.fetching import fetching  # needs no Qt, but belongs to it
-
-    with fetching():
-        from creditdesk.desk.app import run  # the only command but one that needs Qt
-
-        house = house_book(options)
-    return run(options.case, house)
-
-
-def _refuse_without_display() -> None:
-    """Say that there is no display before Qt finds out: it ends the process, and blames a library that is there."""
-    chosen = any(os.environ.get(name) for name in ("DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM"))
-    if sys.platform.startswith("linux") and not chosen:
-        raise UserError("display", "The window needs a display: neither DISPLAY nor WAYLAND_DISPLAY is set.")
 
 
 def assess(options: Namespace) -> int:

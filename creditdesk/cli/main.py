@@ -7,7 +7,7 @@ from pathlib import Path
 
 import creditdesk
 from creditdesk.base.errors import UserError
-from creditdesk.cli.options import build_parser
+from creditdesk.cli.options import build_parser, command_named
 
 OUR_BUG = 70
 INTERRUPTED = 130
@@ -22,7 +22,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     given = list(sys.argv[1:] if arguments is None else arguments)
     try:
         options = build_parser().parse_args(_with_command(given))
-        return int(options.run(options))
+        return command_named(options.run)(options)
     except UserError as error:
         for fault in error.faults:
             print(f"creditdesk: {fault}", file=sys.stderr)

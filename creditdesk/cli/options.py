@@ -1,12 +1,12 @@
-"""The commands and their options."""
+"""The commands and their options; what carries a command out is imported when it is run."""
 
 import argparse
 from collections.abc import Callable
+from importlib import import_module
 from pathlib import Path
 from typing import TypeAlias
 
 import creditdesk
-from creditdesk.cli import commands
 
 Run = Callable[[argparse.Namespace], int]
 Commands: TypeAlias = "argparse._SubParsersAction[argparse.ArgumentParser]"  # noqa: SLF001  the type has no other name
@@ -35,7 +35,14 @@ def build_parser() -> argparse.ArgumentParser:
     return parser
 
 
-def _command(every: Commands, name: str, run: Run, words: str) -> argparse.ArgumentParser:
+def command_named(name: str) -> Run:
+    """Import what carries a command out: ``module.function`` of this package, as the parser leaves it in ``run``."""
+    module, function = name.split(".")
+    found: Run = getattr(import_module(f"creditdesk.cli.{module}"), function)
+    return found
+
+
+def _command(every: Commands, name: str, run: str, words: str) -> argparse.ArgumentParser:
     parser = every.add_parser(name, help=words, description=words)
     parser.set_defaults(run=run)
     return parser
@@ -53,13 +60,13 @@ def _key(parser: argparse.ArgumentParser, *, required: bool) -> None:
 
 
 def _open(every: Commands) -> None:
-    parser = _command(every, "open", commands.open_window, "open the window on a case")
+    parser = _command(every, "open", "opening.open_window", "open the window on a case")
     parser.add_argument("case", type=Path, nargs="?", metavar="CASE", help=".deskcase or .case.toml")
     _house(parser)
 
 
 def _assess(every: Commands) -> None:
-    parser = _command(every, "assess", commands.assess, "print where the borrower stands")
+    parser = _command(every, "assess", "commands.assess", "print where the borrower stands")
     parser.add_argument("case", type=Path, metavar="CASE")
     parser.add_argument("--model", metavar="NAME|PATH", help="apply this model in place of the case's lead model")
     parser.add_argument("--json", action="store_true", help="print JSON and nothing else")
@@ -67,7 +74,7 @@ def _assess(every: Commands) -> None:
 
 
 def _memo(every: Commands) -> None:
-    parser = _command(every, "memo", commands.memo, "write the memo, signed by the preparer")
+    parser = _command(every, "memo", "commands.memo", "write the memo, signed by the preparer")
     parser.add_argument("case", type=Path, metavar="CASE")
     parser.add_argument("--out", type=Path, required=True, metavar="MEMO.pdf")
     parser.add_argument("--unsigned", action="store_true", help="write it without a signature")
@@ -76,7 +83,7 @@ def _memo(every: Commands) -> None:
 
 
 def _countersign(every: Commands) -> None:
-    parser = _command(every, "countersign", commands.countersign, "add the approver's decision and signature")
+    parser = _command(every, "countersign", "commands.countersign", "add the approver's decision and signature")
     parser.add_argument("memo", type=Path, metavar="MEMO.pdf")
     parser.add_argument(
         "--decision", required=True, choices=("approve", "approve_with_conditions", "decline", "return")
@@ -87,7 +94,7 @@ def _countersign(every: Commands) -> None:
 
 
 def _verify(every: Commands) -> None:
-    parser = _command(every, "verify", commands.verify, "check signatures and attachments of a memo and re-run it")
+    parser = _command(every, "verify", "commands.verify", "check signatures and attachments of a memo and re-run it")
     parser.add_argument("memo", type=Path, metavar="MEMO.pdf")
     parser.add_argument("--require", default="", metavar="known,countersigned", help="what must hold beyond intact")
     parser.add_argument("--json", action="store_true", help="print JSON and nothing else")
@@ -97,7 +104,7 @@ def _verify(every: Commands) -> None:
 def _identity(every: Commands) -> None:
     parser = every.add_parser("identity", help="make a signing identity", description="make a signing identity")
     parts = parser.add_subparsers(required=True, metavar="new")
-    new = _command(parts, "new", commands.new_identity, "make a self-signed signing identity")
+    new = _command(parts, "new", "commands.new_identity", "make a self-signed signing identity")
     new.add_argument("--name", required=True, help="the signer's name, as it will stand in the memo")
     new.add_argument("--out", type=Path, required=True, metavar="ID.p12")
     new.add_argument("--passphrase-env", required=True, metavar="VAR")
@@ -105,7 +112,7 @@ def _identity(every: Commands) -> None:
 
 
 def _fit(every: Commands) -> None:
-    parser = _command(every, "fit", commands.fit, "fit a model on a sample and write its model file")
+    parser = _command(every, "fit", "commands.fit", "fit a model on a sample and write its model file")
     parser.add_argument("sample", type=Path, metavar="SAMPLE.csv")
     parser.add_argument("--target", required=True, metavar="COLUMN", help="1 for default, 0 for none")
     parser.add_argument("--method", choices=("ml", "firth"), default="ml")
@@ -115,7 +122,7 @@ def _fit(every: Commands) -> None:
 
 
 def _score(every: Commands) -> None:
-    parser = _command(every, "score", commands.score, "score many rows of ratios at once")
+    parser = _command(every, "score", "commands.score", "score many rows of ratios at once")
     parser.add_argument("sample", type=Path, metavar="SAMPLE.csv")
     parser.add_argument("--model", required=True, metavar="NAME|PATH")
     parser.add_argument("--out", type=Path, required=True, metavar="SCORED.csv")
@@ -123,14 +130,14 @@ def _score(every: Commands) -> None:
 
 
 def _convert(every: Commands) -> None:
-    parser = _command(every, "convert", commands.convert, "turn .case.toml into .deskcase or back, or into .xlsx")
+    parser = _command(every, "convert", "commands.convert", "turn .case.toml into .deskcase or back, or into .xlsx")
     parser.add_argument("source", type=Path, metavar="IN")
     parser.add_argument("target", type=Path, metavar="OUT")
     _house(parser)
 
 
 def _picture(every: Commands) -> None:
-    parser = _command(every, "picture", commands.picture, "write a picture of one sheet of the window")
+    parser = _command(every, "picture", "commands.picture", "write a picture of one sheet of the window")
     parser.add_argument("sheet", metavar="SHEET", help="a sheet's name, or standing for Standing with the window alone")
     parser.add_argument("case", type=Path, metavar="CASE")
     parser.add_argument("--out", type=Path, required=True, metavar="PAGE.png")
@@ -141,5 +148,5 @@ def _picture(every: Commands) -> None:
 
 
 def _schema(every: Commands) -> None:
-    parser = _command(every, "schema", commands.schema, "print the JSON Schema of the exchange file")
+    parser = _command(every, "schema", "commands.schema", "print the JSON Schema of the exchange file")
     _house(parser)

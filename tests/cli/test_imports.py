@@ -35,6 +35,15 @@ def test_assess_needs_neither_qt_nor_anything_heavy(tmp_path: Path) -> None:
         assert imported_by("assess", case, "--json").isdisjoint({"PySide6", *HEAVY})
 
 
+def test_the_command_line_itself_needs_next_to_nothing() -> None:
+    parse = "import json, sys; from creditdesk.cli.options import build_parser; build_parser(); "
+    done = run_python("-c", f"{parse} print(json.dumps(sorted(sys.modules)))")
+    modules = set(json.loads(done.text))
+    assert "creditdesk.cli.options" in modules
+    assert {name.partition(".")[0] for name in modules}.isdisjoint({"PySide6", "numpy", "msgspec", *HEAVY})
+    assert {name for name in modules if name.startswith("creditdesk.")} == {"creditdesk.cli", "creditdesk.cli.options"}
+
+
 def test_memo_and_verify_need_no_qt(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setenv("PASS", "lantern on the quay")
     key, memo = tmp_path / "a.p12", tmp_path / "a.pdf"

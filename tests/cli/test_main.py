@@ -1,14 +1,16 @@
 """The command line as a whole: usage, codes, streams, and what happens when we fail."""
 
+import argparse
 import os
 import subprocess
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import pytest
 
 import creditdesk
 from creditdesk.cli import commands
+from creditdesk.cli.options import build_parser, command_named
 from tests.programs import SOUND, Ended, command_line, run
 
 Command = Callable[..., Ended]
@@ -29,6 +31,22 @@ def test_an_unknown_command_is_answered_with_those_there_are() -> None:
     done = run("frobnicate")
     assert (done.code, done.out) == (2, b"")
     assert all(name in done.messages[-1] for name in COMMANDS)
+
+
+def _runs(parser: argparse.ArgumentParser) -> Iterator[str]:
+    """Yield what the commands below ``parser`` are carried out by, as it is named there."""
+    if (run := parser.get_default("run")) is not None:
+        yield run
+    for action in parser._actions:
+        if isinstance(action, argparse._SubParsersAction):
+            for inner in action.choices.values():
+                yield from _runs(inner)
+
+
+def test_what_carries_a_command_out_is_there() -> None:
+    runs = list(_runs(build_parser()))
+    assert len(runs) == len(set(runs)) == len(COMMANDS)
+    assert all(callable(command_named(run)) for run in runs)
 
 
 def test_help_names_every_command_and_exit_code(command: Command) -> None:
