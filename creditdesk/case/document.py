@@ -6,6 +6,8 @@ from enum import StrEnum
 
 import msgspec
 
+from creditdesk.scenario.marks import Scenario
+from creditdesk.scenario.specs import StudySpec
 from creditdesk.statements.adjust import Adjustment
 from creditdesk.statements.period import Period
 
@@ -101,6 +103,7 @@ class Case(_Part, frozen=True):
     ``figures`` and ``printed``: per line item or total, one amount per period in the case's unit, nan where not
     disclosed; lines never mentioned are not disclosed. ``typed``: the sum as typed, "" where a plain number was.
     ``notes``: per line, one text per period. ``texts``: the officer's blocks (request, recommendation, conditions, …).
+    ``scenarios``: what-ifs over the ink, each name once. ``studies``: what is asked of a scenario or of the ink.
     """
 
     obligor: Obligor
@@ -113,3 +116,5 @@ class Case(_Part, frozen=True):
     typed: Mapping[str, tuple[str, ...]] = msgspec.field(default_factory=dict)
     notes: Mapping[str, tuple[str, ...]] = msgspec.field(default_factory=dict)
     texts: Mapping[str, str] = msgspec.field(default_factory=dict)
+    scenarios: tuple[Scenario, ...] = ()
+    studies: tuple[StudySpec, ...] = ()

@@ -14,6 +14,7 @@ from creditdesk.case.document import Case
 from creditdesk.house.decode import Table
 
 _AMOUNTS = ("figures", "printed")
+_PENCIL = ("scenarios", "studies")
 
 
 def _defaults() -> dict[str, object]:
@@ -33,7 +34,36 @@ def case_to_json(case: Case) -> bytes:
     """
     values = {name: getattr(case, name) for name in Case.__struct_fields__}
     told = {name: value for name, value in values.items() if name not in _DEFAULTS or value != _DEFAULTS[name]}
+    told |= {name: [plain_part(part) for part in values[name]] for name in _PENCIL if name in told}
     return msgspec.json.encode(told, order="deterministic")
+
+
+def plain_part(part: msgspec.Struct) -> dict[str, object]:
+    """Lay a scenario or a study out as a table, its kind first, without the fields that have their default's value.
+
+    Numbers there have defaults too, and the library would leave out one that *is* the default, not one that equals it.
+    """
+    config, table = part.__struct_config__, dict[str, object]()
+    if config.tag_field is not None:
+        table[config.tag_field] = config.tag
+    for field in msgspec.structs.fields(type(part)):
+        value = getattr(part, field.name)
+        default = field.default if field.default_factory is msgspec.NODEFAULT else field.default_factory()
+        if field.required or value != default:
+            table[field.name] = _plain_value(value)
+    return table
+
+
+def _plain_value(value: object) -> object:
+    if isinstance(value, msgspec.Struct):
+        return plain_part(value)
+    if isinstance(value, tuple):
+        return [_plain_value(part) for part in value]
+    if isinstance(value, Mapping):
+        return {key: _plain_value(value[key]) for key in sorted(value)}
+    if isinstance(value, float):
+        return value + 0.0  # nil has no sign
+    return str(value) if isinstance(value, str) else value
 
 
 def case_from_json(data: bytes) -> Case:
@@ -81,6 +111,8 @@ def case_tables(case: Case) -> Table:
         "figures": case.figures,
         "printed": case.printed,
         "adjustments": [_plain(adjustment) for adjustment in case.adjustments],
+        "scenarios": [plain_part(scenario) for scenario in case.scenarios],
+        "studies": [plain_part(study) for study in case.studies],
         "typed": case.typed,
         "notes": case.notes,
         "texts": case.texts,
