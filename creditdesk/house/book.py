@@ -9,6 +9,7 @@ from creditdesk.grading.rules import RuleBook
 from creditdesk.grading.scale import MasterScale
 from creditdesk.model.spec import ModelSpec
 from creditdesk.ratios.catalogue import Catalogue
+from creditdesk.scenario.stress import StressBook
 from creditdesk.statements.chart import Chart
 
 
@@ -59,7 +60,8 @@ class LoadedModel:
 class HouseBook:
     """Hold a compiled house book.
 
-    ``files``: relative name -> bytes as read, the source of ``digest`` and of the zip.
+    ``files``: relative name -> bytes as read, the source of ``digest`` and of the zip. ``stress``: None where the house
+    has no file of it.
     """
 
     settings: HouseSettings
@@ -70,6 +72,7 @@ class HouseBook:
     rules: RuleBook
     files: Mapping[str, bytes]
     digest: str
+    stress: StressBook | None = None
 
 
 def with_model(house: HouseBook, model: LoadedModel, name: str = "") -> HouseBook:

@@ -19,11 +19,15 @@ from creditdesk.model import check as models
 from creditdesk.model.spec import ModelSpec
 from creditdesk.ratios.catalogue import Catalogue, compile_catalogue
 from creditdesk.ratios.spec import RatioFile
+from creditdesk.scenario import stress as stresses
+from creditdesk.scenario.stress import StressBook
 from creditdesk.statements.chart import Chart
 
 Value = TypeVar("Value")
 FILES = ("house.toml", "lines.toml", "ratios.toml", "scale.toml", "rules.toml")
 """Files every house book has, beside at least one in ``models/``."""
+OPTIONAL = ("stress.toml",)
+"""Files of what-if; a house book without them does everything else."""
 _MODEL = re.compile(r"models/[^/]+\.toml")
 _FOLDER_LIMIT = 200
 
@@ -49,11 +53,14 @@ def house_book_from_files(files: Mapping[str, bytes], *, place: str = "house boo
     ratio_file = gather.read("ratios.toml", RatioFile)
     scale = gather.read("scale.toml", MasterScale)
     rule_file = gather.read("rules.toml", RuleFile)
+    stress = gather.read("stress.toml", StressBook)
     specs = {name: gather.read(name, ModelSpec) for name in sorted(files) if _MODEL.fullmatch(name)}
     if chart is not None:
         gather.note(f"lines.toml: {fault.sentence}" for fault in chart_faults(chart))
     if scale is not None:
         gather.note(f"scale.toml: {fault}" for fault in scales.faults(scale))
+    if stress is not None:
+        gather.note(f"stress.toml: {fault}" for fault in stresses.faults(stress))
     catalogue = rules = None
     if chart is not None and ratio_file is not None and not gather.faults_of("lines.toml"):
         catalogue = _catalogue(gather, ratio_file, chart)
@@ -71,6 +78,7 @@ def house_book_from_files(files: Mapping[str, bytes], *, place: str = "house boo
         models=loaded,
         scale=_there(scale),
         rules=_there(rules),
+        stress=stress,
         files=dict(sorted(files.items())),
         digest=digest_of_files(files),
     )
@@ -183,11 +191,12 @@ def _faults_of_names(files: Mapping[str, bytes]) -> list[str]:
     faults = [f"{name}: found no such file, a house book needs it" for name in FILES if name not in files]
     if not any(_MODEL.fullmatch(name) for name in files):
         faults.append("models: found no model file, a house book needs at least one")
+    known = (*FILES, *OPTIONAL)
     for name in files:
-        if name not in FILES and not _MODEL.fullmatch(name):
-            near = get_close_matches(name, FILES, n=1)
+        if name not in known and not _MODEL.fullmatch(name):
+            near = get_close_matches(name, known, n=1)
             hint = f"; nearest known name: {near[0]}" if near else ""
-            faults.append(f"{name}: found a file of an unknown name, allowed {', '.join(FILES)}, models/*.toml{hint}")
+            faults.append(f"{name}: found a file of an unknown name, allowed {', '.join(known)}, models/*.toml{hint}")
     return faults
 
 
