@@ -15,6 +15,8 @@ import msgspec
 from creditdesk.base.errors import UserError
 from creditdesk.case.codes import COUNTRIES, CURRENCIES, SECTORS, UNITS
 from creditdesk.case.document import TEXT_BLOCKS
+from creditdesk.case.pencil_checks import scenario_faults, study_faults
+from creditdesk.case.raw import list_of, number_of, table_of
 from creditdesk.formula.sums import evaluate_sum
 from creditdesk.house.decode import Fault, Table, fault_of, is_date, nearest_name, place_of, show, unknown_name
 from creditdesk.statements.adjust import Adjustment, adjustment_faults
@@ -46,7 +48,9 @@ def plain_faults(raw: Table) -> Iterator[Fault]:
     for block in table_of(raw.get("texts")):
         if block not in TEXT_BLOCKS:
             yield unknown_name(place_of(["texts", block]), block, sorted(TEXT_BLOCKS), "text block")
-    for section in ("obligor", "model", "adjustments", "notes", "texts"):
+    yield from scenario_faults(raw)
+    yield from study_faults(raw)
+    for section in ("obligor", "model", "adjustments", "notes", "texts", "scenarios", "studies"):
         yield from _control_faults([section], raw.get(section))
 
 
@@ -60,16 +64,6 @@ def _control_faults(path: list[object], value: object) -> Iterator[Fault]:
         parts = value.items() if isinstance(value, Mapping) else enumerate(list_of(value))
         for key, part in parts:
             yield from _control_faults([*path, key], part)
-
-
-def table_of(value: object) -> Table:
-    """Take a table for what it is and anything else as empty."""
-    return value if isinstance(value, Mapping) else {}
-
-
-def list_of(value: object) -> Sequence[object]:
-    """Take a list for what it is and anything else as empty."""
-    return value if isinstance(value, list | tuple) else ()
 
 
 def obligor_faults(obligor: Table) -> Iterator[Fault]:
@@ -124,16 +118,6 @@ def _rate_faults(rates: Table, obligor: Table) -> Iterator[Fault]:
             yield Fault(place, "a rate for the case's own currency", "other currencies")
         elif isinstance(rate, date) or not 0 < number_of(rate, 1.0) < math.inf:
             yield Fault(place, show(rate), "a number above 0")
-
-
-def number_of(value: object, otherwise: float = math.nan) -> float:
-    """Take a number for what it is; anything else, and whole numbers beyond a double, as ``otherwise``."""
-    if not isinstance(value, int | float) or isinstance(value, bool):
-        return otherwise
-    try:
-        return float(value)
-    except OverflowError:
-        return otherwise
 
 
 def period_faults(raw: Table) -> Iterator[Fault]:

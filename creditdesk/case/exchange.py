@@ -10,7 +10,7 @@ import msgspec
 import tomli_w
 
 from creditdesk.base.errors import Refusal, UserError
-from creditdesk.case.checks import case_faults, table_of
+from creditdesk.case.checks import case_faults
 from creditdesk.case.document import (
     REFUSED_FORMS,
     Assessment,
@@ -21,7 +21,11 @@ from creditdesk.case.document import (
     Rates,
     SectorScheme,
 )
+from creditdesk.case.raw import table_of
+from creditdesk.case.wire import plain_part
 from creditdesk.house.decode import Table, convert_tables, parse_toml, show
+from creditdesk.scenario.marks import Scenario
+from creditdesk.scenario.specs import StudySpec
 from creditdesk.statements.adjust import Adjustment
 from creditdesk.statements.chart import Chart
 from creditdesk.statements.period import Period
@@ -64,6 +68,8 @@ class ExchangeFile(msgspec.Struct, frozen=True, forbid_unknown_fields=True):
     typed: Mapping[str, tuple[str, ...]] = msgspec.field(default_factory=dict)
     notes: Mapping[str, tuple[str, ...]] = msgspec.field(default_factory=dict)
     texts: Mapping[str, str] = msgspec.field(default_factory=dict)
+    scenarios: tuple[Scenario, ...] = ()
+    studies: tuple[StudySpec, ...] = ()
 
 
 def read_case(data: bytes, chart: Chart, *, file: str) -> Case:
@@ -118,6 +124,8 @@ def _case(tables: ExchangeFile, chart: Chart) -> Case:
         typed=_ordered(_spoken(tables.typed), lines),
         notes=_ordered(_spoken(tables.notes), [*lines, *totals]),
         texts=tables.texts,
+        scenarios=tables.scenarios,
+        studies=tables.studies,
     )
 
 
@@ -159,6 +167,8 @@ def write_case(case: Case, chart: Chart) -> bytes:
         _rows("typed", case.typed, order),
         _rows("notes", case.notes, order),
         _table("[texts]", dict(sorted(case.texts.items()))),
+        *(_nested("[[scenarios]]", plain_part(scenario)) for scenario in case.scenarios),
+        *(_nested("[[studies]]", plain_part(study)) for study in case.studies),
     ]
     return "\n".join(block for block in blocks if block).encode("utf-8")
 
@@ -203,6 +213,23 @@ def _adjustment(adjustment: Adjustment) -> str:
     table = _plain(adjustment)
     del table["entries"]
     return f"{_table('[[adjustments]]', table)}entries = [ {entries} ]\n"
+
+
+def _nested(head: str, table: Mapping[str, object]) -> str:
+    """Write a table that holds others: each within its line, in a list one below the other."""
+    return f"{head}\n" + "".join(f"{_key(key)} = {_listed(value)}\n" for key, value in table.items())
+
+
+def _listed(value: object) -> str:
+    if not isinstance(value, list):
+        return _within_line(value)
+    return f"[\n{''.join(f'    {_within_line(part)},{chr(10)}' for part in value)}]"
+
+
+def _within_line(value: object) -> str:
+    if not isinstance(value, Mapping):
+        return _literal(value)
+    return f"{{ {', '.join(f'{_key(key)} = {_within_line(part)}' for key, part in value.items())} }}"
 
 
 def _literal(value: object) -> str:

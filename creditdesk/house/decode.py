@@ -256,6 +256,10 @@ def _faults_of_union(error: "ValidationError", place: str) -> Iterator[Fault]:
     branches: dict[int, list[ValidationError]] = {}
     for inner in error.context or ():
         branches.setdefault(int(inner.schema_path[0]), []).append(inner)
+    tagged = _mapping(error.schema).get("discriminator")
+    if tagged is not None and isinstance(error.instance, dict):
+        yield from _faults_of_tagged(error, place, branches)
+        return
     meant = [found for found in branches.values() if not any(_is_other_kind(inner) for inner in found)]
     if meant:
         for inner in min(meant, key=len):
@@ -263,6 +267,23 @@ def _faults_of_union(error: "ValidationError", place: str) -> Iterator[Fault]:
         return
     kinds = [_KINDS[kind] for found in branches.values() for kind in [str(found[0].validator_value)] if kind in _KINDS]
     yield Fault(place, show(error.instance), " or ".join(dict.fromkeys(kinds)) or str(error.message))
+
+
+def _faults_of_tagged(
+    error: "ValidationError", place: str, branches: Mapping[int, list["ValidationError"]]
+) -> Iterator[Fault]:
+    """Report on the branch that the value names itself."""
+    union, table = _mapping(error.schema), _mapping(error.instance)
+    key, refs = str(union["discriminator"]["propertyName"]), _mapping(union["discriminator"]["mapping"])
+    found = table.get(key)
+    if isinstance(found, str) and found in refs:
+        order = [_mapping(branch).get("$ref") for branch in _list(union["anyOf"])]
+        for inner in branches.get(order.index(refs[found]), []):
+            yield from _faults_of(inner)
+    elif key in table:
+        yield _fault_of_enum(f"{place}.{key}", found, list(refs))
+    else:
+        yield Fault(f"{place}.{key}", "nothing", " or ".join(map(show, refs)))
 
 
 def _is_other_kind(error: "ValidationError") -> bool:
