@@ -83,7 +83,7 @@ def adjusted_printed(
     moved = {key: np.array(row, dtype=np.float64) for key, row in printed.items()}
     for adjustment in adjustments:
         index = _index(periods, adjustment)
-        effects = _effects(chart, periods[index].presentation)
+        effects = effects_on_sums(chart, periods[index].presentation)
         for key, row in moved.items():
             for entry in adjustment.entries:
                 row[index] += effects.get(key, {}).get(entry.line, 0.0) * entry.amount
@@ -136,7 +136,7 @@ def _is_income(line: LineItem, statement: str) -> bool:
 
 
 def _balance_faults(chart: Chart, layout: Presentation, adjustment: Adjustment, place: str) -> Iterator[str]:
-    effects = _effects(chart, layout)
+    effects = effects_on_sums(chart, layout)
     sides = ((TOTAL_ASSETS, 1.0), (TOTAL_LIABILITIES, -1.0), (TOTAL_EQUITY, -1.0))
     moves = [
         sign * _defined(chart, effects, key, entry.line) * entry.amount
@@ -156,8 +156,12 @@ def _defined(chart: Chart, effects: Mapping[str, Mapping[str, float]], key: str,
 
 
 @lru_cache(maxsize=32)
-def _effects(chart: Chart, layout: Presentation) -> Mapping[str, Mapping[str, float]]:
-    """Say how much one unit of each line moves each total as printed, and each line for which a sum can stand."""
+def effects_on_sums(chart: Chart, layout: Presentation) -> Mapping[str, Mapping[str, float]]:
+    """Say how much one unit of each line moves each total as printed, and each line for which a sum can stand.
+
+    By sum, then by line: 1.0 adds, -1.0 takes off; a line for which a sum can stand moves itself as well. A printed
+    total holds its ``printed_includes`` once more than its definition does.
+    """
     plan = compile_plan(chart, layout)
     effects: dict[int, dict[int, float]] = {}
     for total in plan.sums:
@@ -205,7 +209,7 @@ def _move(chart: Chart, figures: dict[str, FloatArray], entry: Entry, where: tup
     """Add an entry to its line, and to received lines for which a sum over that line could stand."""
     periods, index = where
     figures[entry.line][index] += entry.amount
-    effects = _effects(chart, periods[index].presentation)
+    effects = effects_on_sums(chart, periods[index].presentation)
     for line in chart.lines:
         effect = effects.get(line.key, {}).get(entry.line, 0.0)
         if effect and line.key != entry.line and not _is_blank(figures, line.key, index):

@@ -17,8 +17,9 @@ from creditdesk.statements.adjust import (
     adjusted_printed,
     adjustment_faults,
     apply_adjustments,
+    effects_on_sums,
 )
-from creditdesk.statements.period import Period
+from creditdesk.statements.period import Period, Presentation
 from creditdesk.statements.statement import StatementSet
 from creditdesk.statements.subtotals import build_statements
 from tests.statements.books import CLEAN, WHOLE, arrays, shipped_chart, without, year
@@ -221,3 +222,37 @@ def _sign(line: str) -> int:
     moved = build_statements(shipped_chart(), (year(2025),), arrays(WHOLE | {line: WHOLE[line] + 1_000}, 1), {})
     sides = {"total_assets": 1, "total_equity_and_liabilities": -1}
     return round(sum(sign * float(moved.row(key)[0] - plain.row(key)[0]) for key, sign in sides.items()) / 1_000)
+
+
+def test_effects_name_what_a_line_moves_on_each_layout() -> None:
+    by_function = effects_on_sums(shipped_chart(), Presentation.BY_FUNCTION)
+    by_nature = effects_on_sums(shipped_chart(), Presentation.BY_NATURE)
+    assert by_function["net_profit"]["cost_of_sales"] == -1.0
+    assert "cost_of_sales" not in by_nature["net_profit"]
+    assert by_nature["operating_profit"]["depreciation_amortisation"] == -1.0
+    assert by_function["ebitda"] == {
+        "revenue": 1.0,
+        "other_operating_income": 1.0,
+        "cost_of_sales": -1.0,
+        "distribution_costs": -1.0,
+        "administrative_costs": -1.0,
+        "other_operating_costs": -1.0,
+        "depreciation_shown_separately": 0.0,  # a cost, and depreciation that is added back where no other is known
+        "depreciation_amortisation": 1.0,
+        "impairment": 1.0,
+    }
+    assert by_function["financing_cash_flow"] == {
+        "financing_cash_flow": 1.0,
+        "debt_raised": 1.0,
+        "equity_raised": 1.0,
+        "other_financing_cash_flow": 1.0,
+        "debt_repaid": -1.0,
+        "lease_principal_paid": -1.0,
+        "dividends_paid": -1.0,
+    }
+
+
+def test_a_printed_total_holds_a_deficit_shown_as_an_asset() -> None:
+    effects = effects_on_sums(shipped_chart(), Presentation.BY_FUNCTION)
+    assert effects["total_assets"]["equity_deficit_shown_as_asset"] == 1.0
+    assert effects["total_equity"]["equity_deficit_shown_as_asset"] == 0.0
