@@ -8,32 +8,34 @@ from typing import TypeAlias, TypeVar
 
 import msgspec
 
-from creditdesk.base.display import format_amount
-from creditdesk.base.errors import UserError
 from creditdesk.case.checks import name_faults, plain_faults, typed_fault
 from creditdesk.case.document import TEXT_BLOCKS, Assessment, Case, ModelChoice, Obligor, Rates
+from creditdesk.case.edits import Edit, check_index, describe_adjustment, label_of, refused, written
 from creditdesk.case.exchange import refuse_natural_persons
+from creditdesk.case.pencil_commands import (
+    AddScenario,
+    AddStudy,
+    InkIn,
+    MoveScenario,
+    RemoveScenario,
+    RemoveStudy,
+    RenameScenario,
+    RubOut,
+    SetAssumption,
+    SetMarks,
+    SetScenarioInMemo,
+    SetScenarioText,
+    SetStudy,
+)
 from creditdesk.case.wire import case_from_tables, case_tables, case_to_json
 from creditdesk.house.decode import Fault, type_faults
 from creditdesk.statements.adjust import Adjustment
-from creditdesk.statements.chart import Chart, LineItem, Subtotal
+from creditdesk.statements.chart import Chart
 from creditdesk.statements.period import Period, period_label
 
 Cell = TypeVar("Cell")
 _LINE = re.compile(r"[a-z][a-z0-9_]*")
 _FIELDS = tuple(name for name in Obligor.__struct_fields__ if name != "rates")
-
-
-class Edit(msgspec.Struct, frozen=True, forbid_unknown_fields=True, tag_field="edit"):
-    """Ground for every command."""
-
-    def applied(self, case: Case) -> Case:
-        """Make the next case, unchecked; ``apply`` checks it."""
-        raise NotImplementedError
-
-    def describe(self, chart: Chart, case: Case) -> str:
-        """Say what the command does to ``case``, the one before it, for undo and trail."""
-        raise NotImplementedError
 
 
 class Figure(msgspec.Struct, frozen=True, forbid_unknown_fields=True):
@@ -118,7 +120,7 @@ class SetNote(Edit, frozen=True, tag="set_note"):
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name the cell."""
-        return f"Note on {_label(chart, self.line)} {_when(case, self.period)}"
+        return f"Note on {label_of(chart, self.line)} {_when(case, self.period)}"
 
 
 class SetObligor(Edit, frozen=True, tag="set_obligor"):
@@ -130,14 +132,14 @@ class SetObligor(Edit, frozen=True, tag="set_obligor"):
     def applied(self, case: Case) -> Case:
         """Set the field. Raises Refusal for a legal form outside the program's purpose."""
         if self.field not in _FIELDS:
-            raise _refused(Fault("field", f'unknown field "{self.field[:40]}"', f"one of {', '.join(_FIELDS)}"))
+            raise refused(Fault("field", f'unknown field "{self.field[:40]}"', f"one of {', '.join(_FIELDS)}"))
         if self.field == "legal_form":
             refuse_natural_persons(self.value, "edit")
         table = {**msgspec.to_builtins(case.obligor, builtin_types=(date,)), self.field: self.value}
         try:
             obligor = msgspec.convert(table, Obligor)
         except msgspec.ValidationError:
-            raise _refused(*type_faults({"obligor": table}, _ObligorOnly)) from None
+            raise refused(*type_faults({"obligor": table}, _ObligorOnly)) from None
         return msgspec.structs.replace(case, obligor=obligor)
 
     def describe(self, chart: Chart, case: Case) -> str:
@@ -206,7 +208,7 @@ class SetText(Edit, frozen=True, tag="set_text"):
         """Set the block."""
         texts = {key: text for key, text in {**case.texts, self.block: self.text}.items() if text or key != self.block}
         if self.block not in TEXT_BLOCKS:
-            raise _refused(Fault("block", f'"{self.block[:40]}"', f"one of {', '.join(TEXT_BLOCKS)}"))
+            raise refused(Fault("block", f'"{self.block[:40]}"', f"one of {', '.join(TEXT_BLOCKS)}"))
         return msgspec.structs.replace(case, texts=texts)
 
     def describe(self, chart: Chart, case: Case) -> str:
@@ -222,7 +224,7 @@ class AddPeriod(Edit, frozen=True, tag="add_period"):
 
     def applied(self, case: Case) -> Case:
         """Insert a blank cell into every row."""
-        _check_index("index", self.index, len(case.periods) + 1)
+        check_index("index", self.index, len(case.periods) + 1)
         periods = (*case.periods[: self.index], self.period, *case.periods[self.index :])
         order: list[int | None] = list(range(len(case.periods)))
         return _arranged(case, periods, [*order[: self.index], None, *order[self.index :]])
@@ -239,7 +241,7 @@ class RemovePeriod(Edit, frozen=True, tag="remove_period"):
 
     def applied(self, case: Case) -> Case:
         """Take one cell out of every row."""
-        _check_index("index", self.index, len(case.periods))
+        check_index("index", self.index, len(case.periods))
         order = [place for place in range(len(case.periods)) if place != self.index]
         return _arranged(case, [case.periods[place] for place in order], order)
 
@@ -259,7 +261,7 @@ class SetPeriod(Edit, frozen=True, tag="set_period"):
 
     def applied(self, case: Case) -> Case:
         """Replace the period and bring the columns into the order of time."""
-        _check_index("index", self.index, len(case.periods))
+        check_index("index", self.index, len(case.periods))
         old = case.periods[self.index].ends
         periods = [*case.periods[: self.index], self.period, *case.periods[self.index + 1 :]]
         order = sorted(range(len(periods)), key=lambda place: periods[place].ends)
@@ -280,8 +282,8 @@ class MovePeriod(Edit, frozen=True, tag="move_period"):
 
     def applied(self, case: Case) -> Case:
         """Move the cell of every row."""
-        _check_index("index", self.index, len(case.periods))
-        _check_index("to", self.to, len(case.periods))
+        check_index("index", self.index, len(case.periods))
+        check_index("to", self.to, len(case.periods))
         order = [place for place in range(len(case.periods)) if place != self.index]
         order.insert(self.to, self.index)
         return _arranged(case, [case.periods[place] for place in order], order)
@@ -302,7 +304,7 @@ class AddAdjustment(Edit, frozen=True, tag="add_adjustment"):
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name the lines and the reason."""
-        return f"Adjustment added: {_describe_adjustment(self.adjustment, chart)}"
+        return f"Adjustment added: {describe_adjustment(self.adjustment, chart)}"
 
 
 class RemoveAdjustment(Edit, frozen=True, tag="remove_adjustment"):
@@ -312,13 +314,13 @@ class RemoveAdjustment(Edit, frozen=True, tag="remove_adjustment"):
 
     def applied(self, case: Case) -> Case:
         """Take it out."""
-        _check_index("index", self.index, len(case.adjustments))
+        check_index("index", self.index, len(case.adjustments))
         kept = (*case.adjustments[: self.index], *case.adjustments[self.index + 1 :])
         return msgspec.structs.replace(case, adjustments=kept)
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name the lines and the reason."""
-        return f"Adjustment removed: {_describe_adjustment(case.adjustments[self.index], chart)}"
+        return f"Adjustment removed: {describe_adjustment(case.adjustments[self.index], chart)}"
 
 
 class ReplaceCase(Edit, frozen=True, tag="replace_case"):
@@ -353,6 +355,19 @@ Command: TypeAlias = (
     | AddAdjustment
     | RemoveAdjustment
     | ReplaceCase
+    | AddScenario
+    | RemoveScenario
+    | RenameScenario
+    | MoveScenario
+    | SetMarks
+    | RubOut
+    | SetAssumption
+    | SetScenarioText
+    | SetScenarioInMemo
+    | InkIn
+    | AddStudy
+    | SetStudy
+    | RemoveStudy
 )
 
 
@@ -370,7 +385,7 @@ def apply(case: Case, command: Command, chart: Chart | None = None) -> Case:
     if not faults and not _is_text(command):
         faults.append(Fault("", "half a character (a lone surrogate)", "readable text"))
     if faults:
-        raise _refused(*faults)
+        raise refused(*faults)
     return changed
 
 
@@ -398,21 +413,12 @@ def _listed(value: object) -> list[object]:
     return value if isinstance(value, list) else []
 
 
-def _refused(*faults: Fault) -> UserError:
-    return UserError("edit", list(dict.fromkeys(fault.sentence for fault in faults)))
-
-
 def _is_text(command: Command) -> bool:
     try:
         command_to_json(command)
     except UnicodeEncodeError:
         return False
     return True
-
-
-def _check_index(name: str, index: int, count: int) -> None:
-    if not 0 <= index < count:
-        raise _refused(Fault(name, str(index), f"0 to {count - 1}" if count else "nothing: the list is empty"))
 
 
 def _check_cells(cells: Sequence[Figure], periods: int) -> None:
@@ -425,7 +431,7 @@ def _check_cells(cells: Sequence[Figure], periods: int) -> None:
         if cell.typed:
             faults += typed_fault(f"typed.{cell.line}[{cell.period}]", cell.typed, cell.amount)
     if faults:
-        raise _refused(*faults)
+        raise refused(*faults)
 
 
 def _blank_free(amount: float) -> float:
@@ -469,11 +475,6 @@ def _renamed_end(case: Case, old: date, new: date) -> Case:
     return msgspec.structs.replace(case, assessment=assessment, adjustments=tuple(moved))
 
 
-def _label(chart: Chart, key: str) -> str:
-    items: tuple[LineItem | Subtotal, ...] = (*chart.lines, *chart.subtotals)
-    return next((item.label for item in items if item.key == key), key)
-
-
 def _when(case: Case, index: int) -> str:
     return period_label(case.periods[index])
 
@@ -482,16 +483,5 @@ def _describe_cells(cells: Sequence[Figure], kind: str, chart: Chart, case: Case
     if not cells:
         return "No figure"
     first, more = cells[0], len(cells) - 1
-    amount = "not disclosed" if math.isnan(first.amount) else format_amount(first.amount, _decimals(first.amount))
     others = f" and {more} more" if more else ""
-    return f"{_label(chart, first.line)} {_when(case, first.period)}{kind} to {amount}{others}"
-
-
-def _decimals(amount: float) -> int:
-    """Show the decimals an amount has, up to three."""
-    return next((places for places in range(3) if round(amount, places) == amount), 3)
-
-
-def _describe_adjustment(adjustment: Adjustment, chart: Chart) -> str:
-    lines = ", ".join(_label(chart, entry.line) for entry in adjustment.entries)
-    return f"{lines} ({adjustment.reason})"
+    return f"{label_of(chart, first.line)} {_when(case, first.period)}{kind} to {written(first.amount)}{others}"
