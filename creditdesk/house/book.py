@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 
 import msgspec
 
+from creditdesk.flow.book import FlowBook
 from creditdesk.grading.rules import RuleBook
 from creditdesk.grading.scale import MasterScale
 from creditdesk.model.spec import ModelSpec
@@ -60,8 +61,8 @@ class LoadedModel:
 class HouseBook:
     """Hold a compiled house book.
 
-    ``files``: relative name -> bytes as read, the source of ``digest`` and of the zip. ``stress``: None where the house
-    has no file of it.
+    ``files``: relative name -> bytes as read, the source of ``digest`` and of the zip. ``flow`` and ``stress``:
+    None where the house has no such file; without the former there is no what-if.
     """
 
     settings: HouseSettings
@@ -72,6 +73,7 @@ class HouseBook:
     rules: RuleBook
     files: Mapping[str, bytes]
     digest: str
+    flow: FlowBook | None = None
     stress: StressBook | None = None
 
 

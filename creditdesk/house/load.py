@@ -8,6 +8,8 @@ from pathlib import Path
 from typing import TypeVar
 
 from creditdesk.base.errors import UserError
+from creditdesk.flow import book as flows
+from creditdesk.flow.book import FlowBook
 from creditdesk.grading import scale as scales
 from creditdesk.grading.rules import RuleBook, RuleFile, compile_rules
 from creditdesk.grading.scale import MasterScale
@@ -15,6 +17,7 @@ from creditdesk.house.book import HouseBook, HouseSettings, LoadedModel
 from creditdesk.house.check import chart_faults, settings_faults
 from creditdesk.house.decode import SIZE_LIMIT, decode_toml
 from creditdesk.house.files import read_file
+from creditdesk.house.targets import stress_faults, targets_of
 from creditdesk.model import check as models
 from creditdesk.model.spec import ModelSpec
 from creditdesk.ratios.catalogue import Catalogue, compile_catalogue
@@ -26,7 +29,7 @@ from creditdesk.statements.chart import Chart
 Value = TypeVar("Value")
 FILES = ("house.toml", "lines.toml", "ratios.toml", "scale.toml", "rules.toml")
 """Files every house book has, beside at least one in ``models/``."""
-OPTIONAL = ("stress.toml",)
+OPTIONAL = ("flow.toml", "stress.toml")
 """Files of what-if; a house book without them does everything else."""
 _MODEL = re.compile(r"models/[^/]+\.toml")
 _FOLDER_LIMIT = 200
@@ -53,6 +56,7 @@ def house_book_from_files(files: Mapping[str, bytes], *, place: str = "house boo
     ratio_file = gather.read("ratios.toml", RatioFile)
     scale = gather.read("scale.toml", MasterScale)
     rule_file = gather.read("rules.toml", RuleFile)
+    flow = gather.read("flow.toml", FlowBook)
     stress = gather.read("stress.toml", StressBook)
     specs = {name: gather.read(name, ModelSpec) for name in sorted(files) if _MODEL.fullmatch(name)}
     if chart is not None:
@@ -64,6 +68,11 @@ def house_book_from_files(files: Mapping[str, bytes], *, place: str = "house boo
     catalogue = rules = None
     if chart is not None and ratio_file is not None and not gather.faults_of("lines.toml"):
         catalogue = _catalogue(gather, ratio_file, chart)
+        if flow is not None:
+            gather.note(f"flow.toml: {fault}" for fault in flows.faults(flow, chart))
+    if catalogue is not None and stress is not None:
+        targets = targets_of(catalogue.chart, catalogue)
+        gather.note(f"stress.toml: {fault.sentence}" for fault in stress_faults(stress, targets))
     if catalogue is not None and scale is not None and rule_file is not None:
         rules = _rules(gather, rule_file, scale, catalogue)
     loaded = _models(gather, specs, catalogue)
@@ -78,6 +87,7 @@ def house_book_from_files(files: Mapping[str, bytes], *, place: str = "house boo
         models=loaded,
         scale=_there(scale),
         rules=_there(rules),
+        flow=flow,
         stress=stress,
         files=dict(sorted(files.items())),
         digest=digest_of_files(files),

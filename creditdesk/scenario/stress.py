@@ -91,7 +91,7 @@ def _marks(book: StressBook, event: StressEvent) -> tuple[Mark, ...]:
 def faults(book: StressBook) -> tuple[str, ...]:
     """List what is wrong with the events among themselves: where, what was found, what is allowed.
 
-    Whether marks name known targets, ``house.check`` tells, which knows chart, ratios and drivers.
+    Whether marks name known targets, ``house.targets`` tells, which knows chart, ratios and drivers.
     """
     return (*_book_faults(book), *(fault for event in book.events for fault in _event_faults(book, event)))
 

@@ -70,7 +70,7 @@ def test_a_file_that_is_missing_or_misnamed_is_named(files: Files) -> None:
     assert faults_of({**files, "rule.toml": b""}) == (
         "rules.toml: found no such file, a house book needs it",
         "rule.toml: found a file of an unknown name, allowed house.toml, lines.toml, ratios.toml, scale.toml,"
-        " rules.toml, stress.toml, models/*.toml; nearest known name: rules.toml",
+        " rules.toml, flow.toml, stress.toml, models/*.toml; nearest known name: rules.toml",
     )
     without_models = {name: data for name, data in files.items() if not name.startswith("models/")}
     assert "models: found no model file, a house book needs at least one" in faults_of(without_models)
