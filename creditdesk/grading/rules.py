@@ -12,7 +12,7 @@ from creditdesk.base.errors import UserError
 from creditdesk.formula.compiler import Formula, compile_formula
 from creditdesk.formula.nodes import Kind
 from creditdesk.formula.values import Env
-from creditdesk.grading.scale import NO_GRADE, MasterScale, not_better_than, not_worse_than
+from creditdesk.grading.scale import NO_GRADE, MasterScale, PlaceArray, not_better_than, not_worse_than
 from creditdesk.statements.period import Basis, Opinion, Presentation
 
 FLAGS = ("going_concern_doubt", "restated", "consolidated", "out_of_scope")
@@ -134,6 +134,28 @@ def apply_rules(book: RuleBook, scale: MasterScale, env: Env, grade: str) -> Rul
             f"{rule.key}: not known whether {rule.condition}" for rule, answer in answers if np.isnan(answer)
         ),
     )
+
+
+def grades_after(book: RuleBook, scale: MasterScale, env: Env, places: PlaceArray) -> PlaceArray:
+    """Apply every rule to many grades at once, given and returned as places on the scale, 0 for the best.
+
+    ``env``: what the conditions name, numbers and flags as arrays that fit ``places``. -1 where there was no grade or
+    a rule stops; else what ``apply_rules`` says of each point alone.
+    """
+    reached, default = np.asarray(places), len(scale.grades)
+    stopped = np.zeros(reached.shape, dtype=np.bool_)
+    for one in sorted(book.rules, key=lambda one: one.rule.effect is Effect.CAP):
+        with np.errstate(all="ignore"):
+            met = one.condition(env) == 1.0
+        if one.rule.effect is Effect.STOP:
+            stopped = stopped | met
+        elif one.rule.grade is not None:
+            bound = scale.position(one.rule.grade)
+            if one.rule.effect is Effect.CAP:
+                reached = np.where(met & (reached >= 0), np.maximum(reached, bound), reached)
+            else:
+                reached = np.where(met & (reached < default), np.minimum(reached, bound), reached)
+    return np.where(stopped, -1, reached)
 
 
 def _answer(condition: Formula, env: Env) -> float:

@@ -13,6 +13,7 @@ from creditdesk.base.errors import BugError
 from creditdesk.base.numbers import round_for_comparison
 
 FloatArray = NDArray[np.float64]
+PlaceArray = NDArray[np.int64]
 
 NO_GRADE = "none"
 DEFAULT_GRADE = "D"
@@ -61,7 +62,7 @@ class MasterScale(msgspec.Struct, frozen=True, forbid_unknown_fields=True):
         return self.grades[following].lower if following < len(self.grades) else 1.0
 
 
-def positions(scale: MasterScale, pds: FloatArray) -> NDArray[np.int64]:
+def positions(scale: MasterScale, pds: FloatArray) -> PlaceArray:
     """Return the place of the grade of each PD, 0 for the best; -1 where there is no PD (nan).
 
     PDs and bounds are compared after rounding to 12 significant digits, so that noise of arithmetic moves no grade.
@@ -88,6 +89,16 @@ def representative_pd(scale: MasterScale, key: str) -> float:
 def final_pd(scale: MasterScale, pd: float, judged: str, final: str) -> float:
     """Return the PD that counts: ``pd`` where the final grade is the judged one, else that of the final grade."""
     return pd if final == judged and final != DEFAULT_GRADE else representative_pd(scale, final)
+
+
+def final_pds(scale: MasterScale, pds: FloatArray, judged: PlaceArray, final: PlaceArray) -> FloatArray:
+    """Return the PDs that count, as ``final_pd`` does one by one; grades are places on the scale.
+
+    Where there is no final grade (-1) the PD itself counts.
+    """
+    stands_for = np.array([representative_pd(scale, key) for key in scale.keys])
+    stays = (final < 0) | ((final == judged) & (final < len(scale.grades)))
+    return np.where(stays, pds, stands_for[final])
 
 
 def criteria_of(scale: MasterScale, key: str) -> str:

@@ -3,10 +3,12 @@ import tomllib
 import msgspec
 import numpy as np
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from creditdesk.base.errors import UserError
-from creditdesk.grading.rules import Effect, HouseRule, RuleBook, RuleFile, apply_rules, compile_rules
-from creditdesk.grading.scale import MasterScale
+from creditdesk.grading.rules import Effect, HouseRule, RuleBook, RuleFile, apply_rules, compile_rules, grades_after
+from creditdesk.grading.scale import NO_GRADE, MasterScale
 from creditdesk.house.shipped import resources_folder
 
 HOUSE = resources_folder() / "housebook"
@@ -114,6 +116,49 @@ def test_floors_come_before_caps_and_a_stop_leaves_the_grade() -> None:
     assert (
         apply_rules(made(rule("supported", "interest_cover > 2", Effect.FLOOR, "7")), SCALE, SOUND, "11").grade == "7"
     )
+
+
+CONDITIONS = (
+    "total_equity < 0",
+    "interest_cover < 1.5 and total_assets > 200",
+    "going_concern_doubt or interest_cover < 1",
+    'opinion == "adverse"',
+    "total_equity / total_assets > 0.5",
+)
+AMOUNTS = st.sampled_from([-50.0, 0.0, 1.0, 1.5, 120.0, 201.0, 400.0, float("nan")])
+RULES = st.lists(
+    st.tuples(st.sampled_from(CONDITIONS), st.sampled_from(Effect), st.sampled_from(["1", "4", "8", "12"])), max_size=5
+)
+
+
+@given(
+    RULES,
+    st.lists(st.tuples(AMOUNTS, AMOUNTS, AMOUNTS, st.integers(-1, len(SCALE.grades))), min_size=1, max_size=8),
+    st.sampled_from([0.0, 1.0]),
+    st.sampled_from(["adverse", "unqualified", None]),
+)
+def test_many_grades_at_once_are_what_each_is_alone(
+    rules: list[tuple[str, Effect, str]],
+    points: list[tuple[float, float, float, int]],
+    doubt: float,
+    opinion: str | None,
+) -> None:
+    book = made(
+        *(
+            rule(f"rule_{number}", condition, effect, None if effect is Effect.STOP else grade)
+            for number, (condition, effect, grade) in enumerate(rules)
+        )
+    )
+    same = SOUND | {"going_concern_doubt": doubt, "opinion": opinion}
+    arrays = dict(zip(NUMBERS, np.array([point[:3] for point in points]).T, strict=True))
+    places = np.array([point[3] for point in points])
+    found = grades_after(book, SCALE, same | arrays, places)
+    keys = {-1: NO_GRADE, **dict(enumerate(SCALE.keys))}
+    for number, place in enumerate(places.tolist()):
+        env = same | {key: float(row[number]) for key, row in arrays.items()}
+        alone = apply_rules(book, SCALE, env, keys[place])
+        assert keys[int(found[number])] == (NO_GRADE if alone.stopped else alone.grade)
+        assert grades_after(book, SCALE, env, np.int64(place)) == found[number]
 
 
 def test_all_faults_of_all_rules_come_at_once() -> None:

@@ -13,6 +13,7 @@ from creditdesk.grading.scale import (
     criteria_of,
     faults,
     final_pd,
+    final_pds,
     grade_of,
     moved,
     not_better_than,
@@ -142,3 +143,20 @@ def test_a_scale_file_with_an_unknown_word_is_refused() -> None:
     raw["grades"][0]["letter"] = "A"
     with pytest.raises(msgspec.ValidationError):
         msgspec.convert(raw, MasterScale)
+
+
+@given(
+    st.lists(
+        st.tuples(st.floats(0.0, 1.0), st.integers(-1, len(SCALE.grades)), st.integers(-1, len(SCALE.grades))),
+        min_size=1,
+        max_size=9,
+    )
+)
+def test_many_final_pds_at_once_are_what_each_is_alone(points: list[tuple[float, int, int]]) -> None:
+    pds, judged, final = (np.array(row) for row in zip(*points, strict=True))
+    found = final_pds(SCALE, pds, judged, final)
+    for number, (pd, before, after) in enumerate(points):
+        alone = (
+            pd if after < 0 else final_pd(SCALE, pd, SCALE.keys[before] if before >= 0 else "none", SCALE.keys[after])
+        )
+        assert found[number] == alone
