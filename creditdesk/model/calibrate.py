@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import NDArray
 
-from creditdesk.base.numbers import logit, normal_cdf, sigmoid
+from creditdesk.base.numbers import logit, normal_cdf, normal_density, sigmoid
 from creditdesk.model.spec import Calibration, Link, ModelSpec
 
 FloatArray = NDArray[np.float64]
@@ -36,6 +36,26 @@ def calibrated_pd(spec: ModelSpec, scores: FloatArray) -> FloatArray:
         return normal_cdf(given)
     intercept, slope = intercept_and_slope(spec.calibration)
     return sigmoid(intercept + slope * _log_odds(spec.link, given))
+
+
+def calibrated_derivative(spec: ModelSpec, scores: FloatArray) -> FloatArray:
+    """Return d(calibrated PD)/d(score); nan where the model has no link.
+
+    With p the calibrated PD and b the slope of the calibration: p (1 - p) b times d(log-odds)/d(score), which is 1 for
+    a logit and density / (F (1 - F)) for a probit.
+    """
+    given = np.asarray(scores, dtype=np.float64)
+    if spec.link is Link.NONE:
+        return np.full(given.shape, np.nan)
+    if spec.calibration is None and spec.link is Link.PROBIT:
+        return normal_density(given)
+    intercept, slope = intercept_and_slope(spec.calibration)
+    log_odds = intercept + slope * _log_odds(spec.link, given)
+    spread = sigmoid(log_odds) * sigmoid(-log_odds) * slope
+    if spec.link is Link.LOGIT:
+        return spread
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return spread * normal_density(given) / (normal_cdf(given) * normal_cdf(-given))
 
 
 def calibrated_rate(spec: ModelSpec, rates: FloatArray) -> FloatArray:

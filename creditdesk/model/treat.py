@@ -72,13 +72,25 @@ def treat_reference(spec: ModelSpec) -> Design:
     return design
 
 
-def treat_derivative(spec: ModelSpec, values: FloatArray, reasons: ReasonArray) -> FloatArray:
+def treat_derivative(
+    spec: ModelSpec, values: FloatArray, reasons: ReasonArray, along: FloatArray | None = None
+) -> FloatArray:
     """Return d(main term)/d(ratio), factors x points.
 
     0 beyond a cap and where the ratio has no value. Exactly at a cap it is the slope from inside, so that a borrower
-    standing on the cap still sees which way leads off it.
+    standing on the cap still sees which way leads off it; with ``along``, which says how each ratio moves (its sign
+    counts), it is the slope on the side that the ratio moves to.
     """
-    return np.stack([_slope(*row) for row in zip(spec.factors, values, reasons, strict=True)])
+    laid, column = layout(spec), (-1, *(1,) * (values.ndim - 1))
+    low, high = laid.low.reshape(column), laid.high.reshape(column)
+    inside = (reasons == 0) & (values >= low) & (values <= high)
+    if along is not None:
+        inside = inside & ~((values == low) & (along < 0)) & ~((values == high) & (along > 0))
+    safe = np.where(inside, values, 1.0)
+    slopes = np.ones_like(safe)
+    slopes[laid.log] = 1.0 / safe[laid.log]
+    slopes[laid.signed_log] = 1.0 / (1.0 + np.abs(safe[laid.signed_log]))
+    return np.where(inside, slopes / laid.scale.reshape(column), 0.0)
 
 
 def shape_values(factor: Factor, treated: FloatArray) -> FloatArray:
@@ -100,21 +112,3 @@ def _main_terms(laid: Layout, treated: FloatArray, column: tuple[int, ...]) -> F
     shaped[laid.signed_log] = np.sign(signed) * np.log1p(np.abs(signed))
     shaped -= laid.deflation.reshape(column)
     return np.where(known, (shaped - laid.centre.reshape(column)) / laid.scale.reshape(column), 0.0)
-
-
-def _bounds(factor: Factor) -> tuple[float, float]:
-    low, high = factor.caps.low, factor.caps.high
-    return (-np.inf if low is None else low), (np.inf if high is None else high)
-
-
-def _slope(factor: Factor, values: FloatArray, reasons: ReasonArray) -> FloatArray:
-    low, high = _bounds(factor)
-    inside = (reasons == 0) & (values >= low) & (values <= high)
-    safe = np.where(inside, values, 1.0)
-    if factor.transform is Transform.LOG:
-        slope = 1.0 / safe
-    elif factor.transform is Transform.SIGNED_LOG:
-        slope = 1.0 / (1.0 + np.abs(safe))
-    else:
-        slope = np.ones_like(safe)
-    return np.where(inside, slope / factor.scale, 0.0)

@@ -3,7 +3,7 @@ from collections.abc import Callable
 import numpy as np
 import pytest
 
-from creditdesk.model.calibrate import calibrated_pd, calibrated_rate, intercept_and_slope
+from creditdesk.model.calibrate import calibrated_derivative, calibrated_pd, calibrated_rate, intercept_and_slope
 from creditdesk.model.score import model_pd
 from creditdesk.model.spec import Calibration, Link, ModelSpec
 
@@ -46,3 +46,18 @@ def test_the_calibrated_pd_rises_with_the_score(make_spec: MakeSpec) -> None:
 def test_a_model_without_a_link_stays_without_a_pd(make_spec: MakeSpec) -> None:
     assert np.isnan(calibrated_pd(make_spec(link=Link.NONE), SCORES)).all()
     assert np.isnan(calibrated_pd(make_spec(calibration=SLOPE), np.array([np.nan]))).all()
+
+
+@pytest.mark.parametrize("calibration", [None, SHIFT, SLOPE])
+@pytest.mark.parametrize("link", [Link.LOGIT, Link.PROBIT])
+def test_the_derivative_is_that_of_a_difference_quotient(
+    make_spec: MakeSpec, link: Link, calibration: Calibration | None
+) -> None:
+    spec, step = make_spec(link=link, calibration=calibration), 1e-5
+    scores = np.linspace(-4.0, 4.0, 81)
+    quotient = (calibrated_pd(spec, scores + step) - calibrated_pd(spec, scores - step)) / (2 * step)
+    np.testing.assert_allclose(calibrated_derivative(spec, scores), quotient, rtol=1e-7, atol=1e-12)
+
+
+def test_a_model_without_a_link_has_no_derivative(make_spec: MakeSpec) -> None:
+    assert np.isnan(calibrated_derivative(make_spec(link=Link.NONE), SCORES)).all()

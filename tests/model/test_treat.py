@@ -126,6 +126,15 @@ def test_the_derivative_is_nil_beyond_the_caps_and_comes_from_inside_on_them(mak
     assert nothing.tolist() == [[0.0], [0.0], [0.0]]
 
 
+def test_at_a_cap_the_derivative_is_that_of_the_side_moved_to(make_spec: MakeSpec) -> None:
+    at_caps = np.array([[-0.1], [20.0], [0.5]])
+    sides = np.array([[1.0, -1.0, 0.0], [1.0, -1.0, 0.0], [2e-9, -3.0, 0.0]])
+    slopes = treat_derivative(make_spec(), at_caps, np.zeros((3, 1), dtype=np.uint8), sides)
+    assert slopes[0].tolist() == [1.0, 0.0, 1.0]
+    assert slopes[1] == pytest.approx([0.0, 1 / 21, 1 / 21])
+    assert slopes[2] == pytest.approx([1.0, 0.0, 1.0])
+
+
 def _single(factor: Factor) -> ModelSpec:
     from creditdesk.model.recipe import outline, plain_recipe
 
