@@ -1,7 +1,8 @@
 """The compiled ratio catalogue: made once from its file and the chart of accounts, never changed."""
 
-from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from collections.abc import Iterable, Iterator, Mapping
+from dataclasses import dataclass, replace
+from functools import cached_property
 
 from creditdesk.base.errors import UserError
 from creditdesk.formula.vocabulary import ARGUMENTS
@@ -38,6 +39,13 @@ class Catalogue:
         """List the ratio keys in order."""
         return tuple(self.index)
 
+    @cached_property
+    def noted(self) -> tuple[int, ...]:
+        """List the positions of ratios that may carry a mark, by one of their own formulas or of those they combine."""
+        marked = {row.ratio for row in self.rows if row.note}
+        marked |= {row.ratio for row in self.rows if marked.intersection(row.parts)}
+        return tuple(sorted(marked))
+
     def spec(self, key: str) -> RatioSpec:
         """Return what is stated of a ratio."""
         return self.specs[self.index[key]]
@@ -60,8 +68,7 @@ def compile_catalogue(file: RatioFile, chart: Chart) -> Catalogue:
     rows, second = compiler.rows()
     if faults := list(dict.fromkeys([*faults, *compiler.faults])):
         raise UserError("catalogue", faults)
-    expressions = [expression for row in rows for expression in row.expressions()]
-    names = dict.fromkeys(name for expression in expressions for name in expression.formula.names)
+    names = dict.fromkeys(name for row in rows for one in row.expressions() for name in one.formula.names)
     used = [*names, *(name for name in (DEBT, NET_DEBT) if name in compiler.natures)]
     lines = tuple(dict.fromkeys(name for name in used if name in compiler.natures))
     return Catalogue(
@@ -71,12 +78,48 @@ def compile_catalogue(file: RatioFile, chart: Chart) -> Catalogue:
         rows=tuple(rows),
         by_nature=second["by_nature"],
         otherwise=second["otherwise"],
-        steps=tuple({step.name: step for expression in expressions for step in expression.steps}.values()),
+        steps=_steps(rows),
         names=lines,
         plan=plan(rows, file.ratios, lines),
         labels=_labels(file, chart),
         index={spec.key: position for position, spec in enumerate(file.ratios)},
     )
+
+
+def part_of(catalogue: Catalogue, keys: Iterable[str]) -> Catalogue:
+    """Return a catalogue of some ratios and those they combine, in the same order: the same values for less work.
+
+    ``names`` stays whole, because the largest of all amounts says up to where one counts as nil.
+    """
+    places = {catalogue.index[key] for key in keys}
+    places |= {part for place in places for row in catalogue.rows_of(catalogue.keys[place]) for part in row.parts}
+    kept = {old: new for new, old in enumerate(sorted(places))}
+    seconds = range(len(catalogue.specs), len(catalogue.rows))
+    old_rows = [*kept, *(row for row in seconds if catalogue.rows[row].ratio in kept)]
+    new_rows = {old: new for new, old in enumerate(old_rows)}
+    rows = [_moved(catalogue.rows[row], kept) for row in old_rows]
+    specs = tuple(catalogue.specs[place] for place in kept)
+    return replace(
+        catalogue,
+        specs=specs,
+        rows=tuple(rows),
+        by_nature={kept[place]: new_rows[row] for place, row in catalogue.by_nature.items() if place in kept},
+        otherwise={kept[place]: new_rows[row] for place, row in catalogue.otherwise.items() if place in kept},
+        steps=_steps(rows),
+        plan=plan(rows, specs, catalogue.names),
+        index={spec.key: position for position, spec in enumerate(specs)},
+    )
+
+
+def _moved(row: Row, places: Mapping[int, int]) -> Row:
+    """Return a row for a catalogue in which its ratios stand elsewhere."""
+    return replace(row, ratio=places[row.ratio], parts=tuple(places[part] for part in row.parts))
+
+
+def _steps(rows: Iterable[Row]) -> tuple[Step, ...]:
+    """List the functions along periods of some rows, each once, in the order to run them."""
+    expressions = [expression for row in rows for expression in row.expressions()]
+    return tuple({step.name: step for expression in expressions for step in expression.steps}.values())
 
 
 def _labels(file: RatioFile, chart: Chart) -> dict[str, str]:

@@ -23,6 +23,10 @@ ReasonArray = NDArray[np.uint8]
 IndexArray = NDArray[np.intp]
 
 
+HELD = "held at a given value: its statement is not consistent any more"
+"""The mark of a ratio that is given and not computed."""
+
+
 class Reason(IntEnum):
     """Say why a ratio has no value; where several apply, the first of this order stands.
 
@@ -85,21 +89,25 @@ def compute_ratios(
     *,
     constants: Mapping[str, float],
     constant_needs: Mapping[str, str] | None = None,
+    held: Mapping[tuple[str, int], float] | None = None,
 ) -> RatioTable:
     """Compute every ratio of the catalogue for every period, and every draw where the statements have draws.
 
     ``constants``: ``unit`` and ``to_model_currency``, nan where not known (or left out). ``constant_needs`` says what
     is then needed, such as ``{"to_model_currency": "rate USD"}``. What is disclosed is the same in all draws.
+    ``held``: values by (key, period index) that are given and not computed; what combines them follows.
     """
     known = {name: float(constants.get(name, np.nan)) for name in catalogue.plan.constants}
     inputs = gather(catalogue, statements, known, constant_needs or {})
-    unknown = _not_known(catalogue.plan, inputs)
-    by_row, reasons_by_row = _all_rows(catalogue, inputs, unknown)
-    rows = _choose(catalogue, inputs.periods, unknown)
+    unknown = find_unknown(catalogue.plan, inputs)
+    by_row, reasons_by_row = compute_rows(catalogue, inputs, unknown)
+    rows = choose_rows(catalogue, inputs.periods, unknown)
     columns = np.arange(len(statements.periods))
     values, reasons = by_row[rows, columns], reasons_by_row[rows, columns]
     annualised = _annualised(catalogue.plan, inputs.times)[rows, columns]
-    _combine(catalogue, values, reasons, annualised)
+    for (key, period), value in (held or {}).items():
+        hold(values, reasons, (catalogue.index[key], period), value)
+    combine(catalogue, values, reasons, annualised)
     for array in (values, reasons, annualised, rows):
         array.flags.writeable = False
     return RatioTable(
@@ -109,13 +117,16 @@ def compute_ratios(
         annualised=annualised,
         rows=rows,
         needs=needs_of(catalogue, inputs, rows, _in_any_draw(reasons == Reason.NOT_DISCLOSED)),
-        notes=_notes(catalogue, rows),
+        notes=_notes(catalogue, rows) | dict.fromkeys(held or {}, HELD),
         inputs=inputs,
     )
 
 
-def _all_rows(catalogue: Catalogue, inputs: Inputs, unknown: FlagArray) -> tuple[FloatArray, ReasonArray]:
-    """Compute every row of the catalogue in every period: values, nan where there is a reason, and reasons."""
+def compute_rows(catalogue: Catalogue, inputs: Inputs, unknown: FlagArray) -> tuple[FloatArray, ReasonArray]:
+    """Compute every row of the catalogue in every period: values, nan where there is a reason, and reasons.
+
+    ``unknown``: rows x periods, as ``find_unknown`` says. Combinations of ratios are left to ``combine``.
+    """
     plan, nil = catalogue.plan, inputs.nil
     top, bottom, guarded = _evaluate(catalogue, inputs)
     tall = (-1, *(1,) * (top.ndim - 1))
@@ -164,7 +175,7 @@ def _no_earlier_period(plan: Plan, times: Timing) -> FlagArray:
     return found
 
 
-def _not_known(plan: Plan, inputs: Inputs) -> FlagArray:
+def find_unknown(plan: Plan, inputs: Inputs) -> FlagArray:
     """Find rows x periods that lack an amount or a constant, or the layout of the income statement."""
     missing = inputs.missing.astype(np.float32)
     found = np.zeros((len(plan.factor), missing.shape[1]), dtype=np.bool_)
@@ -190,7 +201,7 @@ def _annualised(plan: Plan, times: Timing) -> FlagArray:
     return found
 
 
-def _choose(catalogue: Catalogue, periods: Sequence[Period], unknown: FlagArray) -> IndexArray:
+def choose_rows(catalogue: Catalogue, periods: Sequence[Period], unknown: FlagArray) -> IndexArray:
     """Choose the row of each ratio in each period: by nature where that is the layout, otherwise where a line lacks."""
     chosen = np.repeat(np.arange(len(catalogue.specs))[:, None], len(periods), axis=1)
     by_nature = np.array([period.presentation is Presentation.BY_NATURE for period in periods], dtype=np.bool_)
@@ -201,7 +212,12 @@ def _choose(catalogue: Catalogue, periods: Sequence[Period], unknown: FlagArray)
     return chosen
 
 
-def _combine(catalogue: Catalogue, values: FloatArray, reasons: ReasonArray, annualised: FlagArray) -> None:
+def hold(values: FloatArray, reasons: ReasonArray, cell: tuple[int, int], value: float | FloatArray) -> None:
+    """Put a given value in the place of a computed one, by (ratio, period); in place."""
+    values[cell], reasons[cell] = value, Reason.VALUE
+
+
+def combine(catalogue: Catalogue, values: FloatArray, reasons: ReasonArray, annualised: FlagArray) -> None:
     """Fill in, in place, the ratios made of other ratios; they take over the first reason among their parts."""
     for row in catalogue.rows:
         if row.parts:
@@ -216,7 +232,8 @@ def _combine(catalogue: Catalogue, values: FloatArray, reasons: ReasonArray, ann
 def _notes(catalogue: Catalogue, rows: IndexArray) -> dict[tuple[str, int], str]:
     """Collect the marks of the rows that were used, parts of combinations included."""
     notes: dict[tuple[str, int], str] = {}
-    for ratio, key in enumerate(catalogue.keys):
+    for ratio in catalogue.noted:
+        key = catalogue.specs[ratio].key
         for place, row in enumerate(rows[ratio]):
             own = catalogue.rows[row]
             texts = [own.note, *(catalogue.rows[rows[part, place]].note for part in own.parts)]

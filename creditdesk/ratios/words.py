@@ -28,6 +28,7 @@ REASON_WORDS: Mapping[str, str] = {
     "negative_denominator": "divisor negative",
 }
 """Why a ratio has no value, by the reason's key, in the few words a table has room for."""
+_ABBREVIATIONS = re.compile(r"\b(ebitda|ebit)\b", re.IGNORECASE)
 _FUNCTION = re.compile(r"[a-z_]+\(")
 _SIGN_HINT = re.compile(r" \([^()]*[+−-]\)$")
 _BEFORE = {
@@ -37,6 +38,17 @@ _BEFORE = {
     "average": "average ",
     "change": "change in ",
 }
+
+
+def spoken(key: str) -> str:
+    """Write a key as words: ``no_ebitda`` becomes no EBITDA."""
+    return _ABBREVIATIONS.sub(lambda found: found[0].upper(), key.replace("_", " "))
+
+
+def titled(key: str) -> str:
+    """Write a key as the words of a heading: ``weak_spots`` becomes Weak spots."""
+    words = spoken(key)
+    return words[:1].upper() + words[1:]
 
 
 def format_ratio(value: float, unit: Unit, style: NumberStyle = PLAIN) -> str:
