@@ -16,8 +16,10 @@ from creditdesk.base.errors import UserError
 from creditdesk.case.codes import COUNTRIES, CURRENCIES, SECTORS, UNITS
 from creditdesk.case.document import TEXT_BLOCKS
 from creditdesk.case.pencil_checks import scenario_faults, study_faults
+from creditdesk.case.pencil_names import pencil_name_faults
 from creditdesk.case.raw import list_of, number_of, table_of
 from creditdesk.formula.sums import evaluate_sum
+from creditdesk.house.book import HouseBook
 from creditdesk.house.decode import Fault, Table, fault_of, is_date, nearest_name, place_of, show, unknown_name
 from creditdesk.statements.adjust import Adjustment, adjustment_faults
 from creditdesk.statements.chart import Chart
@@ -31,11 +33,16 @@ _DEEPEST = 6
 """Levels of tables in an exchange file; a faulty one may have more."""
 
 
-def case_faults(raw: Table, chart: Chart) -> Iterator[Fault]:
-    """List what is wrong with the tables of an exchange file, given the line items of ``chart``."""
+def case_faults(raw: Table, chart: Chart, house: HouseBook | None = None) -> Iterator[Fault]:
+    """List what is wrong with the tables of an exchange file, given the line items of ``chart``.
+
+    With ``house`` also what scenarios and studies name: ratios, drivers, assumptions, events, grades.
+    """
     yield from plain_faults(raw)
     yield from name_faults(raw, chart)
     yield from typed_faults(raw)
+    if house is not None:
+        yield from pencil_name_faults(raw, house)
 
 
 def plain_faults(raw: Table) -> Iterator[Fault]:

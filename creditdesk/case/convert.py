@@ -12,6 +12,7 @@ from creditdesk.case.schema import MAGIC
 from creditdesk.case.store import CaseFile
 from creditdesk.case.trail import Clock, utc_now
 from creditdesk.case.wire import case_tables
+from creditdesk.house.book import HouseBook
 from creditdesk.house.decode import SIZE_LIMIT, fault_error
 from creditdesk.house.files import read_file, write_file
 from creditdesk.statements.chart import Chart
@@ -20,19 +21,19 @@ CASE_FILE = ".deskcase"
 EXCHANGE_FILE = ".toml"
 
 
-def load_any(path: Path, chart: Chart) -> Case:
-    """Read a case from a case file or an exchange file, told apart by content.
+def load_any(path: Path, chart: Chart, house: HouseBook | None = None) -> Case:
+    """Read a case from a case file or an exchange file, told apart by content; ``house`` as for ``read_case``.
 
     A case file is not changed, and need not be free. Raises UserError where it cannot be read, where its document is
     not the one its trail leads to (``trail_broken``), or with every fault of its content; Refusal for natural persons.
     """
     if not _is_case_file(path):
-        return read_case(read_file(path, SIZE_LIMIT), chart, file=str(path))
+        return read_case(read_file(path, SIZE_LIMIT), chart, file=str(path), house=house)
     with CaseFile.open(path, write=False) as file:
         broken = [finding.text for finding in file.findings if finding.severity is Severity.STOP]
         if broken:
             raise UserError("trail_broken", [f"{path}: {text}" for text in broken])
-        check_case(file.case, chart, file=str(path))
+        check_case(file.case, chart, file=str(path), house=house)
         return file.case
 
 
@@ -44,13 +45,13 @@ def _is_case_file(path: Path) -> bool:
         return path.suffix == CASE_FILE  # whoever reads it next names the reason
 
 
-def check_case(case: Case, chart: Chart, *, file: str) -> None:
+def check_case(case: Case, chart: Chart, *, file: str, house: HouseBook | None = None) -> None:
     """Check a case that was kept as data: with another house book its line items may be unknown.
 
     Raises UserError ``faults`` with one line each, and Refusal for natural persons.
     """
     refuse_natural_persons(case.obligor.legal_form, file)
-    faults = list(case_faults(case_tables(case), chart))
+    faults = list(case_faults(case_tables(case), chart, house))
     if faults:
         raise fault_error(file, faults)
 

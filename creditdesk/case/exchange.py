@@ -4,6 +4,7 @@ import math
 import re
 from collections.abc import Iterable, Mapping
 from datetime import date
+from functools import partial
 from typing import Literal, TypeVar
 
 import msgspec
@@ -23,6 +24,7 @@ from creditdesk.case.document import (
 )
 from creditdesk.case.raw import table_of
 from creditdesk.case.wire import plain_part
+from creditdesk.house.book import HouseBook
 from creditdesk.house.decode import Table, convert_tables, parse_toml, show
 from creditdesk.scenario.marks import Scenario
 from creditdesk.scenario.specs import StudySpec
@@ -72,8 +74,8 @@ class ExchangeFile(msgspec.Struct, frozen=True, forbid_unknown_fields=True):
     studies: tuple[StudySpec, ...] = ()
 
 
-def read_case(data: bytes, chart: Chart, *, file: str) -> Case:
-    """Read an exchange file; ``file`` names it in messages.
+def read_case(data: bytes, chart: Chart, *, file: str, house: HouseBook | None = None) -> Case:
+    """Read an exchange file; ``file`` names it in messages, ``house`` checks what scenarios and studies name.
 
     Raises UserError: ``not_toml`` with line and column, ``not_a_case``, ``case_version``, or ``faults``, one line for
     each. Raises Refusal ``natural_person`` for a borrower that is, or stands for, natural persons.
@@ -81,7 +83,8 @@ def read_case(data: bytes, chart: Chart, *, file: str) -> Case:
     raw = parse_toml(data, file=file)
     _check_head(raw, file)
     refuse_natural_persons(table_of(raw.get("obligor")).get("legal_form"), file)
-    tables = convert_tables(raw, ExchangeFile, file=file, extra_faults=lambda found: case_faults(found, chart))
+    checks = partial(case_faults, chart=chart, house=house)
+    tables = convert_tables(raw, ExchangeFile, file=file, extra_faults=checks)
     return _case(tables, chart)
 
 

@@ -12,6 +12,8 @@ from creditdesk.case.checks import MONTHS_MOST, PERIODS_MOST
 from creditdesk.case.codes import COUNTRIES, CURRENCIES, SECTORS, UNITS
 from creditdesk.case.document import REFUSED_FORMS, TEXT_BLOCKS, LegalForm
 from creditdesk.case.exchange import ExchangeFile
+from creditdesk.case.pencil_checks import DRAWS_ALLOWED, INPUTS_MOST, NAME_MOST, POINTS_ALLOWED
+from creditdesk.case.pencil_schema import PENCIL_TEXTS
 from creditdesk.house.decode import Schema
 from creditdesk.statements.chart import Chart, LineItem, Subtotal
 
@@ -30,6 +32,8 @@ _TEXTS: Mapping[str, Mapping[str, str]] = {
         "typed": 'Sums as typed, checked to give the figure; "" where a plain number was typed.',
         "notes": "Where each figure comes from: one text per period.",
         "texts": "Blocks of text by the officer.",
+        "scenarios": "What-ifs: pencil marks over the assessed period, which change no figure.",
+        "studies": "Questions asked of a scenario or of the figures as they stand.",
     },
     "ObligorTable": {
         "name": "Name of the borrower.",
@@ -70,6 +74,7 @@ _TEXTS: Mapping[str, Mapping[str, str]] = {
         "author": "Who claims to have made it; only a signature proves a key.",
     },
     "Entry": {"line": "Key of a line item.", "amount": "Amount added, in the case's unit, with its sign."},
+    **PENCIL_TEXTS,
 }
 
 
@@ -93,6 +98,7 @@ def exchange_schema(chart: Chart) -> Schema:
     _narrow(definitions["Period"], "months", minimum=1, maximum=MONTHS_MOST)
     _narrow(definitions["Adjustment"], "entries", minItems=1)
     _narrow(definitions["Entry"], "line", enum=[item.key for item in chart.lines])
+    _narrow_pencil(definitions)
     definitions["LegalForm"]["enum"] = sorted(set(LegalForm) - REFUSED_FORMS)
     _narrow_rows(definitions, chart)
     return {
@@ -143,6 +149,19 @@ def _narrow_obligor(definition: Schema) -> None:
         required=["date"],
         additionalProperties=False,
     )
+
+
+def _narrow_pencil(definitions: dict[str, Schema]) -> None:
+    _narrow(definitions["Scenario"], "name", minLength=1, maxLength=NAME_MOST)
+    _narrow(definitions["GridSpec"], "points", minimum=POINTS_ALLOWED[0], maximum=POINTS_ALLOWED[1])
+    _narrow(definitions["BreakEvenSpec"], "limits", minItems=1)
+    _narrow(definitions["ReachSpec"], "levers", minItems=1)
+    _narrow(definitions["Lever"], "cost", exclusiveMinimum=0)
+    _narrow(definitions["Lever"], "step", minimum=0)
+    _narrow(definitions["Correlation"], "value", exclusiveMinimum=-1, exclusiveMaximum=1)
+    _narrow(definitions["SimulationSpec"], "inputs", maxItems=INPUTS_MOST)
+    _narrow(definitions["SimulationSpec"], "draws", minimum=DRAWS_ALLOWED[0], maximum=DRAWS_ALLOWED[1])
+    _narrow(definitions["SimulationSpec"], "seed", minimum=0)
 
 
 def _narrow_rows(definitions: dict[str, Schema], chart: Chart) -> None:
