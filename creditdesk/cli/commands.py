@@ -33,7 +33,7 @@ def house_book(options: Namespace) -> HouseBook:
 
 def _case_and_house(options: Namespace) -> tuple[Case, HouseBook]:
     house = house_book(options)
-    case = load_any(options.case, house.chart)
+    case = load_any(options.case, house.chart, house)
     return case, with_lead_model(house, case, options.case.parent)
 
 
@@ -141,7 +141,7 @@ def score(options: Namespace) -> int:
 def convert(options: Namespace) -> int:
     """Turn one form of a case into another."""
     house = house_book(options)
-    case = load_any(options.source, house.chart)
+    case = load_any(options.source, house.chart, house)
     if options.target.suffix == ".xlsx":
         from creditdesk.memo.workbook import workbook  # heavy, and other commands go without
 

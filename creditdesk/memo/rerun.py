@@ -55,7 +55,7 @@ def rerun(parts: Mapping[str, bytes]) -> Rerun:
 
 def _assessed(parts: Mapping[str, bytes]) -> bytes:
     house = house_book_from_files(unpack(parts[HOUSE_BOOK]))
-    case = read_case(parts[CASE], house.chart, file=CASE)
+    case = read_case(parts[CASE], house.chart, file=CASE, house=house)
     if LEAD_MODEL in parts and case.model.lead not in house.models:  # a name of the house book means its own model
         house = with_model(house, model_from_bytes(parts[LEAD_MODEL], house, file=LEAD_MODEL), case.model.lead)
     return result_bytes(assess(case, house))
