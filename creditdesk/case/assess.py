@@ -61,10 +61,15 @@ def assess(case: Case, house: HouseBook, model: str = "") -> Standing:
     without a grade. Raises UserError for an unknown model, a lead model that gives no PD, a case without an actual
     period. Depends on nothing but its arguments: the only date is the case's assessment date.
     """
+    return assess_statements(case, house, case_statements(case, house.chart), model)
+
+
+def assess_statements(case: Case, house: HouseBook, statements: CaseStatements, model: str = "") -> Standing:
+    """Say where the borrower of ``case`` would stand with ``statements`` in place of its own; else as ``assess``."""
     chosen = _model(case, house, model)
-    statements = case_statements(case, house.chart)
     period, period_findings = assessed_period(case.periods, case.assessment.period)
-    tables = RatioTables(case, house.catalogue, statements.adjusted)
+    held = {(key, period): value for key, value in statements.held.items()}
+    tables = RatioTables(case, house.catalogue, statements.adjusted, held, chosen.spec.currency)
     scored = score_periods(chosen.spec, tables.of(chosen.spec.currency), house.settings.interval_level)
     scope = out_of_scope(chosen.spec, borrower(case, chosen.spec, statements.adjusted, tables, period))
     desk = _Desk(case, house, chosen, statements, tables, scored, period, scope)

@@ -1,5 +1,6 @@
 """Second opinions: what other configured models say, shown beside the lead model and never averaged in."""
 
+from collections.abc import Mapping
 from functools import lru_cache
 
 import numpy as np
@@ -12,7 +13,7 @@ from creditdesk.model.scope import Borrower, out_of_scope
 from creditdesk.model.score import reading_of, score, why_no_pd, why_no_score
 from creditdesk.model.spec import ModelSpec
 from creditdesk.model.treat import treat
-from creditdesk.ratios.catalogue import Catalogue
+from creditdesk.ratios.catalogue import Catalogue, part_of
 from creditdesk.ratios.compute import RatioTable, compute_ratios
 from creditdesk.ratios.trace import users_of
 from creditdesk.statements.statement import StatementSet
@@ -21,27 +22,47 @@ from creditdesk.statements.statement import StatementSet
 class RatioTables:
     """Compute the ratios once per currency of the models that ask, because amounts are in the model's currency."""
 
-    def __init__(self, case: Case, catalogue: Catalogue, statements: StatementSet) -> None:
+    def __init__(
+        self,
+        case: Case,
+        catalogue: Catalogue,
+        statements: StatementSet,
+        held: Mapping[tuple[str, int], float] | None = None,
+        held_in: str = "",
+    ) -> None:
+        """Take ``held`` ratios, by (key, period index), as given; those that read a currency in ``held_in`` alone."""
         self._case, self._catalogue, self._statements = case, catalogue, statements
+        self._held, self._held_in = held or {}, held_in
         self._tables: dict[str, RatioTable] = {}
 
     def of(self, currency: str) -> RatioTable:
         """Return the ratios with amounts in ``currency``, or in the case's own where it is blank."""
         if currency not in self._tables:
-            self._tables[currency] = compute_ratios(
-                self._catalogue,
-                self._statements,
-                constants={"unit": float(self._case.obligor.unit), "to_model_currency": self.rate(currency)},
-                constant_needs={"to_model_currency": f"rate {currency}"},
-            )
+            self._tables[currency] = self._computed(self._catalogue, currency)
         return self._tables[currency]
 
     def for_model(self, spec: ModelSpec) -> RatioTable:
-        """Return the ratios for a model: in its currency, or those at hand where its factors are the same in any."""
+        """Return at least the ratios of a model: in its currency, or those at hand where they are the same in any."""
         amounts = _in_model_currency(self._catalogue)
         if self._tables and not any(factor.ratio in amounts for factor in spec.factors):
             return next(iter(self._tables.values()))
-        return self.of(spec.currency)
+        if spec.currency in self._tables:
+            return self._tables[spec.currency]
+        return self._computed(_of_model(self._catalogue, spec), spec.currency)
+
+    def _computed(self, catalogue: Catalogue, currency: str) -> RatioTable:
+        amounts = () if currency == self._held_in else _in_model_currency(self._catalogue)
+        return compute_ratios(
+            catalogue,
+            self._statements,
+            constants={"unit": float(self._case.obligor.unit), "to_model_currency": self.rate(currency)},
+            constant_needs={"to_model_currency": f"rate {currency}"},
+            held={
+                (key, period): value
+                for (key, period), value in self._held.items()
+                if key in catalogue.index and key not in amounts
+            },
+        )
 
     def rate(self, currency: str) -> float:
         """Return units of ``currency`` per unit of the case's currency; nan where the case states none."""
@@ -55,6 +76,12 @@ class RatioTables:
 def _in_model_currency(catalogue: Catalogue) -> frozenset[str]:
     """List the ratios that depend on the model's currency; kept, as a catalogue does not change."""
     return frozenset(users_of(catalogue, "to_model_currency"))
+
+
+@lru_cache(maxsize=64)
+def _of_model(catalogue: Catalogue, spec: ModelSpec) -> Catalogue:
+    """Return the catalogue of a model's ratios; kept, as neither changes."""
+    return part_of(catalogue, [factor.ratio for factor in spec.factors])
 
 
 def borrower(case: Case, spec: ModelSpec, statements: StatementSet, tables: RatioTables, period: int) -> Borrower:

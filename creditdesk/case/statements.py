@@ -1,7 +1,7 @@
 """The statements of a case: as received, and after its adjustments."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,11 +18,15 @@ FloatArray = NDArray[np.float64]
 
 @dataclass(frozen=True, slots=True)
 class CaseStatements:
-    """Hold both sets; they are one and the same where nothing was adjusted."""
+    """Hold both sets; they are one and the same where nothing was adjusted.
+
+    ``held``: ratios of the assessed period that are given and not computed from the statements.
+    """
 
     received: StatementSet
     adjusted: StatementSet
     findings: tuple[Finding, ...]
+    held: Mapping[str, float] = field(default_factory=dict)
 
 
 def case_statements(case: Case, chart: Chart) -> CaseStatements:

@@ -26,7 +26,7 @@ class Column:
     """Hold what the ratios of one period need beside that period's amounts.
 
     ``ink``: what the statements disclose in all periods. ``names``: the amounts of the period that the ratios use.
-    ``largest``: the largest of the other amounts in the ink. ``unknown``: rows x 1, ``chosen``: ratios x 1, as of a table.
+    ``largest``: the largest of the other amounts in the ink. ``unknown``: rows x 1; ``chosen``: ratios x 1.
     ``opening``: by step along periods, what its argument was on the opening day, nan where there is no such day.
     """
 
