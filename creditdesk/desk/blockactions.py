@@ -8,6 +8,7 @@ from PySide6.QtWidgets import QApplication
 from creditdesk.base.errors import UserError
 from creditdesk.case.commands import Command, Figure, SetNote
 from creditdesk.desk import blocks
+from creditdesk.desk.actions import Entry
 from creditdesk.desk.notes import NoteDialog
 from creditdesk.desk.readings import ask_mark
 from creditdesk.desk.tables.rows import Row, RowKind
@@ -29,20 +30,22 @@ class BlockActions(QObject):
         self._do, self._table, self._model = do, table, table.figures
         self._copied = ("", b"")  # the text last put on the clipboard, and what was entered in its cells
 
-    def choices(self) -> Sequence[tuple[str, Callable[[], object]] | None]:
-        """List what can be done with the chosen cells, by title; None parts groups."""
+    def choices(self) -> Sequence[Entry | None]:
+        """List what can be done with the chosen cells, by title and keys; None parts groups."""
         return (
-            ("Copy the block", self.copy),
-            ("Paste a block", self.paste),
-            ("Clear the cells", self.clear),
+            ("Copy the block", "Ctrl+C", self.copy),
+            ("Paste a block", "Ctrl+V", self.paste),
+            ("Clear the cells", "Del", self.clear),
             None,
-            ("Fill right", self.fill_right),
-            ("Note on the cell…", self.note),
+            ("Fill right", "Ctrl+R", self.fill_right),
+            ("Note on the cell…", "Ctrl+M", self.note),
         )
 
     def enter(self, row: Row, period: int, text: str) -> bool:
         """Set one cell to what was typed; say whether it was taken."""
-        return self._try(lambda: blocks.entered_cell(row, period, text, self._reading()))
+        facts = self._model.facts
+        cell = f"{facts.label(row.key)} {facts.heads[period]}: "
+        return self._try(lambda: blocks.entered_cell(row, period, text, self._reading()), cell)
 
     def copy(self) -> None:
         """Put the chosen block on the clipboard, for a spreadsheet and for this table."""
@@ -98,13 +101,13 @@ class BlockActions(QObject):
         keep = lambda text: self._do(SetNote(row.key, period, text))  # noqa: E731  the one line it is
         NoteDialog(self._table, cell, facts.note(row.key, period), keep).exec()
 
-    def _try(self, make: Callable[[], Command | None]) -> bool:
+    def _try(self, make: Callable[[], Command | None], where: str = "") -> bool:
         try:
             command = make()
             if command is not None:
                 self._do(command)
         except UserError as error:
-            self.fault.emit(" ".join(error.faults))
+            self.fault.emit(where + " ".join(error.faults))
             return False
         return True
 

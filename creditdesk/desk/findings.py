@@ -10,8 +10,8 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import Standing
 from creditdesk.desk.frame import label
 from creditdesk.desk.places import place_words
+from creditdesk.desk.tables.cells import MARKS
 
-MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "●"}
 _ROLES = {Severity.STOP: "breach", Severity.QUERY: "caution", Severity.NOTE: "second"}
 _STEPS = {Qt.Key.Key_Up: -1, Qt.Key.Key_Down: 1}
 

@@ -8,7 +8,8 @@ from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.desk.tables.cells import Look
 from creditdesk.desk.tables.marks import DIFFERS, NOTED, paint_blank, paint_sum_line
 
-_SAMPLE, _GAP = 17, 13
+_SAMPLE, _GAP, _BROKEN = 17, 10, 15
+_UNKNOWN = "n.d."
 _SMALLER = 0.86
 ITEMS = (
     ("dot", "not disclosed"),
@@ -52,39 +53,43 @@ class Legend(QWidget):
         metrics = QFontMetricsF(font)
         left, middle = 0.0, self.height() / 2
         for sample, name in ITEMS:
-            width = _SAMPLE + metrics.horizontalAdvance(name)
+            wide = _SAMPLE + (metrics.horizontalAdvance(_UNKNOWN) if sample == "dot" else 0)
+            width = wide + metrics.horizontalAdvance(name)
             if left + width > self.width():
                 break
-            self._paint_sample(painter, QRectF(left, 0, _SAMPLE - 4, self.height()), sample, font)
+            self._paint_sample(painter, QRectF(left, 0, wide - 4, self.height()), sample, font)
             painter.setFont(font)
             painter.setPen(QColor(self._palette.second_ink))
-            area = QRectF(left + _SAMPLE, 0, width, 2 * middle)
+            area = QRectF(left + wide, 0, width, 2 * middle)
             painter.drawText(area, Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignLeft, name)
             left += width + _GAP
         painter.end()
 
     def _paint_sample(self, painter: QPainter, area: QRectF, sample: str, font: QFont) -> None:
         centre, palette = area.center(), self._palette
-        if sample in ("dot", "ring"):
-            look = Look.NOT_DISCLOSED if sample == "dot" else Look.ASSUMED_NIL
-            paint_blank(painter, QPointF(centre.x() + 2, centre.y()), look, palette)
+        if sample == "ring":
+            paint_blank(painter, QPointF(centre.x() + 2, centre.y()), Look.ASSUMED_NIL, palette)
             return
         if sample == "broken":
-            ends = (QPointF(area.left(), centre.y()), QPointF(area.right(), centre.y()))
-            paint_sum_line(painter, *ends, Look.UNREACHED, palette)
+            left = QPointF(area.left(), round(centre.y()))
+            paint_sum_line(painter, left, left + QPointF(_BROKEN, 0), Look.UNREACHED, palette)
             return
         own = QFont(font)
         own.setItalic(sample == "italic")
         painter.setFont(own)
-        painter.setPen(QColor(palette.accent if sample == NOTED else palette.ink))
-        text = {"italic": "12", "under": "12"}.get(sample, sample)
+        inks = {NOTED: palette.accent, "0": palette.ink, "under": palette.ink}
+        painter.setPen(QColor(inks.get(sample, palette.second_ink)))
+        text = {"italic": "12", "under": "12", "dot": _UNKNOWN}.get(sample, sample)
         painter.drawText(area, Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignRight, text)
+        if sample == "dot":
+            paint_blank(painter, QPointF(area.left() + 6, centre.y()), Look.NOT_DISCLOSED, palette)
         if sample == "under":
             painter.setPen(QPen(QColor(palette.ink), 1.0))
             painter.drawLine(QPointF(area.left(), area.bottom() - 2), QPointF(area.right(), area.bottom() - 2))
 
 
 _SPOKEN = {
-    "dot": "a dot", "ring": "a ring", "italic": "italic", "broken": "a broken line above a sum", "under": "underlined",
+    "dot": "a dot, or n.d. for a sum",
+    "ring": "a ring", "italic": "italic", "broken": "a broken line above a sum", "under": "underlined",
     "–": "a dash", DIFFERS: "an unequal sign", NOTED: "an asterisk",
 }  # fmt: skip

@@ -3,13 +3,15 @@
 from collections.abc import Callable, Sequence
 
 from PySide6.QtCore import QObject, QPoint, Qt, Signal
+from PySide6.QtGui import QKeySequence
 from PySide6.QtWidgets import QMenu, QMessageBox, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.case.commands import Command, RemovePeriod, SetPeriod
 from creditdesk.case.document import Case
 from creditdesk.case.words import period_heads
-from creditdesk.desk import periods
+from creditdesk.desk import actions, periods
+from creditdesk.desk.actions import Entry
 from creditdesk.desk.perioddialog import PeriodDialog
 from creditdesk.statements.period import Period
 
@@ -31,18 +33,18 @@ class PeriodActions(QObject):
         self._do, self._window = do, parent
         self.case: Case | None = None
 
-    def choices(self, which: Which) -> Sequence[tuple[str, Callable[[], object]] | None]:
-        """List what can be done, by title, with the period that ``which`` names when it is done; None parts groups."""
+    def choices(self, which: Which) -> Sequence[Entry | None]:
+        """List what can be done with the period that ``which`` names when it is done, by title and keys."""
         return (
-            ("Describe the period…", lambda: self.describe(which())),
+            ("Describe the period…", "Ctrl+D", lambda: self.describe(which())),
             None,
-            ("Add the next period", self.add_next),
-            ("Add an earlier period", self.add_earlier),
-            ("Add a restated account of the period", lambda: self.add_restated(which())),
+            ("Add the next period", "Ctrl+Shift+N", self.add_next),
+            ("Add an earlier period", "Ctrl+Shift+B", self.add_earlier),
+            ("Add a restated account of the period", None, lambda: self.add_restated(which())),
             None,
-            ("Move the period to the left", lambda: self.move(which(), -1)),
-            ("Move the period to the right", lambda: self.move(which(), 1)),
-            ("Remove the period…", lambda: self.remove(which())),
+            ("Move the period to the left", "Alt+Shift+Left", lambda: self.move(which(), -1)),
+            ("Move the period to the right", "Alt+Shift+Right", lambda: self.move(which(), 1)),
+            ("Remove the period…", None, lambda: self.remove(which())),
         )
 
     def pop_up(self, index: int, at: QPoint) -> None:
@@ -123,11 +125,10 @@ class PeriodActions(QObject):
             self.went_to.emit(then)
 
 
-def fill_menu(menu: QMenu, choices: Sequence[tuple[str, Callable[[], object]] | None]) -> None:
-    """Fill a menu with what can be done."""
-    for choice in choices:
-        if choice is None:
-            menu.addSeparator()
-        else:
-            title, do = choice
-            menu.addAction(title).triggered.connect(lambda _=False, do=do: do())
+def fill_menu(menu: QMenu, choices: Sequence[Entry | None]) -> None:
+    """Fill a menu beside the menu bar with what can be done; keys are only named, as it is the bar that binds them."""
+    actions.fill_menu(menu, [choice and (_with_keys(*choice[:2]), None, choice[2]) for choice in choices])
+
+
+def _with_keys(title: str, key: actions.Key) -> str:
+    return f"{title}\t{QKeySequence(key).toString(QKeySequence.SequenceFormat.NativeText)}" if key else title

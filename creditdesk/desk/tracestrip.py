@@ -3,12 +3,15 @@
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from PySide6.QtCore import QEvent, QObject, QSize, Qt, Signal
-from PySide6.QtGui import QColor, QKeyEvent
+from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRectF, QSize, Qt, Signal
+from PySide6.QtGui import QColor, QFocusEvent, QKeyEvent, QPainter, QPen
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QFrame,
     QHBoxLayout,
+    QStyle,
+    QStyledItemDelegate,
+    QStyleOptionViewItem,
     QTreeWidget,
     QTreeWidgetItem,
     QVBoxLayout,
@@ -21,6 +24,8 @@ from creditdesk.desk.tables.cells import Facts
 from creditdesk.desk.tables.rows import Row, RowKind
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.trace import trace_ratio, users_of
+
+Index = QModelIndex | QPersistentModelIndex
 
 _ROWS, _MORE_ROWS, _ROW_HEIGHT = 3, 6, 19
 _TALL = 800
@@ -62,6 +67,64 @@ class Users:
         return Use(f"ratios.{ratio}[{ends}]", trace.label, trace.value_text, formula, factor)
 
 
+class UsesList(QTreeWidget):
+    """List the uses of a cell, one a row, framed whole where the keyboard is. ``left``: Escape gives it back."""
+
+    left = Signal()
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.colours: Palette = LIGHT
+        self.setItemDelegate(_Unframed(self))
+        self.setFrameShape(QFrame.Shape.NoFrame)
+        self.viewport().setAutoFillBackground(False)
+        self.setAccessibleName("Ratios that use this cell")
+        self.setColumnCount(4)
+        self.setHeaderHidden(True)
+        self.setRootIsDecorated(False)
+        self.setUniformRowHeights(True)
+        self.setIndentation(0)
+        self.setSelectionMode(QAbstractItemView.SelectionMode.SingleSelection)
+        self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setTabKeyNavigation(False)
+        self.viewport().setCursor(Qt.CursorShape.PointingHandCursor)
+        for column, width in enumerate((20, 215, 74)):
+            self.setColumnWidth(column, width)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Give the keyboard back to the table with Escape."""
+        if event.key() == Qt.Key.Key_Escape:
+            self.left.emit()
+        else:
+            super().keyPressEvent(event)
+
+    def focusInEvent(self, event: QFocusEvent) -> None:
+        """Stand on a row, so that the keyboard can be seen."""
+        super().focusInEvent(event)
+        first = self.topLevelItem(0)
+        if first is not None and not self.currentIndex().isValid():
+            self.setCurrentItem(first)
+
+    def drawRow(self, painter: QPainter, options: QStyleOptionViewItem, index: Index) -> None:
+        """Paint one row, with ground and frame where the keyboard stands on it."""
+        here = self.hasFocus() and index.row() == self.currentIndex().row()
+        rect = QRectF(options.rect)
+        if here:
+            painter.fillRect(rect, QColor(self.colours.selection))
+        super().drawRow(painter, options, index)
+        if here:
+            painter.setPen(QPen(QColor(self.colours.accent), 1.0))
+            painter.drawRect(rect.adjusted(0.5, 0.5, -0.5, -0.5))
+
+
+class _Unframed(QStyledItemDelegate):
+    """Leave ground and frame to the row."""
+
+    def initStyleOption(self, option: QStyleOptionViewItem, index: Index) -> None:
+        super().initStyleOption(option, index)
+        option.state &= ~(QStyle.StateFlag.State_HasFocus | QStyle.StateFlag.State_Selected)
+
+
 class TraceStrip(QWidget):
     """Show one cell. ``jump_asked``: the place of a ratio that was chosen; ``left``: the keyboard goes back up."""
 
@@ -75,17 +138,17 @@ class TraceStrip(QWidget):
         self.title = label("strong")
         self.provenance = Elided("second")
         self.count = label("second")
-        self.uses = _uses()
+        self.uses = UsesList()
         self.uses.itemClicked.connect(self._on_chosen)
         self.uses.itemActivated.connect(self._on_chosen)
-        self.uses.installEventFilter(self)
+        self.uses.left.connect(self.left)
         self.setFocusProxy(self.uses)
         self._lay_out()
         self.show_nothing()
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""
-        self._palette = palette
+        self._palette = self.uses.colours = palette
         self._dye()
 
     def fit(self, height: int) -> None:
@@ -131,13 +194,6 @@ class TraceStrip(QWidget):
     def _on_chosen(self, item: QTreeWidgetItem) -> None:
         self.jump_asked.emit(str(item.data(0, Qt.ItemDataRole.UserRole)))
 
-    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
-        """Give the keyboard back to the table with Escape."""
-        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress and event.key() == Qt.Key.Key_Escape:
-            self.left.emit()
-            return True
-        return super().eventFilter(watched, event)
-
     def _lay_out(self) -> None:
         first = QHBoxLayout()
         first.setSpacing(14)
@@ -157,22 +213,3 @@ def _count_words(ratios: int, factors: int) -> str:
         return "used by no ratio"
     used = f"used by {ratios} ratio{'s' if ratios > 1 else ''}"
     return f"{used}, {_FACTOR} {factors} in the lead model" if factors else used
-
-
-def _uses() -> QTreeWidget:
-    tree = QTreeWidget()
-    tree.setFrameShape(QFrame.Shape.NoFrame)
-    tree.viewport().setAutoFillBackground(False)
-    tree.setAccessibleName("Ratios that use this cell")
-    tree.setColumnCount(4)
-    tree.setHeaderHidden(True)
-    tree.setRootIsDecorated(False)
-    tree.setUniformRowHeights(True)
-    tree.setIndentation(0)
-    tree.setSelectionMode(QAbstractItemView.SelectionMode.SingleSelection)
-    tree.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
-    tree.setTabKeyNavigation(False)
-    tree.viewport().setCursor(Qt.CursorShape.PointingHandCursor)
-    for column, width in enumerate((20, 215, 74)):
-        tree.setColumnWidth(column, width)
-    return tree

@@ -134,6 +134,9 @@ def test_changes_compare_what_can_be_compared(house: HouseBook, sound_case: Case
     facts = facts_of(sound_case, house)
     assert facts.change_text(row(facts, "revenue")) == "+6.4\u00a0%"
     assert facts.change_text(row(facts, "goodwill")) == "0.0\u00a0%"
+    moved = replace(sound_case, figures={**sound_case.figures, "goodwill": (1.0, 8.0, 300.0), "cash": (1.0, 40.0, 0.0)})
+    assert facts_of(moved, house).change_text(row(facts_of(moved, house), "goodwill")) == "+3\u202f650\u00a0%"
+    assert facts_of(moved, house).change_text(row(facts_of(moved, house), "cash")) == "−100\u00a0%"
     first, second, third = sound_case.periods
     longer = replace(sound_case, periods=(first, replace(second, ends=date(2024, 9, 30)), replace(third, months=15)))
     facts = facts_of(longer, house)

@@ -293,9 +293,10 @@ def test_the_right_button_on_cells_offers_what_can_be_done_with_them(hands: Hand
     hands.sheet.table.customContextMenuRequested.emit(QPoint(300, 60))
     menu = next(one for one in hands.sheet.table.findChildren(QMenu) if one.isVisible())
     assert [action.text() for action in menu.actions() if not action.isSeparator()] == [
-        choice[0] for choice in hands.sheet.blocks.choices() if choice is not None
+        f"{choice[0]}\t{choice[1]}" for choice in hands.sheet.blocks.choices() if choice is not None
     ]
-    next(action for action in menu.actions() if action.text() == "Fill right").trigger()
+    assert all(action.shortcut().isEmpty() for action in menu.actions())  # the menu bar binds them, once
+    next(action for action in menu.actions() if action.text().startswith("Fill right")).trigger()
     assert hands.case.figures["cash"][1] == 1_180
     menu.close()
 
@@ -321,3 +322,91 @@ def test_what_nobody_prints_cannot_be_typed(hands: Hands, sound_case: Case) -> N
 def test_the_cursor_begins_where_typing_begins(hands: Hands, qtbot: QtBot, house: HouseBook) -> None:
     assert hands.current == ("cash", 2)  # the assessed period
     assert open_sheet(qtbot, house, empty()).current == ("cash", 0)
+
+
+def test_menus_beside_the_bar_name_the_keys_the_bar_binds(hands: Hands) -> None:
+    sheet = hands.sheet
+    bound = {entry[0].replace("&", ""): entry[1] for entry in sheet.entries() if entry is not None}
+    for title, key, _ in filter(None, (*sheet.blocks.choices(), *sheet.periods.choices(lambda: 0))):
+        assert bound.get(title, key) == key
+        assert title in bound or f"{title} ({key})" in bound
+
+
+def test_an_editor_covers_its_cell_and_grows_to_the_left_with_a_long_sum(hands: Hands) -> None:
+    hands.at("cash", 2)
+    cell = hands.sheet.table.visualRect(hands.sheet.table.currentIndex())
+    editor = hands.begin("12")
+    assert editor.geometry() == cell
+    hands.qtbot.keyClicks(editor, "00+340-15+1200+340-15")
+    assert editor.geometry().right() == cell.right()
+    assert editor.width() > editor.fontMetrics().horizontalAdvance(editor.text()) + 16
+    for _ in range(21):
+        hands.qtbot.keyClick(editor, Key.Key_Backspace)
+    assert editor.geometry() == cell
+
+
+def test_a_refused_text_is_framed_as_a_fault_until_it_is_mended_and_its_cell_is_named(hands: Hands) -> None:
+    hands.at("cash", 1)
+    editor = hands.begin("12a4")
+    hands.qtbot.keyClick(editor, Key.Key_Return)
+    assert editor.property("fault") is True
+    assert [fault.split(":")[0] for fault in hands.faults] == ["Cash and cash equivalents 2024"]
+    hands.qtbot.keyClick(editor, Key.Key_Backspace)
+    assert editor.property("fault") is False
+    hands.qtbot.keyClicks(editor, "124")
+    hands.qtbot.keyClick(editor, Key.Key_Return)
+    assert hands.case.figures["cash"][1] == 124
+
+
+@pytest.mark.parametrize("height", [480, 555, 640, 701])
+@pytest.mark.parametrize("periods", [3, 8])
+def test_no_row_is_cut_at_head_or_foot(
+    qtbot: QtBot, house: HouseBook, sound_case: Case, height: int, periods: int
+) -> None:
+    case = sound_case if periods == 3 else long_run(sound_case)
+    hands = open_sheet(qtbot, house, case, (760, height))
+    table = hands.sheet.table
+    row = table.rowHeight(0)
+    assert table.viewport().height() % row == 0
+    assert table.parentWidget().height() - table.height() < row
+    hands.sheet.go_to("figures.gross_profit[2025-12-31]")
+    assert table.rowViewportPosition(table.rowAt(0)) == 0
+    table.verticalScrollBar().setValue(table.verticalScrollBar().maximum())
+    assert table.visualRect(hands.sheet.model.index(hands.sheet.model.rowCount() - 1, 1)).bottom() < (
+        table.viewport().height()
+    )
+
+
+def test_sideways_no_amount_is_cut_once_scrolling_rests(qtbot: QtBot, house: HouseBook, sound_case: Case) -> None:
+    hands = open_sheet(qtbot, house, long_run(sound_case), (760, 640))
+    table, bar = hands.sheet.table, hands.sheet.table.horizontalScrollBar()
+    width = table.columnWidth(1)
+    assert bar.maximum() % width == 0
+    assert (table.viewport().width() - table.columnWidth(0)) % width == 0
+    for value in (1, width - 3, 2 * width + 5, bar.maximum()):
+        bar.setValue(value)
+        hands.qtbot.waitUntil(lambda: bar.value() % width == 0)
+        assert abs(bar.value() - value) <= width / 2
+
+
+def test_folding_leaves_the_cursors_cell_chosen_and_says_what_it_stands_for(hands: Hands) -> None:
+    hands.at("inventories", 2)
+    hands.sheet._toggle_folds()
+    table, model = hands.sheet.table, hands.sheet.model
+    assert table.selectedIndexes() == [table.currentIndex()]
+    table.setCurrentIndex(model.index(0, 3))
+    assert hands.sheet.strip.title.text() == "Total assets 2025"
+    words = {row.key: model.fold_words(row) for row in model.rows}
+    assert words["assets"] == "Total assets"
+    hands.sheet._toggle_folds()
+    memo = [row for row in model.rows if row.section == "memo" and row.kind is RowKind.LINE]
+    assert words["memo"] == f"{len(memo)} lines"
+    assert [model.fold_words(row) for row in model.rows if row.kind is RowKind.HEADING] == [""] * len(words)
+
+
+def test_an_empty_case_says_how_to_begin(qtbot: QtBot, house: HouseBook) -> None:
+    hands = open_sheet(qtbot, house, empty())
+    assert "No figures yet" in hands.sheet.hint.accessibleName()
+    hands.at("cash", 0)
+    hands.type("5")
+    assert "No figures yet" not in hands.sheet.hint.accessibleName()

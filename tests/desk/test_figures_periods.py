@@ -9,7 +9,17 @@ from PySide6.QtWidgets import QComboBox, QMenu, QMessageBox, QWidget
 from pytestqt.qtbot import QtBot
 
 from creditdesk.base.errors import UserError
-from creditdesk.case.commands import Figure, RemovePeriod, SetAssessment, SetFigures, SetPeriod, apply
+from creditdesk.case.commands import (
+    AddPeriod,
+    Figure,
+    MovePeriod,
+    RemovePeriod,
+    ReplaceCase,
+    SetAssessment,
+    SetFigures,
+    SetPeriod,
+    apply,
+)
 from creditdesk.case.document import Assessment, Case
 from creditdesk.desk import periods
 from creditdesk.desk.app import make_application
@@ -271,7 +281,8 @@ def test_the_right_button_on_a_heading_offers_what_can_be_done(hands: Hands) -> 
     hands.qtbot.mousePress(header.viewport(), Qt.MouseButton.RightButton, pos=place)
     menu = next(one for one in hands.sheet.findChildren(QMenu) if one.isVisible())
     titles = [action.text() for action in menu.actions() if not action.isSeparator()]
-    assert titles == [choice[0] for choice in hands.sheet.periods.choices(lambda: 0) if choice is not None]
+    choices = [choice for choice in hands.sheet.periods.choices(lambda: 0) if choice is not None]
+    assert [title.split("\t")[0] for title in titles] == [choice[0] for choice in choices]
     add = next(action for action in menu.actions() if "restated" in action.text())
     add.trigger()
     assert [period.ends.year for period in hands.case.periods] == [2023, 2024, 2024, 2025]
@@ -290,3 +301,29 @@ def test_a_finding_on_a_period_marks_its_heading_and_a_jump_goes_there(hands: Ha
     hands.sheet.go_to("periods[2024-12-31]")
     assert hands.sheet.table.header.hasFocus()
     assert hands.sheet.table.header.at == 2
+
+
+@pytest.mark.parametrize("first", [0, 1])
+def test_of_two_periods_of_one_day_a_jump_reaches_the_one_that_is_assessed(hands: Hands, first: int) -> None:
+    periods, last = hands.case.periods, len(hands.case.periods)
+    hands.session.do(AddPeriod(last, replace(periods[-1], restated=True)))
+    hands.session.do(MovePeriod(last, last - first))
+    restated = [period.restated for period in hands.case.periods].index(True)
+    assert hands.session.standing.period_index == restated == last - first
+    hands.at("cash", 0)
+    hands.sheet.go_to("figures.inventories[2025-12-31]")
+    assert hands.current == ("inventories", restated)
+    hands.sheet.go_to("periods[2025-12-31]")
+    assert hands.sheet.table.header.at == restated + 1
+
+
+def test_the_heading_shows_its_period_where_the_keyboard_is(hands: Hands, stretched_case: Case) -> None:
+    hands.session.do(ReplaceCase(stretched_case))
+    header = hands.sheet.table.header
+    assert header.model() is hands.sheet.model
+    assert hands.sheet.model.head_mark(3) is not None
+    header.enter(3)
+    image = header.viewport().grab().toImage()
+    left, width = header.sectionViewportPosition(3), header.sectionSize(3)
+    inside = [image.pixelColor(x, y).name() for x in range(left + 4, left + width - 4) for y in range(5, 35)]
+    assert inside.count(header.colours.paper.lower()) > 0.6 * len(inside)

@@ -216,3 +216,22 @@ def test_the_legend_says_in_words_what_it_paints(qtbot: QtBot) -> None:
     wide = legend.grab().toImage()
     legend.resize(300, 18)
     assert legend.grab().toImage().width() < wide.width()
+
+
+def test_the_keyboard_in_the_strip_stands_on_a_row_and_is_seen(hands: Hands) -> None:
+    hands.at("cash", 2)
+    tree = hands.sheet.strip.uses
+    before = tree.viewport().grab().toImage()
+    hands.sheet.strip.setFocus()
+    assert tree.currentItem() is tree.topLevelItem(0)
+    after = tree.viewport().grab().toImage()
+    right = tree.viewport().width() - 20
+    assert before.pixelColor(right, 8) != after.pixelColor(right, 8)  # the whole row, not its first column alone
+    assert after.pixelColor(right, 8).name() == LIGHT.selection.lower()
+
+
+def test_one_amount_alone_or_nil_alone_makes_no_trend(hands: Hands) -> None:
+    model = hands.sheet.model
+    hands.sheet.only_figures.setChecked(False)
+    for key, drawn in (("cash", True), ("impairment", False), ("short_term_investments", False)):
+        assert (model.trend(model.rows[hands.row(key)]) is not None) is drawn

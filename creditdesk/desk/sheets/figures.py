@@ -14,21 +14,24 @@ from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.desk.actions import Entry
 from creditdesk.desk.blockactions import BlockActions
-from creditdesk.desk.frame import label
+from creditdesk.desk.frame import Elided
 from creditdesk.desk.legend import Legend
 from creditdesk.desk.periodactions import PeriodActions, fill_menu
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.rows import RowKind
-from creditdesk.desk.tables.view import FiguresTable
+from creditdesk.desk.tables.view import FiguresTable, WholeRows
 from creditdesk.desk.tracestrip import TraceStrip
 from creditdesk.house.book import HouseBook
+from creditdesk.statements.period import period_ending
 
 Do = Callable[[Command], None]
 _CELL = re.compile(r"figures\.(?P<line>\w+)\[(?P<end>[\d-]+)\]")
 _PERIOD = re.compile(r"periods\[(?P<end>[\d-]+)\]")
 _PLACES_KEPT = 200
+_HINT = "Costs are positive. On a sum, type the total as printed."
+_FIRST_HINT = "No figures yet: type them, or paste a block with Ctrl+V. Costs are positive."
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,7 +60,7 @@ class FiguresSheet(Sheet):
         self.blocks = BlockActions(do, self.table)
         self.periods = PeriodActions(do, self)
         self.strip = TraceStrip(house.catalogue)
-        self.legend = Legend()
+        self.legend, self.hint = Legend(), Elided("second")
         self.only_figures, self.period_button = QPushButton("Only lines with figures"), QPushButton("Period")
         self.setFocusProxy(self.table)
         self._lay_out()
@@ -68,6 +71,7 @@ class FiguresSheet(Sheet):
         empty = not any(amount == amount for row in case.figures.values() for amount in row)
         if self._case is None and empty:
             self.only_figures.setChecked(False)
+        self.hint.show_text(_FIRST_HINT if empty else _HINT)
         left = self._place() if self._case is not None else None
         if self._case is not None and left is not None and self._case is not case:
             self._keep_place(self._case, left)
@@ -90,12 +94,17 @@ class FiguresSheet(Sheet):
             part.recolour(palette)
 
     def go_to(self, place: str) -> None:
-        """Move to the cell ``figures.<line>[<period end>]``, bringing its row back if it is hidden, or to a period."""
+        """Move to the cell ``figures.<line>[<period end>]``, bringing its row back if it is hidden, or to a period.
+
+        Of two periods that end on one day a place means the assessed one, else the restated one.
+        """
         found = _CELL.fullmatch(place) or _PERIOD.fullmatch(place)
-        ends = [period.ends.isoformat() for period in self._case.periods] if self._case is not None else []
+        periods = self._case.periods if self._case is not None else ()
+        ends = {period.ends.isoformat(): period.ends for period in periods}
         if found is None or found["end"] not in ends:
             return
-        period = ends.index(found["end"])
+        end, assessed = ends[found["end"]], self.model.facts.standing.period_index
+        period = assessed if periods[assessed].ends == end else period_ending(periods, end) or 0
         if found.re is _PERIOD:
             self.table.header.enter(period + 1)
         else:
@@ -103,11 +112,8 @@ class FiguresSheet(Sheet):
 
     def entries(self) -> Sequence[Entry | None]:
         """Return what can be done here; keys that other sheets or fields have too stand in the title, unbound."""
-        blocks, keys = self.blocks, iter(("Ctrl+D", "Ctrl+Shift+N", "Ctrl+Shift+B", None, *_MOVES, None))
-        of_periods = [
-            None if choice is None else (choice[0], next(keys), self._here(choice[1]))
-            for choice in self.periods.choices(self._period)
-        ]
+        blocks, choices = self.blocks, self.periods.choices(self._period)
+        of_periods = [choice and (*choice[:2], self._here(choice[2])) for choice in choices]
         return (
             ("&Note on the cell…", "Ctrl+M", self._here(blocks.note, choose=True)),
             ("&Fill right", "Ctrl+R", self._here(blocks.fill_right, choose=True)),
@@ -221,7 +227,7 @@ class FiguresSheet(Sheet):
         if row is None or not words:
             self.strip.show_nothing()
         else:
-            self.strip.show_cell(self.model.facts, row, current.column() - 1, words)
+            self.strip.show_cell(self.model.facts, self.model.meant(row), current.column() - 1, words)
 
     # Making
 
@@ -234,14 +240,14 @@ class FiguresSheet(Sheet):
         fill_menu(menu, self.periods.choices(self._period))
         self.period_button.setMenu(menu)
         top = QHBoxLayout()
-        top.addWidget(label("second", "Costs are positive. On a sum, type the total as printed."), 1)
+        top.addWidget(self.hint, 1)
         top.addWidget(self.only_figures)
         top.addWidget(self.period_button)
         box = QVBoxLayout(self)
         box.setContentsMargins(22, 10, 16, 6)
         box.setSpacing(6)
         box.addLayout(top)
-        box.addWidget(self.table, 1)
+        box.addWidget(WholeRows(self.table), 1)
         box.addWidget(self.legend)
         box.addWidget(self.strip)
 
@@ -276,6 +282,3 @@ class FiguresSheet(Sheet):
     def _on_heading_left(self, column: int) -> None:
         self.table.setCurrentIndex(self.model.index(max(self.table.currentIndex().row(), 0), column))
         self.table.setFocus(Qt.FocusReason.OtherFocusReason)
-
-
-_MOVES = ("Alt+Shift+Left", "Alt+Shift+Right")

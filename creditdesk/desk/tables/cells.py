@@ -17,7 +17,12 @@ from creditdesk.statements.chart import LineItem, Nature, Subtotal
 from creditdesk.statements.period import annual_factors, prior_index
 from creditdesk.statements.statement import Disclosure
 
+MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "●"}
+"""The shapes of the severities as letters, for texts."""
+
 _LARGE, _MIDDLING, _WHOLE = 10_000, 100, 1e-9
+_COARSE = 0.9995
+"""From a change of 100 % on, tenths of a percent say nothing."""
 
 
 class Look(Enum):
@@ -86,6 +91,11 @@ class Facts:
         chart = self.statements.chart
         self._items: dict[str, LineItem | Subtotal] = {total.key: total for total in chart.subtotals}
         self._items |= {line.key: line for line in chart.lines}
+
+    @property
+    def labels(self) -> Sequence[str]:
+        """Return the labels of all lines and sums there can be."""
+        return [item.label for item in self._items.values()]
 
     def label(self, key: str) -> str:
         """Return the label of a line or sum."""
@@ -202,8 +212,9 @@ class Facts:
         before, after = float(amounts[self.before]), float(amounts[self.standing.period_index])
         if not np.isfinite(before) or not np.isfinite(after) or before <= 0:
             return ""
-        change = format_percent(after / before - 1)
-        return change if after < before or change.startswith("0.0") else f"+{change}"
+        change = after / before - 1
+        words = format_percent(change, 0 if abs(change) >= _COARSE else 1)
+        return words if after < before or words.startswith("0.0") else f"+{words}"
 
     def provenance(self, row: Row, period: int) -> tuple[str, ...]:
         """Say in words how a cell came to its amount: state, adjustment, print, sum as typed, note."""

@@ -2,8 +2,7 @@
 
 from enum import StrEnum
 
-import numpy as np
-from PySide6.QtCore import QEvent, QModelIndex, QObject, QPersistentModelIndex, QPointF, QRectF, Qt, Signal
+from PySide6.QtCore import QEvent, QModelIndex, QObject, QPersistentModelIndex, QPointF, QRect, QRectF, Qt, Signal
 from PySide6.QtGui import QColor, QFont, QFontMetricsF, QKeyEvent, QPainter, QPen
 from PySide6.QtWidgets import QLineEdit, QStyle, QStyledItemDelegate, QStyleOptionViewItem, QWidget
 
@@ -12,12 +11,15 @@ from creditdesk.desk.tables.cells import Cell, Look
 from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.marks import DIFFERS, NOTED, paint_blank, paint_fold, paint_severity, paint_sum_line
 from creditdesk.desk.tables.rows import Row, RowKind
+from creditdesk.desk.tables.trend import paint_trend
 from creditdesk.desk.theme import SERIF
 
 Index = QModelIndex | QPersistentModelIndex
 
 LABEL_INDENT, RIGHT_PADDING, MARK_PLACE = 16, 10, 9
 _SUB_INDENT = 14
+_BESIDE_TEXT, _AROUND_TEXT = 2, 26
+"""Pixels that keep the text of an editor over the amount in the cell, and all those around it with the cursor's."""
 _SELECTED, _FOCUSED = QStyle.StateFlag.State_Selected.value, QStyle.StateFlag.State_HasFocus.value
 _SMALLER = 0.92
 _LEAVING = (
@@ -53,7 +55,7 @@ class FiguresDelegate(QStyledItemDelegate):
         self.typing = False
         self._model = model
         self._fonts: dict[Hand, QFont] = {}
-        self._edited = QPersistentModelIndex()
+        self._edited, self._covered = QPersistentModelIndex(), QRect()
 
     # Editing
 
@@ -61,9 +63,24 @@ class FiguresDelegate(QStyledItemDelegate):
         """Open a line of text over the cell."""
         editor = QLineEdit(parent)
         editor.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+        editor.setTextMargins(0, 0, _BESIDE_TEXT, 0)
         editor.setAccessibleName(self._model.rows[index.row()].label)
+        editor.textEdited.connect(lambda _: _mark_fault(editor, refused=False))
+        editor.textChanged.connect(lambda _: self._widen(editor))
         self._edited = QPersistentModelIndex(index)
         return editor
+
+    def updateEditorGeometry(self, editor: QWidget, option: QStyleOptionViewItem, index: Index) -> None:
+        """Cover the whole cell, and what lies before it where a long sum needs the room."""
+        assert isinstance(editor, QLineEdit)
+        self._covered = QRect(option.rect)
+        self._widen(editor)
+
+    def _widen(self, editor: QLineEdit) -> None:
+        cell = self._covered
+        needed = editor.fontMetrics().horizontalAdvance(editor.text()) + _AROUND_TEXT
+        over = min(max(needed - cell.width(), 0), max(cell.left(), 0))
+        editor.setGeometry(cell.adjusted(-over, 0, 0, 0))
 
     def setModelData(self, editor: QWidget, model: object, index: Index) -> None:
         """Hand the text over only where it was changed, so that leaving a cell is no edit."""
@@ -82,6 +99,7 @@ class FiguresDelegate(QStyledItemDelegate):
 
     def _leave(self, editor: QLineEdit, key: int, *, shift: bool) -> None:
         if not self._hand_over(editor, self._edited):
+            _mark_fault(editor, refused=True)
             editor.selectAll()
             return
         self.closeEditor.emit(editor, QStyledItemDelegate.EndEditHint.NoHint)
@@ -112,11 +130,13 @@ class FiguresDelegate(QStyledItemDelegate):
         elif column == model.periods + 1:
             self._write(painter, rect, model.change(row), Hand.PLAIN, self.palette.second_ink)
         elif column == model.periods + 2:
-            self._paint_trend(painter, rect, model.trend(row))
+            trend = model.trend(row)
+            if trend is not None:
+                paint_trend(painter, rect.adjusted(8, 6, -8, -6), trend, self.palette)
         elif column == model.periods + 3:
             severity = model.mark(row)
             if severity is not None:
-                paint_severity(painter, rect.center(), severity, self.palette)
+                paint_severity(painter, QPointF(rect.left() + MARK_PLACE, rect.center().y()), severity, self.palette)
         painter.restore()
 
     def _paint_ground(
@@ -146,14 +166,12 @@ class FiguresDelegate(QStyledItemDelegate):
         self._write(painter, area, row.label, hand, ink, left=True)
 
     def _paint_heading(self, painter: QPainter, rect: QRectF, row: Row) -> None:
-        folded = self._model.is_folded(row)
+        folded, words = self._model.is_folded(row), self._model.fold_words(row)
         paint_fold(painter, QPointF(rect.left() + 7, rect.center().y() + 1), folded=folded, palette=self.palette)
         area = rect.adjusted(LABEL_INDENT, 0, -4, 0)
         self._write(painter, area, row.label, Hand.HEADING, self.palette.accent, left=True)
-        if folded and row.total:
-            taken = QFontMetricsF(self._fonts[Hand.HEADING]).horizontalAdvance(row.label) + 12
-            label = self._model.facts.label(row.total)
-            self._write(painter, area.adjusted(taken, 0, 0, 0), label, Hand.PLAIN, self.palette.second_ink, left=True)
+        taken = QFontMetricsF(self._fonts[Hand.HEADING]).horizontalAdvance(row.label) + 12
+        self._write(painter, area.adjusted(taken, 0, 0, 0), words, Hand.PLAIN, self.palette.second_ink, left=True)
 
     def _paint_amount(self, painter: QPainter, rect: QRectF, row: Row, cell: Cell) -> None:
         hand = _hand(row, cell)
@@ -188,25 +206,13 @@ class FiguresDelegate(QStyledItemDelegate):
         area = rect if left else rect.adjusted(0, 0, -RIGHT_PADDING, 0)
         painter.drawText(area, align | Qt.AlignmentFlag.AlignVCenter | Qt.TextFlag.TextSingleLine, text)
 
-    def _paint_trend(self, painter: QPainter, rect: QRectF, trend: np.ndarray | None) -> None:
-        if trend is None or len(trend) < 2:
-            return
-        known = np.isfinite(trend)
-        if not known.any() or (trend[known] == 0).all():
-            return
-        area = rect.adjusted(8, 6, -8, -6)
-        low, high = float(trend[known].min()), float(trend[known].max())
-        share = (trend - low) / (high - low) if high > low else np.where(known, 0.5, np.nan)
-        step = area.width() / (len(trend) - 1)
-        points = [QPointF(area.left() + i * step, area.bottom() - s * area.height()) for i, s in enumerate(share)]
-        painter.setPen(QPen(QColor(self.palette.second_ink), 1.1))
-        for first, second, both in zip(points, points[1:], known[:-1] & known[1:], strict=False):
-            if both:
-                painter.drawLine(first, second)
-        if known[-1]:
-            painter.setBrush(QColor(self.palette.ink))
-            painter.setPen(Qt.PenStyle.NoPen)
-            painter.drawEllipse(points[-1], 2.0, 2.0)
+
+def _mark_fault(editor: QLineEdit, *, refused: bool) -> None:
+    """Frame what was refused as any field with a fault is framed."""
+    if bool(editor.property("fault")) != refused:
+        editor.setProperty("fault", refused)
+        editor.style().unpolish(editor)
+        editor.style().polish(editor)
 
 
 def _hand(row: Row, cell: Cell) -> Hand:

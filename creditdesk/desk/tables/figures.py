@@ -10,14 +10,13 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.case.words import basis_words, unit_words
-from creditdesk.desk.tables.cells import Cell, Facts, gravest
+from creditdesk.desk.tables.cells import MARKS, Cell, Facts, gravest
 from creditdesk.desk.tables.rows import Choice, Row, RowKind, figure_rows
 from creditdesk.statements.period import Opinion
 
 Index = QModelIndex | QPersistentModelIndex
 Enter = Callable[[Row, int, str], bool]
 
-MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "●"}
 _AFTER_PERIODS = ("change", "trend", "")
 _READ = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
 _TYPED = _READ | Qt.ItemFlag.ItemIsEditable
@@ -119,6 +118,24 @@ class FiguresModel(QAbstractTableModel):
         """Say whether ``row`` is a heading that hides its rows."""
         return row.kind is RowKind.HEADING and row.key in self.choice.folded
 
+    def meant(self, row: Row) -> Row:
+        """Return the row whose amounts ``row`` shows: for a folded heading the sum that stands for it."""
+        if not (self.is_folded(row) and row.total):
+            return row
+        return Row(RowKind.SUBTOTAL, row.total, self.facts.label(row.total), section=row.section)
+
+    def fold_words(self, row: Row) -> str:
+        """Name what a folded heading shows or, where no sum stands for it, how much it hides; "" where not folded."""
+        if not self.is_folded(row):
+            return ""
+        if row.total:
+            return self.facts.label(row.total)
+        every = replace(self.choice, folded=self.choice.folded - {row.section}, noted=frozenset(self.facts.case.notes))
+        rows = figure_rows(self.facts.received, self.facts.statements, every)
+        kinds = [one.kind for one in rows if one.section == row.section]
+        lines, sums = kinds.count(RowKind.LINE), kinds.count(RowKind.SUBTOTAL)
+        return f"{lines or sums} {'line' if lines else 'sum'}{'' if (lines or sums) == 1 else 's'}"
+
     def is_period(self, column: int) -> bool:
         """Say whether a column is that of a period."""
         return 0 < column <= self.periods
@@ -207,6 +224,7 @@ class FiguresModel(QAbstractTableModel):
 
     def words(self, row: Row, column: int) -> tuple[str, ...]:
         """Say in words what a cell is, how it came there and what is to be found about it."""
+        row = self.meant(row)
         if not self.is_period(column) or row.kind is RowKind.HEADING:
             return ()
         period, facts = column - 1, self.facts
@@ -257,8 +275,9 @@ class FiguresModel(QAbstractTableModel):
         return self.facts.change_text(row) if self._has_trend(row) else ""
 
     def trend(self, row: Row) -> np.ndarray | None:
-        """Return the amounts of a row's trend line, None where it has none."""
-        return self.facts.comparable(row) if self._has_trend(row) else None
+        """Return the amounts of a row's trend line, None where it has none or all are nil."""
+        amounts = self.facts.comparable(row) if self._has_trend(row) else np.zeros(0)
+        return amounts if np.nan_to_num(amounts).any() else None
 
     def mark(self, row: Row) -> Severity | None:
         """Return the gravest severity of a row, or of all rows a folded heading hides."""

@@ -10,6 +10,7 @@ from creditdesk.desk.tables.figures import FiguresModel
 from creditdesk.desk.tables.marks import paint_severity
 
 _HEIGHT, _NARROWEST = 42, 16
+_RULE = 1.5
 _SMALLER = 0.86
 
 
@@ -94,8 +95,7 @@ class PeriodHeader(QHeaderView):
         painter.save()
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         painter.fillRect(area, QColor(self.colours.paper))
-        painter.setPen(QPen(QColor(self.colours.ink), 1.5))
-        painter.drawLine(QPointF(area.left(), area.bottom() - 0.7), QPointF(area.right(), area.bottom() - 0.7))
+        painter.fillRect(QRectF(area.left(), area.bottom() - _RULE, area.width(), _RULE), QColor(self.colours.ink))
         self._write(painter, area, column)
         if self._model.is_period(column):
             self._paint_period(painter, area, column)
@@ -105,16 +105,24 @@ class PeriodHeader(QHeaderView):
         palette, model = self.colours, self._model
         severity = model.head_mark(column)
         if severity is not None:
-            place = QPointF(area.left() + MARK_PLACE, area.bottom() - 13)
-            paint_severity(painter, place, severity, palette)
+            paint_severity(painter, QPointF(area.left() + MARK_PLACE, area.bottom() - 13), severity, palette)
         if model.facts.standing.period_index == column - 1:
-            painter.setPen(QPen(QColor(palette.accent), 3.0))
-            painter.drawLine(
-                QPointF(area.left() + MARK_PLACE, area.bottom() - 1.5), QPointF(area.right(), area.bottom() - 1.5)
-            )
+            thick = 2 * _RULE
+            place = QRectF(area.left() + MARK_PLACE, area.bottom() - thick, area.width() - MARK_PLACE, thick)
+            painter.fillRect(place, QColor(palette.accent))
         if self.hasFocus() and column == self._at:
             painter.setPen(QPen(QColor(palette.accent), 1.6))
+            painter.setBrush(Qt.BrushStyle.NoBrush)
             painter.drawRect(area.adjusted(2, 2, -2, -3))
+
+    def second_width(self, column: int) -> float:
+        """Return the width in pixels of what stands below the heading of a column."""
+        return QFontMetricsF(self._small()).horizontalAdvance(self._model.second_line(column))
+
+    def _small(self) -> QFont:
+        small = QFont(self.font())
+        small.setPointSizeF(small.pointSizeF() * _SMALLER)
+        return small
 
     def _write(self, painter: QPainter, area: QRectF, column: int) -> None:
         right = column != 0 and column != self._model.periods + 2
@@ -122,9 +130,8 @@ class PeriodHeader(QHeaderView):
         inside = area.adjusted(LABEL_INDENT if column == 0 else 8, 4, -RIGHT_PADDING if right else 0, -5)
         second = self._model.second_line(column)
         first = str(self._model.headerData(column, Qt.Orientation.Horizontal) or "")
-        bold, small = QFont(self.font()), QFont(self.font())
+        bold, small = QFont(self.font()), self._small()
         bold.setWeight(QFont.Weight.DemiBold)
-        small.setPointSizeF(small.pointSizeF() * _SMALLER)
         lines = [(first, bold, self.colours.ink, Qt.AlignmentFlag.AlignTop)]
         if second:
             lines.append((second, small, self.colours.second_ink, Qt.AlignmentFlag.AlignBottom))

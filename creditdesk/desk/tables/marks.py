@@ -34,7 +34,7 @@ def paint_blank(painter: QPainter, centre: QPointF, look: Look, palette: Palette
     elif look is Look.NOT_DISCLOSED:
         painter.setPen(Qt.PenStyle.NoPen)
         painter.setBrush(QColor(palette.pencil))
-        painter.drawEllipse(centre, 1.1, 1.1)
+        painter.drawEllipse(centre, 1.4, 1.4)
 
 
 def paint_sum_line(painter: QPainter, left: QPointF, right: QPointF, look: Look, palette: Palette) -> None:
@@ -43,10 +43,10 @@ def paint_sum_line(painter: QPainter, left: QPointF, right: QPointF, look: Look,
     if look is not Look.UNREACHED:
         painter.fillRect(QRectF(left, QSizeF(right.x() - left.x(), 1)), colour)
         return
-    pen = QPen(colour, 1.2)
-    pen.setDashPattern([3, 3])
-    painter.setPen(pen)
-    painter.drawLine(left, right)
+    dash = 3.0
+    for number in range(int((right.x() - left.x()) // (2 * dash)) + 1):
+        begins = left.x() + 2 * dash * number
+        painter.fillRect(QRectF(begins, left.y(), min(dash, right.x() - begins), 1), colour)
 
 
 def paint_fold(painter: QPainter, centre: QPointF, *, folded: bool, palette: Palette) -> None:

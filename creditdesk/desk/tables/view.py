@@ -2,8 +2,18 @@
 
 from collections.abc import Callable
 
-from PySide6.QtCore import QEvent, QItemSelectionModel, QModelIndex, QPersistentModelIndex, QRect, Qt, Signal
-from PySide6.QtGui import QFont, QFontMetricsF, QKeyEvent, QKeySequence, QResizeEvent
+from PySide6.QtCore import (
+    QEvent,
+    QItemSelectionModel,
+    QModelIndex,
+    QPersistentModelIndex,
+    QRect,
+    QSize,
+    Qt,
+    QTimer,
+    Signal,
+)
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QKeyEvent, QKeySequence, QPainter, QPaintEvent, QResizeEvent
 from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView, QWidget
 
 from creditdesk.base.palette import Palette
@@ -17,7 +27,7 @@ from creditdesk.desk.tables.widths import Widths, share_out
 
 Index = QModelIndex | QPersistentModelIndex
 Action = QAbstractItemView.CursorAction
-_ROW_HEIGHT = 23
+_ROW_HEIGHT, _REST_MILLISECONDS = 23, 120
 _STEPS: dict[int, tuple[int, int]] = {
     Qt.Key.Key_Up: (-1, 0),
     Qt.Key.Key_Down: (1, 0),
@@ -52,11 +62,15 @@ class FiguresTable(PlainTable):
         _dress(self)
         self.labels = FrozenLabels(self)
         self._tab_began = -1
+        self._resting = QTimer(self, singleShot=True, interval=_REST_MILLISECONDS)
+        self._resting.timeout.connect(self._uncover)
         delegate.left.connect(self._on_left)
         model.modelReset.connect(self.fit)
+        model.rowsRemoved.connect(self._choose_current)
         for view in (self, self.labels):
             view.clicked.connect(self._on_clicked)
         self.horizontalScrollBar().valueChanged.connect(self._place_labels)
+        self.horizontalScrollBar().valueChanged.connect(self._resting.start)
         self.horizontalScrollBar().rangeChanged.connect(self._place_labels)
 
     # Keys
@@ -157,6 +171,12 @@ class FiguresTable(PlainTable):
         self.setCurrentIndex(self.figures.index(row, column))
         self._tab_began = -1
 
+    def _choose_current(self) -> None:
+        """Keep the cell the cursor stands on chosen where the rows of the block went."""
+        current = self.currentIndex()
+        if current.isValid() and not self.selectionModel().hasSelection():
+            self.setCurrentIndex(current)
+
     def currentChanged(self, current: Index, previous: Index) -> None:
         """Forget where a row of tabs began when the cursor goes elsewhere."""
         super().currentChanged(current, previous)
@@ -204,6 +224,8 @@ class FiguresTable(PlainTable):
             return
         for column, width in enumerate(share_out(self.viewport().width(), self._needed())):
             self.header.resizeSection(column, width)
+        self.horizontalScrollBar().setSingleStep(self.columnWidth(1))
+        self._resting.start()
         self._place_labels()
 
     def _needed(self) -> Widths:
@@ -216,12 +238,22 @@ class FiguresTable(PlainTable):
             periods=len(facts.periods),
             amount=max((metrics.horizontalAdvance(text) for text in texts), default=0.0),
             head=max(metrics.horizontalAdvance(head) for head in facts.heads),
+            label=max(metrics.horizontalAdvance(label) for label in facts.labels),
+            change=self.header.second_width(len(facts.periods) + 1),
         )
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Share the new width out."""
         super().resizeEvent(event)
         self.fit()
+
+    def _uncover(self) -> None:
+        """Scroll on to a whole number of columns: of an amount cut in two, what is left would be read as an amount."""
+        bar, step = self.horizontalScrollBar(), self.columnWidth(1)
+        if bar.isSliderDown():
+            self._resting.start()
+        elif step and bar.value() % step:
+            bar.setValue(round(bar.value() / step) * step)
 
     def scrollTo(
         self, index: Index, hint: QAbstractItemView.ScrollHint = QAbstractItemView.ScrollHint.EnsureVisible
@@ -234,6 +266,11 @@ class FiguresTable(PlainTable):
 
     def _place_labels(self) -> None:
         self.labels.place()
+
+    def height_in_rows(self, room: int) -> int:
+        """Return the height, at most ``room`` where that is enough for one row, that cuts no row in two."""
+        around = self.height() - self.viewport().height()
+        return around + max((room - around) // _ROW_HEIGHT, 1) * _ROW_HEIGHT
 
     def recolour(self, palette: Palette) -> None:
         """Draw cells, headings and labels in another palette."""
@@ -279,6 +316,38 @@ class FrozenLabels(QTableView):
         self.verticalScrollBar().setValue(table.verticalScrollBar().value())
         self.raise_()
 
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Paint the labels, and the line behind which periods went."""
+        super().paintEvent(event)
+        painter = QPainter(self.viewport())
+        rule = QColor(self.delegate.palette.rule)
+        painter.fillRect(QRect(self.viewport().width() - 1, 0, 1, self.viewport().height()), rule)
+        painter.end()
+
+
+class WholeRows(QWidget):
+    """Hold a table at a height that cuts no row in two; what is over stays blank below it."""
+
+    def __init__(self, table: FiguresTable) -> None:
+        super().__init__()
+        self._table = table
+        table.setParent(self)
+        self.setSizePolicy(table.sizePolicy())
+        table.horizontalScrollBar().rangeChanged.connect(self._fit)
+
+    def minimumSizeHint(self) -> QSize:
+        """Ask for what the table needs."""
+        return self._table.minimumSizeHint()
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Give the table as much as whole rows take."""
+        super().resizeEvent(event)
+        self._fit()
+
+    def _fit(self) -> None:
+        self._table.resize(self.size())  # lets scroll bars come or go first, which take part of the height
+        self._table.resize(self.width(), self._table.height_in_rows(self.height()))
+
 
 def _dress(view: QTableView) -> None:
     """Give a view the manners of the figures table."""
@@ -290,7 +359,7 @@ def _dress(view: QTableView) -> None:
     view.setShowGrid(False)
     view.setTabKeyNavigation(True)  # else Tab never comes by
     view.setWordWrap(False)
-    view.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
+    view.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerItem)
     view.setHorizontalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
     view.setSelectionMode(QAbstractItemView.SelectionMode.ContiguousSelection)
     triggers = QAbstractItemView.EditTrigger

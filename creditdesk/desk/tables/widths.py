@@ -2,45 +2,53 @@
 
 from dataclasses import dataclass
 
-_LABEL = (215, 500)
-_PERIOD = (58, 92, 150)
+_LABEL, _PERIOD = (220, 420), (58, 92, 170)
 _CHANGE, _TREND = (66, 84), (52, 74, 180)
 _MARK = 24
-_BESIDE_AMOUNT, _BESIDE_HEAD = 30, 20
+_BESIDE_AMOUNT, _BESIDE_HEAD, _BESIDE_LABEL, _BESIDE_CHANGE = 30, 20, 22, 18
 
 
 @dataclass(frozen=True, slots=True)
 class Widths:
-    """Say what the columns need in pixels: number of periods, widest amount, widest heading of a period."""
+    """Say what the columns need in pixels: number of periods, widest amount, heading, label, words on the change."""
 
     periods: int
     amount: float
     head: float
+    label: float = 0.0
+    change: float = 0.0
 
 
 def share_out(available: int, needed: Widths) -> tuple[int, ...]:
     """Return the width of each column: label, periods, change, trend, mark.
 
-    Amounts and headings are never cut. What is short is taken from trend and change first, then from the label; beyond
-    that the table scrolls. What is over goes to the label, the periods and the trend, each up to what reads well.
+    Amounts and headings are never cut. Labels in full come before wide columns, and what is over when all of them read
+    well is left blank beside the marks, so that amounts stay near their labels. Where the least is too much, the table
+    scrolls: then the periods in sight fill it, and all that scrolls is a multiple of a period's width, so that a whole
+    number of columns can always be in sight.
     """
+    count = needed.periods
     least = max(_PERIOD[0], round(needed.amount) + _BESIDE_AMOUNT, round(needed.head) + _BESIDE_HEAD)
-    roomy = max(least, _PERIOD[1])
-    for label, period, change, trend in (
-        (250, roomy, _CHANGE[1], _TREND[1]),
-        (_LABEL[0], roomy, _CHANGE[0], _TREND[0]),
-        (_LABEL[0], least, _CHANGE[0], _TREND[0]),
-    ):
-        over = available - label - needed.periods * period - change - trend - _MARK
-        if over >= 0:
-            break
-    over = max(over, 0)
-    label, over = _grow(label, over, _LABEL[1])
-    wider, over = _grow(period * needed.periods, over, max(period, _PERIOD[2]) * needed.periods)
-    trend, over = _grow(trend, over, _TREND[2])
-    return (label, *[wider // needed.periods] * needed.periods, change, trend, _MARK)
+    widths = [_LABEL[0], least * count, max(_CHANGE[0], round(needed.change) + _BESIDE_CHANGE), _TREND[0]]
+    over = available - sum(widths) - _MARK
+    if over < 0:
+        return _scrolling(available, widths, count)
+    label = round(needed.label) + _BESIDE_LABEL
+    for column, most in (
+        (0, label), (2, _CHANGE[1]), (3, _TREND[1]), (1, _PERIOD[1] * count), (1, _PERIOD[2] * count), (0, _LABEL[1]),
+        (3, _TREND[2]),
+    ):  # fmt: skip
+        grown = min(over, max(most - widths[column], 0))
+        widths[column], over = widths[column] + grown, over - grown
+    label, periods, change, trend = widths
+    return (label, *[periods // count] * count, change, trend, _MARK + over + periods % count)
 
 
-def _grow(width: int, over: int, most: int) -> tuple[int, int]:
-    taken = min(over, max(most - width, 0))
-    return width + taken, over - taken
+def _scrolling(available: int, least: list[int], count: int) -> tuple[int, ...]:
+    label, periods, change, trend = least
+    room, least_period = max(available - label, 0), periods // count
+    in_sight = max(room // least_period, 1)
+    period = max(room // in_sight, least_period)
+    label = max(label, available - period * in_sight)
+    after = -(-(change + trend + _MARK) // period) * period
+    return (label, *[period] * count, change, after - change - _MARK, _MARK)
