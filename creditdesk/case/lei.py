@@ -39,7 +39,7 @@ def lei_fault(lei: str) -> str:
 
 def lei_words(lei: str) -> str:
     """Say how a tidied identifier stands, in order or not."""
-    return (lei_fault(lei) or AGREES) if lei else "Not given; 20 characters of ISO 17442 where the borrower has one."
+    return (lei_fault(lei) or AGREES) if lei else "Not given; ISO 17442, where there is one."
 
 
 def _quoted(characters: list[str]) -> str:

@@ -13,6 +13,7 @@ from creditdesk.desk.frame import label
 from creditdesk.house.decode import fault_of
 
 _PLACE = re.compile(r"^(?:[\w.\[\]-]+: )+")
+_QUOTED = re.compile(r'^"(.*)"$')
 _STAYS = (Qt.FocusReason.PopupFocusReason,)
 """Reasons to lose the focus that end no entry: a menu or list of the field's own."""
 _HISTORY = (QKeySequence.StandardKey.Undo, QKeySequence.StandardKey.Redo)
@@ -34,7 +35,8 @@ def fault_words(error: UserError) -> str:
 def _words_of(sentence: str) -> str:
     fault = fault_of(sentence)
     if fault.allowed:
-        return f"Found {fault.found}, expected {fault.allowed}"
+        found = _QUOTED.sub(r"“\1”", fault.found)
+        return f"Found {found}, expected {fault.allowed}"
     bare = _PLACE.sub("", sentence, count=1)
     return f"{bare[:1].upper()}{bare[1:]}"
 
@@ -52,6 +54,11 @@ class TextField(QLineEdit):
         self.setAccessibleName(title)
         self.setPlaceholderText(hint)
         self.returnPressed.connect(self.enter)
+
+    @property
+    def recorded(self) -> str:
+        """Return the recorded value."""
+        return self._recorded
 
     @property
     def changed(self) -> bool:

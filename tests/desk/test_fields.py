@@ -70,7 +70,7 @@ def test_what_is_refused_stays_with_the_reason_until_escape(qtbot: QtBot, shown:
     paper = shown(Paper(TextField("Title"), lambda value: value == "bad"))
     _type(qtbot, paper.line.field, "bad", Qt.Key.Key_Return)
     assert paper.line.field.text() == "bad"
-    assert paper.line.words.text() == '▲ Found "bad", expected something else'
+    assert paper.line.words.text() == "▲ Found “bad”, expected something else"
     assert paper.line.field.accessibleDescription() == paper.line.words.text()
     assert paper.line.field.property("fault") is True
     qtbot.keyClick(paper.line.field, Qt.Key.Key_Tab)
@@ -178,7 +178,7 @@ def test_a_refused_choice_goes_back_and_says_why(qtbot: QtBot, shown: Callable[[
 @pytest.mark.parametrize(
     ("sentence", "words"),
     [
-        ('obligor.country: found "XX", allowed a code such as GB', 'Found "XX", expected a code such as GB'),
+        ('obligor.country: found "XX", allowed a code such as GB', "Found “XX”, expected a code such as GB"),
         ("edit: obligor.legal_form: a sole trader is out of scope", "A sole trader is out of scope"),
         ("This case is open read-only: a lock.", "This case is open read-only: a lock."),
     ],

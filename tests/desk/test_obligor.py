@@ -174,6 +174,8 @@ def test_the_assessed_period_says_what_it_is_and_why(window: Window, sheet: Obli
     assert window.session.standing.period == date(2024, 12, 31)
     assert period.words.text().startswith("Audited to 31\u00a0December 2024")
     assert "by rule it would be 2025" in period.words.text()
+    period.field.choose(date(2025, 12, 31))
+    assert period.words.text().endswith("Chosen here, and by rule the same.")
     period.field.choose(None)
     assert window.session.case.assessment.period is None
     assert (period.field.currentText(), window.session.standing.period) == ("By rule: 2025", date(2025, 12, 31))
@@ -191,7 +193,9 @@ def test_the_assessment_date_may_be_given_or_left_out(qtbot: QtBot, window: Wind
     assert "2025-12-31" in words.text()
     _type(qtbot, field, "")
     assert window.session.case.assessment.date is None
-    assert words.text() == "Not given: the end of the assessed period counts, 31\u00a0December 2025."
+    assert words.text() == "Not given: 31\u00a0December 2025 counts, the end of the assessed period."
+    assert field.placeholderText() == "2025-12-31"
+    assert sheet.assessment.horizon.text() == "31\u00a0December 2025 to 31\u00a0December 2026"
 
 
 def test_rates_are_typed_taken_away_and_dated(qtbot: QtBot, window: Window, sheet: ObligorSheet) -> None:
@@ -357,6 +361,35 @@ def test_wide_and_narrow_the_fields_do_not_cover_each_other(window: Window, shee
                 beside = one_bottom.x() < other_top.x() or other_bottom.x() < one_top.x()
                 assert apart or beside
         assert max(bottom.x() for _, bottom in places) < sheet.width()
+
+
+def test_a_name_longer_than_its_field_stands_below_it_whole(window: Window, sheet: ObligorSheet) -> None:
+    line = sheet.identity.name
+    assert line.words.isHidden()
+    name = "Wolstenholme and Featherstonehaugh " * 4 + "Holdings Ltd"
+    window.session.do(SetObligor("name", name))
+    assert (line.words.text(), line.words.isHidden()) == (name, False)
+    window.session.do(SetObligor("name", "Short Ltd"))
+    assert line.words.isHidden()
+    window.session.do(SetObligor("name", "W" * 60))
+    seen = set()
+    for width in (900, 1800):
+        window.resize(width, 800)
+        wide = line.field.fontMetrics().horizontalAdvance("W" * 60) < line.field.width() - 20
+        assert line.words.isHidden() == wide
+        seen.add(wide)
+    assert seen == {True, False}
+
+
+@pytest.mark.parametrize("lines", [1, 3, 4, 12, 13])
+def test_a_text_scrolls_only_beyond_the_most_lines(qtbot: QtBot, sheet: ObligorSheet, lines: int) -> None:
+    block = sheet.texts.blocks["group"]
+    block.setPlainText("\n".join(["A line."] * lines))
+    qtbot.waitUntil(lambda: (block.verticalScrollBar().maximum() > 0) == (lines > 12))
+    heights = {key: other.height() for key, other in sheet.texts.blocks.items() if key != "group"}
+    assert len(set(heights.values())) == 1  # none of them has more than the fewest lines
+    assert (block.height() > heights["request"]) == (lines > 3)
+    block.take_back()
 
 
 def test_every_choice_is_one_of_this_program(sheet: ObligorSheet) -> None:

@@ -38,7 +38,7 @@ class CurrencyPanel(Form):
     def show_case(self, case: Case) -> None:
         """Show currency and unit of ``case``."""
         self._rates = case.obligor.rates
-        self.currency.show(case.obligor.currency, "Another currency or unit converts nothing: figures stay as typed.")
+        self.currency.show(case.obligor.currency, "A change of either converts no figures.")
         self.unit.show(case.obligor.unit)
 
     def _set_currency(self, value: object) -> None:
@@ -82,7 +82,7 @@ class RatesPanel(Form):
     def _date_words(self, given: Rates | None) -> str:
         if given is not None:
             return long_date(given.date)
-        return "The end of the assessed period is taken unless another day is typed."
+        return "Not given: the end of the assessed period."
 
     def _line(self, code: str) -> Line[TextField]:
         """Return the line of a currency, made on first sight; one whose rate is taken away stays, empty."""

@@ -4,7 +4,7 @@ from collections.abc import Callable
 from typing import TypeVar
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QGridLayout, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QGridLayout, QLabel, QVBoxLayout, QWidget
 
 from creditdesk.case.commands import Command
 from creditdesk.desk.fields import ChoiceField, Field, Line, TextField
@@ -51,6 +51,13 @@ class Form(QWidget):
             self._grid.addWidget(line.field, row, 1, _TOP)
             self._grid.addWidget(line.words, row, 2, _TOP)
         return line
+
+    def add_words(self, title: str) -> QLabel:
+        """Add a title with words alone, which it returns to be written."""
+        row, words = self._grid.rowCount(), label("second", wrap=True)
+        self._grid.addWidget(label("second", title), row, 0, _TOP)
+        self._grid.addWidget(words, row, 1, 1, 2, _TOP)
+        return words
 
     def put_before(self, line: Line[Field], before: QWidget, last: Line[OtherField]) -> None:
         """Add a line above ``last``, the lowest one; its field follows the field ``before`` in the order of Tab."""

@@ -3,6 +3,7 @@
 from collections.abc import Callable
 
 from PySide6.QtCore import QLocale
+from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QWidget
 
 from creditdesk.base.errors import UserError
@@ -30,6 +31,8 @@ _FORM_WORDS = {
 
 _FITS = 24
 """Letters of a section's name that its field shows; a longer name stands beside it too."""
+_AROUND = 14
+"""Pixels of a text field that its frame and margins take."""
 
 
 def country_name(code: str) -> str:
@@ -64,7 +67,7 @@ class IdentityPanel(Form):
     def show_case(self, case: Case) -> None:
         """Show the borrower of ``case``."""
         obligor = case.obligor
-        self.name.show(obligor.name)
+        self._show_name(obligor.name)
         self.legal_form.show(obligor.legal_form, _FORM_WORDS.get(obligor.legal_form, ""))
         self.lei.show(obligor.lei, lei_words(obligor.lei))
         self.country.show(obligor.country, country_name(obligor.country))
@@ -73,6 +76,11 @@ class IdentityPanel(Form):
         name = section_name(obligor.sector_scheme, obligor.sector)
         self.sector.show(obligor.sector, name if len(name) > _FITS else "")
         self.activity.show(obligor.activity, "" if obligor.activity else "Optional: the class within the section.")
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """See whether the name fits into its field now."""
+        super().resizeEvent(event)
+        self._show_name(self.name.field.recorded)
 
     def field(self, name: str) -> QWidget | None:
         """Return the field of that name in the exchange file; None where this panel has none."""
@@ -86,6 +94,12 @@ class IdentityPanel(Form):
             "activity": self.activity.field,
         }
         return fields.get(name)
+
+    def _show_name(self, name: str) -> None:
+        """Show the name, and below its field once more where the field is too short for the whole."""
+        field = self.name.field
+        room = field.width() - _AROUND
+        self.name.show(name, name if field.fontMetrics().horizontalAdvance(name) > room > 0 else "")
 
     def _offer_sections(self, obligor: Obligor) -> None:
         known = sections(obligor.sector_scheme)

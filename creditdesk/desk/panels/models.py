@@ -26,6 +26,16 @@ from creditdesk.desk.panels.form import Do
 from creditdesk.house.book import HouseBook
 
 _HEADS = ("Model", "Use", "Gives", "Scope check")
+_FACTS = (
+    "What it gives",
+    "Made for",
+    "Scope check",
+    "To be checked by you",
+    "Calibration",
+    "Approval",
+    "Owner",
+    "Source",
+)
 _ROW, _MOST_ROWS = 25, 9
 
 
@@ -81,9 +91,7 @@ class ModelsPanel(QWidget):
         self._chosen_here = False
         self.table = ModelsTable()
         self.about = label("heading")
-        self.facts = Facts(
-            ("What it gives", "Made for", "Scope check", "To be checked by you", "Calibration", "Approval", "Source")
-        )
+        self.facts = Facts(_FACTS)
         self.lead = QPushButton("Make it the lead model")
         self.leave = QPushButton("Leave the choice to the house")
         self.fault = label("fault", wrap=True)
@@ -154,7 +162,7 @@ class ModelsPanel(QWidget):
         box = QVBoxLayout(self)
         box.setContentsMargins(0, 0, 0, 0)
         box.setSpacing(6)
-        box.addWidget(label("heading", "Model"))
+        box.addWidget(label("heading", "Models"))
         box.addWidget(self.table)
         box.addSpacing(4)
         box.addWidget(self.about)
@@ -174,9 +182,10 @@ def _facts(offer: ModelOffer) -> Iterator[tuple[str, str]]:
     yield "What it gives", _sentence(f"{offer.gives}: {offer.reading}")
     yield "Made for", offer.made_for
     yield "Scope check", outside or "Within its scope, by what the case says."
-    yield "To be checked by you", "\n".join(offer.to_check)
+    yield "To be checked by you", "\n".join(f"– {matter}" for matter in offer.to_check)
     yield "Calibration", _sentence(offer.calibration)
-    yield "Approval", f"{_sentence(offer.approval)} Owner: {offer.owner}."
+    yield "Approval", _sentence(offer.approval)
+    yield "Owner", _sentence(offer.owner)
     yield "Source", offer.source
 
 

@@ -25,6 +25,8 @@ TITLES: Mapping[str, str] = {
 """Blocks edited on this sheet; the others belong to the sheets whose matter they are."""
 _LINES = (3, 12)
 """Fewest and most lines a block takes; beyond, it scrolls."""
+_SPARE = 2
+"""Pixels without which the editor takes its last line for one that is out of sight, and scrolls."""
 
 
 class GrowingBlock(TextBlock):
@@ -44,7 +46,8 @@ class GrowingBlock(TextBlock):
         """Count lines as they are wrapped; the layout of plain text gives its height in lines."""
         fewest, most = _LINES
         lines = min(max(round(self.document().size().height()), fewest), most)
-        around = 2 * self.document().documentMargin() + self.height() - self.viewport().height()
+        frame = self.contentsMargins()
+        around = 2 * self.document().documentMargin() + frame.top() + frame.bottom() + _SPARE
         self.setFixedHeight(round(lines * self.fontMetrics().lineSpacing() + around))
 
 

@@ -3,7 +3,7 @@
 from collections.abc import Callable, Sequence
 
 from PySide6.QtCore import QPoint, Qt
-from PySide6.QtGui import QResizeEvent, QShowEvent
+from PySide6.QtGui import QResizeEvent
 from PySide6.QtWidgets import QBoxLayout, QFrame, QScrollArea, QVBoxLayout, QWidget
 
 from creditdesk.case.commands import Command
@@ -34,8 +34,6 @@ class ObligorSheet(Sheet):
 
     def __init__(self, house: HouseBook, do: Callable[[Command], None]) -> None:
         super().__init__()
-        self._shown: tuple[Case, Standing] | None = None
-        self._stale = False
         self.identity, self.currency, self.rates = IdentityPanel(do), CurrencyPanel(do), RatesPanel(house, do)
         self.assessment, self.models, self.texts = AssessmentPanel(do), ModelsPanel(house, do), TextsPanel(do)
         self.view, self._inside = QScrollArea(), QWidget()
@@ -44,15 +42,13 @@ class ObligorSheet(Sheet):
         self._lay_out()
 
     def show_standing(self, case: Case, standing: Standing) -> None:
-        """Show another case and what follows from it; while the sheet is out of sight it only remembers."""
-        self._shown, self._stale = (case, standing), True
-        if self.isVisible():
-            self._show()
-
-    def showEvent(self, event: QShowEvent) -> None:
-        """Catch up with the case."""
-        super().showEvent(event)
-        self._show()
+        """Show another case and what follows from it."""
+        self.identity.show_case(case)
+        self.currency.show_case(case)
+        self.rates.show_standing(case, standing)
+        self.assessment.show_standing(case, standing)
+        self.models.show_standing(case, standing)
+        self.texts.show_case(case)
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Stand the columns side by side where there is room."""
@@ -86,18 +82,6 @@ class ObligorSheet(Sheet):
         self.view.setFocus()
         for block in self.texts.blocks.values():
             block.hand_on()
-
-    def _show(self) -> None:
-        if self._shown is None or not self._stale:
-            return
-        case, standing = self._shown
-        self._stale = False
-        self.identity.show_case(case)
-        self.currency.show_case(case)
-        self.rates.show_standing(case, standing)
-        self.assessment.show_standing(case, standing)
-        self.models.show_standing(case, standing)
-        self.texts.show_case(case)
 
     def _bring_into_sight(self, target: QWidget) -> None:
         """Scroll to the whole of ``target``, its heading included, where it is not in sight."""
