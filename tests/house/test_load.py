@@ -76,6 +76,12 @@ def test_a_file_that_is_missing_or_misnamed_is_named(files: Files) -> None:
     assert "models: found no model file, a house book needs at least one" in faults_of(without_models)
 
 
+@pytest.mark.parametrize("gone", [("flow.toml",), ("stress.toml",), ("flow.toml", "stress.toml")])
+def test_a_house_book_without_what_if_still_loads(files: Files, gone: tuple[str, ...]) -> None:
+    older = house_book_from_files({name: data for name, data in files.items() if name not in gone})
+    assert [older.flow is None, older.stress is None] == [name in gone for name in ("flow.toml", "stress.toml")]
+
+
 SLIPS: dict[str, tuple[str, str, str, str]] = {
     "settings": (
         "house.toml",
@@ -120,6 +126,25 @@ SLIPS: dict[str, tuple[str, str, str, str]] = {
         'group = "current_assets"',
         'group = "current_asset"',
         "nearest known name: current_assets",
+    ),
+    "stress event": (
+        "stress.toml",
+        'target = "interest_rate", kind = "by"',
+        'target = "interest_rate", kind = "by_pct"',
+        'stress.toml: events.dear_money.marks[0].kind: found "by_pct" of interest_rate, allowed "to" or "by"',
+    ),
+    "stressed target": (
+        "stress.toml",
+        'target = "payable_days"',
+        'target = "payables_days"',
+        "nearest known name: payable_days",
+    ),
+    "stress slot": ("stress.toml", 'slot = "I2"', 'slot = "I1"', "stress.toml: events: found no event in slot I2"),
+    "flow": (
+        "flow.toml",
+        'revenue = "revenue"',
+        'revenue = "revenues"',
+        "flow.toml: roles.revenue: found 'revenues', allowed a line of the chart of accounts",
     ),
     "scale": ("scale.toml", "lower = 0.0", "lower = 0.1", "scale.toml: grades[0].lower: 0.1, expected 0"),
     "rule": (
