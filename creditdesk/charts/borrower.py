@@ -12,7 +12,7 @@ from creditdesk.charts.board import Board
 from creditdesk.charts.frame import DEEPEST, Frame
 from creditdesk.charts.placing import Box, Taken, around, leader, spaced
 from creditdesk.charts.style import CAP_HEIGHT, LINE_HEIGHT, Pen, Size, Type, text_width, type_size, wrap
-from creditdesk.charts.words import period_name
+from creditdesk.charts.words import period_name, sentence
 from creditdesk.house.fontfiles import Face
 
 DOT, SMALL_DOT = 4.4, 2.2
@@ -61,6 +61,8 @@ def write_reason(
         width = max(text_width(line, style.size, style.face) for line in lines)
         box = Box(0, 0, width, len(lines) * leading).moved(frame.plot.right - width - 6, frame.plot.bottom + 6)
         if taken.free(box):
+            corner, size = (box.left - 4, box.bottom - 1), (width + 8, box.top - box.bottom + 5)
+            board.box(layer, corner, size, Pen(palette.sheet), Pen(palette.rule, 0.8), z=2.5)
             board.lines(layer, (box.left, box.top), lines, style, leading)
             return
 
@@ -68,7 +70,7 @@ def write_reason(
 def _reason_lines(standing: Standing, frame: Frame, style: Type) -> Iterator[list[str]]:
     """Offer the reason why there is no PD in full, then without what stands in parentheses, then the fact alone."""
     room = frame.plot.right - frame.plot.left
-    full = " ".join(("No PD.", *standing.reasons))
+    full = " ".join(("No PD.", *map(sentence, standing.reasons)))
     for words in (full, re.sub(r" \([^()]*\)", "", full), "No PD."):
         for share in (0.42, 0.5, 0.6):
             yield wrap(words, share * room, style.size, style.face)
@@ -170,7 +172,7 @@ def _label(board: Board, layer: str, taken: Taken, what: tuple[Size, str, float,
     """Write a label at its first free place, with a line to its dot where it stands apart; none free: no label."""
     point, words, radius, angles = what
     size = text_width(words, style.size, style.face) + 2, CAP_HEIGHT * style.size + 2.5
-    box = taken.place(point, size, angles)
+    box = taken.place(point, size, angles, radius + 1.5)
     if box is None:
         return
     board.words(layer, (box.left + 1, box.centre[1]), words, style)

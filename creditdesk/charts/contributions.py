@@ -29,6 +29,7 @@ from creditdesk.house.fontfiles import Face
 
 LAYER = "contributions"
 _GAP = 8.0
+_NOTE_GAP = 4.0
 _MARK = 2.6
 _OTHER_LINES = 2.6
 """Room for the line above the rows and the total below them, in rows."""
@@ -37,10 +38,11 @@ BAR_ALPHA = 0.88
 
 @dataclass(frozen=True, slots=True)
 class Columns:
-    """Hold the columns in points: labels end at ``label``, values at ``value``, bars start at ``zero``."""
+    """Hold the columns in points: labels end at ``label``, values at ``value``, notes after them, bars at ``zero``."""
 
     label: float
     value: float
+    note: float
     zero: float
     per_unit: float
     end: float
@@ -139,13 +141,15 @@ def _columns(rows: Sequence[Row], width: float, size: float) -> Columns:
     label = min(max((text_width(row.label, size) for row in rows), default=0.0), width * 0.36)
     values = max((text_width(row.value, size, Face.SANS_SEMIBOLD) for row in rows), default=0.0)
     value = label + _GAP + min(values, width * 0.27)
+    notes = max((text_width(row.note, size) for row in rows), default=0.0)
+    note = value + (notes + _NOTE_GAP if notes else 0.0)
     amount = max((text_width(signed(row.amount), size) for row in rows), default=0.0) + 3 * _MARK + 9
     left = max((-row.amount for row in rows), default=0.0)
     right = max((row.amount for row in rows), default=0.0)
     left, right = max(left, 0.0), max(right, 0.0)
-    room = max(width - value - _GAP - amount, 10.0)
+    room = max(width - note - _GAP - amount, 10.0)
     per_unit = room / (left + right) if left + right > 0 else 0.0
-    return Columns(label, value, value + _GAP + left * per_unit, per_unit, width)
+    return Columns(label, value, note, note + _GAP + left * per_unit, per_unit, width)
 
 
 def _draw_texts(board: Board, row: Row, place: tuple[float, float], columns: Columns, palette: Palette) -> None:
@@ -155,6 +159,8 @@ def _draw_texts(board: Board, row: Row, place: tuple[float, float], columns: Col
     face = Face.SANS_SEMIBOLD if row.known else Face.SANS_ITALIC
     room = columns.value - columns.label - _GAP
     _draw_value(board, row.value, (columns.value, y, pitch), room, Type(palette.ink, size, face, "right"))
+    if row.note:
+        board.words(LAYER, (columns.value + _NOTE_GAP, y), row.note, Type(palette.second_ink, size))
 
 
 def _draw_bar(

@@ -7,6 +7,7 @@ from creditdesk.base.display import format_number, format_percent
 from creditdesk.case.standing import FactorMove, FactorStanding, Standing, Treatment
 from creditdesk.charts.rowmarks import points
 from creditdesk.charts.words import contribution_scale, ratio_text, signed, value_or_reason, what_it_moves
+from creditdesk.ratios.words import spoken
 
 _TRANSFORMS = {"identity": "", "log": "natural logarithm", "signed_log": "sign of x times ln(1 + |x|)"}
 _DECIMALS = 4
@@ -56,7 +57,7 @@ def _score_lines(standing: Standing, factor: FactorStanding) -> Iterator[tuple[s
                 f"{number} on a term of {_term(term.value)} (reference borrower: {_term(term.reference)})",
             )
         else:
-            name = term.name.partition(".")[2].replace("_", " ")
+            name = spoken(term.name.partition(".")[2])
             yield f"If {name}", f"{number}, {'applies' if term.value else 'does not apply'} here"
     if factor.reference_value is not None:
         yield "Reference borrower", ratio_text(factor.reference_value, factor.unit)

@@ -12,7 +12,7 @@ from creditdesk.charts.words import factor_value, value_or_reason
 class Row:
     """Hold one row: texts, and the contribution as a number; ``known`` False sets the value in italics.
 
-    ``key``: the factor's, "" for a row that sums several.
+    ``key``: the factor's, "" for a row that sums several. ``note`` says what became of the value.
     """
 
     label: str
@@ -20,6 +20,7 @@ class Row:
     amount: float
     known: bool = True
     key: str = ""
+    note: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,10 +81,9 @@ def _largest_first(rows: Iterable[Row]) -> list[Row]:
 
 
 def _row(factor: FactorStanding) -> Row:
-    value = factor_value(factor)
     amount = factor.log_odds or 0.0  # None where there is no score
-    words = f"{value} (capped)" if factor.capped else value
-    return Row(factor.label, words, amount, factor.value is not None, factor.key)
+    note = "capped" if factor.capped else ""
+    return Row(factor.label, factor_value(factor), amount, factor.value is not None, factor.key, note)
 
 
 def _moved_row(move: FactorMove) -> Row:

@@ -2,11 +2,12 @@
 
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
-from math import cos, hypot, radians, sin
+from math import ceil, cos, hypot, radians, sin
 
 from creditdesk.charts.style import Size
 
 _DISTANCES = (5.0, 9.0, 14.0, 21.0, 30.0, 42.0, 58.0)
+_STEP = 2.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,10 +59,14 @@ def around(centre: Size, radius: float) -> Box:
 
 @dataclass
 class Taken:
-    """Remember what is already on the chart; ``bounds``: nothing may be placed outside it."""
+    """Remember what is already on the chart; ``bounds``: nothing may be placed outside it.
+
+    ``boxes``: where nothing may be placed; ``labels``: those of them that no line to a label may cross.
+    """
 
     bounds: Box
     boxes: list[Box] = field(default_factory=list)
+    labels: list[Box] = field(default_factory=list)
 
     def add(self, boxes: Iterable[Box]) -> None:
         """Mark places as taken."""
@@ -77,16 +82,19 @@ class Taken:
                 return False
         return True
 
-    def place(self, point: Size, label: Size, angles: Sequence[float]) -> Box | None:
+    def place(self, point: Size, label: Size, angles: Sequence[float], gap: float = 0.0) -> Box | None:
         """Take the first free place for a label of size (width, height) around ``point``; None where there is none.
 
         Near places come before far ones; at one distance, ``angles`` (degrees, anticlockwise from the right) go in
-        their order.
+        their order. ``gap``: how far from the point the line to a label that stands away begins.
         """
         for box in _candidates(point, label, angles):
             if self.free(box):
-                self.boxes.append(box)
-                return box
+                way = _along(leader(point, box, gap)) if gap else []
+                if not any(part.overlaps(other) for part in way for other in self.labels):
+                    self.boxes += [box, *way]
+                    self.labels.append(box)
+                    return box
         return None
 
 
@@ -110,6 +118,16 @@ def leader(point: Size, box: Box, gap: float) -> tuple[Size, Size] | None:
         return None
     share = gap / distance
     return (point[0] + (x - point[0]) * share, point[1] + (y - point[1]) * share), (x, y)
+
+
+def _along(line: tuple[Size, Size] | None) -> list[Box]:
+    """Cover a line with small boxes."""
+    if line is None:
+        return []
+    (left, bottom), (right, top) = line
+    steps = max(ceil(hypot(right - left, top - bottom) / _STEP), 1)
+    shares = [number / steps for number in range(steps + 1)]
+    return [around((left + (right - left) * share, bottom + (top - bottom) * share), _STEP / 3) for share in shares]
 
 
 def spaced(wanted: Sequence[tuple[float, str]], first: str, distance: float) -> list[tuple[float, str]]:

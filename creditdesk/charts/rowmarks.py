@@ -1,13 +1,12 @@
 """The marks of the contributions: one per factor, over the whole width of its row."""
 
-from creditdesk.base.display import format_number
 from creditdesk.base.palette import Palette
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.charts.contributions import row_layout
 from creditdesk.charts.passage import Passage, Row
 from creditdesk.charts.pointing import Mark, RowMarks
 from creditdesk.charts.style import Size
-from creditdesk.charts.words import contribution_scale, ratio_text, signed, what_it_moves
+from creditdesk.charts.words import contribution_scale, ratio_text, reads_as_nil, signed, what_it_moves
 
 
 def row_marks(standing: Standing, passage: Passage, size: Size, palette: Palette) -> RowMarks:
@@ -37,12 +36,12 @@ def points(share: float) -> str:
 
 
 def _words(row: Row, factor: FactorStanding, passage: Passage, share: float | None) -> str:
-    words = f"{row.label} {row.value}"
+    words = f"{row.label} {row.value}" + (f" ({row.note})" if row.note else "")
     if not passage.since_last_year and factor.reference_value is not None:
         words += f", reference {ratio_text(factor.reference_value, factor.unit)}"
     if passage.why_none:
         return words
-    nil = format_number(row.amount, 2).strip("0.") == ""
-    direction = "" if nil else f", {'raises' if row.amount > 0 else 'lowers'} {what_it_moves(passage.link)}"
+    effect = f", {'raises' if row.amount > 0 else 'lowers'} {what_it_moves(passage.link)}"
+    direction = "" if reads_as_nil(row.amount) else effect
     words += f": {signed(row.amount)} {contribution_scale(passage.link)}{direction}"
     return words if share is None else f"{words}; {points(share)} of PD"

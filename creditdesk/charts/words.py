@@ -28,8 +28,17 @@ def value_or_reason(value: float | None, reason: str | None, unit: str) -> str:
 def signed(value: float, decimals: int = 2) -> str:
     """Write a contribution with its sign: +0.27, −0.34; what rounds to nil carries none."""
     written = format_number(value, decimals)
-    nil = not any(digit in written for digit in "123456789∞")
-    return written if nil or written.startswith(MINUS) else f"+{written}"
+    return written if reads_as_nil(value, decimals) or written.startswith(MINUS) else f"+{written}"
+
+
+def reads_as_nil(value: float, decimals: int = 2) -> bool:
+    """Say whether a contribution is written as nil."""
+    return not any(digit in format_number(value, decimals) for digit in "123456789∞")
+
+
+def sentence(words: str) -> str:
+    """End what a reason or a finding says as a sentence ends."""
+    return words if words.endswith((".", "!", "?")) or not words else f"{words}."
 
 
 def contribution_scale(link: str) -> str:

@@ -3,6 +3,7 @@
 import re
 
 from creditdesk.case.standing import Standing
+from creditdesk.ratios.words import titled
 from creditdesk.statements.period import period_label
 
 _PLACE = re.compile(r"(?P<what>[a-z_]+)(?:\.(?P<key>[^\[\]]+))?(?:\[(?P<end>[^\]]+)\])?")
@@ -24,7 +25,7 @@ def place_words(standing: Standing, place: str) -> str:
     what, key = found["what"], found["key"] or ""
     if what == "model":
         label = _factor_label(standing, key)
-        return f"Second look: {label}" if label else f"Obligor: {_spoken('model')}"
+        return f"Second look: {label}" if label else f"Obligor: {titled('model')}"
     if what not in _SHEETS:
         return ""
     period = _period(standing, found["end"] or "")
@@ -36,10 +37,10 @@ def _label(standing: Standing, what: str, key: str) -> str:
     if what == "figures":
         chart = standing.statements.chart
         labels = {one.key: one.label for one in chart.subtotals} | {one.key: one.label for one in chart.lines}
-        return labels.get(key, _spoken(key))
+        return labels.get(key, titled(key))
     if what == "ratios":
-        return next((one.label for one in standing.factors if one.ratio == key), _spoken(key))
-    return _spoken(key)
+        return next((one.label for one in standing.factors if one.ratio == key), titled(key))
+    return titled(key)
 
 
 def _factor_label(standing: Standing, key: str) -> str:
@@ -48,7 +49,3 @@ def _factor_label(standing: Standing, key: str) -> str:
 
 def _period(standing: Standing, end: str) -> str:
     return next((period_label(one) for one in standing.statements.periods if one.ends.isoformat() == end), end)
-
-
-def _spoken(key: str) -> str:
-    return key.replace("_", " ").capitalize()

@@ -110,12 +110,20 @@ class KeyRatio:
 
 
 @dataclass(frozen=True, slots=True)
+class Spot:
+    """Hold one weak spot of the first page: its sentence, and the mark of a finding, "" for a factor."""
+
+    text: str
+    mark: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class FirstPage:
     """Hold the decision on one page.
 
     ``pd``: None where there is no usable PD, and ``pd_text`` says so. ``grade_note``: what the grade is out of, and the
-    model's own where it differs. ``key_heads``: the periods of the key ratios. An officer's text that was not written
-    is empty; the page says so.
+    model's own where it differs. ``key_heads``: the periods of the key ratios. ``spots_found``: what weighs against the
+    borrower by its figures alone. An officer's text that was not written is empty; the page says so.
     """
 
     obligor: str
@@ -128,7 +136,8 @@ class FirstPage:
     grade_note: str
     key_heads: tuple[str, ...]
     key_ratios: tuple[KeyRatio, ...]
-    weak_spots: tuple[str, ...]
+    spots_found: tuple[Spot, ...]
+    weak_spots: str
     recommendation: str
     conditions: str
     caution: str

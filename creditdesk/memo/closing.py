@@ -6,6 +6,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import SecondOpinion, Standing
 from creditdesk.case.words import long_date
+from creditdesk.charts.words import sentence
 from creditdesk.grading.scale import MasterScale
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
@@ -67,11 +68,12 @@ SIGNATURE_LEAVES_OPEN = (
 )
 
 
-def findings_section(standing: Standing) -> Section:
+def findings_section(standing: Standing, house: HouseBook) -> Section:
     """Return all findings, the gravest first."""
     order = list(Severity)
     ranked = sorted(standing.findings, key=lambda finding: order.index(finding.severity))
-    names = [(factor.key, factor.label) for factor in standing.factors]
+    names = [(ratio.key, ratio.label) for ratio in house.catalogue.specs]
+    names += [(factor.key, factor.label) for factor in standing.factors]
     rows = tuple(_finding_row(finding, standing, names) for finding in ranked)
     grid = Grid("Findings", ("Weight", "Where", "What"), rows, (0.7, 1.6, 4.2), words=(0, 1, 2))
     return Section("Findings", (grid,) if rows else (Prose("The figures gave rise to no finding.", Tone.SECOND),))
@@ -102,7 +104,7 @@ def scale_section(scale: MasterScale, standing: Standing) -> Section:
     rows.append(_scale_row("D", (None, None, 1.0), scale.default_criteria, final))
     grid = Grid(
         name="Master scale",
-        heads=("Grade", "PD from", "to below", "stands for", "Criteria"),
+        heads=("Grade", "PD from", "To below", "Stands for", "Criteria"),
         rows=tuple(rows),
         shares=(0.6, 0.8, 0.8, 0.8, 5.0),
         words=(0, 4),
@@ -171,7 +173,7 @@ def _finding_row(finding: Finding, standing: Standing, names: Sequence[tuple[str
         (
             Cell(MARKS[finding.severity], tone=_TONES[finding.severity]),
             Cell(place_words(finding.place, standing.statements, names), tone=Tone.SECOND),
-            Cell(finding.text),
+            Cell(sentence(finding.text)),
         )
     )
 

@@ -4,9 +4,10 @@ from collections.abc import Iterator, Sequence
 
 from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.errors import BugError
-from creditdesk.case.document import Case
+from creditdesk.case.document import TEXT_BLOCKS, Case
 from creditdesk.case.standing import Standing
 from creditdesk.case.words import long_date
+from creditdesk.charts.words import sentence
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
 from creditdesk.memo.blocks import Block, Listing, MemoContent, Pairs, Prose, Section, Subheading, Tone, without_empty
@@ -25,8 +26,9 @@ from creditdesk.memo.parts import CASE
 from creditdesk.memo.ratiopages import ratios_section
 from creditdesk.memo.text import NIL, REPLACEMENT, pd_text, short_digest
 from creditdesk.model.spec import ModelSpec
+from creditdesk.ratios.words import titled
 
-OFFICER_TEXTS = ("request", "recommendation", "conditions")
+OFFICER_TEXTS = ("request", "weak_spots", "recommendation", "conditions")
 
 
 def memo_content(
@@ -54,19 +56,19 @@ def officer_section(case: Case, keys: Sequence[str]) -> Section | None:
     for key in keys:
         text = case.texts.get(key, "").strip()
         if text:
-            blocks += [Subheading(key.replace("_", " ").capitalize()), Prose(text)]
+            blocks += [Subheading(titled(key)), Prose(text)]
     return Section("Texts by the officer", tuple(blocks)) if blocks else None
 
 
 def _sections(case: Case, standing: Standing, house: HouseBook, attachments: Sequence[Attachment]) -> Iterator[Section]:
     """Yield the sections in the order of the memo."""
     yield from _unprintable(case)
-    texts = officer_section(case, [key for key in case.texts if key not in OFFICER_TEXTS])
+    texts = officer_section(case, [key for key in TEXT_BLOCKS if key not in OFFICER_TEXTS])
     if texts is not None:
         yield texts
     yield figures_section(case, standing)
     yield ratios_section(standing, house)
-    yield findings_section(standing)
+    yield findings_section(standing, house)
     yield contributions_section(standing)
     yield _grade_section(standing)
     yield model_section(standing, _spec(standing, house), house)
@@ -102,9 +104,9 @@ def _grade_section(standing: Standing) -> Section:
     blocks: list[Block] = [
         Pairs("From score to grade", tuple(facts)),
         Subheading("Reasons for the final grade"),
-        Listing(standing.grade.reasons),
+        Listing(tuple(map(sentence, standing.grade.reasons))),
         Subheading("Principal reasons"),
-        Listing(tuple(reason for reason in standing.reasons if reason not in standing.grade.reasons)),
+        Listing(tuple(sentence(reason) for reason in standing.reasons if reason not in standing.grade.reasons)),
     ]
     return Section("From score to grade", without_empty(blocks))
 

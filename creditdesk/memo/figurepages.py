@@ -13,6 +13,7 @@ from creditdesk.case.words import basis_words, long_date, period_heads, unit_wor
 from creditdesk.memo.blocks import Block, Cell, Grid, Prose, Row, RowKind, Section, Subheading, Tone, group_row
 from creditdesk.memo.blocks import without_empty as _without_empty
 from creditdesk.memo.text import NOT_DISCLOSED, amount_text
+from creditdesk.ratios.words import titled
 from creditdesk.statements.chart import Group
 from creditdesk.statements.statement import Disclosure, StatementSet
 
@@ -22,6 +23,13 @@ _NOTE = (
     "n.d. = not disclosed; – = nil. Costs and payments are positive numbers and are subtracted in the totals. "
     "In italics: a line that is not disclosed and was taken as nil, and a total in which such lines stand."
 )
+
+
+_PLACES = {
+    "model.scope": "Scope of the model",
+    "assessment.date": "Date of the assessment",
+    "assessment.period": "Assessed period",
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,12 +46,12 @@ def figures_section(case: Case, standing: Standing) -> Section:
     """Return the section with all figures that were disclosed, and the adjustments with their reasons."""
     statements = standing.statements
     figures = _Figures(standing.received, statements, _entries(case, statements), _decimals(statements))
-    heads = period_heads(statements.periods)
+    heads, rows = period_heads(statements.periods), tuple(_rows(figures))
     share = 1.0 if len(heads) > 4 else 0.8
     grid = Grid(
         name="Figures",
         heads=(unit_words(case), *heads),
-        rows=(_basis_row(statements), *_rows(figures)),
+        rows=(_basis_row(statements), *rows) if rows else (),
         shares=(3.0, *(share for _ in heads)),
         note=_NOTE,
     )
@@ -218,7 +226,7 @@ def place_words(place: str, statements: StatementSet, others: Sequence[tuple[str
     )
     period = heads.get(end.rstrip("]"), end.rstrip("]"))
     kind, _, key = what.partition(".")
-    label = (_labels(statements) | dict(others)).get(key, key) if key else kind
     if kind == "periods":
         return f"Period {period}"
+    label = (_labels(statements) | dict(others)).get(key) or _PLACES.get(what) or titled(key or kind)
     return f"{label}, {period}" if period else label

@@ -7,9 +7,17 @@ from creditdesk.case.reasons import raising_factors
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.case.words import basis_words, long_date, sector_words, unit_words
 from creditdesk.charts.curve import no_curve_words
-from creditdesk.charts.words import contribution_scale, factor_value, ratio_text, signed, what_it_moves
+from creditdesk.charts.words import (
+    contribution_scale,
+    factor_value,
+    ratio_text,
+    reads_as_nil,
+    sentence,
+    signed,
+    what_it_moves,
+)
 from creditdesk.house.book import HouseBook
-from creditdesk.memo.blocks import FirstPage
+from creditdesk.memo.blocks import FirstPage, Spot
 from creditdesk.memo.closing import MARKS
 from creditdesk.memo.ratiopages import key_ratios
 
@@ -36,24 +44,25 @@ def first_page(case: Case, standing: Standing, house: HouseBook) -> FirstPage:
         grade_note=_grade_note(standing, len(house.scale.grades)),
         key_heads=heads,
         key_ratios=ratios,
-        weak_spots=weak_spots(standing, house),
+        spots_found=spots_found(standing, house),
+        weak_spots=_officer_text(case, "weak_spots"),
         recommendation=_officer_text(case, "recommendation"),
         conditions=_officer_text(case, "conditions"),
         caution=_caution(standing),
     )
 
 
-def weak_spots(standing: Standing, house: HouseBook) -> tuple[str, ...]:
+def spots_found(standing: Standing, house: HouseBook) -> tuple[Spot, ...]:
     """State what weighs against the borrower, derived from its figures alone.
 
     First the findings of severity stop, then why there is no score or, where there is one, the factors that raise the
-    PD most against the reference borrower, then the queries.
+    PD most against the reference borrower, then the queries. What raises it by less than is printed is no weak spot.
     """
-    raising = raising_factors(standing.factors)[:_FACTORS_NAMED]
+    raising = [pair for pair in raising_factors(standing.factors) if not reads_as_nil(pair[1])][:_FACTORS_NAMED]
     return (
         *_findings(standing, Severity.STOP),
-        *(standing.reasons if standing.score is None else ()),
-        *(_factor_sentence(factor, raise_by, standing, house) for factor, raise_by in raising),
+        *(Spot(sentence(reason)) for reason in (standing.reasons if standing.score is None else ())),
+        *(Spot(_factor_sentence(factor, raise_by, standing, house)) for factor, raise_by in raising),
         *_findings(standing, Severity.QUERY),
     )
 
@@ -63,7 +72,8 @@ def curve_words(standing: Standing) -> str:
     if standing.curve is None:
         return no_curve_words(standing)
     if standing.score is None or standing.pd_calibrated is None:
-        return "The fitted curve of the model. The borrower has no place on it: " + " ".join(standing.reasons)
+        reasons = " ".join(map(sentence, standing.reasons))
+        return f"The fitted curve of the model. The borrower has no place on it: {reasons}"
     words = f"The borrower stands on the fitted curve at score {format_number(standing.score, 2)}"
     words += f" and PD {format_pd(standing.pd_calibrated)}."
     if standing.grade.final != "none":
@@ -76,7 +86,7 @@ def contribution_words(standing: Standing) -> str:
     """Say in words what the chart of contributions shows, for readers that hear it."""
     scale = contribution_scale(standing.model.link)
     if standing.score is None:
-        return "There is no score, so there are no contributions. " + " ".join(standing.reasons)
+        return "There is no score, so there are no contributions. " + " ".join(map(sentence, standing.reasons))
     start, end = format_number(standing.reference.score, 2), format_number(standing.score, 2)
     parts = [f"{_of(one)} {_effect(one)}." for one in standing.factors]
     return f"The reference borrower stands at {start} and this one at {end}, in {scale}. {' '.join(parts)}"
@@ -116,7 +126,7 @@ def _pd_text(standing: Standing) -> str:
 def _pd_notes(standing: Standing) -> tuple[str, ...]:
     """Return interval, horizon and the model's own PD where another one counts."""
     if standing.pd_final is None:
-        return standing.reasons[:2]
+        return tuple(sentence(reason) for reason in standing.reasons[:2])
     if not standing.usable:
         return ("until the findings marked ■ are resolved",)
     notes = []
@@ -145,10 +155,9 @@ def _grade_note(standing: Standing, grades: int) -> str:
     return out_of if grade.final == grade.model else f"{out_of}, model {grade.model}"
 
 
-def _findings(standing: Standing, severity: Severity) -> list[str]:
-    return [
-        f"{MARKS[severity].split()[0]} {finding.text}" for finding in standing.findings if finding.severity is severity
-    ]
+def _findings(standing: Standing, severity: Severity) -> list[Spot]:
+    mark = MARKS[severity].split()[0]
+    return [Spot(sentence(finding.text), mark) for finding in standing.findings if finding.severity is severity]
 
 
 def _factor_sentence(factor: FactorStanding, raise_by: float, standing: Standing, house: HouseBook) -> str:

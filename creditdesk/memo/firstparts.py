@@ -38,6 +38,7 @@ from creditdesk.memo.tagging import Decoration, TableTags, TaggedParagraph, as_d
 _PLATE, _VERDICT = 84.0, 138.0
 NAME_WIDTH = TEXT_WIDTH - _PLATE - _VERDICT - 18
 _TREND = (42.0, 12.0)
+_LABEL_LEAST = 66.0
 _BOX_HEIGHT = 66.0
 _LINES_A_NOTE = 4
 _NAME_SIZES = (21.0, 18.0, 15.5, 13.0, 11.0)
@@ -107,7 +108,7 @@ def masthead(first: FirstPage, request: Flowable) -> Table:
 
 def key_ratio_table(first: FirstPage, width: float) -> Flowable:
     """Return the key ratios over the last periods, each with its trend."""
-    numbers = _number_width(first)
+    numbers = _number_width(first, width)
     label = width - numbers * len(first.key_heads) - _TREND[0]
     rows: list[list[object]] = [["", *first.key_heads, ""]]
     for ratio in first.key_ratios:
@@ -188,10 +189,16 @@ def _plate(first: FirstPage) -> Table:
     return make_table(cells, [_PLATE], style, as_decoration)
 
 
-def _number_width(first: FirstPage) -> float:
-    texts = [text for ratio in first.key_ratios for text, there in _with_presence(ratio) if there]
-    widest = max((stringWidth(text, SEMIBOLD, 7.8) for text in (*texts, *first.key_heads)), default=30.0)
-    return min(max(widest + 7, 36.0), 56.0)
+def _number_width(first: FirstPage, width: float) -> float:
+    """Return a column's width: enough for any number, and for the words where labels and trends leave that much."""
+    texts = [pair for ratio in first.key_ratios for pair in _with_presence(ratio)]
+    numbers = [
+        stringWidth(text, SEMIBOLD, 7.8) for text in (*(text for text, there in texts if there), *first.key_heads)
+    ]
+    words = [stringWidth(text, REASON.fontName, REASON.fontSize) for text, there in texts if not there]
+    least = min(max(max(numbers, default=30.0) + 7, 36.0), 56.0)
+    left = (width - _TREND[0] - _LABEL_LEAST) / max(len(first.key_heads), 1)
+    return max(least, min(max(words, default=0.0) + 7, left))
 
 
 def _with_presence(ratio: KeyRatio) -> list[tuple[str, bool]]:

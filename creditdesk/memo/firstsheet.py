@@ -15,7 +15,7 @@ from creditdesk.case.standing import Standing
 from creditdesk.charts.contributions import contributions_figure, contributions_height
 from creditdesk.charts.curve import curve_figure
 from creditdesk.charts.style import PAPER
-from creditdesk.memo.blocks import MemoContent
+from creditdesk.memo.blocks import MemoContent, Spot
 from creditdesk.memo.cutting import cut_to_lines, lines_of
 from creditdesk.memo.firstpage import NOT_WRITTEN
 from creditdesk.memo.firstparts import NAME_WIDTH, columns, key_ratio_table, masthead, signature_boxes
@@ -23,14 +23,15 @@ from creditdesk.memo.onpaper import draw_figure
 from creditdesk.memo.sheets import heading
 from creditdesk.memo.structure import TaggedCanvas
 from creditdesk.memo.styles import BODY, FOOT_CAUTION, NOTE, SMALL_ITEM, TEXT_HEIGHT, TEXT_WIDTH, marked_up
-from creditdesk.memo.tagging import TaggedDrawing, TaggedParagraph, tagged_list
+from creditdesk.memo.tagging import DASH, TaggedDrawing, TaggedParagraph, tagged_list
 
 _LEFT, _GUTTER = 258.0, 22.0
 _RIGHT = TEXT_WIDTH - _LEFT - _GUTTER
 _ROWS = 8
+_FOUND = "spots found"
 _CURVE_LEAST, _CURVE_MOST, _CURVE_WITHOUT_ROOM = 118.0, 228.0, 60.0
-_MOST_LINES = {"request": 3, "recommendation": 6, "conditions": 6, "weak spots": 7}
-_LEAST_LINES = {"request": 2, "recommendation": 2, "conditions": 2, "weak spots": 3}
+_MOST_LINES = {"request": 3, "recommendation": 6, "conditions": 6, "weak_spots": 5, _FOUND: 7}
+_LEAST_LINES = {"request": 2, "recommendation": 2, "conditions": 2, "weak_spots": 2, _FOUND: 3}
 _LINES_A_SPOT = 3
 _POINTER = " … continued on page 2"
 
@@ -81,7 +82,9 @@ class _Page:
             _why_and_ratios(content, standing),
             Spacer(1, 8),
             *heading("Weak spots"),
-            *self._weak_spots(first.weak_spots),
+            *self._spots(first.spots_found),
+            Spacer(1, 2),
+            self._officer("weak_spots", "By the officer.", first.weak_spots, TEXT_WIDTH),
             Spacer(1, 6),
             *heading("Recommendation and conditions"),
             self._officer("recommendation", "Recommendation.", first.recommendation, TEXT_WIDTH),
@@ -100,8 +103,8 @@ class _Page:
         self.cut += [key] if cut else []
         return _headed(head, shown)
 
-    def _weak_spots(self, spots: Sequence[str]) -> list[Flowable]:
-        """List as many as fit their lines, and say how many more there are."""
+    def _spots(self, spots: Sequence[Spot]) -> list[Flowable]:
+        """List as many of what was found as fit their lines, and say how many more there are."""
         if not spots:
             return [
                 TaggedParagraph("No factor raises the PD above the reference borrower's, no query is open.", SMALL_ITEM)
@@ -109,14 +112,15 @@ class _Page:
         shown: list[str] = []
         used = 0
         for spot in spots:
-            text, _ = cut_to_lines(_listed, spot, TEXT_WIDTH, _LINES_A_SPOT)
+            text, _ = cut_to_lines(_listed, spot.text, TEXT_WIDTH, _LINES_A_SPOT)
             used += lines_of(_listed(text), TEXT_WIDTH)
-            if shown and used > self._lines["weak spots"]:
+            if shown and used > self._lines[_FOUND]:
                 break
             shown.append(marked_up(text))
+        marks = [spot.mark or DASH for spot in spots[: len(shown)]]
         hidden = len(spots) - len(shown)
         more = f"and {hidden} more: see Findings and Contributions of all factors"
-        return [*tagged_list(shown, SMALL_ITEM), *([TaggedParagraph(more, NOTE)] if hidden else [])]
+        return [*tagged_list(shown, SMALL_ITEM, marks), *([TaggedParagraph(more, NOTE)] if hidden else [])]
 
 
 def _why_and_ratios(content: MemoContent, standing: Standing) -> Flowable:

@@ -21,6 +21,7 @@ _AFTER_NUMBERS = 14.0
 _WIDEST_WORDS = 330.0
 _SIZE = 7.8
 _SMALLEST = 5.4
+_COMPANY = 3
 _TONES = {
     Tone.PLAIN: (SANS, INKS.ink),
     Tone.STRONG: (SEMIBOLD, INKS.ink),
@@ -52,7 +53,7 @@ def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
     table = make_table(
         [heads, *body],
         widths,
-        [*_frame_commands(grid, size), *_row_commands(grid, size)],
+        [*_frame_commands(grid, size), *_row_commands(grid, size), *_no_row_alone(len(body) + 1)],
         _GridTags(),
         repeated_rows=1,
         space=(2, 4),
@@ -72,6 +73,7 @@ def pairs_flowables(pairs: Pairs, width: float) -> list[Flowable]:
         ("LEFTPADDING", (0, 0), (-1, -1), _PADDING),
         ("RIGHTPADDING", (0, 0), (-1, -1), _PADDING),
         ("LINEBELOW", (0, 0), (-1, -1), 0.4, INKS.rule),
+        *_no_row_alone(len(rows)),
     ]
     return [make_table(rows, widths, style, TableTags(0, 1), space=(2, 4))]
 
@@ -80,7 +82,8 @@ def _widths(grid: Grid, width: float) -> list[float]:
     """Share the width; where numbers follow one column of words, that one is not stretched away from them."""
     widths = [share / sum(grid.shares) * width for share in grid.shares]
     if grid.words == (0,) and widths[0] > _WIDEST_WORDS:
-        widths[0] = _WIDEST_WORDS
+        spare = (widths[0] - _WIDEST_WORDS) / (len(widths) - 1)
+        widths = [_WIDEST_WORDS, *(one + spare for one in widths[1:])]
     return widths
 
 
@@ -190,6 +193,12 @@ def _row_commands(grid: Grid, size: float) -> list[Command]:
                 commands.append(("FONT", (column, number), (column, number), font, size, size * 1.22))
                 commands.append(("TEXTCOLOR", (column, number), (column, number), colour))
     return commands
+
+
+def _no_row_alone(rows: int) -> list[Command]:
+    """Keep a table's first and last rows in company where a page ends within it."""
+    ends = ((0, _COMPANY - 1), (rows - _COMPANY, rows - 1)) if rows > _COMPANY else ((0, rows - 1),)
+    return [("NOSPLIT", (0, first), (-1, last)) for first, last in ends]
 
 
 def _kind_commands(row: Row, number: int, size: float) -> list[Command]:

@@ -9,6 +9,7 @@ from creditdesk.memo.fonts import register_fonts
 from creditdesk.memo.page import print_pages
 from creditdesk.memo.sheets import Bookmark, section_flowables
 from creditdesk.memo.structure import Structure
+from creditdesk.ratios.words import titled
 
 
 def write_memo(content: MemoContent, standing: Standing) -> tuple[bytes, Structure]:
@@ -36,5 +37,5 @@ def _texts_in_full(content: MemoContent, cut: tuple[str, ...]) -> tuple[Section,
     if not cut:
         return ()
     texts = {key: getattr(content.first, key) for key in cut}
-    blocks = [block for key, text in texts.items() for block in (Subheading(key.capitalize()), Prose(text))]
+    blocks = [block for key, text in texts.items() for block in (Subheading(titled(key)), Prose(text))]
     return (Section("Texts by the officer, in full", tuple(blocks)),)

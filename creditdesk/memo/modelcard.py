@@ -13,6 +13,7 @@ from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Pairs, Row, RowKi
 from creditdesk.memo.blocks import without_empty as _without_empty
 from creditdesk.memo.text import NIL
 from creditdesk.model.spec import INTERCEPT, Factor, Link, ModelSpec, Rule, terms_of
+from creditdesk.ratios.words import spoken
 
 _LINKS = {
     Link.LOGIT: "logistic function",
@@ -30,7 +31,7 @@ def contributions_section(standing: Standing) -> Section:
         rows += [_score_row("this borrower", standing.score, RowKind.TOTAL)]
     grid = Grid(
         name="Contributions",
-        heads=("Factor", "Value", "Reference", "Sample below", scale, "share of PD"),
+        heads=("Factor", "Value", "Reference", "Sample below", scale.capitalize(), "Share of PD"),
         rows=tuple(rows),
         shares=(2.6, 1.3, 1.0, 1.0, 1.0, 1.0),
         note=(
@@ -133,7 +134,7 @@ def _term_row(spec: ModelSpec, units: dict[str, str], position: int) -> Row:
     term = terms_of(spec)[position]
     factor = spec.factors[term.factor]
     main = term.name == factor.key
-    label = factor.label if main else f"{factor.label}: {term.name.partition('.')[2].replace('_', ' ')}"
+    label = factor.label if main else f"{factor.label}: {spoken(term.name.partition('.')[2])}"
     reference = spec.reference.values.get(factor.key)
     text = ratio_text(reference, units.get(factor.key, "number")) if main and reference is not None else ""
     error = _error(spec, term.name) if term.estimated else None
@@ -199,7 +200,7 @@ def _rule_words(rule: Rule | None) -> str:
         return f"taken at the {'lower' if rule.at_cap == 'low' else 'upper'} cap"
     if rule.log_odds is not None:
         return f"{signed(rule.log_odds)} on the score, as stated"
-    return f"own coefficient {(rule.own_coefficient or '').replace('_', ' ')}"
+    return f"own coefficient: {spoken(rule.own_coefficient or '')}"
 
 
 def _caps_met(standing: Standing, spec: ModelSpec) -> Iterator[str]:

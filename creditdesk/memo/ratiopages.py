@@ -8,7 +8,19 @@ from creditdesk.case.standing import Standing
 from creditdesk.case.words import period_heads
 from creditdesk.charts.words import REASON_WORDS, ratio_text
 from creditdesk.house.book import HouseBook
-from creditdesk.memo.blocks import Cell, Grid, KeyRatio, Prose, Row, RowKind, Section, Tone, group_row, note_row
+from creditdesk.memo.blocks import (
+    Cell,
+    Grid,
+    KeyRatio,
+    Prose,
+    Row,
+    RowKind,
+    Section,
+    Tone,
+    group_row,
+    note_row,
+    without_empty,
+)
 from creditdesk.ratios.compute import Reason
 from creditdesk.ratios.spec import RatioSpec
 from creditdesk.ratios.trace import trace_ratio
@@ -30,7 +42,7 @@ def ratios_section(standing: Standing, house: HouseBook) -> Section:
         shares=(3.4, *(1.0 if len(heads) > 4 else 0.85 for _ in heads)),
         note=_NOTE,
     )
-    return Section("Ratios", (Prose(_unavailable(standing, house), Tone.SECOND), grid))
+    return Section("Ratios", without_empty((Prose(_unavailable(standing, house), Tone.SECOND), grid)))
 
 
 def key_ratios(standing: Standing, house: HouseBook) -> tuple[tuple[str, ...], tuple[KeyRatio, ...]]:

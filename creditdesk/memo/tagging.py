@@ -14,6 +14,11 @@ from creditdesk.memo.structure import Element, TaggedCanvas
 
 Draw = Callable[[TaggedCanvas, float, float, float, float], None]
 
+DASH = "–"
+"""The mark of a list's item where no other is given."""
+_SIGNED = 1.35
+"""How far in ems the text of a list stands in where its marks are signs."""
+
 
 class TaggedParagraph(Paragraph):
     """Print a paragraph as an element: P, H1 to H6, Caption, LBody and the like."""
@@ -42,8 +47,11 @@ class TaggedParagraph(Paragraph):
             super().draw()
 
 
-def tagged_list(items: Sequence[str], style: ParagraphStyle, bullet: str = "–") -> list[Flowable]:
-    """Return the paragraphs of a list, each item with its mark in the style's own font, hanging by one em."""
+def tagged_list(items: Sequence[str], style: ParagraphStyle, marks: Sequence[str] = ()) -> list[Flowable]:
+    """Return the paragraphs of a list, each item with its mark in the style's own font, hanging.
+
+    ``marks`` holds one for each item, or none: then each has a dash.
+    """
     whole = Element("L")
     hanging = ParagraphStyle(
         f"{style.name} item",
@@ -51,9 +59,12 @@ def tagged_list(items: Sequence[str], style: ParagraphStyle, bullet: str = "–"
         bulletFontName=style.fontName,
         bulletFontSize=style.fontSize,
         bulletIndent=style.leftIndent,
-        leftIndent=style.leftIndent + style.fontSize,
+        leftIndent=style.leftIndent + (_SIGNED if marks else 1.0) * style.fontSize,
     )
-    return [TaggedParagraph(item, hanging, Element("LBody", Element("LI", whole)), bulletText=bullet) for item in items]
+    return [
+        TaggedParagraph(item, hanging, Element("LBody", Element("LI", whole)), bulletText=mark)
+        for item, mark in zip(items, marks or [DASH] * len(items), strict=True)
+    ]
 
 
 class TaggedDrawing(Flowable):

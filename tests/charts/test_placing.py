@@ -49,3 +49,20 @@ def test_a_column_drops_labels_that_would_touch_but_never_the_one_that_counts() 
     column = [(10.0, "1"), (14.0, "2"), (19.0, "3"), (30.0, "4")]
     assert {label for _, label in spaced(column, "2", 8)} == {"2", "4"}
     assert {label for _, label in spaced(column, "none", 8)} == {"1", "3", "4"}
+
+
+def test_no_line_to_a_label_runs_through_another_label() -> None:
+    taken = Taken(BOUNDS)
+    own = taken.place((100, 80), (40, 12), (315.0,), 4)
+    assert own is not None
+    beyond = Taken(BOUNDS, list(taken.boxes)).place((100, 80), (24, 9), (315.0,), 4)
+    assert beyond is not None  # what would be taken, were there no look at the line
+    line = leader((100, 80), beyond, 4)
+    assert line is not None
+    (left, top), (right, bottom) = line
+    crossed = [(left + (right - left) * part / 50, top + (bottom - top) * part / 50) for part in range(51)]
+    assert any(own.left < x < own.right and own.bottom < y < own.top for x, y in crossed)
+    assert taken.place((100, 80), (24, 9), (315.0,), 4) is None
+    other = taken.place((100, 80), (24, 9), ANGLES, 4)
+    assert other is not None
+    assert not other.overlaps(own)

@@ -11,15 +11,15 @@ import pytest
 from creditdesk.base.display import format_pd
 from creditdesk.base.findings import Severity
 from creditdesk.case.assess import assess
-from creditdesk.case.document import Case
+from creditdesk.case.document import Assessment, Case
 from creditdesk.case.exchange import read_case
 from creditdesk.house.book import HouseBook
 from creditdesk.house.load import load_house_book
 from creditdesk.house.shipped import resources_folder
 from creditdesk.memo.attach import Attachment, Relationship
-from creditdesk.memo.blocks import Grid, Listing, MemoContent, Pairs, Prose, Row, RowKind, Section, Tone
+from creditdesk.memo.blocks import Grid, Listing, MemoContent, Pairs, Prose, Row, RowKind, Section, Subheading, Tone
 from creditdesk.memo.content import memo_content
-from creditdesk.memo.firstpage import weak_spots
+from creditdesk.memo.firstpage import spots_found
 from creditdesk.statements.adjust import Adjustment, AdjustmentKind, Entry
 
 CASE_FILE = Attachment("case.toml", b"format = 1", "application/toml", Relationship.SOURCE, "the case as entered")
@@ -126,16 +126,53 @@ def test_key_ratios_say_in_words_why_there_is_no_value(stretched: Case, house: H
     assert first.key_heads == ("2025",)
 
 
-def test_weak_spots_are_facts_the_largest_first_then_queries(stretched: Case, house: HouseBook) -> None:
+def test_spots_found_are_facts_the_largest_first_then_queries(stretched: Case, house: HouseBook) -> None:
     standing = assess(stretched, house)
-    spots = weak_spots(standing, house)
+    spots = spots_found(standing, house)
     raising = sorted((one for one in standing.factors if one.log_odds > 0), key=lambda one: -one.log_odds)
     for spot, factor in zip(spots, raising[:3], strict=False):
-        assert spot.startswith(factor.label)
-        assert f"+{factor.log_odds:.2f} log-odds" in spot
+        assert spot.mark == ""
+        assert spot.text.startswith(factor.label)
+        assert f"+{factor.log_odds:.2f} log-odds" in spot.text
     queries = [finding.text for finding in standing.findings if finding.severity is Severity.QUERY]
     assert queries
-    assert [spot.removeprefix("▲ ") for spot in spots[3:]] == queries
+    assert [spot.text for spot in spots[3:]] == queries
+    assert {spot.mark for spot in spots[3:]} == {"▲"}
+
+
+def test_what_is_printed_as_nil_is_no_weak_spot(stretched: Case, house: HouseBook) -> None:
+    standing = assess(stretched, house)
+    largest = max(standing.factors, key=lambda one: one.log_odds or 0.0)
+    for amount, listed in ((0.006, True), (0.004, False)):
+        factors = tuple(replace(one, log_odds=amount if one is largest else -1.0) for one in standing.factors)
+        spots = spots_found(replace(standing, factors=factors), house)
+        assert any(spot.text.startswith(largest.label) for spot in spots) is listed
+
+
+def test_page_one_has_the_officer_s_own_weak_spots(stretched: Case, house: HouseBook) -> None:
+    content = _content(stretched, house)
+    assert content.first.weak_spots == stretched.texts["weak_spots"].strip()
+    assert all("Suppliers are paid later" not in text for one in content.sections for text in _texts(one))
+
+
+def test_the_officer_s_other_texts_stand_in_one_order_whatever_the_file_s(sound: Case, house: HouseBook) -> None:
+    turned = msgspec.structs.replace(sound, texts=dict(reversed(list(sound.texts.items()))))
+    one, other = (_section(_content(case, house), "Texts by the officer") for case in (sound, turned))
+    assert one == other
+    heads = [block.text for block in one.blocks if isinstance(block, Subheading)]
+    assert heads[:3] == ["Obligor", "Business", "Management"]
+
+
+def test_findings_name_their_places_in_words(stretched: Case, house: HouseBook) -> None:
+    bent = _with_figures(
+        msgspec.structs.replace(stretched, assessment=Assessment()), depreciation_amortisation=(790.0, 800.0, 90_000.0)
+    )
+    grid = _grid(_section(_content(bent, house), "Findings"), "Findings")
+    where = [row.cells[1].text for row in grid.rows]
+    assert "EBITDA to assets, 2025" in where
+    assert "Date of the assessment" in where
+    assert not [words for words in where if "_" in words or words[:1].islower()]
+    assert all(row.cells[2].text.endswith(".") for row in grid.rows)
 
 
 def test_the_program_writes_no_text_in_the_officer_s_place(sound: Case, house: HouseBook) -> None:
@@ -173,7 +210,7 @@ def test_a_stop_makes_a_draft_without_pd_and_grade(sound: Case, house: HouseBook
     assert not standing.usable
     assert content.draft == "DRAFT — not usable until resolved"
     assert (content.first.pd, content.first.pd_text, content.first.grade) == (None, "not usable", "–")
-    assert content.first.weak_spots[0].startswith("■ ")
+    assert content.first.spots_found[0].mark == "■"
     assert _content(sound, house).draft == ""
 
 
@@ -181,7 +218,7 @@ def test_no_pd_says_why(stretched: Case, house: HouseBook) -> None:
     content = _content(_filleted(stretched), house)
     assert content.first.pd_text == "no PD"
     assert "factors are missing" in content.first.pd_notes[0]
-    assert "factors are missing" in content.first.weak_spots[0]
+    assert "factors are missing" in content.first.spots_found[0].text
     assert content.first.grade_note == "no grade"
     assert "no place on it" in content.curve_words
 

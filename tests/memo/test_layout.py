@@ -9,8 +9,9 @@ import pikepdf
 import pytest
 
 from creditdesk.case.standing import GradeStanding
-from creditdesk.memo.blocks import Cell, Grid, MemoContent, Row, Section
-from creditdesk.memo.styles import MARGIN, PAGE_HEIGHT, PAGE_WIDTH
+from creditdesk.memo.blocks import Cell, Grid, MemoContent, Pairs, Row, Section, Spot
+from creditdesk.memo.grids import grid_flowables
+from creditdesk.memo.styles import MARGIN, PAGE_HEIGHT, PAGE_WIDTH, TEXT_WIDTH
 from tests.contents import WORDS, content, figures, first_page
 from tests.memo.reading import Line, memo_bytes, page_lines, page_texts
 from tests.standings import factor, standing, without_pd
@@ -24,17 +25,20 @@ TWELVE = tuple(
 )
 FIRST_PAGES = {
     "usual": first_page(),
-    "nothing written": first_page(request="", recommendation="", conditions=""),
-    "all texts long": first_page(request=WORDS * 8, recommendation=WORDS * 12, conditions=WORDS * 12),
+    "nothing written": first_page(request="", weak_spots="", recommendation="", conditions=""),
+    "all texts long": first_page(
+        request=WORDS * 8, weak_spots=WORDS * 8, recommendation=WORDS * 12, conditions=WORDS * 12
+    ),
     "long name": first_page(obligor=LONG_NAME * 2, description=LONG_NAME * 2),
     "name without spaces": first_page(obligor="B" * 120),
-    "many weak spots": first_page(weak_spots=(WORDS,) * 30),
+    "many weak spots": first_page(spots_found=(Spot(WORDS),) * 30),
     "everything long": first_page(
         obligor=LONG_NAME * 2,
         request="word " * 2000,
         recommendation="line\n" * 200,
+        weak_spots="spot " * 900,
         conditions=WORDS * 40,
-        weak_spots=(WORDS,) * 30,
+        spots_found=(Spot(WORDS),) * 30,
         caution=WORDS * 2,
     ),
     "endless": first_page(
@@ -44,7 +48,7 @@ FIRST_PAGES = {
         pd_text="no PD",
         pd_notes=("reason " * 700, "reason " * 700),
         grade="–",
-        weak_spots=("finding " * 900, "F" * 5000),
+        spots_found=(Spot("finding " * 900, "■"), Spot("F" * 5000)),
     ),
     "no ratios": first_page(key_heads=(), key_ratios=()),
     "no PD": first_page(pd=None, pd_text="no PD", pd_notes=(WORDS,), grade="–", grade_note="no grade"),
@@ -118,8 +122,8 @@ def test_a_text_that_fits_is_printed_once() -> None:
 
 
 def test_what_the_officer_has_not_written_is_said_to_be_missing() -> None:
-    first = first_page(request="", recommendation="", conditions="")
-    assert page_texts(memo_bytes(content(first), standing()))[0].count("not yet written by the officer") == 3
+    first = first_page(request="", weak_spots="", recommendation="", conditions="")
+    assert page_texts(memo_bytes(content(first), standing()))[0].count("not yet written by the officer") == 4
 
 
 def test_every_page_says_which_it_is_of_how_many_and_which_case_it_belongs_to() -> None:
@@ -141,6 +145,24 @@ def test_a_draft_says_so_across_the_head_of_every_page() -> None:
     texts = page_texts(memo_bytes(_draft(), standing()))
     assert all("DRAFT — not usable until resolved" in text for text in texts)
     assert not any("DRAFT" in text for text in page_texts(memo_bytes(content(), standing())))
+
+
+def test_no_row_of_a_table_stands_alone_on_a_page() -> None:
+    for lines in range(20, 75, 3):
+        facts = Pairs("Facts", tuple((f"name {number}", f"fact {number}") for number in range(lines)))
+        for blocks in ((facts,), (figures(lines=lines),)):
+            for text in page_texts(memo_bytes(content(sections=(Section("Long", blocks),)), standing()))[1:]:
+                assert text.count("fact ") + text.count(" of the borrower's statements") != 1
+
+
+@pytest.mark.parametrize("periods", [1, 2, 3])
+def test_a_grid_of_few_periods_is_as_wide_as_the_text(periods: int) -> None:
+    for line in ("Ratio", "A name so long that it would fill half of the width of the page and more"):
+        heads = (line, *(str(2025 - number) for number in range(periods)))
+        rows = (Row((Cell(line), *(Cell("1.00x") for _ in range(periods)))),)
+        grid = Grid("Ratios", heads, rows, (3.4, *(0.85 for _ in range(periods))))
+        (table, *_) = grid_flowables(grid, TEXT_WIDTH)
+        assert sum(table._colWidths) == pytest.approx(TEXT_WIDTH)
 
 
 @pytest.mark.parametrize("periods", [1, 3, 8])

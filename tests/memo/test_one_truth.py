@@ -77,8 +77,8 @@ def rows(result: Json) -> list[tuple[str, ...]]:
         unit = house.catalogue.spec(factor["ratio"]).unit
         words = REASON_WORDS[factor["missing"]] if value is None else format_ratio(value, unit)
         amount = () if result["score"] is None else (signed(factor["log_odds"]),)
-        capped = " (capped)" if factor["capped"] else ""
-        found.append((labels[factor["key"]], plain(words) + capped, *amount))
+        capped = ("capped",) if factor["capped"] else ()
+        found.append((labels[factor["key"]], plain(words), *capped, *amount))
     assert len(found) == len(model_of(house).factors) == 7
     return found
 
