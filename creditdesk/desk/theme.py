@@ -1,10 +1,15 @@
-"""The look of the window: fonts, palette and style sheet, light and dark."""
+"""The look of the window: fonts, palette and style sheet, light and dark.
 
+The style sheet is the same in every theme: it names roles of Qt's palette, and the palette holds the colours. To set
+another style sheet takes Qt ten times as long as to let every widget look its rules up again.
+"""
+
+from collections.abc import Iterable
 from string import Template
 
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QColor, QFont, QFontDatabase, QGuiApplication, QPalette
-from PySide6.QtWidgets import QApplication
+from PySide6.QtWidgets import QApplication, QWidget
 
 from creditdesk.base.palette import DARK, LIGHT, Palette
 from creditdesk.desk.settings import Theme
@@ -14,8 +19,24 @@ SANS = "Source Sans Pro"
 SERIF = "Source Serif Pro"
 _WORN = "palette worn"
 
+_Role = QPalette.ColorRole
+_ROLES = {
+    "paper": (_Role.Window,),
+    "sheet": (_Role.Base, _Role.Button, _Role.ToolTipBase),
+    "band": (_Role.AlternateBase,),
+    "ink": (_Role.WindowText, _Role.Text, _Role.ButtonText, _Role.HighlightedText, _Role.ToolTipText),
+    "second_ink": (_Role.PlaceholderText,),
+    "selection": (_Role.Highlight,),
+    "accent": (_Role.Link, _Role.Accent),
+    "rule": (_Role.Mid,),
+    "caution": (_Role.BrightText,),
+    "breach": (_Role.LinkVisited,),
+    "strength": (_Role.Midlight,),
+}
+"""The roles that carry each colour, the one the style sheet names first. Qt knows no caution, breach or strength: they
+take roles that nothing draws with where the style sheet rules."""
+
 _STYLE = Template("""
-QWidget { color: $ink; selection-background-color: $selection; selection-color: $ink; }
 QMainWindow, QDialog, #desk, QMenuBar, QMenu, QStatusBar { background: $paper; }
 #standing { background: $sheet; border-left: 1px solid $rule; }
 #standing QScrollArea, #standing QScrollArea > QWidget > QWidget { background: $sheet; border: 0; }
@@ -116,21 +137,25 @@ def load_fonts() -> None:
         QFontDatabase.addApplicationFont(str(path))
 
 
-def style_sheet(palette: Palette) -> str:
-    """Return the style sheet in ``palette``."""
-    colours = {name: getattr(palette, name) for name in Palette.__slots__ if name != "name"}
-    return _STYLE.substitute(colours, serif=SERIF, sans=SANS)
+def style_sheet() -> str:
+    """Return the style sheet, the same for every palette."""
+    words = {colour: f"palette({_word(roles[0])})" for colour, roles in _ROLES.items()}
+    return _STYLE.substitute(words, serif=SERIF, sans=SANS)
 
 
 def apply(application: QApplication, palette: Palette) -> None:
     """Dress the whole application in ``palette``; nothing to do where it wears it already."""
-    if application.property(_WORN) == palette.name:
+    worn = application.property(_WORN)
+    if worn == palette.name:
         return
-    if application.property(_WORN) is None:
-        _prepare(application)
     application.setProperty(_WORN, palette.name)
+    if worn is None:
+        _prepare(application)
     application.setPalette(_qt_palette(palette))
-    application.setStyleSheet(style_sheet(palette))
+    if worn is None:
+        application.setStyleSheet(style_sheet())
+    else:
+        _look_again(application.allWidgets())
 
 
 def _prepare(application: QApplication) -> None:
@@ -142,25 +167,24 @@ def _prepare(application: QApplication) -> None:
     application.setFont(font)
 
 
+def _look_again(widgets: Iterable[QWidget]) -> None:
+    """Have widgets take their colours from the palette anew: Qt keeps those it once looked up for a rule."""
+    for widget in widgets:
+        style = widget.style()
+        style.unpolish(widget)
+        style.polish(widget)
+        widget.update()
+
+
+def _word(role: QPalette.ColorRole) -> str:
+    """Return how a style sheet names a role, as LinkVisited is link-visited."""
+    return "".join(f"-{letter.lower()}" if letter.isupper() else letter for letter in role.name).removeprefix("-")
+
+
 def _qt_palette(palette: Palette) -> QPalette:
-    """Return Qt's roles filled from ``palette``, for what a style sheet does not reach."""
-    role = QPalette.ColorRole
-    colours = {
-        role.Window: palette.paper,
-        role.Base: palette.sheet,
-        role.AlternateBase: palette.band,
-        role.Button: palette.sheet,
-        role.WindowText: palette.ink,
-        role.Text: palette.ink,
-        role.ButtonText: palette.ink,
-        role.ToolTipText: palette.ink,
-        role.ToolTipBase: palette.sheet,
-        role.PlaceholderText: palette.second_ink,
-        role.Highlight: palette.selection,
-        role.HighlightedText: palette.ink,
-        role.Link: palette.accent,
-    }
+    """Return Qt's roles filled from ``palette``."""
     result = QPalette()
-    for name, colour in colours.items():
-        result.setColor(name, QColor(colour))
+    for colour, roles in _ROLES.items():
+        for role in roles:
+            result.setColor(role, QColor(getattr(palette, colour)))
     return result
