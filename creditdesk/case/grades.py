@@ -11,8 +11,10 @@ from creditdesk.grading.scale import NO_GRADE, final_pd, grade_of
 from creditdesk.house.book import HouseBook
 from creditdesk.model.score import why_no_pd
 from creditdesk.ratios.compute import RatioTable
+from creditdesk.statements.period import Period
 from creditdesk.statements.statement import StatementSet
 
+OUT_OF_SCOPE = "out_of_scope"
 NOT_STATED = "none"
 """What a house rule sees of an opinion or another text that is not stated."""
 
@@ -75,9 +77,12 @@ def graded(house: HouseBook, pd: float | None) -> tuple[float | None, str]:
 
 def _env(statements: StatementSet, table: RatioTable, period: int, *, outside: bool) -> dict[str, float | str | None]:
     """Return what a house rule may name: amounts and ratios, flags, texts."""
-    one = statements.periods[period]
     amounts = {key: float(statements.values[row, period]) for row, key in enumerate(statements.keys)}
     ratios = {key: float(table.values[row, period]) for row, key in enumerate(table.keys)}
-    flags = {flag: float(getattr(one, flag, False)) for flag in FLAGS if flag != "out_of_scope"}
-    texts = {name: getattr(one, name) or NOT_STATED for name in TEXTS}
-    return {**ratios, **amounts, **flags, "out_of_scope": float(outside), **texts}
+    return {**ratios, **amounts, **facts_of(statements.periods[period]), OUT_OF_SCOPE: float(outside)}
+
+
+def facts_of(period: Period) -> dict[str, float | str | None]:
+    """Return the flags and texts of a period that a house rule may name."""
+    flags = {flag: float(getattr(period, flag, False)) for flag in FLAGS if flag != OUT_OF_SCOPE}
+    return {**flags, **{name: getattr(period, name) or NOT_STATED for name in TEXTS}}

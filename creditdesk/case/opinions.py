@@ -55,7 +55,7 @@ class RatioTables:
         return compute_ratios(
             catalogue,
             self._statements,
-            constants={"unit": float(self._case.obligor.unit), "to_model_currency": self.rate(currency)},
+            constants=self.constants(currency),
             constant_needs={"to_model_currency": f"rate {currency}"},
             held={
                 (key, period): value
@@ -63,6 +63,10 @@ class RatioTables:
                 if key in catalogue.index and key not in amounts
             },
         )
+
+    def constants(self, currency: str) -> Mapping[str, float]:
+        """Return the constants of ratio formulas for a model in ``currency``."""
+        return {"unit": float(self._case.obligor.unit), "to_model_currency": self.rate(currency)}
 
     def rate(self, currency: str) -> float:
         """Return units of ``currency`` per unit of the case's currency; nan where the case states none."""

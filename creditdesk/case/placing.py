@@ -33,9 +33,16 @@ def fitted_curve(scored: Scored, scale: MasterScale, level: float, shown: Sequen
         low=band.pd_low,
         high=band.pd_high,
         bins=_bins(spec),
-        bands=tuple(
-            GradeBand(grade.key, grade.lower, scale.upper(grade.key), grade.criteria) for grade in scale.grades
-        ),
+        bands=_bands(scale),
+    )
+
+
+def _bands(scale: MasterScale) -> tuple[GradeBand, ...]:
+    """Return the range of each grade: up to where the next one begins."""
+    uppers = [*(grade.lower for grade in scale.grades[1:]), 1.0]
+    return tuple(
+        GradeBand(grade.key, grade.lower, upper, grade.criteria)
+        for grade, upper in zip(scale.grades, uppers, strict=True)
     )
 
 

@@ -1,5 +1,6 @@
 """One model applied to every period of one borrower."""
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -91,16 +92,16 @@ def _factor(scored: Scored, catalogue: Catalogue, table: RatioTable, number: int
         log_odds=float(contributions.log_odds[number, period]) if known else None,
         pd_share=float(contributions.pd_share[number, period]) if known and scored.spec.link is not Link.NONE else None,
         capped=bool(design.capped[number, period]),
-        terms=_terms(scored, number, period),
+        terms=tuple(_terms(scored, number, period)),
         reference_value=None if np.isnan(reference) else reference,
         place=None if code else place_in_sample(scored.spec, factor.key, value),
         treatment=treatment_of(factor, reason),
     )
 
 
-def _terms(scored: Scored, number: int, period: int) -> tuple[Term, ...]:
-    return tuple(
-        Term(term.name, float(values[period]), term.coefficient, float(start))
-        for term, values, start in zip(scored.design.names, scored.design.terms, scored.reference.terms, strict=True)
-        if term.factor == number
-    )
+def _terms(scored: Scored, number: int, period: int) -> Iterator[Term]:
+    design, reference = scored.design, scored.reference
+    for place, term in enumerate(design.names):
+        if term.factor == number:
+            value, start = float(design.terms[place, period]), float(reference.terms[place])
+            yield Term(term.name, value, term.coefficient, start)

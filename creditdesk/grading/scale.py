@@ -1,6 +1,7 @@
 """The master scale: from a probability of default to a grade, and what each grade means."""
 
 from collections.abc import Iterator
+from functools import lru_cache
 from itertools import pairwise
 from math import isfinite, isnan
 from typing import Literal
@@ -67,10 +68,17 @@ def positions(scale: MasterScale, pds: FloatArray) -> PlaceArray:
 
     PDs and bounds are compared after rounding to 12 significant digits, so that noise of arithmetic moves no grade.
     """
-    bounds = round_for_comparison(np.array([grade.lower for grade in scale.grades], dtype=np.float64))
     rounded = round_for_comparison(np.asarray(pds, dtype=np.float64))
-    found = np.searchsorted(bounds, rounded, side="right") - 1
+    found = np.searchsorted(_bounds(scale), rounded, side="right") - 1
     return np.where(np.isnan(rounded), -1, found).astype(np.int64)
+
+
+@lru_cache(maxsize=16)
+def _bounds(scale: MasterScale) -> FloatArray:
+    """Return the rounded lower bounds; kept, as a scale does not change."""
+    bounds = round_for_comparison(np.array([grade.lower for grade in scale.grades], dtype=np.float64))
+    bounds.flags.writeable = False
+    return bounds
 
 
 def grade_of(scale: MasterScale, pd: float) -> str:

@@ -6,7 +6,13 @@ from dataclasses import dataclass
 from datetime import date
 from math import isnan
 
+import numpy as np
+from numpy.typing import NDArray
+
 from creditdesk.model.spec import HorizonFrom, ModelSpec
+
+FloatArray = NDArray[np.float64]
+BoolArray = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True)
@@ -23,6 +29,15 @@ class Borrower:
 def out_of_scope(spec: ModelSpec, borrower: Borrower) -> tuple[str, ...]:
     """Say in sentences why a borrower is outside the model's scope; empty where nothing speaks against it."""
     return (*_kind(spec, borrower), *_sector(spec, borrower), *_size(spec, borrower))
+
+
+def size_outside(spec: ModelSpec, total_assets: FloatArray) -> BoolArray:
+    """Mark the sizes outside the model's range, and those not known where it has one, as ``out_of_scope`` does."""
+    low, high = spec.scope.total_assets_low, spec.scope.total_assets_high
+    if low is None and high is None:
+        return np.zeros(np.shape(total_assets), dtype=np.bool_)
+    at_least, at_most = -np.inf if low is None else low, np.inf if high is None else high
+    return ~((total_assets >= at_least) & (total_assets <= at_most))
 
 
 def _kind(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:

@@ -126,8 +126,9 @@ def column_slopes(
     moving: Mapping[str, FloatArray],
     held: Mapping[str, float],
     pushed: Mapping[str, FloatArray],
+    count: int,
 ) -> FloatArray:
-    """Differentiate the ratios of the period at one point, ratios x directions.
+    """Differentiate the ratios of the period at one point, ratios x ``count`` directions.
 
     ``amounts``: one number each. ``moving``: how fast each amount moves, one number per direction. ``held``: ratios
     that are given, which no amount moves. ``pushed``: how fast ratios move by themselves. A ratio that has no value or
@@ -136,7 +137,6 @@ def column_slopes(
     """
     catalogue, found = column.catalogue, _with_steps(column, amounts)
     values, _ = column_ratios(column, amounts, {key: np.asarray(value) for key, value in held.items()})
-    count = max(len(slope) for slope in (*moving.values(), *pushed.values()))
     slopes = np.zeros((len(catalogue.specs), count))
     with np.errstate(all="ignore"):
         inner = {**moving, **_step_slopes(column, found, moving)}

@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -33,8 +34,9 @@ class Timing:
         }
 
 
-def timing(periods: Sequence[Period]) -> Timing:
-    """Relate periods in time."""
+@lru_cache(maxsize=64)
+def timing(periods: tuple[Period, ...]) -> Timing:
+    """Relate periods in time; kept, as the same periods are looked at many times."""
     prior = prior_indices(periods)
     opening = np.array([_opening(periods, place, int(prior[place])) for place in range(len(periods))], dtype=np.intp)
     sources = {When.NOW: np.arange(len(periods)), When.PRIOR: prior, When.OPENING: opening}

@@ -1,13 +1,14 @@
 """Faults and doubts in statements, as findings with a place and the amounts in the text."""
 
 from collections.abc import Iterator, Mapping
+from functools import lru_cache
 from itertools import pairwise
 
 import numpy as np
 
 from creditdesk.base.display import format_amount
 from creditdesk.base.findings import Finding, Severity
-from creditdesk.statements.chart import TOTAL_ASSETS, TOTAL_EQUITY, TOTAL_LIABILITIES, LineItem, Subtotal
+from creditdesk.statements.chart import TOTAL_ASSETS, TOTAL_EQUITY, TOTAL_LIABILITIES, Chart, LineItem, Subtotal
 from creditdesk.statements.doubts import period_doubts
 from creditdesk.statements.period import Presentation, period_label, period_place, prior_index
 from creditdesk.statements.statement import Disclosure, FloatArray, StatementSet
@@ -233,7 +234,7 @@ def _listed(labels: list[str]) -> str:
 
 def _not_divided(statements: StatementSet) -> Iterator[Finding]:
     """Point to printed totals that their disclosed parts do not reach, or exceed."""
-    signed = _signed_totals(statements)
+    signed = _signed_totals(statements.chart)
     for key, rests in statements.not_divided.items():
         for period in np.flatnonzero(np.isfinite(rests)).tolist():
             rest, printed = float(rests[period]), _first(statements, key, period)
@@ -250,10 +251,11 @@ def _not_divided(statements: StatementSet) -> Iterator[Finding]:
                 yield Finding("statements.not_divided", Severity.NOTE, place, text)
 
 
-def _signed_totals(statements: StatementSet) -> Mapping[str, bool]:
+@lru_cache(maxsize=32)
+def _signed_totals(chart: Chart) -> Mapping[str, bool]:
     """Say of each total whether something in it may be negative, so that its parts may exceed it."""
-    may = {line.key: line.signed for line in statements.chart.lines}
-    totals = {total.key: total for total in statements.chart.subtotals}
+    may = {line.key: line.signed for line in chart.lines}
+    totals = {total.key: total for total in chart.subtotals}
 
     def signed(key: str) -> bool:
         if key not in may:

@@ -1,12 +1,13 @@
 from collections.abc import Callable
 from datetime import date
 
+import numpy as np
 import pytest
 from dateutil.relativedelta import relativedelta
 from hypothesis import given
 from hypothesis import strategies as st
 
-from creditdesk.model.scope import Borrower, add_months, out_of_scope, pd_runs_from, pd_runs_to
+from creditdesk.model.scope import Borrower, add_months, out_of_scope, pd_runs_from, pd_runs_to, size_outside
 from creditdesk.model.spec import HorizonFrom, ModelSpec, Scope
 
 MakeSpec = Callable[..., ModelSpec]
@@ -74,3 +75,12 @@ def test_months_are_added_as_the_calendar_does_and_the_last_day_stays_last(start
         assert (moved + relativedelta(days=1)).day == 1
     else:
         assert moved == plain
+
+
+@pytest.mark.parametrize("low", [None, 2e5])
+@pytest.mark.parametrize("high", [None, 1e8])
+def test_many_sizes_at_once_are_what_each_is_alone(make_spec: MakeSpec, low: float | None, high: float | None) -> None:
+    spec = make_spec(scope=Scope(text="made up", total_assets_low=low, total_assets_high=high))
+    sizes = [float("nan"), 0.0, 1.9e5, 2e5, 3e6, 1e8, 1.1e8]
+    alone = [bool(out_of_scope(spec, borrower(total_assets=size))) for size in sizes]
+    assert size_outside(spec, np.array(sizes)).tolist() == alone

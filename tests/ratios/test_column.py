@@ -109,7 +109,7 @@ def test_slopes_agree_with_central_differences() -> None:
     column, amounts = last_column(catalogue, borrower(set()))
     names, step = list(amounts), 1e-3
     directions = dict(zip(names, np.eye(len(names)), strict=True))
-    slopes = column_slopes(column, amounts, directions, {}, {})
+    slopes = column_slopes(column, amounts, directions, {}, {}, len(names))
     assert np.count_nonzero(slopes) > 100
     for number, name in enumerate(names):
         pair = amounts | {name: amounts[name] + np.array([-step, step])}
@@ -123,8 +123,8 @@ def test_a_direction_of_many_amounts_is_the_sum_of_its_parts() -> None:
     catalogue = part_of(shipped_catalogue(), SOME)
     column, amounts = last_column(catalogue, borrower(set()))
     weights = np.random.default_rng(5).normal(size=len(amounts))
-    each = column_slopes(column, amounts, dict(zip(amounts, np.eye(len(amounts)), strict=True)), {}, {})
-    together = column_slopes(column, amounts, _as_one(amounts, weights), {}, {})
+    each = column_slopes(column, amounts, dict(zip(amounts, np.eye(len(amounts)), strict=True)), {}, {}, len(amounts))
+    together = column_slopes(column, amounts, _as_one(amounts, weights), {}, {}, 1)
     np.testing.assert_allclose(together[:, 0], each @ weights, rtol=1e-12)
 
 
@@ -136,7 +136,7 @@ def test_a_held_ratio_moves_by_itself_and_what_has_no_value_stands_still() -> No
     catalogue = shipped_catalogue()
     column, amounts = last_column(catalogue, borrower({"inventories"}))
     moving, pushed = {"cost_of_sales": np.array([1.0, 0.0])}, {"payable_days": np.array([0.0, 1.0])}
-    free, held = (column_slopes(column, amounts, moving, one, pushed) for one in ({}, {"payable_days": 40.0}))
+    free, held = (column_slopes(column, amounts, moving, one, pushed, 2) for one in ({}, {"payable_days": 40.0}))
     days = catalogue.index["payable_days"]
     assert held[days].tolist() == [0.0, 1.0]
     assert free[days, 0] == pytest.approx(-365 * 560 / 4_350**2)
@@ -149,7 +149,7 @@ def test_what_combines_ratios_moves_with_them_unless_one_has_no_value() -> None:
     pushed = {"payable_days": np.array([1.0]), "inventory_days": np.array([3.0])}
     for blank, expected in ((set(), 2.0), ({"inventories"}, 0.0)):
         column, amounts = last_column(catalogue, borrower(blank))
-        slopes = column_slopes(column, amounts, {}, {}, pushed)
+        slopes = column_slopes(column, amounts, {}, {}, pushed, 1)
         assert slopes[catalogue.index["cash_conversion_days"], 0] == expected
 
 
