@@ -238,6 +238,9 @@ def _line_faults(book: FlowBook, lines: set[str]) -> Iterator[str]:
     linked = [line for link in book.cash_links for line in link.lines]
     for line in sorted({line for line in linked if linked.count(line) > 1}):
         yield f"cash_links: found {line!r} more than once, allowed each balance line once"
+    kept = [link.section for link in book.cash_links if book.roles.retained_earnings in link.lines]
+    if kept != [Section.FINANCING]:
+        yield f"cash_links: found {book.roles.retained_earnings!r} elsewhere, allowed in one financing link"
 
 
 def _named_lines(book: FlowBook) -> Iterator[tuple[str, str]]:
