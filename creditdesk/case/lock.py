@@ -17,6 +17,7 @@ from pathlib import Path
 
 import msgspec
 
+from creditdesk.case.words import long_date
 from creditdesk.house.files import write_error
 
 _TRIES = 20
@@ -34,9 +35,9 @@ class Holder(msgspec.Struct, frozen=True):
 
     @property
     def sentence(self) -> str:
-        """Say it in words."""
+        """Say it in words, the time as the reader's clock had it."""
         who = f"{self.user or 'someone'} on {self.host or 'an unknown computer'}"
-        return f"open for {who} since {self.since or 'an unknown time'}"
+        return f"open for {who} since {_time_words(self.since)}"
 
 
 @dataclass(frozen=True, slots=True)
@@ -98,6 +99,15 @@ def read_holder(lock: Path) -> Holder:
         return msgspec.json.decode(lock.read_bytes()[:4096], type=Holder)
     except (OSError, msgspec.MsgspecError):
         return Holder()
+
+
+def _time_words(iso: str) -> str:
+    """Write a moment as a local time of day and a date; what is no moment is an unknown time."""
+    try:
+        local = datetime.fromisoformat(iso).astimezone()
+    except (ValueError, OverflowError):
+        return "an unknown time"
+    return f"{local.hour}:{local:%M} on {long_date(local.date())}"
 
 
 class _NotOursError(Exception):
