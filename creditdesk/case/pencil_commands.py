@@ -2,7 +2,6 @@
 
 from collections.abc import Collection, Iterable
 from datetime import date
-from typing import TypeVar
 
 import msgspec
 
@@ -16,7 +15,6 @@ from creditdesk.scenario.specs import StudySpec
 from creditdesk.statements.adjust import Adjustment, AdjustmentKind, Entry
 from creditdesk.statements.chart import Chart
 
-Part = TypeVar("Part", bound=msgspec.Struct)
 _TEXTS = ("event", "rationale", "judgement")
 _STUDIES = {"grid": "Grid", "break_even": "Break-even", "reach": "Reach", "simulation": "Simulation"}
 
@@ -29,7 +27,7 @@ class AddScenario(Edit, frozen=True, tag="add_scenario"):
 
     def applied(self, case: Case) -> Case:
         """Append it."""
-        return msgspec.structs.replace(case, scenarios=(*case.scenarios, _plain(self.scenario)))
+        return msgspec.structs.replace(case, scenarios=(*case.scenarios, self.scenario))
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name it, and the one it is copied from."""
@@ -203,7 +201,7 @@ class InkIn(Edit, frozen=True, tag="ink_in"):
         if faults:
             raise refused(*faults)
         after = _with_scenario(case, self.name, marks=_unmarked(case, self.name, self.targets))
-        return msgspec.structs.replace(after, adjustments=(*case.adjustments, _plain(self.adjustment)))
+        return msgspec.structs.replace(after, adjustments=(*case.adjustments, self.adjustment))
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name the first target, count the others, and give the reason."""
@@ -218,7 +216,7 @@ class AddStudy(Edit, frozen=True, tag="add_study"):
 
     def applied(self, case: Case) -> Case:
         """Append it."""
-        return msgspec.structs.replace(case, studies=(*case.studies, _plain(self.study)))
+        return msgspec.structs.replace(case, studies=(*case.studies, self.study))
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name its kind and what it stands on."""
@@ -235,7 +233,7 @@ class SetStudy(Edit, frozen=True, tag="set_study"):
         """Replace it."""
         check_index("index", self.index, len(case.studies))
         studies = [*case.studies]
-        studies[self.index] = _plain(self.study)
+        studies[self.index] = self.study
         return msgspec.structs.replace(case, studies=tuple(studies))
 
     def describe(self, chart: Chart, case: Case) -> str:
@@ -291,18 +289,12 @@ def _scenario(case: Case, name: str) -> Scenario:
 
 def _with_scenario(case: Case, name: str, /, **fields: object) -> Case:
     place = _place(case, name)
-    changed = _plain(msgspec.structs.replace(case.scenarios[place], **fields))
+    changed = msgspec.structs.replace(case.scenarios[place], **fields)
     return msgspec.structs.replace(case, scenarios=(*case.scenarios[:place], changed, *case.scenarios[place + 1 :]))
 
 
 def _unmarked(case: Case, name: str, targets: Collection[str]) -> tuple[Mark, ...]:
     return tuple(mark for mark in _scenario(case, name).marks if mark.target not in targets)
-
-
-def _plain(part: Part) -> Part:
-    """Give every number the type its field has: what is read back from the trail then equals what was kept."""
-    table = msgspec.to_builtins(part, builtin_types=(date,))
-    return msgspec.convert(table, type(part), builtin_types=(date,))
 
 
 def _target(chart: Chart, key: str) -> str:

@@ -42,6 +42,7 @@ def plain_part(part: msgspec.Struct) -> dict[str, object]:
     """Lay a scenario or a study out as a table, its kind first, without the fields that have their default's value.
 
     Numbers there have defaults too, and the library would leave out one that *is* the default, not one that equals it.
+    Whole numbers stand as what their field holds, so that equal parts have equal bytes.
     """
     config, table = part.__struct_config__, dict[str, object]()
     if config.tag_field is not None:
@@ -50,7 +51,7 @@ def plain_part(part: msgspec.Struct) -> dict[str, object]:
         value = getattr(part, field.name)
         default = field.default if field.default_factory is msgspec.NODEFAULT else field.default_factory()
         if field.required or value != default:
-            table[field.name] = _plain_value(value)
+            table[field.name] = _amount(value) if field.type is float else _plain_value(value)
     return table
 
 
@@ -60,10 +61,13 @@ def _plain_value(value: object) -> object:
     if isinstance(value, tuple):
         return [_plain_value(part) for part in value]
     if isinstance(value, Mapping):
-        return {key: _plain_value(value[key]) for key in sorted(value)}
-    if isinstance(value, float):
-        return value + 0.0  # nil has no sign
+        return {key: _amount(value[key]) for key in sorted(value)}
     return str(value) if isinstance(value, str) else value
+
+
+def _amount(value: object) -> object:
+    """Give a number as a float, and nil no sign; text stays text."""
+    return float(value) + 0.0 if isinstance(value, int | float) else value
 
 
 def case_from_json(data: bytes) -> Case:

@@ -12,9 +12,11 @@ from creditdesk.base.errors import Refusal, UserError
 from creditdesk.case.document import TEXT_BLOCKS, Assessment, Case, Obligor, Rates
 from creditdesk.case.exchange import read_case, write_case
 from creditdesk.case.wire import case_digest
+from creditdesk.scenario.marks import Scenario
 from creditdesk.statements.adjust import Adjustment, AdjustmentKind, Entry
 from creditdesk.statements.chart import Chart
 from creditdesk.statements.period import Basis, Framework, Opinion, Period, Presentation
+from tests.pencils import marksets
 
 SMALL = """format = "creditdesk-case"
 version = 1
@@ -141,6 +143,10 @@ def cases(draw: st.DrawFn, keys: tuple[str, ...]) -> Case:
         ),
         notes=draw(st.dictionaries(st.sampled_from(keys), notes, max_size=2)),
         texts=draw(st.dictionaries(st.sampled_from(list(TEXT_BLOCKS)), words, max_size=3)),
+        scenarios=tuple(
+            Scenario(f"Case {number}", marks, rationale=draw(words), in_memo=draw(st.booleans()))
+            for number, marks in enumerate(draw(st.lists(marksets, max_size=2)))
+        ),
     )
 
 
