@@ -18,13 +18,14 @@ from creditdesk.flow.ground import OPENING, RELIEF, Ground, interest_base, minim
 class Terms:
     """Hold the numbers that interest, tax and balancing are worked out with, for one point or for draws.
 
-    ``base``: debt that bears interest before the draw. ``rate``: a year, on what debt moves by. ``rate_change``: a
-    year. ``per_drawn``: this year's interest on one unit drawn. ``interest``: change of interest before the draw.
-    ``tax_rate``: 0 where tax is marked or cannot follow. ``relief``: a loss gives tax back. ``minimum``: what cash may
-    fall to. ``balancing``: line drawn on, "" for none. ``drawn``: what it takes.
+    ``base``: debt that bears interest before the draw, and ``weight`` of the draw in it. ``rate``: a year, on what debt
+    moves by; ``rate_change``: a year. ``per_drawn``: this year's interest on one unit drawn. ``interest``: change of
+    interest before the draw. ``tax_rate``: 0 where tax is marked or cannot follow. ``relief``: a loss gives tax back.
+    ``minimum``: what cash may fall to. ``balancing``: line drawn on, "" for none. ``drawn``: what it takes.
     """
 
     base: Jet
+    weight: float
     rate: float
     rate_change: Jet
     per_drawn: Jet
@@ -93,6 +94,7 @@ def _terms(ground: Ground, asked: Asked, entries: Entries) -> Terms:
     )
     return Terms(
         base=base,
+        weight=weight,
         rate=rate,
         rate_change=rate_change,
         per_drawn=per_drawn,

@@ -83,7 +83,7 @@ def _beyond_commitments(ground: Ground, changes: Mapping[str, Jet], terms: Terms
     granted = ground.ink[line] + float(changes.get(line, NIL).value)
     if drawn > granted * (1.0 + _NOISE):
         beyond = f"{format_amount(drawn - granted)} more than the undrawn commitments of {format_amount(granted)}"
-        text = f"{ground.label(terms.balancing)} draws {format_amount(drawn)}, {beyond}."
+        text = f"Draws {format_amount(drawn)} on {ground.label(terms.balancing).lower()}, {beyond}."
         yield _finding(ground, "beyond_commitments", terms.balancing, text)
 
 

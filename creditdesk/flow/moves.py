@@ -17,6 +17,11 @@ class MoveKind(StrEnum):
     BY = "by"
     BY_PCT = "by_pct"
 
+    @property
+    def relative(self) -> bool:
+        """Say whether an amount of nil leaves the ink as it is."""
+        return self is not MoveKind.TO
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Move:
