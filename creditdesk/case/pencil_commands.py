@@ -137,15 +137,14 @@ class SetAssumption(Edit, frozen=True, tag="set_assumption"):
     def applied(self, case: Case) -> Case:
         """Set or take away."""
         kept = {key: value for key, value in _scenario(case, self.name).assumptions.items() if key != self.key}
-        return _with_scenario(
-            case, self.name, assumptions=kept if self.value is None else {**kept, self.key: self.value}
-        )
+        changed = kept if self.value is None else {**kept, self.key: self.value}
+        return _with_scenario(case, self.name, assumptions=changed)
 
     def describe(self, chart: Chart, case: Case) -> str:
         """Name the assumption and its value."""
-        what = _target(chart, self.key.replace(".", " "))
-        value = self.value if isinstance(self.value, str) else None if self.value is None else written(self.value)
-        return f"Assumption {what} {'as the house says' if value is None else f'to {value}'} in “{self.name}”"
+        value = written(self.value) if isinstance(self.value, float | int) else (self.value or "").replace("_", " ")
+        what = f"{_target(chart, self.key.replace('.', ' '))} {f'to {value}' if value else 'as the house says'}"
+        return f"Assumption {what} in “{self.name}”"
 
 
 class SetScenarioText(Edit, frozen=True, tag="set_scenario_text"):
