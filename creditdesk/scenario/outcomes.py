@@ -34,5 +34,11 @@ class Outcomes:
     amounts: Mapping[str, FloatArray]
 
 
+COEFFICIENTS = "coefficients"
+"""A target beside lines, ratios and drivers: by how many of its own standard errors the score is off.
+
+One number of the normal distribution for each draw stands for one draw of all coefficients: a score is linear in them.
+"""
+
 Evaluate = Callable[[Moves], Outcomes]
 """Evaluate moves whose amounts are numbers or arrays of one length, at most ``DRAWS_MOST``."""

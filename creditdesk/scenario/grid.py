@@ -1,0 +1,56 @@
+"""The PD over two targets, with the grade at every point."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from creditdesk.flow.moves import Moves
+from creditdesk.scenario.blocks import Progress, in_blocks
+from creditdesk.scenario.outcomes import Evaluate
+from creditdesk.scenario.specs import GridSpec, Range
+
+FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Grid:
+    """Hold a grid: ``pd`` (after the floor) and ``grade`` (place of the final one, -1 for none) are up x across.
+
+    ``across`` and ``up``: positions in the units of the ranges. ``at``: where the scenario stands in them, nan on an
+    axis whose target it moves in another way.
+    """
+
+    spec: GridSpec
+    across: FloatArray
+    up: FloatArray
+    pd: FloatArray
+    grade: NDArray[np.int64]
+    at: tuple[float, float]
+
+
+def grid(evaluate: Evaluate, base: Moves, spec: GridSpec) -> Progress[Grid]:
+    """Evaluate a grid over ``base``, whose own moves of the two targets give way to the positions of the axes."""
+    across, up = (np.linspace(axis.low, axis.high, spec.points) for axis in (spec.across, spec.up))
+    wide, tall = np.meshgrid(across, up)
+    positions = {
+        spec.across.target: (spec.across.kind, wide.ravel()),
+        spec.up.target: (spec.up.kind, tall.ravel()),
+    }
+    found = yield from in_blocks(evaluate, base, positions)
+    return Grid(
+        spec=spec,
+        across=across,
+        up=up,
+        pd=found.pd.reshape(wide.shape),
+        grade=found.grade.reshape(wide.shape),
+        at=(position(base, spec.across), position(base, spec.up)),
+    )
+
+
+def position(base: Moves, along: Range) -> float:
+    """Say where moves stand in a range: 0 where they leave its target alone, nan where that is not told in its unit."""
+    move = base.get(along.target)
+    if move is None:
+        return 0.0 if along.kind.relative else float("nan")
+    return float(np.asarray(move.amount)) if move.kind is along.kind else float("nan")

@@ -1,0 +1,60 @@
+"""What one unit of each line or ratio does to the PD, and what its usual range does: a ranked list."""
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from creditdesk.flow.moves import MoveKind, Moves
+from creditdesk.scenario.blocks import Progress, in_blocks
+from creditdesk.scenario.grid import position
+from creditdesk.scenario.outcomes import Evaluate
+from creditdesk.scenario.specs import Range
+
+Slope = Callable[[Sequence[str]], Mapping[str, float]]
+"""Give d PD per unit of each target, through flow, ratio and treatment; nan where there is none."""
+
+
+@dataclass(frozen=True, slots=True)
+class Sensitivity:
+    """Hold one target. ``per_unit``: d PD per unit, at the right of a kink. ``low``, ``high``: PD at the range's ends.
+
+    ``effect``: the larger change of the PD within the range, signed; nan where no PD is known there.
+    """
+
+    along: Range
+    per_unit: float
+    low: float
+    high: float
+    effect: float
+
+
+def sensitivities(
+    evaluate: Evaluate, slope: Slope, base: Moves, ranges: Sequence[Range]
+) -> Progress[tuple[Sensitivity, ...]]:
+    """Move one target at a time to both ends of its range, from where ``base`` stands; the largest effect first.
+
+    A target that ``base`` moves already is moved on from there, where that is told in the unit of its range.
+    """
+    slopes = slope(tuple(one.target for one in ranges))
+    start = evaluate(base)
+    found = []
+    for number, one in enumerate(ranges):
+        told = yield from _ends(evaluate, base, one)
+        changes = told - float(start.pd)
+        effect = changes[int(np.nanargmax(np.abs(changes)))] if not np.isnan(changes).all() else np.nan
+        found.append(Sensitivity(one, slopes[one.target], float(told[0]), float(told[1]), float(effect)))
+        yield (number + 1) / len(ranges)
+    return tuple(sorted(found, key=lambda one: (np.isnan(one.effect), -abs(one.effect), one.along.target)))
+
+
+def _ends(evaluate: Evaluate, base: Moves, one: Range) -> Progress[np.ndarray]:
+    start = position(base, one) if one.kind.relative else 0.0
+    ends = np.array([one.low, one.high]) + (0.0 if np.isnan(start) else start)
+    told = yield from in_blocks(evaluate, base, {one.target: (one.kind, ends)})
+    return told.pd
+
+
+def around(target: str, pct: float) -> Range:
+    """Return the range of a target by ``pct`` per cent of the ink to either side."""
+    return Range(target, MoveKind.BY_PCT, -pct, pct)
