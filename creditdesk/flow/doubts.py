@@ -19,7 +19,7 @@ _NOISE = 1e-9
 def flow_doubts(ground: Ground, asked: Asked, changes: Mapping[str, Jet], terms: Terms) -> tuple[Finding, ...]:
     """List the doubts of a flow; those on amounts only for one point, as draws differ."""
     found = list(_not_following(ground, asked, changes, terms))
-    if all(np.ndim(change.value) == 0 for change in changes.values()):
+    if all(np.ndim(one.value) == 0 for one in (*changes.values(), terms.drawn)):
         found += _short_of_cash(ground, changes, terms)
         found += _beyond_commitments(ground, changes, terms)
         found += _below_nil(ground, changes)

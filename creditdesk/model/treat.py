@@ -33,7 +33,7 @@ class Design:
 
     def missing_count(self) -> NDArray[np.int64]:
         """Count the missing factors of each point."""
-        return np.asarray(np.count_nonzero(self.missing, axis=0), dtype=np.int64)
+        return np.asarray(self.missing.sum(axis=0, dtype=np.int64))
 
 
 def treat(spec: ModelSpec, values: FloatArray, reasons: ReasonArray) -> Design:
