@@ -12,7 +12,7 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.assess import assess_statements
 from creditdesk.case.document import Case
 from creditdesk.case.opinions import RatioTables, borrower
-from creditdesk.case.pencilchain import Chain, Ground, Slopes, chain_of, filled, outcomes, slopes
+from creditdesk.case.pencil_chain import Chain, Ground, Slopes, chain_of, filled, outcomes, slopes
 from creditdesk.case.standing import Standing
 from creditdesk.case.statements import case_statements
 from creditdesk.flow.assumptions import Overrides

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from creditdesk.case.document import Case, ModelChoice
 from creditdesk.case.pencil import PencilBoard
-from creditdesk.case.pencilchain import Slopes
+from creditdesk.case.pencil_chain import Slopes
 from creditdesk.flow.book import DRIVERS, targets
 from creditdesk.flow.moves import Move, MoveKind, Moves
 from creditdesk.house.book import HouseBook
