@@ -51,7 +51,7 @@ def _operating(ground: Ground, asked: Asked, entries: Entries) -> Jet:
     plan = ground.plan
     own = {line: change for line, change in entries.moved.items() if line not in plan.links}
     booked = total(entries.off_cash[line] * plan.funds[line] for line in entries.off_cash if line in plan.links)
-    change = net_profit_change(ground, entries) + weighted(own, plan.funds) - booked
+    change = net_profit_change(ground, entries) + weighted(own, plan.funds) + booked
     return change + interest_paid_change(ground, asked, entries) if ground.interest_in_financing else change
 
 
