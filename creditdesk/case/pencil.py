@@ -24,7 +24,7 @@ from creditdesk.house.book import HouseBook
 from creditdesk.model.scope import out_of_scope
 from creditdesk.ratios.compute import HELD
 from creditdesk.scenario.marks import Scenario, moves_of
-from creditdesk.scenario.outcomes import DRAWS_MOST, Outcomes
+from creditdesk.scenario.outcomes import COEFFICIENTS, DRAWS_MOST, Outcomes
 
 FloatArray = NDArray[np.float64]
 
@@ -81,14 +81,17 @@ class PencilBoard:
     def evaluate(self, moves: Moves, overrides: Overrides | None = None, watch: Sequence[str] = ()) -> Outcomes:
         """Say what moves come to, for one point or for up to ``DRAWS_MOST`` draws at once.
 
-        ``watch``: lines, sums and ratios to be told as well. The same numbers as ``scenario`` gives of each draw.
+        ``watch``: lines, sums and ratios to be told as well. The same numbers as ``scenario`` gives of each draw; the
+        target ``COEFFICIENTS`` beside them puts the score off by as many of its standard errors.
         """
         shape = np.broadcast_shapes(*(np.shape(move.amount) for move in moves.values()))
         if np.prod(shape) > DRAWS_MOST:
             raise BugError(f"{np.prod(shape):.0f} draws in one call, at most {DRAWS_MOST} are allowed")
-        flow = run_flow(self._book, self.ink.statements, self.ink.period_index, moves, overrides)
+        marks = {target: move for target, move in moves.items() if target != COEFFICIENTS}
+        flow = run_flow(self._book, self.ink.statements, self.ink.period_index, marks, overrides)
         held, _ = self._held(flow)
-        return outcomes(self._chain(watch, flow), flow, held, shape)
+        off = moves[COEFFICIENTS].amount if COEFFICIENTS in moves else None
+        return outcomes(self._chain(watch, flow), flow, held, shape, off)
 
     def slopes(
         self,

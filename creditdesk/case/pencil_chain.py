@@ -15,6 +15,7 @@ from creditdesk.grading.rules import FLAGS, TEXTS, grades_after
 from creditdesk.grading.scale import final_pds, positions
 from creditdesk.house.book import HouseBook
 from creditdesk.model.calibrate import calibrated_derivative, calibrated_pd
+from creditdesk.model.interval import standard_error
 from creditdesk.model.scope import size_outside
 from creditdesk.model.score import model_pd, score, score_derivative
 from creditdesk.model.spec import ModelSpec
@@ -113,13 +114,20 @@ def _added(ground: Ground, disclosing: StatementSet) -> Iterator[tuple[str, tupl
             yield plan.keys[total.row], tuple((plan.keys[row], sign) for row, sign in total.parts)
 
 
-def outcomes(chain: Chain, flow: Flow, held: Draws, shape: tuple[int, ...]) -> Outcomes:
-    """Follow the chain for every draw; ``held``: ratios that are given, ``shape``: that of the draws."""
+def outcomes(
+    chain: Chain, flow: Flow, held: Draws, shape: tuple[int, ...], off: FloatArray | float | None = None
+) -> Outcomes:
+    """Follow the chain for every draw; ``held``: ratios that are given, ``shape``: that of the draws.
+
+    ``off``: by how many of its standard errors the score is off, None for not at all; nan results where the model
+    states no covariance.
+    """
     ground, spec = chain.ground, chain.ground.spec
     catalogue, amounts = chain.column.catalogue, amounts_of(chain, flow)
     values, reasons = column_ratios(chain.column, amounts, _known(chain, held))
     rows = [catalogue.index[factor.ratio] for factor in spec.factors]
-    scores = score(spec, treat(spec, values[rows], reasons[rows]))
+    design = treat(spec, values[rows], reasons[rows])
+    scores = score(spec, design) + (0.0 if off is None else off * standard_error(spec, design))
     ratios = dict(zip(catalogue.keys, values, strict=True))
     pd_calibrated = calibrated_pd(spec, scores)
     pd = np.maximum(ground.house.settings.pd_floor, pd_calibrated)

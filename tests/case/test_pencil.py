@@ -3,6 +3,7 @@
 import math
 from dataclasses import replace
 from datetime import date
+from statistics import NormalDist
 
 import numpy as np
 import pytest
@@ -20,7 +21,7 @@ from creditdesk.grading.rules import Effect, HouseRule, RuleFile, compile_rules
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import HELD
 from creditdesk.scenario.marks import Mark, Scenario, moves_of
-from creditdesk.scenario.outcomes import DRAWS_MOST, Outcomes
+from creditdesk.scenario.outcomes import COEFFICIENTS, DRAWS_MOST, Outcomes
 from tests.borrowers import STRETCHED, case_of, changed, demo, generated, shipped_house
 from tests.published.test_small_company_faces import FILLETED, FILLETED_PRINTED
 from tests.statements.books import CLEAN, year
@@ -165,6 +166,20 @@ def test_draws_are_told_even_of_marks_that_change_nothing() -> None:
     board = PencilBoard(case_of(FILLETED, FILLETED_PRINTED, (year(2025),)), HOUSE)
     found = board.evaluate({"materials": Move(BY_PCT, np.array([1.0, 2.0, 3.0]))}, None, ("equity_ratio",))
     assert found.score.shape == found.grade.shape == found.amounts["equity_ratio"].shape == (3,)
+
+
+def test_coefficients_put_the_score_off_by_its_standard_errors() -> None:
+    """At the normal quantile of the interval's level the PD is the interval's bound."""
+    board, reach = BOARDS[0], NormalDist().inv_cdf(0.5 + HOUSE.settings.interval_level / 2)
+    pencilled = board.scenario(AFRESH)
+    off = Move(BY, np.array([-reach, 0.0, reach]))
+    found = board.evaluate({**pencilled.moves, COEFFICIENTS: off})
+    interval = pencilled.standing.pd_interval
+    assert interval is not None
+    expected = [interval.low, number(pencilled.standing.pd_calibrated), interval.high]
+    np.testing.assert_allclose(found.pd_calibrated, expected, rtol=1e-12)
+    unknown = PencilBoard(demo(), with_spec(HOUSE, covariance=None)).evaluate({COEFFICIENTS: off})
+    assert np.isnan(unknown.pd).all()
 
 
 def test_too_many_draws_and_what_nobody_knows_are_our_bugs() -> None:
