@@ -22,7 +22,7 @@ from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import HELD
 from creditdesk.scenario.marks import Mark, Scenario, moves_of
 from creditdesk.scenario.outcomes import COEFFICIENTS, DRAWS_MOST, Outcomes
-from tests.borrowers import STRETCHED, case_of, changed, demo, generated, shipped_house
+from tests.borrowers import STRETCHED, case_of, changed, demo, generated, shipped_house, with_spec
 from tests.published.test_small_company_faces import FILLETED, FILLETED_PRINTED
 from tests.statements.books import CLEAN, year
 
