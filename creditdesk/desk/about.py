@@ -5,6 +5,7 @@ from collections.abc import Iterable, Sequence
 
 from PySide6 import __version__ as qt_version
 from PySide6.QtCore import Qt
+from PySide6.QtGui import QAction
 from PySide6.QtWidgets import (
     QDialog,
     QDialogButtonBox,
@@ -25,15 +26,38 @@ Section = tuple[str, tuple[tuple[str, str], ...]]
 
 HANDS: tuple[Section, ...] = (
     (
-        "In tables",
+        "In the figures",
         (
             ("Arrows, Page up, Page down", "Move from cell to cell"),
+            ("Enter, Shift+Enter", "Move down, up; after Tab to where the row of Tabs began"),
+            ("Tab, Shift+Tab", "Move to the next period, to the one before, and on to the next line"),
+            ("Ctrl with an arrow", "Move to the edge of what is filled"),
+            ("Home, End", "Move to the first and the last period"),
             ("Ctrl+Home, Ctrl+End", "Move to the first and the last cell"),
-            ("F2, Enter, or typing", "Edit the cell"),
+            ("Shift with any of these", "Choose a block"),
+            ("F2, or typing", "Edit the cell"),
             ("Escape", "Leave the cell as it was"),
             ("Delete", "Clear the cells chosen: not disclosed"),
-            ("Shift with arrows", "Choose a block"),
             ("Ctrl+C, Ctrl+V", "Copy the block, paste a block"),
+            ("Enter, Left, Right on a heading", "Fold or unfold its lines"),
+            ("Up from the first line", "Go to the head of the period: Enter describes it, Delete removes it"),
+            ("F6, Shift+F6", "Leave the table: onwards, back"),
+        ),
+    ),
+    (
+        "In the ratios",
+        (
+            ("Arrows, Page up, Page down", "Move from ratio to ratio"),
+            ("Enter", "Go to its formula; Escape leads back"),
+            ("Ctrl+C", "Copy the block chosen"),
+        ),
+    ),
+    (
+        "In a chart",
+        (
+            ("Arrows, Home, End", "Walk from mark to mark; with Shift also the marks close by"),
+            ("Enter", "Open the mark"),
+            ("Ctrl+C, Ctrl+Shift+C", "Copy the numbers, the picture"),
         ),
     ),
     (
@@ -45,6 +69,8 @@ HANDS: tuple[Section, ...] = (
         ),
     ),
 )
+_BETWEEN = 7
+_HISTORY = ("Undo", "Redo")
 TESTED = (
     "Tested on Linux (X11 and without a display). The code is written with care for Windows and macOS and has not been "
     "tried there."
@@ -60,8 +86,14 @@ def key_sections(actions: Iterable[Placed]) -> tuple[Section, ...]:
     by_menu: dict[str, list[tuple[str, str]]] = {}
     for placed in actions:
         if keys := keys_of(placed.action):
-            by_menu.setdefault(placed.menu, []).append((keys, plain(placed.action.text()).removesuffix("…")))
+            by_menu.setdefault(placed.menu, []).append((keys, _title(placed.action)))
     return (*((menu, tuple(pairs)) for menu, pairs in by_menu.items()), *HANDS)
+
+
+def _title(action: QAction) -> str:
+    """Return what an action does at any time: undo and redo name the edit at hand."""
+    title = plain(action.text()).removesuffix("…")
+    return next((word for word in _HISTORY if title.startswith(f"{word} ")), title)
 
 
 class Keys(QDialog):
@@ -75,15 +107,18 @@ class Keys(QDialog):
         grid = QGridLayout(inside)
         grid.setContentsMargins(4, 2, 18, 8)
         grid.setHorizontalSpacing(26)
+        grid.setVerticalSpacing(5)
         grid.setColumnStretch(1, 1)
         for heading, pairs in sections:
+            grid.setRowMinimumHeight(grid.rowCount(), _BETWEEN)
             grid.addWidget(label("heading", heading), grid.rowCount(), 0, 1, 2)
             for keys, words in pairs:
                 row = grid.rowCount()
-                grid.addWidget(label("", keys), row, 0)
-                grid.addWidget(label("second", words), row, 1)
-        _lay_out(self, inside, 620)
-        self.resize(560, 640)
+                grid.addWidget(label("", keys), row, 0, Qt.AlignmentFlag.AlignTop)
+                grid.addWidget(label("second", words, wrap=True), row, 1, Qt.AlignmentFlag.AlignTop)
+        grid.setRowStretch(grid.rowCount(), 1)
+        _lay_out(self, inside)
+        self.resize(720, 680)
 
 
 class About(QDialog):
@@ -95,6 +130,7 @@ class About(QDialog):
         inside = QWidget()
         inside.setObjectName("desk")
         box = QVBoxLayout(inside)
+        box.setContentsMargins(4, 2, 18, 8)
         box.setSpacing(7)
         box.addWidget(label("obligor", f"creditdesk {creditdesk.__version__}"))
         parts = f"Python {platform.python_version()} · Qt {qt_version} · {platform.system()} {platform.machine()}"
@@ -111,11 +147,11 @@ class About(QDialog):
         ):
             box.addWidget(label(role, words, wrap=True))
         box.addStretch(1)
-        _lay_out(self, inside, 560)
+        _lay_out(self, inside)
         self.resize(560, 560)
 
 
-def _lay_out(dialog: QDialog, inside: QWidget, width: int) -> None:
+def _lay_out(dialog: QDialog, inside: QWidget) -> None:
     """Put a page that may be long into a dialog with one button."""
     scroll = QScrollArea()
     scroll.setWidgetResizable(True)
@@ -129,4 +165,4 @@ def _lay_out(dialog: QDialog, inside: QWidget, width: int) -> None:
     whole.setContentsMargins(22, 18, 12, 14)
     whole.addWidget(scroll, 1)
     whole.addWidget(buttons)
-    dialog.setMinimumWidth(min(width, 480))
+    dialog.setMinimumWidth(480)

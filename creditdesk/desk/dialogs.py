@@ -2,11 +2,14 @@
 
 from collections.abc import Callable
 
-from PySide6.QtWidgets import QDialog, QDialogButtonBox, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QAbstractSpinBox, QDialog, QDialogButtonBox, QLineEdit, QVBoxLayout, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.desk.fields import fault_words
 from creditdesk.desk.frame import label
+
+_INSET = 4
+"""Pixels between the frame of a field and its text."""
 
 
 class Question(QDialog):
@@ -32,11 +35,21 @@ class Question(QDialog):
         self.box.addWidget(self.fault)
         self.box.addWidget(self.buttons)
 
+    def say_fault(self, words: str) -> None:
+        """Say above the buttons why it cannot be; "" takes the sentence away."""
+        self.fault.setText(f"▲ {words.removesuffix('.')}." if words else "")
+        self.fault.setVisible(bool(words))
+
     def _on_accept(self) -> None:
         try:
             self._answer()
         except UserError as error:
-            self.fault.setText(f"▲ {fault_words(error)}.")
-            self.fault.show()
+            self.say_fault(fault_words(error))
         else:
             self.accept()
+
+
+def inset(box: QAbstractSpinBox) -> None:
+    """Let the text of ``box`` stand where that of other fields does; no style sheet reaches it."""
+    for line in box.findChildren(QLineEdit):
+        line.setTextMargins(_INSET, 0, 0, 0)

@@ -9,7 +9,7 @@ from PySide6.QtCore import QDate
 from PySide6.QtWidgets import QCheckBox, QComboBox, QDateEdit, QFormLayout, QSpinBox, QWidget
 
 from creditdesk.case.checks import MONTHS_MOST
-from creditdesk.desk.dialogs import Question
+from creditdesk.desk.dialogs import Question, inset
 from creditdesk.desk.frame import label
 from creditdesk.statements.period import Basis, Framework, InterestPaidIn, Leases, Opinion, Period, Presentation
 
@@ -27,6 +27,8 @@ class PeriodDialog(Question):
         self.months = QSpinBox()
         self.months.setRange(1, MONTHS_MOST)
         self.months.setValue(period.months)
+        for box in (self.ends, self.months):
+            inset(box)
         self.basis = _choice(Basis, period.basis, optional=False)
         self.opinion = _choice(Opinion, period.opinion)
         self.presentation = _choice(Presentation, period.presentation, optional=False)

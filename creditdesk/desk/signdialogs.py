@@ -7,19 +7,18 @@ from pathlib import Path
 from PySide6.QtWidgets import (
     QComboBox,
     QDialog,
-    QDialogButtonBox,
     QFileDialog,
     QFormLayout,
     QHBoxLayout,
     QLineEdit,
     QPlainTextEdit,
     QPushButton,
-    QVBoxLayout,
     QWidget,
 )
 from shiboken6 import isValid
 
 from creditdesk.base.errors import UserError
+from creditdesk.desk.dialogs import Question
 from creditdesk.desk.frame import label
 
 PDF = "Memo (*.pdf)"
@@ -28,26 +27,21 @@ Look = Callable[[Path, Callable[[str], None]], object]
 """Asks in the background what state a memo is in, and hands the sentence on."""
 
 
-class _Signing(QDialog):
+class _Signing(Question):
     """Ground for both signatures: identity, passphrase, where the memo goes."""
 
     def __init__(self, parent: QWidget | None, title: str, verb: str) -> None:
-        super().__init__(parent)
-        self.setWindowTitle(title)
-        self.setMinimumWidth(560)
+        super().__init__(parent, title, verb, lambda: None)
+        self.setMinimumWidth(600)
         self.identity, self.passphrase, self.out = _line("Identity file"), _line("Passphrase"), _line("Memo goes to")
         self.passphrase.setEchoMode(QLineEdit.EchoMode.Password)
-        self.form = QFormLayout()
-        self.buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Cancel)
-        self.sign = self.buttons.addButton(verb, QDialogButtonBox.ButtonRole.AcceptRole)
-        self.buttons.accepted.connect(self.accept)
-        self.buttons.rejected.connect(self.reject)
+        self.form = _form()
         for line in (self.identity, self.passphrase, self.out):
             line.textChanged.connect(self.on_typed)
 
     def on_typed(self) -> None:
         """Offer to sign once everything is there."""
-        self.sign.setEnabled(self.complete())
+        self.accept_button.setEnabled(self.complete())
 
     def complete(self) -> bool:
         """Say whether everything asked for is there."""
@@ -59,14 +53,11 @@ class _Signing(QDialog):
         self.form.addRow("Passphrase", self.passphrase)
         self.form.addRow("Memo goes to", _row(self.out, ("Choose…", self._on_place)))
 
-    def lay_out(self, words: str, *extra: QWidget) -> None:
+    def lay_out(self, words: str) -> None:
         """Put the form above what must be known before signing, and the buttons below."""
-        box = QVBoxLayout(self)
-        box.addLayout(self.form)
-        for widget in extra:
-            box.addWidget(widget)
-        box.addWidget(label("second", words, wrap=True))
-        box.addWidget(self.buttons)
+        self.box.addLayout(self.form)
+        self.box.addWidget(label("second", words, wrap=True))
+        self.close_column()
 
     def _on_choose(self) -> None:
         name, _ = QFileDialog.getOpenFileName(self, "Choose a signing identity", "", IDENTITY)
@@ -111,7 +102,8 @@ class CountersignDialog(_Signing):
         super().__init__(parent, "Countersign a memo as approver", "Countersign")
         self._look = look
         self.memo, self.decision, self.conditions = _line("Memo"), QComboBox(), QPlainTextEdit()
-        self.state, self.fault = label("second", wrap=True), label("breach", wrap=True)
+        self.state = label("second", wrap=True)
+        self.state.hide()
         self._conditions_title = label("")
         self.decision.setAccessibleName("Decision")
         for decision, words in DECISION_WORDS.items():
@@ -134,7 +126,7 @@ class CountersignDialog(_Signing):
             "The preparer's signature stays valid; yours is added with the decision. Two keys are not two people: that "
             "the approver is another person is for the house to see to."
         )
-        self.lay_out(words, self.fault)
+        self.lay_out(words)
 
     @property
     def chosen(self) -> tuple[str, str]:
@@ -147,8 +139,7 @@ class CountersignDialog(_Signing):
 
     def on_typed(self) -> None:
         """Say at once what does not fit."""
-        self.fault.setText(self._fault())
-        self.fault.setVisible(bool(self.fault.text()))
+        self.say_fault(self._fault())
         grounds = self.chosen[0] in ("decline", "return")
         self._conditions_title.setText("Grounds" if grounds else "Conditions")
         self.conditions.setAccessibleName(self._conditions_title.text())
@@ -175,55 +166,63 @@ class CountersignDialog(_Signing):
     def _on_memo(self) -> None:
         path = Path(self.memo.text())
         if not self.memo.text() or not path.is_file():
-            self.state.setText("There is no such file." if self.memo.text() else "")
+            self._say_state("There is no such file." if self.memo.text() else "")
             return
         if not self.out.text():
             self.out.setText(str(path.with_name(f"{path.stem}-countersigned.pdf")))
-        self.state.setText("The memo is being checked.")
+        self._say_state("The memo is being checked.")
         self._look(path, self._on_told)
 
     def _on_told(self, words: str) -> None:
         if isValid(self):  # the answer may come after the dialog is gone
-            self.state.setText(words)
+            self._say_state(words)
+
+    def _say_state(self, words: str) -> None:
+        self.state.setText(words)
+        self.state.setVisible(bool(words))
 
 
-class NewIdentity(QDialog):
+class NewIdentity(Question):
     """Make a self-signed identity file, readable by its owner alone."""
 
     def __init__(self, parent: QWidget | None) -> None:
-        super().__init__(parent)
-        self.setWindowTitle("New signing identity")
-        self.setMinimumWidth(480)
-        self.fault = label("breach", wrap=True)
-        form = QFormLayout()
-        titles = ("Your name", "Passphrase, 8 or more characters", "Passphrase again", "Identity file (.p12)")
-        self.name, self.passphrase, self.again, self.out = (_line(title) for title in titles)
-        for title, line in zip(titles, (self.name, self.passphrase, self.again, self.out), strict=True):
-            form.addRow(title, line)
+        super().__init__(parent, "New signing identity", "Make", self._make)
+        self.setMinimumWidth(600)
+        titles = ("Your name", "Passphrase", "Passphrase again", "Identity file")
+        self._lines = self.name, self.passphrase, self.again, self.out = tuple(_line(title) for title in titles)
         for line in (self.passphrase, self.again):
             line.setEchoMode(QLineEdit.EchoMode.Password)
-        buttons = QDialogButtonBox(QDialogButtonBox.StandardButton.Cancel)
-        buttons.addButton("Make", QDialogButtonBox.ButtonRole.AcceptRole)
-        buttons.accepted.connect(self._on_make)
-        buttons.rejected.connect(self.reject)
-        box = QVBoxLayout(self)
-        box.addLayout(form)
-        box.addWidget(self.fault)
-        box.addWidget(buttons)
+        self.passphrase.setPlaceholderText("8 or more characters")
+        self.out.setPlaceholderText("a new file whose name ends in .p12")
+        form, fields = _form(), (*self._lines[:-1], _row(self.out, ("Choose…", self._on_place)))
+        for title, line, field in zip(titles, self._lines, fields, strict=True):
+            line.textChanged.connect(self._on_typed)
+            form.addRow(title, field)
+        self.box.addLayout(form)
+        self.close_column()
+        self._on_typed()
 
-    def _on_make(self) -> None:
+    def _on_typed(self) -> None:
+        self.accept_button.setEnabled(all(line.text() for line in self._lines))
+
+    def _on_place(self) -> None:
+        name, _ = QFileDialog.getSaveFileName(self, "Where the identity goes", self.out.text(), IDENTITY)
+        if name:
+            self.out.setText(name)
+
+    def _make(self) -> None:
         from creditdesk.memo.identity import new_identity, write_private  # heavy, wanted late
 
         if self.passphrase.text() != self.again.text():
-            self.fault.setText("The two passphrases differ.")
-            return
-        try:
-            identity = new_identity(self.name.text(), self.passphrase.text(), now=datetime.now(UTC))
-            write_private(Path(self.out.text()), identity)
-        except UserError as error:
-            self.fault.setText("\n".join(error.faults))
-        else:
-            self.accept()
+            raise UserError("passphrase", "The two passphrases differ.")
+        identity = new_identity(self.name.text(), self.passphrase.text(), now=datetime.now(UTC))
+        write_private(Path(self.out.text()), identity)
+
+
+def _form() -> QFormLayout:
+    form = QFormLayout()
+    form.setHorizontalSpacing(18)
+    return form
 
 
 def _line(name: str) -> QLineEdit:

@@ -87,9 +87,20 @@ QPushButton[role="link"]:hover, QPushButton[role="link"]:focus { background: $se
 QPushButton[role="small"] { padding: 1px 9px; }
 QProgressBar { background: $band; border: 1px solid $rule; }
 QProgressBar::chunk { background: $accent; }
-QPushButton:disabled { color: $second_ink; background: $paper; }
-QLineEdit, QPlainTextEdit, QComboBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
-QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus { border-color: $accent; }
+QPushButton:disabled { color: $second_ink; background: $paper; border-color: $rule; }
+QLineEdit, QPlainTextEdit, QComboBox, QAbstractSpinBox { background: $sheet; border: 1px solid $rule; padding: 4px; }
+QLineEdit:focus, QPlainTextEdit:focus, QComboBox:focus, QAbstractSpinBox:focus { border-color: $accent; }
+QAbstractSpinBox { padding: 3px; }
+QAbstractSpinBox::up-button, QAbstractSpinBox::down-button { background: transparent; border: 0; width: 20px; }
+QAbstractSpinBox::up-arrow, QAbstractSpinBox::down-arrow { width: 0; height: 0; border-left: 4px solid $sheet;
+  border-right: 4px solid $sheet; }
+QAbstractSpinBox::up-arrow { border-bottom: 5px solid $second_ink; }
+QAbstractSpinBox::down-arrow { border-top: 5px solid $second_ink; }
+QCheckBox { spacing: 7px; padding: 2px 0; }
+QCheckBox::indicator { width: 7px; height: 7px; padding: 2px; border: 1px solid $second_ink; background: $sheet;
+  background-clip: content; }
+QCheckBox::indicator:checked { background: $accent; }
+QCheckBox::indicator:focus { border-color: $accent; }
 QLabel[role="fault"] { color: $breach; }
 QLineEdit[fault="true"], QComboBox[fault="true"] { border-color: $breach; }
 QLineEdit, QPlainTextEdit { placeholder-text-color: $second_ink; }
@@ -106,11 +117,14 @@ QTableView QLineEdit { border: 1.5px solid $accent; padding: 0 4px; }
 QHeaderView { background: $paper; }
 QHeaderView::section { background: $paper; border: 0; border-bottom: 1.5px solid $ink; padding: 6px 7px;
   font-weight: 600; }
+QTableWidget QHeaderView::section { padding: 6px 10px; }
 QTableCornerButton::section { background: $paper; border: 0; }
 QScrollArea { border: 0; background: $paper; }
 #pages { background: $band; }
 QSplitter::handle { background: $rule; }
 QSplitter::handle:hover { background: $accent; }
+QMessageBox #qt_msgbox_label { font-weight: 600; }
+QMessageBox #qt_msgbox_informativelabel { min-width: 420px; }
 QToolTip { background: $sheet; color: $ink; border: 1px solid $rule; padding: 4px; }
 QScrollBar:vertical { background: transparent; width: 11px; }
 QScrollBar:horizontal { background: transparent; height: 11px; }

@@ -3,6 +3,7 @@ from PySide6.QtWidgets import QDialog, QLabel
 from pytestqt.qtbot import QtBot
 
 import creditdesk
+from creditdesk.case.commands import SetText
 from creditdesk.desk.about import About, Keys, key_sections
 from creditdesk.desk.actions import placed_actions
 from creditdesk.desk.window import Window
@@ -19,8 +20,15 @@ def test_every_key_of_every_menu_stands_in_the_list(qtbot: QtBot, window: Window
     for placed in placed_actions(window.menuBar()):
         if not placed.action.shortcut().isEmpty():
             assert placed.action.shortcut().toString(QKeySequence.SequenceFormat.NativeText) in words
-    assert "F2, Enter, or typing" in words
+    assert "F2, or typing" in words
+    assert "Enter, Shift+Enter" in words
     assert "Alt+0" in words
+
+
+def test_undo_is_listed_without_the_edit_at_hand(window: Window) -> None:
+    window.session.do(SetText("request", "Another request"))
+    titles = dict(key_sections(placed_actions(window.menuBar())))["Edit"]
+    assert [title for _, title in titles] == ["Undo", "Redo"]
 
 
 def test_about_names_version_cautions_invented_data_and_where_it_was_tested(qtbot: QtBot, window: Window) -> None:
@@ -35,7 +43,7 @@ def test_about_names_version_cautions_invented_data_and_where_it_was_tested(qtbo
 
 
 def test_help_shows_both_and_lets_them_go(qtbot: QtBot, window: Window) -> None:
-    for show, kind in ((window._on_keys, Keys), (window._on_about, About)):
+    for show, kind in ((window.view.show_keys, Keys), (window.view.show_about, About)):
         show()
         dialog = window.findChild(kind)
         assert dialog is not None

@@ -1,15 +1,21 @@
+from collections.abc import Callable
 from datetime import UTC, date, datetime
 from pathlib import Path
 
 import pytest
-from PySide6.QtCore import QDate
-from PySide6.QtWidgets import QDialog, QFileDialog, QMessageBox
+from PySide6.QtCore import QDate, Qt
+from PySide6.QtWidgets import QAbstractSpinBox, QDialog, QFileDialog, QLineEdit, QMessageBox, QWidget
 from pytestqt.qtbot import QtBot
 
 from creditdesk.case.document import LegalForm
+from creditdesk.desk.about import About, Keys, key_sections
+from creditdesk.desk.actions import placed_actions
 from creditdesk.desk.app import make_application
-from creditdesk.desk.files import NewCase
-from creditdesk.desk.signdialogs import NewIdentity, SignDialog
+from creditdesk.desk.newcase import NewCase
+from creditdesk.desk.notes import NoteDialog
+from creditdesk.desk.perioddialog import PeriodDialog
+from creditdesk.desk.revert import RevertDialog
+from creditdesk.desk.signdialogs import CountersignDialog, NewIdentity, SignDialog
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
@@ -25,6 +31,60 @@ def identity(tmp_path: Path) -> Path:
     path = tmp_path / "officer.p12"
     write_private(path, new_identity("Test Preparer", PASSPHRASE, now=datetime.now(UTC)))
     return path
+
+
+DIALOGS: dict[str, Callable[[Window], QDialog]] = {
+    "sign": lambda window: SignDialog(window, "memo.pdf"),
+    "countersign": lambda window: CountersignDialog(window, lambda _path, _told: None),
+    "identity": NewIdentity,
+    "note": lambda window: NoteDialog(window, "Cash 2025", "from the bank", lambda _note: None),
+    "period": lambda window: PeriodDialog(window, "2025", window.session.case.periods[-1], lambda _period: None),
+    "revert": lambda window: RevertDialog(window, window.session.trail()),
+    "keys": lambda window: Keys(window, key_sections(placed_actions(window.menuBar()))),
+    "about": lambda window: About(window, window.session.standing),
+    "new case": NewCase,
+}
+
+
+@pytest.mark.parametrize("name", DIALOGS)
+def test_escape_closes_a_dialog_from_wherever_the_keyboard_is(qtbot: QtBot, window: Window, name: str) -> None:
+    dialog = DIALOGS[name](window)
+    qtbot.addWidget(dialog)
+    dialog.show()
+    reached = Qt.FocusPolicy.TabFocus
+    stops = [stop for stop in dialog.findChildren(QWidget) if stop.isVisible() and stop.focusPolicy() & reached]
+    assert stops
+    for stop in stops:
+        dialog.show()
+        stop.setFocus()
+        qtbot.keyClick(stop, Qt.Key.Key_Escape)
+        assert not dialog.isVisible(), stop
+        assert dialog.result() == QDialog.DialogCode.Rejected
+
+
+def test_a_signature_and_an_identity_are_offered_once_everything_is_there(qtbot: QtBot, window: Window) -> None:
+    for dialog in (SignDialog(window, "memo.pdf"), NewIdentity(window)):
+        qtbot.addWidget(dialog)
+        assert dialog.accept_button.isDefault()
+        lines = [line for line in dialog.findChildren(QLineEdit) if line.isEnabled()]
+        for line in lines:
+            line.setText("")
+        for line in lines:
+            assert not dialog.accept_button.isEnabled()
+            line.setText("something")
+        assert dialog.accept_button.isEnabled()
+
+
+def test_the_text_of_a_spin_box_stands_where_that_of_other_fields_does(qtbot: QtBot, window: Window) -> None:
+    dialog = DIALOGS["period"](window)
+    qtbot.addWidget(dialog)
+    dialog.show()
+    boxes = dialog.findChildren(QAbstractSpinBox)
+    assert len(boxes) == 2
+    for box in boxes:
+        line = box.findChild(QLineEdit)
+        assert isinstance(line, QLineEdit)
+        assert line.textMargins().left() >= 4
 
 
 def test_a_new_case_has_the_periods_asked_for(qtbot: QtBot) -> None:
@@ -61,11 +121,13 @@ def test_a_new_identity_is_written_for_its_owner_alone(qtbot: QtBot, tmp_path: P
     dialog.name.setText("A. Officer")
     dialog.passphrase.setText(PASSPHRASE)
     dialog.out.setText(str(path))
-    dialog._on_make()
+    assert not dialog.accept_button.isEnabled()
+    dialog.again.setText("another horse")
+    dialog.accept_button.click()
     assert "differ" in dialog.fault.text()
     assert not path.exists()
     dialog.again.setText(PASSPHRASE)
-    dialog._on_make()
+    dialog.accept_button.click()
     assert dialog.result() == QDialog.DialogCode.Accepted
     assert load_identity(path, PASSPHRASE, now=datetime.now(UTC)).name == "A. Officer"
 
@@ -76,11 +138,11 @@ def test_the_memo_is_signed_through_the_dialog_and_verifies(
     out = tmp_path / "memo.pdf"
 
     def fill(dialog: SignDialog) -> int:
-        assert not dialog.sign.isEnabled()
+        assert not dialog.accept_button.isEnabled()
         dialog.identity.setText(str(identity))
         dialog.passphrase.setText(PASSPHRASE)
         dialog.out.setText(str(out))
-        assert dialog.sign.isEnabled()
+        assert dialog.accept_button.isEnabled()
         return QDialog.DialogCode.Accepted
 
     monkeypatch.setattr(SignDialog, "exec", fill)

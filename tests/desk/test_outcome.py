@@ -65,7 +65,7 @@ def _fill_countersigning(
         dialog.conditions.setPlainText(conditions)
         dialog.identity.setText(str(approver))
         dialog.passphrase.setText(PASSPHRASE)
-        assert dialog.sign.isEnabled(), dialog.fault.text()
+        assert dialog.accept_button.isEnabled(), dialog.fault.text()
         return QDialog.DialogCode.Accepted
 
     monkeypatch.setattr(CountersignDialog, "exec", fill)
@@ -203,7 +203,7 @@ def test_conditions_must_fit_the_decision(qtbot: QtBot, window: Window) -> None:
     dialog = CountersignDialog(window, window.issuer._look)
     for line in (dialog.memo, dialog.identity, dialog.passphrase, dialog.out):
         line.setText("x")
-    assert not dialog.sign.isEnabled()  # no decision yet
+    assert not dialog.accept_button.isEnabled()  # no decision yet
     for decision, conditions, possible, title in (
         ("Approved", "", True, "Conditions"),
         ("Approved", "Some.", False, "Conditions"),
@@ -214,7 +214,7 @@ def test_conditions_must_fit_the_decision(qtbot: QtBot, window: Window) -> None:
     ):
         dialog.decision.setCurrentIndex(dialog.decision.findText(decision))
         dialog.conditions.setPlainText(conditions)
-        assert dialog.sign.isEnabled() is possible, (decision, conditions)
+        assert dialog.accept_button.isEnabled() is possible, (decision, conditions)
         assert bool(dialog.fault.text()) is not possible
         assert dialog.conditions.accessibleName() == title
     dialog.deleteLater()
