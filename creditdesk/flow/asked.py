@@ -66,7 +66,7 @@ def read_moves(ground: Ground, moves: Moves, directions: Directions) -> Asked:
     """Read all moves against the ink, at once: their order makes no difference."""
     plan = ground.plan
     ours = {target: move for target, move in moves.items() if target in plan.targets}
-    aimed = {target: slope for target, slope in directions.items() if target in plan.targets}
+    aimed = {target: slope for target, slope in directions.items() if target in plan.targets and slope.any()}
     still = {target: Move(MoveKind.BY, 0.0) for target in aimed if target not in ours}
     refused = _refused(ground, ours, still)
     jets = {key: _jet(ground, key, ours[key], aimed.get(key)) for key in ours if key not in refused}
@@ -119,9 +119,17 @@ def _refused(ground: Ground, moves: Moves, still: Moves) -> dict[str, str]:
     everything = {**still, **moves}
     for target in sorted(everything, key=lambda key: key == cash):
         accepted = {key: move for key, move in moves.items() if key not in refused}
-        if reason := next(_reasons(ground, target, everything[target], accepted), ""):
-            refused[target] = reason
+        reasons = [*_reasons(ground, target, everything[target], accepted), *_held(ground, target, accepted)]
+        if reasons:
+            refused[target] = reasons[0]
     return refused
+
+
+def _held(ground: Ground, target: str, marked: Moves) -> Iterator[str]:
+    """Say of a balance line that is not marked which marked section total it balances."""
+    for line in _section_totals(ground):
+        if target not in marked and line in marked and ground.plan.counters[line].counter == target:
+            yield f"{ground.label(target)} takes what the mark on {ground.label(line).lower()} leaves."
 
 
 def _jet(ground: Ground, target: str, move: Move, slope: FloatArray | None) -> Jet:

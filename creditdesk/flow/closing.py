@@ -82,7 +82,7 @@ def _terms(ground: Ground, asked: Asked, entries: Entries) -> Terms:
     roles, share = ground.plan.book.roles, ground.share
     weight = 0.0 if ground.assumptions.values["interest_on"] == OPENING else 0.5
     rate, rate_change = rate_of_new_debt(ground), asked.driver(INTEREST_RATE) / 10_000.0
-    grown = weight * total(entries.moved[line] for line in entries.moved if line in ground.plan.debt)
+    grown = weight * weighted(entries.moved, ground.plan.debt)
     base = (interest_base(ground) if ground.known(roles.debt) else 0.0) + grown
     interest, per_drawn = share * (rate * grown + rate_change * base), share * weight * (rate + rate_change)
     if roles.finance_costs in asked.levels:
@@ -159,12 +159,11 @@ def _cash_by_flows(ground: Ground, asked: Asked, entries: Entries, profit: _Prof
 
 def section_change(ground: Ground, entries: Entries, section: Section) -> Jet:
     """Return the cash that balance lines of a section free, without retained earnings and what is no cash."""
-    kept = ground.plan.book.roles.retained_earnings
-    lines = [line for line in entries.moved if line in ground.plan.links and line != kept and line in ground.plan.funds]
+    plan, kept = ground.plan, ground.plan.book.roles.retained_earnings
     return total(
-        (entries.moved[line] - off_cash(entries, line)) * ground.plan.funds[line]
-        for line in lines
-        if ground.plan.links[line].section is section
+        (entries.moved[line] - off_cash(entries, line)) * funds
+        for line, funds in plan.funds.items()
+        if line in entries.moved and line in plan.links and line != kept and plan.links[line].section is section
     )
 
 

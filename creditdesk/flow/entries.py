@@ -30,8 +30,8 @@ class Entries:
 
 
 def weighted(amounts: Mapping[str, Jet], weights: Mapping[str, float]) -> Jet:
-    """Add up amounts times their weights; what has no weight does not count."""
-    return total(amounts[line] * weights[line] for line in amounts if line in weights)
+    """Add up amounts times their weights, in the order of the weights; what has no weight does not count."""
+    return total(amounts[line] * weight for line, weight in weights.items() if line in amounts)
 
 
 def total(amounts: Iterable[Jet]) -> Jet:

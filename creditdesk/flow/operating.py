@@ -55,21 +55,25 @@ def _move_other_income(ground: Ground, asked: Asked, entries: Entries) -> None:
 
 
 def _move_paid(ground: Ground, asked: Asked, entries: Entries) -> None:
-    """Take marks on cash flow lines; a dividend declared is paid, and one paid was declared."""
+    """Take marks on cash flow lines; a dividend declared is paid, and one paid was declared.
+
+    Along a direction that moves a line that is not marked, it moves by that beyond what it follows.
+    """
     roles = ground.plan.book.roles
     for line in sorted(ground.plan.paid):
-        if line in asked.levels:
-            entries.moved[line] = asked.levels[line] - ground.ink[line]
-    pair = (roles.dividends_paid, roles.dividends_declared)
-    for one, other in (pair, pair[::-1]):
-        if one in asked.levels and other not in asked.levels and ground.known(other):
-            entries.moved[other] = entries.moved[one]
+        if asked.moves(line):
+            entries.moved[line] = asked.settled(ground, line, NIL)
+    paid, declared = (entries.change(line) for line in (roles.dividends_paid, roles.dividends_declared))
+    if roles.dividends_paid not in asked.levels and asked.moves(roles.dividends_declared):
+        entries.moved[roles.dividends_paid] = paid + declared
+    if roles.dividends_declared not in asked.levels and asked.moves(roles.dividends_paid):
+        entries.moved[roles.dividends_declared] = declared + paid
 
 
 def _move_balances(ground: Ground, asked: Asked, entries: Entries) -> None:
     """Move balance lines by their marks, else by what they follow and by what is booked against them."""
     _book_off_cash(ground, entries)
-    _book_marks(ground, entries)
+    _book_marks(ground, asked, entries)
     followers = {follower.line: follower for follower in ground.plan.book.followers}
     solved = (ground.plan.book.roles.retained_earnings,)
     touched = {*followers, *asked.levels, *asked.shifts, *entries.off_cash, *entries.on_currency, *entries.by_mark}
@@ -79,10 +83,8 @@ def _move_balances(ground: Ground, asked: Asked, entries: Entries) -> None:
         parts = [_following(ground, asked, entries, followers[line])] if line in followers else []
         booked = (entries.off_cash, entries.on_currency, entries.by_mark)
         parts += [amounts[line] for amounts in booked if line in amounts]
-        if line not in asked.days:
-            entries.moved[line] = asked.settled(ground, line, total(parts))
-        else:
-            entries.moved[line] = parts[0]
+        follows = parts[0] if line in asked.days else total(parts)
+        entries.moved[line] = asked.settled(ground, line, follows)
 
 
 def _book_off_cash(ground: Ground, entries: Entries) -> None:
@@ -92,12 +94,14 @@ def _book_off_cash(ground: Ground, entries: Entries) -> None:
             _put(entries.off_cash, entry.counter, entries.moved[line] * entry.sign)
 
 
-def _book_marks(ground: Ground, entries: Entries) -> None:
-    """Book marked cash flow lines against their balance lines, save those that wait for interest, tax and balancing."""
+def _book_marks(ground: Ground, asked: Asked, entries: Entries) -> None:
+    """Book moved cash flow lines against their balance lines, save those that wait for interest, tax and balancing."""
     roles = ground.plan.book.roles
-    late = (roles.interest_paid, roles.tax_paid, roles.operating_cash_flow, roles.financing_cash_flow)
+    late = {roles.interest_paid, roles.tax_paid, roles.operating_cash_flow, roles.investing_cash_flow}
+    if roles.financing_cash_flow in asked.levels:
+        late.add(roles.financing_cash_flow)
     for line, entry in ground.plan.counters.items():
-        if line in entries.moved and line not in (*late, roles.investing_cash_flow):
+        if line in entries.moved and line not in late:
             booked = entries.on_currency if line == roles.fx_on_cash else entries.by_mark
             _put(booked, entry.counter, entries.moved[line] * entry.sign)
 

@@ -17,8 +17,8 @@ class FlowPlan:
 
     ``lines``: lines of the layout. ``funds``: by balance line but cash, the cash that one unit more of it frees: -1 for
     assets, +1 for liabilities and equity. ``before_tax``, ``net``: effect of one unit of an income line on profit.
-    ``debt``: interest-bearing lines. ``unsigned``: lines that are never below nil by nature. ``paid``: cash flow lines
-    that a mark books against a balance line, dividends included.
+    ``debt``: interest-bearing lines, 1.0 each. ``unsigned``: lines that are never below nil by nature. ``paid``: cash
+    flow lines that a mark books against a balance line, dividends included.
     """
 
     book: FlowBook
@@ -29,7 +29,7 @@ class FlowPlan:
     funds: Mapping[str, float]
     before_tax: Mapping[str, float]
     net: Mapping[str, float]
-    debt: frozenset[str]
+    debt: Mapping[str, float]
     unsigned: frozenset[str]
     links: Mapping[str, CashLink]
     counters: Mapping[str, Counter]
@@ -52,7 +52,7 @@ def plan_flow(book: FlowBook, chart: Chart, layout: Presentation) -> FlowPlan:
         funds=_funds(effects, roles.cash),
         before_tax=effects[roles.profit_before_tax],
         net=net,
-        debt=frozenset(effects[roles.debt]),
+        debt=effects[roles.debt],
         unsigned=frozenset(line.key for line in chart.lines if not line.signed),
         links={line: link for link in book.cash_links for line in link.lines},
         counters={counter.line: counter for counter in book.counters},

@@ -75,13 +75,13 @@ def run_flow(
 
     Amounts are numbers or arrays of one length; draws equal single points to the bit. ``overrides``: assumptions that
     differ from the book's. ``directions``: by target, how it moves along each of K directions per unit of the
-    direction, in the target's own unit (case's unit, days, driver's unit), shape (K,). Along a direction that moves a
-    target, the target moves by just that, as if marked where it stands; slopes are right derivatives. Raises UserError
-    ``assumptions``.
+    direction, in the target's own unit (case's unit, days, driver's unit), shape (K,); slopes are right derivatives.
+    Along a direction that moves a target, the target moves by just that, as if marked where it stands; a line of the
+    cash flow statement that is not marked moves by that beyond what it follows. Raises UserError ``assumptions``.
     """
     ground = lay_ground(book, ink, period, overrides)
     aimed = {target: np.asarray(slope, dtype=np.float64) for target, slope in (directions or {}).items()}
-    own = _structural(ground)
+    own = _structural(ground, moves)
     smooth = {target: slope for target, slope in aimed.items() if target in moves or target not in own}
     first = _run(ground, moves, smooth)
     turned = {target: slope for target, slope in aimed.items() if target not in smooth}
@@ -122,7 +122,8 @@ def _add_up(ground: Ground, asked: Asked, entries: Entries) -> tuple[dict[str, J
     for row in ground.plan.statements.sums:
         key = keys[row.row]
         parts = [changes[keys[part]] * sign for part, sign in row.parts if keys[part] in changes]
-        if parts and key in ground.plan.lines and asked.moves(key) and ground.known(key):
+        held = key in asked.levels or (key in asked.shifts and key not in ground.plan.paid)
+        if parts and held and ground.known(key):
             follows = total(parts)
             changes[key] = asked.settled(ground, key, follows)
             own[key] = changes[key] - follows
@@ -140,11 +141,17 @@ def _moves(jet: Jet) -> bool:
     return bool(np.count_nonzero(jet.value)) or (jet.slope is not None and bool(np.count_nonzero(jet.slope)))
 
 
-def _structural(ground: Ground) -> frozenset[str]:
-    """Name the targets whose mark changes how the year closes: cash and what balances it, interest, tax, paid lines."""
+def _structural(ground: Ground, moves: Moves) -> frozenset[str]:
+    """Name the targets whose mark changes how the year closes: cash and what balances it, interest, tax, and the like.
+
+    A balance line on which a marked payment leaves something owed is one of them as well.
+    """
     roles = ground.plan.book.roles
-    closing = (roles.cash, roles.finance_costs, roles.income_tax, roles.retained_earnings)
-    return ground.plan.paid.union(closing, (str(ground.assumptions.values["balancing_debt"]),)) & ground.plan.lines
+    closing = {roles.cash, roles.finance_costs, roles.income_tax, roles.retained_earnings}
+    closing |= {str(ground.assumptions.values["balancing_debt"]), roles.operating_cash_flow, roles.investing_cash_flow}
+    owing = {roles.interest_paid, roles.tax_paid}
+    owed = {ground.plan.counters[line].counter for line in owing if line in moves and line in ground.plan.counters}
+    return ground.plan.lines & (closing | owing | owed)
 
 
 def _with_turns(ground: Ground, moves: Moves, aimed: Directions, first: _Pass, turned: Directions) -> _Pass:
