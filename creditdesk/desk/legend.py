@@ -8,7 +8,7 @@ from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.desk.tables.cells import Look
 from creditdesk.desk.tables.marks import DIFFERS, NOTED, paint_blank, paint_sum_line
 
-_SAMPLE, _GAP, _BROKEN = 17, 10, 15
+_SAMPLE, _GAP, _BROKEN = 17, 10, 9
 _UNKNOWN = "n.d."
 _SMALLER = 0.86
 ITEMS = (
@@ -71,7 +71,7 @@ class Legend(QWidget):
             paint_blank(painter, QPointF(centre.x() + 2, centre.y()), Look.ASSUMED_NIL, palette)
             return
         if sample == "broken":
-            left = QPointF(area.left(), round(centre.y()))
+            left = QPointF(area.right() - _BROKEN, round(centre.y()))
             paint_sum_line(painter, left, left + QPointF(_BROKEN, 0), Look.UNREACHED, palette)
             return
         own = QFont(font)

@@ -339,6 +339,7 @@ def test_an_editor_covers_its_cell_and_grows_to_the_left_with_a_long_sum(hands: 
     assert editor.geometry() == cell
     hands.qtbot.keyClicks(editor, "00+340-15+1200+340-15")
     assert editor.geometry().right() == cell.right()
+    assert editor.width() % cell.width() == 0
     assert editor.width() > editor.fontMetrics().horizontalAdvance(editor.text()) + 16
     for _ in range(21):
         hands.qtbot.keyClick(editor, Key.Key_Backspace)

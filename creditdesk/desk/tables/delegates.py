@@ -79,7 +79,8 @@ class FiguresDelegate(QStyledItemDelegate):
     def _widen(self, editor: QLineEdit) -> None:
         cell = self._covered
         needed = editor.fontMetrics().horizontalAdvance(editor.text()) + _AROUND_TEXT
-        over = min(max(needed - cell.width(), 0), max(cell.left(), 0))
+        columns = max(-(-needed // max(cell.width(), 1)) - 1, 0)  # whole ones: no amount is covered by half
+        over = min(columns * cell.width(), max(cell.left(), 0))
         editor.setGeometry(cell.adjusted(-over, 0, 0, 0))
 
     def setModelData(self, editor: QWidget, model: object, index: Index) -> None:

@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 
 _LABEL, _PERIOD = (220, 420), (58, 92, 170)
-_CHANGE, _TREND = (66, 84), (52, 74, 180)
+_CHANGE, _TREND = (66, 84), (52, 74, 120)
 _MARK = 24
 _BESIDE_AMOUNT, _BESIDE_HEAD, _BESIDE_LABEL, _BESIDE_CHANGE = 30, 20, 22, 18
 
