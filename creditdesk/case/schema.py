@@ -71,9 +71,11 @@ def _first_bytes(path: Path) -> bytes:
 def connect(path: Path, mode: str) -> sqlite3.Connection:
     """Open a database with ``mode`` ro or rw, every transaction begun and ended by hand.
 
-    Nothing in the file can make SQLite call functions, and pages are checked as they are read.
+    Nothing in the file can make SQLite call functions, and pages are checked as they are read. A connection may be
+    opened in one thread and handed over to another, which has it to itself from then on.
     """
-    connection = sqlite3.connect(f"{path.as_uri()}?mode={mode}", uri=True, isolation_level=None)
+    address = f"{path.as_uri()}?mode={mode}"
+    connection = sqlite3.connect(address, uri=True, isolation_level=None, check_same_thread=False)
     try:
         connection.execute("PRAGMA trusted_schema = OFF")
         connection.execute("PRAGMA cell_size_check = ON")

@@ -10,15 +10,12 @@ from creditdesk.base.errors import UserError
 def open_window(options: Namespace) -> int:
     """Open the window."""
     _refuse_without_display()
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")  # a case has small matrices, and idle threads take time to make
     from creditdesk.desk.fetching import fetching  # needs no Qt, but belongs to it
 
     with fetching():
         from creditdesk.desk.app import run  # the only command but one that needs Qt
-        from creditdesk.house.load import load_house_book
-        from creditdesk.house.shipped import resources_folder
-
-        house = load_house_book(options.housebook or resources_folder() / "housebook")
-    return run(options.case, house)
+    return run(options.case, options.housebook)
 
 
 def _refuse_without_display() -> None:

@@ -1,33 +1,33 @@
 """The application: one window per open case, from the first paint to the last close."""
 
-import getpass
-import os
-from datetime import UTC, datetime
 from pathlib import Path
+from typing import TYPE_CHECKING
 
-import platformdirs
-from PySide6.QtCore import QObject, QTimer, Signal
+from PySide6.QtCore import QCoreApplication, QEventLoop, QObject, QTimer, Signal
 from PySide6.QtGui import QFontDatabase
-from PySide6.QtWidgets import QApplication, QMessageBox
+from PySide6.QtWidgets import QApplication, QMessageBox, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
-from creditdesk.case.convert import check_case, load_any
-from creditdesk.case.document import Case
-from creditdesk.case.lead import with_lead_model
-from creditdesk.case.store import CaseFile
-from creditdesk.case.trail import utc_now
 from creditdesk.desk import crash, theme
-from creditdesk.desk.fetching import spare_what_is_loaded
+from creditdesk.desk.fetching import fetching, spare_what_is_loaded
 from creditdesk.desk.files import show_faults
-from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import Window
-from creditdesk.house.book import HouseBook
+from creditdesk.desk.worker import Jobs
+from creditdesk.house.shipped import resources_folder
 
-_BREATH = 10
-"""Milliseconds between two parts of long work on the main thread, in which whatever else waits is done."""
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from creditdesk.case.document import Case
+    from creditdesk.desk.session import Session
+    from creditdesk.house.book import HouseBook
+
+
+_BREATH_MILLISECONDS = 50
+"""What the first window is given to be painted before anything else is begun."""
 
 
 def make_application() -> QApplication:
@@ -43,67 +43,128 @@ def make_application() -> QApplication:
 
 
 class Desk(QObject):
-    """Keep the open windows; the last one closed ends the program."""
+    """Keep the open windows; the last one closed ends the program.
+
+    ``fault``: why nothing of what was asked for could be shown, once the program ends for it.
+    """
 
     crashed = Signal(Path)
 
-    def __init__(self, house: HouseBook, palette: Palette | None = None) -> None:
+    def __init__(self, housebook: Path | None = None, palette: Palette | None = None) -> None:
         super().__init__()
-        self.house = house
         self.windows: list[Window] = []
+        self.fault: BaseException | None = None
+        self._housebook = housebook or resources_folder() / "housebook"
+        self._house: HouseBook | None = None
         self._palette = palette
+        self._jobs = Jobs(self)
         self._start: Start | None = None
         self.crashed.connect(self._on_crash)
 
-    def open_path(self, path: Path) -> Window | None:
-        """Open a case file, or an exchange file as a working copy; faults are shown and nothing is opened."""
-        try:
-            return self.show_session(open_session(path, self.house))
-        except UserError as error:
-            show_faults(None, f"{path.name} was not opened", error)
-            return None
+    def open_path(self, path: Path) -> Window:
+        """Open a case file, or an exchange file as a working copy.
 
-    def open_soon(self, path: Path) -> None:
-        """Open a file beside open windows: read it first, make its window in a later turn of the event loop."""
+        The window is there at once; the case is read when it has been painted. Faults are shown over it, and it goes.
+        """
 
-        def read() -> None:
-            try:
-                session = open_session(path, self.house)
-            except UserError as error:
-                show_faults(None, f"{path.name} was not opened", error)
-                return
-            QTimer.singleShot(_BREATH, self, lambda: self.show_session(session))
+        def read() -> "Session":
+            with fetching():
+                from creditdesk.desk.opening import open_session  # numpy and the core come with it
 
-        QTimer.singleShot(_BREATH, self, read)
+            return open_session(path, self._house_book())
 
-    def new_path(self, path: Path, case: Case) -> Window | None:
-        """Make a new case file and open it."""
-        try:
-            return self.show_session(_recorded_session(path, case, self.house))
-        except UserError as error:
-            show_faults(None, f"{path.name} was not made", error)
-            return None
+        return self._open(path, read, f"{path.name} was not opened")
 
-    def show_session(self, session: Session) -> Window:
+    def new_path(self, path: Path, case: "Case") -> Window:
+        """Make a new case file and open it, in the same way."""
+
+        def make() -> "Session":
+            with fetching():
+                from creditdesk.desk.opening import new_session  # numpy and the core come with it
+
+            return new_session(path, case, self._house_book())
+
+        return self._open(path, make, f"{path.name} was not made")
+
+    def show_session(self, session: "Session") -> Window:
         """Show a session in a window of its own."""
-        window = Window(session, self._palette)
-        window.open_asked.connect(self.open_soon)
+        window = self._show_window(session.path.name)
+        window.show_session(session)
+        return window
+
+    def show_start(self) -> None:
+        """Ask which case to open, where none was named; meanwhile all that a case needs is fetched."""
+        self._start = start = Start()
+        start.open_asked.connect(self.open_path)
+        start.new_asked.connect(self.new_path)
+        start.show()
+
+        def failed(error: BaseException) -> None:
+            self._end_for(error, start, "The house book was not read")
+
+        QTimer.singleShot(_BREATH_MILLISECONDS, self, lambda: self._jobs.start(self._house_book, _done, failed))
+
+    def finish(self) -> None:
+        """Wait for what is still being read: its window was closed, and its file is to be let go."""
+        while self._jobs.busy:
+            wait = QEventLoop.ProcessEventsFlag.WaitForMoreEvents
+            QCoreApplication.processEvents(QEventLoop.ProcessEventsFlag.AllEvents | wait)
+
+    def _house_book(self) -> "HouseBook":
+        """Return the house book, read off the main thread when it is first needed. Raises UserError."""
+        with fetching():
+            import creditdesk.desk.opening  # noqa: F401  what comes next, while a person chooses
+            from creditdesk.house.load import load_house_book
+
+        if self._house is None:
+            self._house = load_house_book(self._housebook)
+        return self._house
+
+    def _open(self, path: Path, read: "Callable[[], Session]", fault_title: str) -> Window:
+        """Show a window and fill it with the session that ``read`` returns off the main thread."""
+        window = self._show_window(path.name)
+
+        def done(session: "Session") -> None:
+            if window not in self.windows:  # closed meanwhile
+                session.close()
+                return
+            window.show_session(session)
+            self._close_start()
+
+        def failed(error: BaseException) -> None:
+            if window in self.windows:
+                self._end_for(error, window, fault_title)
+
+        window.painted.connect(lambda: self._jobs.start(read, done, failed))
+        return window
+
+    def _end_for(self, error: BaseException, where: QWidget, title: str) -> None:
+        """Say why what ``where`` was waiting for cannot be shown, and close it; with nothing else open, that is all."""
+        if isinstance(error, UserError):
+            show_faults(where, title, error)
+        others = any(window is not where for window in (*self.windows, self._start) if window is not None)
+        self.fault = None if others else error
+        self._close_start() if where is self._start else where.close()
+        if others and not isinstance(error, UserError):
+            raise error
+
+    def _show_window(self, name: str) -> Window:
+        window = Window(self._palette)
+        window.show_opening(name)
+        window.open_asked.connect(self.open_path)
         window.new_asked.connect(self.new_path)
         window.theme_chosen.connect(self._on_theme_chosen)
         window.closed.connect(self._on_closed)
         self.windows.append(window)
         window.restore_shape()
         window.show()
-        if self._start is not None:
-            self._start.close()
         return window
 
-    def show_start(self) -> None:
-        """Ask which case to open, where none was named."""
-        self._start = Start()
-        self._start.open_asked.connect(self.open_path)
-        self._start.new_asked.connect(self.new_path)
-        self._start.show()
+    def _close_start(self) -> None:
+        if self._start is not None:
+            self._start.close()
+            self._start.deleteLater()
+            self._start = None
 
     def _on_theme_chosen(self, where: Window) -> None:
         for window in self.windows:
@@ -122,45 +183,25 @@ class Desk(QObject):
         self._box = box
 
 
-def run(path: Path | None, house: HouseBook) -> int:
-    """Open the window on ``path``, or ask what to open; return the exit code."""
+def run(path: Path | None, housebook: Path | None = None) -> int:
+    """Open the window on ``path``, or ask what to open; return the exit code.
+
+    Raises what kept it from being shown, after a person has been told.
+    """
     application = make_application()
-    desk = Desk(house)
+    desk = Desk(housebook)
     crash.install(desk.crashed.emit)
-    spare_what_is_loaded()
     if path is None:
         desk.show_start()
-    elif desk.open_path(path) is None:
-        return 3
-    return application.exec()
+    else:
+        desk.open_path(path)
+    spare_what_is_loaded()
+    code = application.exec()
+    desk.finish()
+    if desk.fault is not None:
+        raise desk.fault
+    return code
 
 
-def open_session(path: Path, house: HouseBook) -> Session:
-    """Return a session on a case file, or on a working copy of an exchange file. Raises UserError."""
-    if path.suffix != ".deskcase":
-        case = load_any(path, house.chart)
-        return _recorded_session(_draft_path(path), case, with_lead_model(house, case, path.parent))
-    file = CaseFile.open(path, actor=getpass.getuser())
-    return _session(file, house, path)
-
-
-def _recorded_session(path: Path, case: Case, house: HouseBook) -> Session:
-    return _session(CaseFile.create(path, case, actor=getpass.getuser(), clock=utc_now), house, path)
-
-
-def _session(file: CaseFile, house: HouseBook, path: Path) -> Session:
-    """Return a session on an open case file; where there can be none, the file is let go again."""
-    try:
-        check_case(file.case, house.chart, file=str(path))
-        return Session(with_lead_model(house, file.case, path.parent), file.case, path, file)
-    except BaseException:
-        file.close()
-        raise
-
-
-def _draft_path(source: Path) -> Path:
-    """Return a new file in the user's own drafts folder, named after the exchange file and the moment."""
-    folder = Path(os.environ.get("CREDITDESK_DRAFTS") or platformdirs.user_data_path("creditdesk", False) / "drafts")
-    folder.mkdir(parents=True, exist_ok=True)
-    stem = source.name.removesuffix(".case.toml")
-    return folder / f"{stem}-{datetime.now(UTC):%Y%m%d-%H%M%S-%f}.deskcase"
+def _done(_house: object) -> None:
+    """Have nothing more to do."""

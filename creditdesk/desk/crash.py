@@ -1,21 +1,20 @@
 """What happens when our own code fails: a report on disk, a plain word to the user, the case safe in its file."""
 
-import platform
 import sys
-import tempfile
-import traceback
 from collections.abc import Callable
 from datetime import UTC, datetime
 from pathlib import Path
 from types import TracebackType
-
-import platformdirs
 
 import creditdesk
 
 
 def reports_folder() -> Path:
     """Return the folder for crash reports, made if need be; a temporary one where the user's cannot be written."""
+    import tempfile  # all of this is imported when it is too late for speed
+
+    import platformdirs
+
     folder = Path(platformdirs.user_log_dir("creditdesk", appauthor=False))
     try:
         folder.mkdir(parents=True, exist_ok=True)
@@ -26,6 +25,9 @@ def reports_folder() -> Path:
 
 def write_report(error: BaseException) -> Path:
     """Write what failed and where, without any figure of the case; return the report's path."""
+    import platform
+    import traceback
+
     now = datetime.now(UTC)
     lines = [
         f"creditdesk {creditdesk.__version__}, {platform.platform()}, Python {platform.python_version()}",

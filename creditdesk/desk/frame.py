@@ -1,11 +1,22 @@
-"""The frame of the window: the header that names the obligor, and the names of the sheets."""
+"""The frame of the window: names of the sheets, the header that names the obligor, places for what is to come.
+
+All of it needs Qt alone, so that it can be painted before anything of the case is known.
+"""
 
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import QSize, Qt, Signal
 from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
 
+if TYPE_CHECKING:
+    from creditdesk.desk.headline import Headline
+
+SHEETS = OBLIGOR, FIGURES, RATIOS, MEMO = "Obligor", "Figures", "Ratios", "Memo"
+STANDING = "Standing"
 FIND_KEY, WIDE_KEY = "Ctrl+K", "Alt+0"
+STANDING_SIZE, STANDING_NARROWEST = QSize(490, 700), 400
+"""The size the Standing asks for, at which its charts read well, and the least width it takes."""
 
 
 def sheet_key(number: int) -> str:
@@ -77,10 +88,40 @@ class Header(QWidget):
         column.addWidget(self.notice)
         column.addLayout(row)
 
-    def show_notice(self, text: str) -> None:
-        """Say above everything else what limits the work; "" takes the line away."""
-        self.notice.show_text(text)
-        self.notice.setVisible(bool(text))
+    def show_headline(self, obligor: str, headline: "Headline") -> None:
+        """Name the obligor, and say what is known of the case; what limits the work stands above everything else."""
+        self.obligor.show_text(obligor)
+        self.description.show_text(headline.description)
+        self.state.setText(headline.state)
+        self.warning.setText(headline.warning)
+        self.notice.show_text(headline.notice)
+        self.notice.setVisible(bool(headline.notice))
+
+
+class SheetPlace(QWidget):
+    """Stand where a sheet will be, and say in one quiet line what is waited for."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.words = label("second", wrap=True)
+        box = QVBoxLayout(self)
+        box.setContentsMargins(22, 18, 22, 18)
+        box.addWidget(self.words)
+        box.addStretch(1)
+
+
+class StandingPlace(QWidget):
+    """Stand, empty, where the Standing will be."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.setObjectName("standing")
+        self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
+        self.setMinimumWidth(STANDING_NARROWEST)
+
+    def sizeHint(self) -> QSize:
+        """Ask for the room of what will stand here."""
+        return STANDING_SIZE
 
 
 class SheetBar(QWidget):

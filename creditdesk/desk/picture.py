@@ -10,8 +10,9 @@ from creditdesk.base.palette import Palette
 from creditdesk.case.convert import load_any
 from creditdesk.case.lead import with_lead_model
 from creditdesk.desk.app import make_application
+from creditdesk.desk.frame import SHEETS, STANDING
 from creditdesk.desk.session import Session
-from creditdesk.desk.window import SHEETS, STANDING, Window
+from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
 
 _PATIENCE_MILLISECONDS = 60_000
@@ -29,7 +30,8 @@ def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look:
     palette, width, height = look
     application = make_application()
     case = load_any(case_path, house.chart)
-    window = Window(Session(with_lead_model(house, case, case_path.parent), case, case_path), palette)
+    window = Window(palette)
+    window.show_session(Session(with_lead_model(house, case, case_path.parent), case, case_path))
     window.resize(width, height)
     window.show_named(names[sheet.lower()])
     window.show()

@@ -1,71 +1,99 @@
 """The sheets one behind the other: each made when it is first needed, those out of sight brought up to date later."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
+from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QTimer, Signal
 from PySide6.QtWidgets import QStackedWidget, QWidget
 
-from creditdesk.case.document import Case
-from creditdesk.case.standing import Standing
-from creditdesk.desk.sheets.base import Sheet
+from creditdesk.desk.frame import SheetPlace
+
+if TYPE_CHECKING:
+    from creditdesk.case.document import Case
+    from creditdesk.case.standing import Standing
+    from creditdesk.desk.sheets.base import Sheet
 
 _BREATH_MILLISECONDS = 15
 
 
 class SheetStack(QStackedWidget):
-    """Hold the sheets by name. ``made``: a sheet that was made just now and stands in its place.
+    """Hold the sheets by name, once it is known how to make them; until then their places.
 
     What is in sight follows the case at once; the others follow one at a time, with a breath between, so that none of
-    them holds up what the user does.
+    them holds up what the user does. ``made``: a sheet that was made just now and stands in its place.
     """
 
     made = Signal(object)
 
-    def __init__(self, makers: Mapping[str, Callable[[], Sheet]]) -> None:
+    def __init__(self, names: Sequence[str]) -> None:
         super().__init__()
-        self._makers = makers
+        self._names = tuple(names)
+        self._makers: Mapping[str, Callable[[], Sheet]] = {}
         self._made: dict[str, Sheet] = {}
         self._shown: tuple[Case, Standing] | None = None
         self.behind: list[str] = []
         self._later = QTimer(self, singleShot=True, interval=_BREATH_MILLISECONDS)
         self._later.timeout.connect(self._on_later)
         self._awake = False
-        for _ in makers:
-            self.addWidget(QWidget())
+        self._places = [SheetPlace() for _ in self._names]
+        for place in self._places:
+            self.addWidget(place)
 
     @property
-    def present(self) -> tuple[Sheet, ...]:
+    def present(self) -> "tuple[Sheet, ...]":
         """Return the sheets that have been made."""
         return tuple(self._made.values())
 
     @property
     def current_name(self) -> str:
         """Return the name of the sheet in front."""
-        return tuple(self._makers)[self.currentIndex()]
+        return self._names[self.currentIndex()]
 
     @property
-    def current(self) -> Sheet:
+    def current(self) -> "Sheet":
         """Return the sheet in front."""
         return self.sheet(self.current_name)
+
+    @property
+    def front(self) -> QWidget:
+        """Return what stands in front: a sheet, or the place of one."""
+        return self._made.get(self.current_name) or self._places[self.currentIndex()]
+
+    def say(self, words: str) -> None:
+        """Say in the place of every sheet what is waited for."""
+        for place in self._places:
+            place.words.setText(words)
+
+    def fill(self, makers: "Mapping[str, Callable[[], Sheet]]", case: "Case", standing: "Standing") -> None:
+        """Take what makes each sheet, and show the first case."""
+        self._makers = makers
+        self.show_standing(case, standing)
+
+    def bring_to_front(self, number: int) -> None:
+        """Show the sheet of this number, or its place as long as there is no case to show."""
+        if self._makers:
+            self.bring_up(self._names[number])
+        self.setCurrentIndex(number)
 
     def has(self, name: str) -> bool:
         """Say whether a sheet has been made."""
         return name in self._made
 
-    def sheet(self, name: str) -> Sheet:
+    def sheet(self, name: str) -> "Sheet":
         """Return a sheet, made now if this is the first time it is needed."""
         if name not in self._made:
             sheet = self._made[name] = self._makers[name]()
-            number = list(self._makers).index(name)
-            stood_in = self.widget(number)
-            assert stood_in is not None
+            number = self._names.index(name)
+            place = self._places[number]
             self.insertWidget(number, sheet)
-            self.removeWidget(stood_in)
-            stood_in.deleteLater()
+            if self.currentWidget() is place:
+                self.setCurrentWidget(sheet)
+            self.removeWidget(place)
+            place.deleteLater()
             self.made.emit(sheet)
         return self._made[name]
 
-    def bring_up(self, name: str) -> Sheet:
+    def bring_up(self, name: str) -> "Sheet":
         """Return a sheet that shows the case as it stands."""
         sheet = self.sheet(name)
         if name in self.behind and self._shown is not None:
@@ -73,15 +101,24 @@ class SheetStack(QStackedWidget):
             sheet.show_standing(*self._shown)
         return sheet
 
-    def bring_all_up(self) -> tuple[Sheet, ...]:
+    def bring_all_up(self) -> "tuple[Sheet, ...]":
         """Return all sheets in their order, every one of them showing the case as it stands."""
-        return tuple(self.bring_up(name) for name in self._makers)
+        return tuple(self.bring_up(name) for name in self._names)
 
-    def show_standing(self, case: Case, standing: Standing) -> None:
+    def sheet_of(self, place: str) -> int | None:
+        """Return the number of the sheet that claims most of the beginning of ``place``; None where none does."""
+        claims = [
+            (len(start), number)
+            for number, sheet in enumerate(self.bring_all_up())
+            for start in sheet.places
+            if place.startswith(start)
+        ]
+        return max(claims)[1] if claims else None
+
+    def show_standing(self, case: "Case", standing: "Standing") -> None:
         """Show another case, at once where it is in sight."""
-        self._shown, self.behind = (case, standing), list(self._makers)
-        if self._made:
-            self.bring_up(self.current_name)
+        self._shown, self.behind = (case, standing), list(self._names)
+        self.bring_up(self.current_name)
         if self._awake:
             self._later.start()
 

@@ -55,61 +55,41 @@ def test_memo_and_verify_need_no_qt(tmp_path: Path, monkeypatch: pytest.MonkeyPa
 
 PAINTED = """
 import json, sys
-from pathlib import Path
-from PySide6.QtCore import QEvent, QObject, QTimer
-from creditdesk.desk.app import Desk, make_application
+import creditdesk.desk.fetching
+from PySide6.QtCore import QTimer
 from creditdesk.desk.window import Window
-from creditdesk.house.load import load_house_book
-from creditdesk.house.shipped import resources_folder
 
-class Watch(QObject):
-    '''Take down what is in memory at the first paint of the window, and end when everything is on screen.'''
+seen, make = [], Window.__init__
 
-    def eventFilter(self, watched, event):
-        if event.type() == QEvent.Type.Paint and watched is window and not seen:
-            seen.append([window.jobs.busy, sorted({name.partition(".")[0] for name in sys.modules})])
-        return False
+def made(self):
+    make(self)
+    self.painted.connect(lambda: seen.append([self.jobs.busy, self.stack.front.words.text(), sorted(sys.modules)]))
+    timer = QTimer(self)
+    timer.timeout.connect(lambda: end(self))
+    timer.start(20)
 
-application = make_application()
-seen, window = [], None
-watch = Watch()
-desk = Desk(load_house_book(resources_folder() / "housebook"))
-show = Window.show
-def watched_show(self):
-    global window
-    window = self
-    self.installEventFilter(watch)
-    show(self)
-Window.show = watched_show
-
-def end():
-    if window.settled and seen:
-        sys.stdout.write(json.dumps([*seen[0], sorted({name.partition(".")[0] for name in sys.modules})]))
+def end(window):
+    if window.settled:
+        seen.append(sorted(sys.modules))
         window.close()
-        application.quit()
 
-timer = QTimer()
-timer.timeout.connect(end)
-timer.start(20)
-desk.open_path(Path(sys.argv[1]))
-application.exec()
+Window.__init__ = lambda self, palette=None: made(self)
+from creditdesk.cli.main import main
+code = main(["open", *sys.argv[1:]])
+print(json.dumps([code, *seen[0], *seen[1:]]))
 """
 
 
-def modules_of_a_window(drafts: Path, **env: str) -> tuple[bool, set[str], set[str]]:
-    """Open the window on the demonstration.
-
-    Return whether work in the background had begun at its first paint, the packages then, and those once it is settled.
-    """
-    done = run_python("-c", PAINTED, SOUND, env={"CREDITDESK_DRAFTS": str(drafts), **env})
+def test_the_window_is_painted_with_qt_alone(tmp_path: Path) -> None:
+    """Everything else comes after the first paint: what a thread is importing by then would hold the paint up."""
+    own = {"QT_QPA_PLATFORM": "offscreen", "CREDITDESK_DRAFTS": str(tmp_path), "XDG_CONFIG_HOME": str(tmp_path)}
+    done = run_python("-c", PAINTED, SOUND, env=own)
     assert (done.code, done.messages) == (0, ())
-    busy, first, last = json.loads(done.out)
-    return bool(busy), set(first), set(last)
-
-
-def test_nothing_heavy_is_imported_before_the_first_paint(tmp_path: Path) -> None:
-    busy, first, last = modules_of_a_window(tmp_path, QT_QPA_PLATFORM="offscreen")
-    assert {"PySide6", "numpy", "creditdesk"} <= first
-    assert "matplotlib" in last  # the charts came after, so the watch watched
-    assert first.isdisjoint(HEAVY)
-    assert not busy  # what a thread is importing by then would hold the paint up
+    code, busy, words, first, last = json.loads(done.text)
+    assert (code, busy, words) == (0, False, f"Opening {SOUND.name}…")
+    assert {name.partition(".")[0] for name in first}.isdisjoint({"numpy", "msgspec", "sqlite3", "tomllib", *HEAVY})
+    ours = {".".join(name.split(".")[:2]) for name in first if name.startswith("creditdesk.")}
+    assert ours == {"creditdesk.base", "creditdesk.cli", "creditdesk.desk", "creditdesk.house"}
+    late = {"creditdesk.case.assess", "creditdesk.house.load", "creditdesk.desk.caseview", "creditdesk.desk.canvases"}
+    assert late.isdisjoint(first)
+    assert late | {"matplotlib", "creditdesk.desk.sheets.memo"} <= set(last)  # they came after, so the watch watched

@@ -63,8 +63,9 @@ def open_window(qtbot: QtBot, house: HouseBook, tmp_path: Path) -> Iterator[Call
     def show(session: Session, *, forget: bool = True) -> Window:
         if forget:
             QSettings().clear()
-        window = Window(session)
+        window = Window()
         windows.append(window)
+        window.show_session(session)
         window.show()
         qtbot.waitUntil(lambda: window.settled, timeout=20_000)
         return window

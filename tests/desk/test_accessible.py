@@ -19,7 +19,7 @@ from pytestqt.qtbot import QtBot
 
 from creditdesk.desk.about import About, Keys, key_sections
 from creditdesk.desk.actions import placed_actions
-from creditdesk.desk.files import NewCase
+from creditdesk.desk.newcase import NewCase
 from creditdesk.desk.revert import RevertDialog
 from creditdesk.desk.signdialogs import CountersignDialog, NewIdentity, SignDialog
 from creditdesk.desk.start import Start

@@ -28,7 +28,6 @@ MOST_OBJECTS = 100
 def _cycle(qtbot: QtBot, desk: Desk, path: Path, number: int) -> None:
     """Open a case, look at every sheet, edit, close."""
     window = desk.open_path(path)
-    assert window is not None
     qtbot.waitUntil(lambda: window.settled, timeout=30_000)
     window.session.do(SetFigures((Figure("revenue", 2, 40_000.0 + number),)))
     for sheet in range(len(SHEETS) - 1):
@@ -67,10 +66,10 @@ def path(house: HouseBook, sound_case: Case, tmp_path: Path) -> Path:
 
 
 @pytest.fixture
-def desk(qtbot: QtBot, house: HouseBook) -> Desk:
+def desk(qtbot: QtBot) -> Desk:
     make_application()
     QSettings().clear()
-    return Desk(house)
+    return Desk()
 
 
 def test_a_dozen_cases_opened_and_closed_leave_nothing_behind(qtbot: QtBot, desk: Desk, path: Path) -> None:

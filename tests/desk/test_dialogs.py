@@ -11,6 +11,7 @@ from creditdesk.case.document import LegalForm
 from creditdesk.desk.about import About, Keys, key_sections
 from creditdesk.desk.actions import placed_actions
 from creditdesk.desk.app import make_application
+from creditdesk.desk.files import new_case
 from creditdesk.desk.newcase import NewCase
 from creditdesk.desk.notes import NoteDialog
 from creditdesk.desk.perioddialog import PeriodDialog
@@ -94,7 +95,7 @@ def test_a_new_case_has_the_periods_asked_for(qtbot: QtBot) -> None:
     dialog.name.setText("Fellgate Joinery Ltd")
     dialog.last.setDate(QDate(2025, 6, 30))
     dialog.years.setValue(2)
-    dialog.presentation.setCurrentText("by nature")
+    dialog.presentation.setCurrentText("By nature")
     case = dialog.case()
     assert [period.ends for period in case.periods] == [date(2024, 6, 30), date(2025, 6, 30)]
     assert {period.presentation for period in case.periods} == {Presentation.BY_NATURE}
@@ -105,12 +106,57 @@ def test_a_new_case_has_the_periods_asked_for(qtbot: QtBot) -> None:
     )
 
 
+def test_each_choice_in_a_new_case_is_what_it_says(qtbot: QtBot) -> None:
+    make_application()
+    dialog = NewCase()
+    qtbot.addWidget(dialog)
+    dialog.name.setText("Fellgate Joinery")
+    dialog.legal_form.setCurrentText("Partnership of companies")
+    dialog.unit.setCurrentText("Millions")
+    obligor = dialog.case().obligor
+    assert (obligor.legal_form, obligor.unit) == (LegalForm.PARTNERSHIP, 1_000_000)
+
+
+@pytest.mark.parametrize(
+    ("obligor", "name"),
+    [
+        ("Fellgate Joinery Ltd", "Fellgate Joinery Ltd.deskcase"),
+        ("Søre Trelast A/S", "Søre Trelast A S.deskcase"),
+        ("../..", "case.deskcase"),
+        ('A "B": C\n*.Co.', "A B C .Co.deskcase"),
+        ("?", "case.deskcase"),
+    ],
+)
+def test_the_file_of_a_new_case_is_proposed_after_its_obligor(
+    qtbot: QtBot, monkeypatch: pytest.MonkeyPatch, tmp_path: Path, obligor: str, name: str
+) -> None:
+    make_application()
+    asked: list[str] = []
+    made: list[Path] = []
+
+    def fill(dialog: NewCase) -> int:
+        dialog.name.setText(obligor)
+        return QDialog.DialogCode.Accepted
+
+    def choose(_parent: object, _title: str, proposed: str, _kinds: str) -> tuple[str, str]:
+        asked.append(proposed)
+        return str(tmp_path / proposed), ""
+
+    monkeypatch.setattr(NewCase, "exec", fill)
+    monkeypatch.setattr(QFileDialog, "getSaveFileName", choose)
+    parent = QWidget()
+    qtbot.addWidget(parent)
+    new_case(parent, lambda path, _case: made.append(path))
+    assert asked == [name]
+    assert made == [tmp_path / name]
+
+
 def test_natural_persons_are_no_choice_in_a_new_case(qtbot: QtBot) -> None:
     make_application()
     dialog = NewCase()
     qtbot.addWidget(dialog)
     offered = {dialog.legal_form.itemText(row) for row in range(dialog.legal_form.count())}
-    assert offered == {"company", "partnership", "other"}
+    assert offered == {"Company", "Partnership of companies", "Other"}
 
 
 def test_a_new_identity_is_written_for_its_owner_alone(qtbot: QtBot, tmp_path: Path) -> None:

@@ -61,7 +61,7 @@ def test_every_action_of_every_menu_can_be_found(window: Window) -> None:
     assert [find.title for find in action_finds(bar)] == in_menus
     for title in in_menus:
         if title != "Find any action":
-            assert title in [find.title for find in found(tuple(window._finds()), title)], title
+            assert title in [find.title for find in found(tuple(window.view.finds()), title)], title
 
 
 def test_menu_and_keys_stand_beside_what_is_found(window: Window) -> None:
@@ -137,7 +137,7 @@ def test_a_finding_leads_to_where_it_was_found(
 ) -> None:
     window = open_window(Session(house, stretched_case, tmp_path / "case.deskcase"))
     finding = next(one for one in window.session.standing.findings if one.place.startswith("figures."))
-    find = next(find for find in window._finds() if find.title == finding.text)
+    find = next(find for find in window.view.finds() if find.title == finding.text)
     window.show_sheet(SHEETS.index("Memo"))
     find.do()
     assert SHEETS[window.stack.currentIndex()] == "Figures"

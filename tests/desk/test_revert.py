@@ -110,10 +110,10 @@ def test_the_window_goes_back_to_the_entry_chosen(
         return QDialog.DialogCode.Accepted
 
     monkeypatch.setattr(RevertDialog, "exec", choose)
-    window._revert.trigger()
+    window.menus.revert.trigger()
     qtbot.waitUntil(lambda: session.case == sound_case, timeout=20_000)
     assert session.trail()[-1].kind == "revert"
-    assert window._revert.isEnabled()
+    assert window.menus.revert.isEnabled()
     assert session.undo_stack.undoText().startswith("Back to entry 1")
 
 
@@ -123,6 +123,6 @@ def test_where_nothing_was_edited_there_is_nothing_to_go_back_to(
     path = tmp_path / "case.deskcase"
     file = CaseFile.create(path, sound_case, actor="officer", clock=utc_now)
     window = open_window(Session(house, sound_case, path, file))
-    assert reason_of(window._revert) == "there is no other state to go back to"
+    assert reason_of(window.menus.revert) == "there is no other state to go back to"
     window.session.do(SetText("request", "Another request"))
-    assert window._revert.isEnabled()
+    assert window.menus.revert.isEnabled()

@@ -116,7 +116,7 @@ def test_all_windows_follow_one_choice(
 ) -> None:
     make_application()
     QSettings().clear()
-    desk = Desk(house)
+    desk = Desk()
     windows = [desk.show_session(Session(house, case, tmp_path)) for case in (sound_case, stretched_case)]
     for window in windows:
         qtbot.waitUntil(lambda window=window: window.settled, timeout=20_000)
@@ -212,10 +212,12 @@ def test_sheets_out_of_sight_are_made_after_the_first_paint(
 ) -> None:
     make_application()
     QSettings().clear()
-    window = Window(Session(house, sound_case, tmp_path / "case.deskcase"))
+    window = Window()
     qtbot.addWidget(window)
-    assert [sheet.title for sheet in window.stack.present] == ["Figures"]
+    window.show_session(Session(house, sound_case, tmp_path / "case.deskcase"))
     window.show()
+    qtbot.waitUntil(lambda: bool(window.stack.present))
+    assert [sheet.title for sheet in window.stack.present] == ["Figures"]
     qtbot.waitUntil(lambda: window.settled, timeout=20_000)
     assert sorted(sheet.title for sheet in window.stack.present) == sorted(SHEETS)
     assert [window.stack.sheet(name).title for name in SHEETS] == list(SHEETS)

@@ -27,16 +27,14 @@ from PySide6.QtWidgets import (
 from creditdesk.desk.app import make_application, run
 from creditdesk.desk.tables.rows import RowKind
 from creditdesk.desk.window import Window
-from creditdesk.house.load import load_house_book
-from creditdesk.house.shipped import resources_folder
 
 Json = dict[str, Any]
 
 
 def seen(*, with_pixels: bool) -> Json:
-    """Return everything a test wants to know of the open window, or that there is none yet."""
+    """Return everything a test wants to know of the open window, or that there is none yet, or no case in it."""
     windows = [widget for widget in QApplication.topLevelWidgets() if isinstance(widget, Window)]
-    if not windows or not windows[0].isVisible():
+    if not windows or not windows[0].isVisible() or windows[0]._view is None:
         return {"settled": False}
     window = windows[0]
     verdict = window.standing.verdict
@@ -247,4 +245,4 @@ if __name__ == "__main__":
     notifier = QSocketNotifier(sys.stdin.fileno(), QSocketNotifier.Type.Read)
     notifier.activated.connect(answer)
     case = Path(sys.argv[1]) if len(sys.argv) > 1 else None
-    sys.exit(run(case, load_house_book(resources_folder() / "housebook")))
+    sys.exit(run(case))
