@@ -8,11 +8,12 @@ from pathlib import Path
 import numpy as np
 import pytest
 from msgspec.structs import replace
-from PySide6.QtCore import QRectF, Qt
+from PySide6.QtCore import QRectF, QSettings, Qt
 from PySide6.QtGui import QPainter, QPixmap
 from PySide6.QtWidgets import QApplication
 from pytestqt.qtbot import QtBot
 
+from creditdesk.base.findings import Severity
 from creditdesk.base.palette import DARK, LIGHT
 from creditdesk.case.commands import Figure, SetFigures, SetPeriod
 from creditdesk.case.document import Assessment, Case
@@ -20,8 +21,9 @@ from creditdesk.case.uses import place_words
 from creditdesk.desk.panels.ratio import RatioPanel
 from creditdesk.desk.session import Session
 from creditdesk.desk.sheets.ratios import RatiosSheet
-from creditdesk.desk.tables.ratios import RatiosModel
-from creditdesk.desk.tables.ratiowidths import TREND, share_width
+from creditdesk.desk.tables.ratiocells import head_in_lines
+from creditdesk.desk.tables.ratios import RatioRole, RatiosModel
+from creditdesk.desk.tables.ratiowidths import TREND, Needs, full_width, share_width
 from creditdesk.desk.tables.trend import paint_trend, trend_heights
 from creditdesk.desk.window import SHEETS, Window
 from creditdesk.house.book import HouseBook
@@ -193,6 +195,9 @@ def test_a_value_that_is_asked_about_carries_its_sign_and_the_question(window: W
     assert window.session.standing.ratios.value("receivable_days", 2) > spec.plausible_high
     assert _shown(sheet.model, "receivable_days", 2).startswith("▲ ")
     assert "above" in _choose(sheet, "receivable_days", 2).facts.words("Finding")
+    assert sheet.model.cell("receivable_days", 2).data(RatioRole.SEVERITY) == Severity.QUERY
+    assert sheet.model.cell("receivable_days", 1).data(RatioRole.SEVERITY) is None
+    assert sheet.model.index(sheet.model.cell("receivable_days", 2).row(), 0).data(RatioRole.SEVERITY) is None
 
 
 def test_values_taken_to_twelve_months_are_marked(window: Window, sheet: RatiosSheet) -> None:
@@ -259,6 +264,47 @@ def test_ratios_without_any_value_may_be_hidden_and_a_jump_brings_them_back(
     assert sheet.model.rows[sheet.table.currentIndex().row()].key == hidden
 
 
+def test_without_any_value_the_sheet_says_so_and_what_can_be_done(
+    qtbot: QtBot, open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path
+) -> None:
+    case = Case(obligor=sound_case.obligor, periods=sound_case.periods, figures={})
+    window = open_window(Session(house, case, tmp_path / "case.deskcase"))
+    window.show_sheet(SHEETS.index("Ratios"))
+    sheet = window.ratios
+    qtbot.mouseClick(sheet.with_values, Qt.MouseButton.LeftButton)
+    assert sheet.model.rows == ()
+    assert "No ratio has a value" in sheet.panel.name.text()
+    assert "Figures" in sheet.panel.nothing.text()
+    assert (sheet.panel.nothing.isHidden(), sheet.panel.facts.isHidden()) == (False, True)
+    qtbot.mouseClick(sheet.with_values, Qt.MouseButton.LeftButton)
+    assert (sheet.panel.nothing.isHidden(), sheet.panel.facts.isHidden()) == (True, False)
+    assert "not disclosed" in sheet.panel.name.text()
+
+
+def test_table_and_ratio_stay_parted_as_they_were_left(
+    open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path
+) -> None:
+    def opened(name: str, **options: bool) -> RatiosSheet:
+        window = open_window(Session(house, sound_case, tmp_path / name), **options)
+        window.resize(1700, 800)
+        window.show_sheet(SHEETS.index("Ratios"))
+        window.stack.resize(1250, 600)
+        return window.ratios
+
+    first = opened("first.deskcase")
+    assert first.split.orientation() == Qt.Orientation.Horizontal
+    shared = first.split.sizes()
+    assert shared[1] >= 400
+    first.split.moveSplitter(shared[0] - 90, 1)
+    left = first.split.sizes()
+    assert left != shared
+    first.resize(first.width() - 1, first.height())
+    assert first.split.sizes()[1] == left[1]  # another width is the table's
+    assert opened("second.deskcase", forget=False).split.sizes()[1] == left[1]
+    QSettings().setValue("split/ratio-beside", "broken")
+    assert opened("third.deskcase", forget=False).split.sizes() == shared
+
+
 def test_a_projection_has_values_and_no_place(
     open_window: Callable[..., Window], house: HouseBook, sound_case: Case, tmp_path: Path
 ) -> None:
@@ -292,13 +338,29 @@ def test_what_people_named_is_never_read_as_markup(
 @pytest.mark.parametrize("width", [600, 740, 1000, 1400])
 @pytest.mark.parametrize("periods", [1, 2, 3, 5, 8])
 def test_columns_share_the_width_and_never_cut_a_value(width: int, periods: int) -> None:
-    widths = share_width(width, periods, widest=58)
+    needs = Needs(periods, 58, (57, 57))
+    widths = share_width(width, needs)
     assert widths.period >= 58
     total = widths.name + periods * widths.period + TREND + widths.sample
-    least = share_width(0, periods, widest=58)
+    least = share_width(0, needs)
     assert total == max(width, least.name + periods * 58 + TREND + least.sample)
     assert widths.narrow == (widths.period < 92)
-    assert share_width(width + 50, periods, widest=58).sample >= widths.sample
+    assert share_width(width + 50, needs).sample >= widths.sample
+    whole = share_width(full_width(needs), needs)
+    assert (whole.narrow, whole.heads_sample, whole.sample) == (False, 2, 260)
+    assert share_width(full_width(needs) - 1, needs).sample < 260
+
+
+def test_a_long_heading_stands_in_one_line_only_where_it_fits() -> None:
+    needs = Needs(3, 58, (120, 70))
+    assert (share_width(full_width(needs), needs).period, share_width(full_width(needs), needs).head_lines) == (120, 1)
+    for width in (500, 700, 740, 900):
+        widths = share_width(width, needs)
+        assert widths.head_lines == (1 if widths.period >= 120 else 2 if widths.period >= 70 else 3)
+    assert [head_in_lines("Dec 2025 (6\u00a0m)", lines) for lines in (1, 2, 3)] == [
+        "Dec 2025 (6\u00a0m)", "Dec 2025\n(6\u00a0m)", "Dec\n2025\n(6\u00a0m)",
+    ]  # fmt: skip
+    assert [head_in_lines("2025 restated", lines) for lines in (1, 2, 3)] == ["2025 restated", *["2025\nrestated"] * 2]
 
 
 def test_a_trend_runs_between_lowest_and_highest_and_small_moves_stay_small() -> None:

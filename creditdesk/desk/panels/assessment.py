@@ -10,7 +10,6 @@ from creditdesk.case.offers import PeriodChoice, period_choices
 from creditdesk.case.standing import Standing
 from creditdesk.case.words import long_date
 from creditdesk.desk.fields import ChoiceField, Line, TextField
-from creditdesk.desk.frame import label
 from creditdesk.desk.panels.form import Do, Form
 
 _DATE = re.compile(r"\d{4}-\d{2}-\d{2}", re.ASCII)

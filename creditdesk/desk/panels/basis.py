@@ -21,7 +21,7 @@ from creditdesk.intake.amounts import AmountKind, parse_amount
 if TYPE_CHECKING:
     from datetime import date
 
-_UNITS = {1: "Single units", 1000: "Thousands", 1_000_000: "Millions"}
+UNITS = {1: "Single units", 1000: "Thousands", 1_000_000: "Millions"}
 
 
 class CurrencyPanel(Form):
@@ -33,7 +33,7 @@ class CurrencyPanel(Form):
         self._rates: Rates | None = None
         self.currency = self.add(Line("Currency", CodeField("Currency", _codes, "ISO 4217 code"), self._set_currency))
         self.unit = self.add(Line("Unit", ChoiceField("Unit"), self._set_unit))
-        self.unit.field.offer(list(_UNITS.items()))
+        self.unit.field.offer(list(UNITS.items()))
 
     def show_case(self, case: Case) -> None:
         """Show currency and unit of ``case``."""

@@ -96,6 +96,7 @@ class RatioPanel(QScrollArea):
         self.palette_in_use = LIGHT
         self._shown: tuple[RatioFacts, str, int] | None = None
         self.name = label("heading", wrap=True)
+        self.nothing = label("second", wrap=True)
         self.filled = Filled()
         self.facts = Facts(_TITLES)
         self._box = QVBoxLayout()
@@ -106,11 +107,21 @@ class RatioPanel(QScrollArea):
     def show_ratio(self, facts: RatioFacts, key: str, period: int) -> None:
         """Lay open a ratio of a period (by index)."""
         self._shown = (facts, key, period)
+        self.nothing.hide()
+        self.facts.show()
         trace = trace_ratio(facts.catalogue, facts.standing.statements, facts.table, key, period)
         self.name.setText(f"{trace.label}, {facts.heads[period]}: {facts.text(key, period, narrow=False)}")
         self.filled.show_pieces(trace, facts, self.palette_in_use)
         for title, text in _words(facts, trace):
             self.facts.show_words(title, text)
+
+    def show_nothing(self, words: str) -> None:
+        """Say that no ratio is shown, and in ``words`` what can be done."""
+        self._shown = None
+        self.name.setText("No ratio has a value in any period")
+        self.nothing.setText(words)
+        self.nothing.show()
+        self.facts.hide()
 
     def indent(self, left: int) -> None:
         """Keep so much from what stands at the left."""
@@ -130,7 +141,9 @@ class RatioPanel(QScrollArea):
         box.setContentsMargins(*_MARGINS)
         box.setSpacing(6)
         box.addWidget(self.name)
+        box.addWidget(self.nothing)
         box.addWidget(self.facts)
+        self.nothing.hide()
         box.addStretch(1)
         self.setWidgetResizable(True)
         self.setFrameShape(QFrame.Shape.NoFrame)

@@ -4,7 +4,7 @@ import re
 from collections.abc import Sequence
 
 from PySide6.QtCore import QModelIndex, Qt, Signal
-from PySide6.QtGui import QKeyEvent, QKeySequence, QResizeEvent, QShowEvent
+from PySide6.QtGui import QFont, QFontMetrics, QKeyEvent, QKeySequence, QResizeEvent
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QApplication,
@@ -20,12 +20,13 @@ from creditdesk.case.standing import Standing
 from creditdesk.desk.actions import Entry
 from creditdesk.desk.frame import label
 from creditdesk.desk.panels.ratio import RatioPanel
+from creditdesk.desk.settings import Settings
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.tables.plain import PlainTable
-from creditdesk.desk.tables.ratiocells import ANNUALISED_MARK, FACTOR_MARK, RatioFacts
+from creditdesk.desk.tables.ratiocells import ANNUALISED_MARK, FACTOR_MARK, RatioFacts, head_in_lines
 from creditdesk.desk.tables.ratiopaint import PADDING, TIGHT, RatiosDelegate
 from creditdesk.desk.tables.ratios import RatiosModel
-from creditdesk.desk.tables.ratiowidths import TREND, share_width
+from creditdesk.desk.tables.ratiowidths import TREND, Needs, full_width, share_width
 from creditdesk.house.book import HouseBook
 
 _PLACE = re.compile(r"ratios\.(?P<key>\w+)(?:\[(?P<end>[\d-]+)\])?")
@@ -33,6 +34,11 @@ _YEAR = 44
 """Least room for the heading of a period."""
 _SIDE_BY_SIDE = 1180
 """Width from which the laid-open ratio reads better beside the table than below it."""
+_ROW = 24
+_BESIDE, _BELOW = 400, 204
+"""Least width the laid-open ratio is given beside the table, and least height below it, where no row is cut in two."""
+_SPLITS = {Qt.Orientation.Horizontal: "ratio-beside", Qt.Orientation.Vertical: "ratio-below"}
+"""The names under which is remembered how table and ratio were parted."""
 
 
 class RatiosTable(PlainTable):
@@ -47,7 +53,7 @@ class RatiosTable(PlainTable):
         self.setModel(model)
         self.setAccessibleName("Ratios")
         self.verticalHeader().hide()
-        self.verticalHeader().setDefaultSectionSize(24)
+        self.verticalHeader().setDefaultSectionSize(_ROW)
         self.verticalHeader().setMinimumSectionSize(20)
         self.horizontalHeader().setHighlightSections(False)
         self.horizontalHeader().setMinimumSectionSize(40)
@@ -55,7 +61,7 @@ class RatiosTable(PlainTable):
         self.setWordWrap(False)
         self.setTabKeyNavigation(False)
         self.setCornerButtonEnabled(False)
-        self.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
+        self.setVerticalScrollMode(QAbstractItemView.ScrollMode.ScrollPerItem)  # cuts no row below the headings
         self.setHorizontalScrollMode(QAbstractItemView.ScrollMode.ScrollPerPixel)
         self.setSelectionMode(QAbstractItemView.SelectionMode.ContiguousSelection)
         self.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
@@ -95,7 +101,9 @@ class RatiosSheet(Sheet):
     def __init__(self, house: HouseBook) -> None:
         super().__init__()
         self._house = house
-        self._pending: Standing | None = None
+        self._settings = Settings()
+        self._parted = False
+        self._needs = Needs(0, _YEAR, (_YEAR,))
         self.model, self.delegate = RatiosModel(), RatiosDelegate()
         self.table, self.panel = RatiosTable(self.model), RatioPanel()
         self.table.setItemDelegate(self.delegate)
@@ -104,21 +112,22 @@ class RatiosSheet(Sheet):
         self.with_values.setCheckable(True)
         self.with_values.setShortcut("Ctrl+L")
         self.with_values.setToolTip("Hide the ratios that have a value in no period (Ctrl+L)")
-        self.split = QSplitter(Qt.Orientation.Vertical)
+        self.split = QSplitter()
         self.setFocusProxy(self.table)
         self._connect()
         self._lay_out()
 
     def show_standing(self, case: Case, standing: Standing) -> None:
-        """Show another standing; while the sheet is out of sight it only remembers."""
-        self._pending = standing
-        if self.isVisible():
-            self._show()
-
-    def showEvent(self, event: QShowEvent) -> None:
-        """Catch up with the case."""
-        super().showEvent(event)
-        self._show()
+        """Show another standing."""
+        facts = RatioFacts(standing, self._house)
+        self._needs = self._measure(facts)  # first: the table asks for its columns' widths while it takes the facts
+        self.model.show_facts(facts)
+        self._share()
+        self._fit_columns()
+        self._show_legend()
+        if not self.table.currentIndex().isValid():
+            self._choose_first()
+        self._lay_open()
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Stand the chosen ratio beside the table where there is room, else below it."""
@@ -126,8 +135,8 @@ class RatiosSheet(Sheet):
         wide = self.width() >= _SIDE_BY_SIDE
         orientation = Qt.Orientation.Horizontal if wide else Qt.Orientation.Vertical
         if self.split.orientation() != orientation:
-            self.split.setOrientation(orientation)
-            self._share()
+            self._stand(orientation)
+        self._share()
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""
@@ -137,7 +146,6 @@ class RatiosSheet(Sheet):
 
     def go_to(self, place: str) -> None:
         """Move to ``ratios.<key>[<period end>]``, or to the ratio behind ``model.<factor>``."""
-        self._show()
         facts, found = self.model.facts, _PLACE.fullmatch(place)
         if facts is None:
             return
@@ -159,19 +167,7 @@ class RatiosSheet(Sheet):
 
     def copy_all(self) -> None:
         """Copy the whole table with its headings."""
-        self._show()
         QApplication.clipboard().setText(self.model.spreadsheet())
-
-    def _show(self) -> None:
-        standing, self._pending = self._pending, None
-        if standing is None:
-            return
-        self.model.show_facts(RatioFacts(standing, self._house))
-        self._fit_columns()
-        self._show_legend()
-        if not self.table.currentIndex().isValid():
-            self._choose_first()
-        self._lay_open()
 
     def _show_legend(self) -> None:
         facts = self.model.facts
@@ -195,6 +191,8 @@ class RatiosSheet(Sheet):
         key = self.model.rows[index.row()].key if index.isValid() else ""
         if facts is not None and key:
             self.panel.show_ratio(facts, key, self.model.period)
+        elif not self.model.rows:
+            self.panel.show_nothing("Enter figures on the sheet Figures, or show the ratios without a value again.")
 
     def _go_to_cell(self, key: str, period: int) -> None:
         if not self.model.cell(key, period).isValid():
@@ -222,29 +220,53 @@ class RatiosSheet(Sheet):
             self.table.setCurrentIndex(index)
         else:
             self._choose_first()
+        self._lay_open()
 
     def _on_opened(self) -> None:
         self.panel.filled.setFocus(Qt.FocusReason.TabFocusReason)
 
+    def _measure(self, facts: RatioFacts) -> Needs:
+        """Measure values and headings of periods, in pixels, with what stands around them."""
+        values, heads = self.table.fontMetrics(), QFontMetrics(_heading_font(self.table.font()))
+        value = max((values.horizontalAdvance(text) for text in facts.value_texts()), default=0)
+        around = PADDING + TIGHT
+        lines = [[head_in_lines(head, count).split("\n") for head in facts.heads] for count in (1, 2)]
+        widest = [max(heads.horizontalAdvance(line) for head in shape for line in head) for shape in lines]
+        return Needs(len(facts.heads), max(value, _YEAR) + around, tuple(width + around for width in widest))
+
     def _fit_columns(self) -> None:
         """Share the width among the columns; values are never cut."""
-        facts = self.model.facts
-        if facts is None:
+        if self.model.facts is None:
             return
-        metrics = self.table.fontMetrics()
-        longest = max((metrics.horizontalAdvance(text) for text in facts.value_texts()), default=0)
-        widths = share_width(self.table.viewport().width(), self.model.periods, max(longest, _YEAR) + PADDING + TIGHT)
+        widths = share_width(self.table.viewport().width(), self._needs)
         sizes = (widths.name, *[widths.period] * self.model.periods, TREND, widths.sample)
         for column, size in enumerate(sizes):
             self.table.horizontalHeader().resizeSection(column, size)
-        if (widths.narrow, widths.heads_sample) != (self.model.narrow, self.model.heads_sample):
-            self.model.narrow, self.model.heads_sample = widths.narrow, widths.heads_sample
-            self.model.redraw()
+        self.model.fit(widths)
+
+    def _stand(self, orientation: Qt.Orientation) -> None:
+        """Stand table and ratio beside or below each other, parted as they were left the last time."""
+        self.split.setOrientation(orientation)
+        self._parted = self.split.restoreState(self._settings.split(_SPLITS[orientation]))
+        self.panel.indent(16 if orientation is Qt.Orientation.Horizontal else 0)
 
     def _share(self) -> None:
-        wide = self.split.orientation() == Qt.Orientation.Horizontal
-        self.split.setSizes([620, 400] if wide else [400, 220])
-        self.panel.indent(16 if wide else 0)
+        """Give the table what its words need and the ratio the rest, unless a person has parted them."""
+        if self._parted:
+            return
+        if self.split.orientation() == Qt.Orientation.Horizontal:
+            bar = self.table.verticalScrollBar().sizeHint().width()
+            room = self.split.width() - self.split.handleWidth()
+            ratio = max(room - full_width(self._needs) - bar, _BESIDE)
+        else:
+            room = self.split.height() - self.split.handleWidth()
+            rows = (room - self.table.horizontalHeader().height() - _BELOW) % _ROW
+            ratio = _BELOW + max(rows, 0)
+        self.split.setSizes([room - ratio, ratio])
+
+    def _on_parted(self) -> None:
+        self._parted = True
+        self._settings.set_split(_SPLITS[self.split.orientation()], self.split.saveState())
 
     def _connect(self) -> None:
         self.table.selectionModel().currentChanged.connect(self._on_current)
@@ -253,6 +275,7 @@ class RatiosSheet(Sheet):
         self.panel.filled.left.connect(self.table.setFocus)
         self.panel.jump_asked.connect(self.jump_asked)
         self.with_values.toggled.connect(self._on_filter)
+        self.split.splitterMoved.connect(self._on_parted)
 
     def _lay_out(self) -> None:
         top = QHBoxLayout()
@@ -263,9 +286,16 @@ class RatiosSheet(Sheet):
         self.split.setStretchFactor(0, 1)
         self.split.setChildrenCollapsible(False)
         self.split.setHandleWidth(1)
-        self._share()
+        self._stand(Qt.Orientation.Vertical)
         box = QVBoxLayout(self)
         box.setContentsMargins(22, 10, 16, 8)
         box.setSpacing(6)
         box.addLayout(top)
         box.addWidget(self.split, 1)
+
+
+def _heading_font(plain: QFont) -> QFont:
+    """Return the font of column headings, as the style sheet has it."""
+    font = QFont(plain)
+    font.setWeight(QFont.Weight.DemiBold)
+    return font

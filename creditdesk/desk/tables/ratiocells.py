@@ -10,13 +10,13 @@ from creditdesk.base.findings import Severity
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.case.uses import RatioUse, factors_of, lead_spec, place_words, ratio_uses, short_place_words
 from creditdesk.case.words import period_heads
+from creditdesk.desk.tables.cells import MARKS
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import Reason
 from creditdesk.ratios.trace import reason_text
 from creditdesk.ratios.words import REASON_WORDS, format_ratio
 
 FACTOR_MARK, ANNUALISED_MARK = "◆", "ᵃ"
-SEVERITY_MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "•"}
 NARROW_WORDS: Mapping[str, str] = {
     "net_cash": "net cash",
     "no_debt": "no debt",
@@ -81,8 +81,8 @@ class RatioFacts:
         if reason is not Reason.VALUE:
             return (NARROW_WORDS if narrow else REASON_WORDS)[reason.key]
         text = format_ratio(self.table.value(key, period), self.catalogue.spec(key).unit)
-        finding = self._findings.get(self.place(key, period))
-        before = f"{SEVERITY_MARKS[finding.severity]} " if finding is not None else ""
+        severity = self.severity(key, period)
+        before = f"{MARKS[severity]} " if severity is not None else ""
         return f"{before}{text}{ANNUALISED_MARK if self.annualised(key, period) else ''}"
 
     def value_texts(self) -> list[str]:
@@ -98,6 +98,11 @@ class RatioFacts:
     def why(self, key: str, period: int) -> str:
         """Say in a sentence why a ratio has no value; "" where it has one."""
         return reason_text(self.catalogue, self.table, key, period)
+
+    def severity(self, key: str, period: int) -> Severity | None:
+        """Return how grave what is asked about a value is; None where nothing is."""
+        finding = self._findings.get(self.place(key, period))
+        return finding.severity if finding is not None else None
 
     def finding(self, key: str, period: int) -> str:
         """Return what is asked about a value; "" where nothing is."""
@@ -125,6 +130,14 @@ class RatioFacts:
     def _reasons(self, key: str) -> NDArray[np.uint8]:
         reasons: NDArray[np.uint8] = self.table.reasons[self.table.index[key]]
         return reasons
+
+
+def head_in_lines(head: str, lines: int) -> str:
+    """Break a heading such as “Dec 2025 (6 m)” into at most ``lines`` lines, 1 to 3."""
+    if lines == 1:
+        return head
+    parts = head.replace(" (", "\n(")
+    return parts if lines == 2 and "\n" in parts else parts.replace(" ", "\n", 1)
 
 
 def as_spreadsheet(facts: RatioFacts, rows: Sequence[RatioRow], period: int) -> str:

@@ -2,19 +2,22 @@
 
 from collections.abc import Sequence
 
-from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRectF, Qt
+from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter
 from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
 from creditdesk.base.display import format_percent
+from creditdesk.base.findings import Severity
 from creditdesk.base.palette import LIGHT, Palette
+from creditdesk.desk.tables.cells import MARKS
+from creditdesk.desk.tables.marks import paint_severity
 from creditdesk.desk.tables.ratios import Look, RatioRole
 from creditdesk.desk.tables.trend import paint_trend
 from creditdesk.desk.theme import SERIF
 
 Index = QModelIndex | QPersistentModelIndex
 PADDING, TIGHT, INDENT = 8, 5, 16
-_BAR = 44
+_BAR, _MARK = 44, 6
 
 
 class RatiosDelegate(QStyledItemDelegate):
@@ -53,11 +56,21 @@ class RatiosDelegate(QStyledItemDelegate):
         painter.setFont(_font(painter.font(), look))
         colours = {Look.HEADING: self.palette.accent, Look.WORDS: self.palette.second_ink}
         painter.setPen(QColor(colours.get(look, self.palette.ink)))
-        fits = QFontMetricsF(painter.font()).elidedText(
-            str(index.data() or ""), Qt.TextElideMode.ElideRight, room.width()
-        )
+        metrics, text = QFontMetricsF(painter.font()), str(index.data() or "")
+        shortened = Qt.TextElideMode.ElideMiddle if first else Qt.TextElideMode.ElideRight  # names differ at their ends
+        fits = metrics.elidedText(text, shortened, room.width())
+        name = index.data(RatioRole.SEVERITY)
+        if name is not None:
+            severity = Severity(name)  # Qt hands it on as a bare text
+            fits = text.removeprefix(f"{MARKS[severity]} ")
+            self._paint_mark(painter, room.right() - metrics.horizontalAdvance(text), room.center().y(), severity)
         alignment = index.data(Qt.ItemDataRole.TextAlignmentRole)
         painter.drawText(room, int(alignment), fits)
+
+    def _paint_mark(self, painter: QPainter, left: float, middle: float, severity: Severity) -> None:
+        painter.save()
+        paint_severity(painter, QPointF(left + _MARK, middle), severity, self.palette)
+        painter.restore()
 
 
 def paint_place(painter: QPainter, rect: QRectF, place: float, words: Sequence[str], palette: Palette) -> None:

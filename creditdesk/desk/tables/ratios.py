@@ -6,7 +6,15 @@ from enum import IntEnum
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPersistentModelIndex, Qt
 
 from creditdesk.case.words import basis_words
-from creditdesk.desk.tables.ratiocells import FACTOR_MARK, RatioFacts, RatioRow, as_spreadsheet, plain_cell
+from creditdesk.desk.tables.ratiocells import (
+    FACTOR_MARK,
+    RatioFacts,
+    RatioRow,
+    as_spreadsheet,
+    head_in_lines,
+    plain_cell,
+)
+from creditdesk.desk.tables.ratiowidths import Widths
 
 Index = QModelIndex | QPersistentModelIndex
 _LEFT = Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter
@@ -20,6 +28,7 @@ class RatioRole(IntEnum):
     PLACE = Qt.ItemDataRole.UserRole + 2
     LOOK = Qt.ItemDataRole.UserRole + 3
     SHORT_PLACE = Qt.ItemDataRole.UserRole + 4
+    SEVERITY = Qt.ItemDataRole.UserRole + 5
 
 
 class Look(IntEnum):
@@ -33,8 +42,7 @@ class Look(IntEnum):
 class RatiosModel(QAbstractTableModel):
     """Show the ratios of a standing.
 
-    ``narrow``: columns of periods have room for the shortest words only; ``heads_sample``: how much heading the last
-    one has room for, from 0, one word, to 2.
+    ``widths``: how wide the columns are, which decides how many words they show.
     """
 
     def __init__(self) -> None:
@@ -42,8 +50,7 @@ class RatiosModel(QAbstractTableModel):
         self.facts: RatioFacts | None = None
         self.rows: tuple[RatioRow, ...] = ()
         self.period = 0
-        self.narrow = False
-        self.heads_sample = 2
+        self.widths: Widths | None = None
         self.with_values_only = False
 
     def show_facts(self, facts: RatioFacts) -> None:
@@ -67,6 +74,12 @@ class RatiosModel(QAbstractTableModel):
             self.dataChanged.emit(self.index(0, last), self.index(self.rowCount() - 1, last))
             self.headerDataChanged.emit(Qt.Orientation.Horizontal, last, last)
 
+    def fit(self, widths: Widths) -> None:
+        """Show as many words as columns of these widths have room for."""
+        if widths != self.widths:
+            self.widths = widths
+            self.redraw()
+
     def redraw(self) -> None:
         """Have every cell drawn anew."""
         if self.rows:
@@ -81,7 +94,7 @@ class RatiosModel(QAbstractTableModel):
     def cell(self, key: str, period: int) -> QModelIndex:
         """Return the cell of a ratio and period; an invalid index where the ratio is not shown."""
         for number, row in enumerate(self.rows):
-            if row.key == key:
+            if key and row.key == key:
                 return self.index(number, period + 1)
         return QModelIndex()
 
@@ -127,9 +140,9 @@ class RatiosModel(QAbstractTableModel):
         if section == self.periods + 1:
             return "trend"
         if section > self.periods:
-            return ("sample", "in the sample", f"{self.facts.heads[self.period]} in the sample")[self.heads_sample]
-        head = self.facts.heads[section - 1]
-        return head.replace(" (", "\n(").replace(" ", "\n", 1) if self.narrow else head
+            longest = f"{self.facts.heads[self.period]} in the sample"
+            return ("sample", "in the sample", longest)[self.widths.heads_sample if self.widths else 2]
+        return head_in_lines(self.facts.heads[section - 1], self.widths.head_lines if self.widths else 1)
 
     def flags(self, index: Index) -> Qt.ItemFlag:
         """Let ratios be chosen, headings not."""
@@ -150,6 +163,7 @@ class RatiosModel(QAbstractTableModel):
             RatioRole.TREND: self._trend,
             RatioRole.PLACE: self._place,
             RatioRole.LOOK: self._look,
+            RatioRole.SEVERITY: self._severity,
             RatioRole.SHORT_PLACE: lambda facts, row, _: facts.short_place_text(row.key, self.period),
         }
         return answers[role](self.facts, row, column) if role in answers else None
@@ -161,7 +175,7 @@ class RatiosModel(QAbstractTableModel):
             return None
         if column == self.periods + 2:
             return facts.place_text(row.key, self.period)
-        return facts.text(row.key, column - 1, narrow=self.narrow)
+        return facts.text(row.key, column - 1, narrow=self.widths is not None and self.widths.narrow)
 
     def _tip(self, facts: RatioFacts, row: RatioRow, column: int) -> object:
         if not row.key:
@@ -189,6 +203,10 @@ class RatiosModel(QAbstractTableModel):
     def _place(self, facts: RatioFacts, row: RatioRow, column: int) -> object:
         factor = facts.factor(row.key, self.period) if column == self.periods + 2 else None
         return factor.place if factor is not None else None
+
+    def _severity(self, facts: RatioFacts, row: RatioRow, column: int) -> object:
+        known = self._look(facts, row, column) == Look.VALUE and 0 < column <= self.periods
+        return facts.severity(row.key, column - 1) if known else None
 
     def _look(self, facts: RatioFacts, row: RatioRow, column: int) -> object:
         if not row.key:

@@ -12,12 +12,17 @@ _SAMPLE = (58, 138, 186, 260)
 
 @dataclass(frozen=True, slots=True)
 class Widths:
-    """Hold the widths in pixels. ``narrow``: periods have room for the shortest words only."""
+    """Hold the widths in pixels. ``head_lines``: how many lines the longest heading of a period takes, 1 to 3."""
 
     name: int
     period: int
     sample: int
-    narrow: bool
+    head_lines: int
+
+    @property
+    def narrow(self) -> bool:
+        """Say whether periods have room for the shortest words only."""
+        return self.period < _PERIOD_FULL
 
     @property
     def heads_sample(self) -> int:
@@ -25,23 +30,47 @@ class Widths:
         return 0 if self.sample < _SAMPLE[1] else 1 if self.sample < _SAMPLE[2] else 2
 
 
-def share_width(width: int, periods: int, widest: int) -> Widths:
-    """Share ``width`` among names, ``periods`` columns, trend and place.
+@dataclass(frozen=True, slots=True)
+class Needs:
+    """Hold what columns of periods need in pixels: the longest value, the longest heading in one line, in two."""
 
-    ``widest``: what the longest value takes, which no column undercuts: then the table is wider than its place. What
-    is left goes to names until they fit, to words beside the bar, to the periods, to longer words, to the names.
+    periods: int
+    value: int
+    headings: tuple[int, ...]
+
+    @property
+    def full(self) -> int:
+        """Return the width from which a column shows values, reasons and its heading in one line."""
+        return max(self.value, self.headings[0], _PERIOD_FULL)
+
+    def head_lines(self, width: int) -> int:
+        """Return how many lines headings take in columns of this width."""
+        return 1 + sum(width < heading for heading in self.headings)
+
+
+def full_width(needs: Needs) -> int:
+    """Return the width of a table in which nothing is shortened."""
+    return _NAME[1] + needs.periods * needs.full + TREND + _SAMPLE[-1]
+
+
+def share_width(width: int, needs: Needs) -> Widths:
+    """Share ``width`` among names, periods, trend and place.
+
+    No period undercuts the longest value: then the table is wider than its place. What is left goes to names until
+    they fit, to words beside the bar, to the periods, to longer words, to the names.
     """
-    name, period, sample = _NAME[0], widest, _SAMPLE[0]
+    periods, full = needs.periods, needs.full
+    name, period, sample = _NAME[0], needs.value, _SAMPLE[0]
     left = width - TREND - name - periods * period - sample
     more = min(max(left, 0), _NAME[1] - name)
     name, left = name + more, left - more
     if left >= _SAMPLE[1] - sample:
         left -= _SAMPLE[1] - sample
         sample = _SAMPLE[1]
-    more = min(max(left, 0) // periods, max(_PERIOD_FULL - period, 0))
+    more = min(max(left, 0) // periods, full - period)
     period, left = period + more, left - more * periods
     for wider in _SAMPLE[2:]:
         if left >= wider - sample:
             left -= wider - sample
             sample = wider
-    return Widths(name + max(left, 0), period, sample, narrow=period < _PERIOD_FULL)
+    return Widths(name + max(left, 0), period, sample, needs.head_lines(period))
