@@ -86,12 +86,6 @@ class Desk(QObject):
 
         return self._open(path, make, f"{path.name} was not made")
 
-    def show_session(self, session: "Session") -> Window:
-        """Show a session in a window of its own."""
-        window = self._show_window(session.path.name)
-        window.show_session(session)
-        return window
-
     def show_start(self) -> None:
         """Ask which case to open, where none was named; meanwhile all that a case needs is fetched."""
         self._start = start = Start()
@@ -125,10 +119,12 @@ class Desk(QObject):
         window = self._show_window(path.name)
 
         def done(session: "Session") -> None:
+            from creditdesk.desk.caseview import CaseView  # in memory by then, with what the session was read with
+
             if window not in self.windows:  # closed meanwhile
                 session.close()
                 return
-            window.show_session(session)
+            CaseView(window, session)
             self._close_start()
 
         def failed(error: BaseException) -> None:

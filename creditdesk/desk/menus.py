@@ -2,28 +2,36 @@
 
 from collections.abc import Callable, Sequence
 from functools import partial
-from typing import TYPE_CHECKING
 
-from PySide6.QtGui import QAction, QActionGroup, QKeySequence
-from PySide6.QtWidgets import QApplication
+from PySide6.QtCore import QObject, Signal
+from PySide6.QtGui import QAction, QActionGroup, QKeySequence, QUndoGroup
+from PySide6.QtWidgets import QApplication, QMainWindow
 
-from creditdesk.desk import files
 from creditdesk.desk.actions import Entry, Key, add_menu, fill_menu, give_reason, make_action
 from creditdesk.desk.frame import FIND_KEY, SHEETS, WIDE_KEY, sheet_key
 from creditdesk.desk.settings import Theme
-
-if TYPE_CHECKING:
-    from creditdesk.desk.window import Window
 
 _KEYS = QKeySequence.StandardKey
 _THEMES = {Theme.SYSTEM: "As the &system", Theme.LIGHT: "&Light", Theme.DARK: "&Dark"}
 
 
-class Menus:
-    """Hold the actions whose state follows the window or the case."""
+class Menus(QObject):
+    """Fill the menu bar of a window; what is asked for there is told by signals, but for closing and undoing."""
 
-    def __init__(self, window: "Window") -> None:
-        self._window = window
+    new_asked = Signal()
+    open_asked = Signal()
+    export_asked = Signal()
+    revert_asked = Signal()
+    sheet_asked = Signal(int)
+    wide_asked = Signal()
+    find_asked = Signal()
+    theme_asked = Signal(Theme)
+    keys_asked = Signal()
+    about_asked = Signal()
+
+    def __init__(self, window: QMainWindow, undo_group: QUndoGroup) -> None:
+        super().__init__(window)
+        self._window, self._undo_group = window, undo_group
         self._for_a_case: list[QAction] = []
         bar = window.menuBar()
         add_menu(bar, "&Case", self._case_entries())
@@ -33,9 +41,8 @@ class Menus:
         for menu in self._sheets.values():
             menu.menuAction().setVisible(False)
         self._standing = add_menu(bar, "S&tanding", ())
-        keys = self._for_case("&Keys", _KEYS.HelpContents, lambda: window.view.show_keys())
-        about = self._for_case("&About", None, lambda: window.view.show_about())
-        add_menu(bar, "&Help", (keys, about))
+        keys = self._for_case("&Keys", _KEYS.HelpContents, self.keys_asked.emit)
+        add_menu(bar, "&Help", (keys, self._for_case("&About", None, self.about_asked.emit)))
 
     def add_case(self, of_standing: Sequence[Entry | None]) -> None:
         """Offer what needs a case, and what can be done in the Standing."""
@@ -69,21 +76,20 @@ class Menus:
         return action
 
     def _case_entries(self) -> tuple[Entry | QAction | None, ...]:
-        window = self._window
-        self.revert = self._for_case("&Revert to…", None, lambda: window.view.revert())
+        self.revert = self._for_case("&Revert to…", None, self.revert_asked.emit)
         return (
-            ("&New…", _KEYS.New, lambda: files.new_case(window, window.new_asked.emit)),
-            ("&Open…", _KEYS.Open, lambda: files.open_case(window, window.open_asked.emit)),
-            self._for_case("&Export…", "Ctrl+E", lambda: files.export_case(window, window.session)),
+            ("&New…", _KEYS.New, self.new_asked.emit),
+            ("&Open…", _KEYS.Open, self.open_asked.emit),
+            self._for_case("&Export…", "Ctrl+E", self.export_asked.emit),
             None,
             self.revert,
             None,
-            ("&Close", _KEYS.Close, window.close),
+            ("&Close", _KEYS.Close, self._window.close),
             ("&Quit", "Ctrl+Q", QApplication.closeAllWindows),
         )
 
     def _undo_actions(self) -> tuple[QAction, ...]:
-        group = self._window.undo_group
+        group = self._undo_group
         undo, redo = group.createUndoAction(self._window, "&Undo"), group.createRedoAction(self._window, "&Redo")
         for action, key, reason in (
             (undo, _KEYS.Undo, "nothing has been edited yet"),
@@ -94,22 +100,18 @@ class Menus:
         return undo, redo
 
     def _add_view_menu(self) -> None:
-        window = self._window
-        self._wide = make_action(
-            window, "Standing takes the &window", WIDE_KEY, lambda: window.show_wide(not window.wide)
-        )
+        self._wide = make_action(self._window, "Standing takes the &window", WIDE_KEY, self.wide_asked.emit)
         self._wide.setCheckable(True)
-        find = self._for_case("&Find any action…", FIND_KEY, lambda: window.finder.open())
+        find = self._for_case("&Find any action…", FIND_KEY, self.find_asked.emit)
         sheets = [
-            make_action(window, f"Sheet {name}", sheet_key(number), partial(window.show_sheet, number))
+            make_action(self._window, f"Sheet {name}", sheet_key(number), partial(self.sheet_asked.emit, number))
             for number, name in enumerate(SHEETS)
         ]
-        view = add_menu(window.menuBar(), "&View", (*sheets, self._wide, None, find))
-        themes, group = add_menu(view, "&Theme", ()), QActionGroup(window)
+        view = add_menu(self._window.menuBar(), "&View", (*sheets, self._wide, None, find))
+        themes, group = add_menu(view, "&Theme", ()), QActionGroup(self)
         self._themes = {}
         for choice, title in _THEMES.items():
-            action = make_action(window, title, None, partial(window.choose_theme, choice))
+            action = make_action(self._window, title, None, partial(self.theme_asked.emit, choice))
             action.setCheckable(True)
-            action.setChecked(choice is window.settings.theme)
             self._themes[choice] = group.addAction(action)
             themes.addAction(action)

@@ -10,6 +10,7 @@ from creditdesk.base.palette import Palette
 from creditdesk.case.convert import load_any
 from creditdesk.case.lead import with_lead_model
 from creditdesk.desk.app import make_application
+from creditdesk.desk.caseview import CaseView
 from creditdesk.desk.frame import SHEETS, STANDING
 from creditdesk.desk.session import Session
 from creditdesk.desk.window import Window
@@ -31,7 +32,7 @@ def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look:
     application = make_application()
     case = load_any(case_path, house.chart)
     window = Window(palette)
-    window.show_session(Session(with_lead_model(house, case, case_path.parent), case, case_path))
+    CaseView(window, Session(with_lead_model(house, case, case_path.parent), case, case_path))
     window.resize(width, height)
     window.show_named(names[sheet.lower()])
     window.show()

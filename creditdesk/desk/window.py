@@ -1,7 +1,7 @@
 """The window: a frame that needs Qt alone and is painted at once; the case comes into it when it has been read."""
 
 from pathlib import Path
-from typing import TYPE_CHECKING, cast
+from typing import TYPE_CHECKING, Protocol, cast
 
 from PySide6.QtCore import Qt, QTimer, Signal
 from PySide6.QtGui import (
@@ -25,7 +25,6 @@ from creditdesk.desk.sheetstack import SheetStack
 from creditdesk.desk.worker import Jobs
 
 if TYPE_CHECKING:
-    from creditdesk.desk.caseview import CaseView
     from creditdesk.desk.palette import CommandPalette
     from creditdesk.desk.session import Session
     from creditdesk.desk.sheets.base import Sheet
@@ -39,8 +38,24 @@ if TYPE_CHECKING:
 _FAULT_MILLISECONDS = 12_000
 
 
+class View(Protocol):
+    """Say what the window needs of that which shows a session in it."""
+
+    session: "Session"
+    standing: "StandingColumn"
+    issuer: "Issuer"
+    finder: "CommandPalette"
+
+    @property
+    def charted(self) -> bool:
+        """Say whether both charts are in."""
+
+    def close(self) -> None:
+        """Let the case go, because the window closes."""
+
+
 class Window(QMainWindow):
-    """Show one session; ``view`` is what the case brings, and there is none before ``show_session``.
+    """Hold what is the same for every case; ``view`` is what one brings, and there is none until it has been read.
 
     ``painted``: the first paint is over. ``ready``: both charts are in.
     """
@@ -57,7 +72,7 @@ class Window(QMainWindow):
         super().__init__()
         self.settings, self.jobs, self.undo_group = Settings(), Jobs(self), QUndoGroup(self)
         self._own_palette = palette
-        self._view: CaseView | None = None
+        self._view: View | None = None
         self._was_painted = False
         self.header, self.bar, self.stack, self.split = Header(), SheetBar(SHEETS), SheetStack(SHEETS), QSplitter()
         self._beside: QWidget = StandingPlace()
@@ -66,14 +81,15 @@ class Window(QMainWindow):
         self._lay_out()
         self._escape = QShortcut(Qt.Key.Key_Escape, self, lambda: self.show_wide(False))
         self._escape.setEnabled(False)
-        self.menus = Menus(self)
+        self.menus = Menus(self, self.undo_group)
         self._connect()
+        self.menus.show_theme(self.settings.theme)
         self._recolour()
         self.show_named(FIGURES)
 
     @property
-    def view(self) -> "CaseView":
-        """Return what the case brings."""
+    def view(self) -> View:
+        """Return what shows the case."""
         assert self._view is not None, "there is no case yet"
         return self._view
 
@@ -144,11 +160,13 @@ class Window(QMainWindow):
         self.header.obligor.show_text(name)
         self.stack.say(f"Opening {name}…")
 
-    def show_session(self, session: "Session") -> None:
-        """Fill the frame with a case, a part in each turn of the event loop."""
-        from creditdesk.desk.caseview import CaseView  # numpy comes with it; in memory since the case was read
-
-        self._view = CaseView(self, session)
+    def take(self, view: View) -> None:
+        """Take what a case brings: the Standing comes into its place."""
+        if self.focusWidget() is self._beside:
+            view.standing.setFocus()
+        self.split.replaceWidget(1, view.standing)
+        self._beside.deleteLater()
+        self._view, self._beside = view, view.standing
 
     def show_sheet(self, number: int) -> None:
         """Bring a sheet to the front."""
@@ -252,14 +270,6 @@ class Window(QMainWindow):
         super().closeEvent(event)
         self.closed.emit(self)
 
-    def put_standing(self, standing: QWidget) -> None:
-        """Put the Standing in its place."""
-        if self.focusWidget() is self._beside:
-            standing.setFocus()
-        self.split.replaceWidget(1, standing)
-        self._beside.deleteLater()
-        self._beside = standing
-
     def _taken(self, event: QDropEvent) -> Path | None:
         """Return the file dropped, where it can be taken: a memo is verified with the house book of the case."""
         path = files.dropped_path(event.mimeData())
@@ -297,6 +307,11 @@ class Window(QMainWindow):
     def _connect(self) -> None:
         self.bar.chosen.connect(self.show_sheet)
         self.bar.wide_asked.connect(self.show_wide)
+        self.menus.new_asked.connect(lambda: files.new_case(self, self.new_asked.emit))
+        self.menus.open_asked.connect(lambda: files.open_case(self, self.open_asked.emit))
+        self.menus.sheet_asked.connect(self.show_sheet)
+        self.menus.wide_asked.connect(lambda: self.show_wide(not self.wide))
+        self.menus.theme_asked.connect(self.choose_theme)
         QGuiApplication.styleHints().colorSchemeChanged.connect(self.follow_theme)
 
     def _recolour(self) -> None:

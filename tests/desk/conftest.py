@@ -11,6 +11,7 @@ from pytestqt.qtbot import QtBot
 from creditdesk.case.convert import load_any
 from creditdesk.case.document import Case
 from creditdesk.desk.app import make_application
+from creditdesk.desk.caseview import CaseView
 from creditdesk.desk.session import Session
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
@@ -65,7 +66,7 @@ def open_window(qtbot: QtBot, house: HouseBook, tmp_path: Path) -> Iterator[Call
             QSettings().clear()
         window = Window()
         windows.append(window)
-        window.show_session(session)
+        CaseView(window, session)
         window.show()
         qtbot.waitUntil(lambda: window.settled, timeout=20_000)
         return window

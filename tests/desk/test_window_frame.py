@@ -15,12 +15,14 @@ from creditdesk.case.store import CaseFile
 from creditdesk.case.trail import utc_now
 from creditdesk.desk.actions import keys_of, placed_actions, plain, reason_of
 from creditdesk.desk.app import Desk, make_application
+from creditdesk.desk.caseview import CaseView
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings, Theme
 from creditdesk.desk.sheets.memo import MemoSheet
 from creditdesk.desk.start import Start
 from creditdesk.desk.window import SHEETS, Window
 from creditdesk.house.book import HouseBook
+from tests.programs import SOUND, STRETCHED
 
 ALT = Qt.KeyboardModifier.AltModifier
 
@@ -111,13 +113,12 @@ def test_a_theme_from_the_menu_is_worn_at_once_and_remembered(window: Window) ->
     assert Settings().theme is Theme.SYSTEM
 
 
-def test_all_windows_follow_one_choice(
-    qtbot: QtBot, house: HouseBook, sound_case: Case, stretched_case: Case, tmp_path: Path
-) -> None:
+def test_all_windows_follow_one_choice(qtbot: QtBot, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("CREDITDESK_DRAFTS", str(tmp_path))
     make_application()
     QSettings().clear()
     desk = Desk()
-    windows = [desk.show_session(Session(house, case, tmp_path)) for case in (sound_case, stretched_case)]
+    windows = [desk.open_path(path) for path in (SOUND, STRETCHED)]
     for window in windows:
         qtbot.waitUntil(lambda window=window: window.settled, timeout=20_000)
     _action(windows[0], "Dark").trigger()
@@ -214,7 +215,7 @@ def test_sheets_out_of_sight_are_made_after_the_first_paint(
     QSettings().clear()
     window = Window()
     qtbot.addWidget(window)
-    window.show_session(Session(house, sound_case, tmp_path / "case.deskcase"))
+    CaseView(window, Session(house, sound_case, tmp_path / "case.deskcase"))
     window.show()
     qtbot.waitUntil(lambda: bool(window.stack.present))
     assert [sheet.title for sheet in window.stack.present] == ["Figures"]
