@@ -42,8 +42,8 @@ def verdict(
         why = scored.why_none(period) or why_no_pd(scored.spec) or ""
         return Verdict(None, None, None, None, None, GradeStanding(NO_GRADE, NO_GRADE, NO_GRADE, (why,)), (why,))
     pd_judged = pd_calibrated  # judgement moves it here once a case carries any
-    _, model_grade = graded(house, pd_calibrated)
     pd, judged = graded(house, pd_judged)
+    model_grade = judged if pd_judged == pd_calibrated else graded(house, pd_calibrated)[1]
     assert pd is not None
     outcome = apply_rules(house.rules, house.scale, _env(statements, table, period, outside=outside), judged)
     final = NO_GRADE if outcome.stopped else outcome.grade

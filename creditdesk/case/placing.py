@@ -1,6 +1,7 @@
 """Where a score stands: the fitted curve, the sample's bins, the grade bands."""
 
 from collections.abc import Sequence
+from functools import lru_cache
 
 import numpy as np
 
@@ -22,19 +23,20 @@ def fitted_curve(scored: Scored, scale: MasterScale, level: float, shown: Sequen
 
     ``shown``: indices of the periods that stand on it.
     """
-    spec = scored.spec
-    if spec.link is Link.NONE:
+    if scored.spec.link is Link.NONE:
         return None
-    scores = np.linspace(*_span(scored, shown), _POINTS)
+    return _curve(scored.spec, scale, level, _span(scored, shown))
+
+
+@lru_cache(maxsize=16)
+def _curve(spec: ModelSpec, scale: MasterScale, level: float, span: tuple[float, float]) -> Curve:
+    """Draw the curve from score to score; kept, as it is the same for most borrowers."""
+    scores = np.linspace(*span, _POINTS)
     band = interval(spec, scores, curve_error(spec, scores), level)
-    return Curve(
-        scores=scores,
-        pd=calibrated_pd(spec, scores),
-        low=band.pd_low,
-        high=band.pd_high,
-        bins=_bins(spec),
-        bands=_bands(scale),
-    )
+    curve = Curve(scores, calibrated_pd(spec, scores), band.pd_low, band.pd_high, _bins(spec), _bands(scale))
+    for array in (curve.scores, curve.pd, curve.low, curve.high):
+        array.flags.writeable = False
+    return curve
 
 
 def _bands(scale: MasterScale) -> tuple[GradeBand, ...]:

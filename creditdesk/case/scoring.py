@@ -1,19 +1,20 @@
 """One model applied to every period of one borrower."""
 
-from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
+from math import isnan
 
 import numpy as np
 from numpy.typing import NDArray
 
-from creditdesk.case.standing import FactorStanding, Term
+from creditdesk.case.standing import FactorStanding, Term, Treatment
 from creditdesk.case.treatment import treatment_of
 from creditdesk.model.calibrate import calibrated_pd
 from creditdesk.model.contribute import Contributions, contribute
 from creditdesk.model.interval import ScoreInterval, interval, standard_error
 from creditdesk.model.sample import from_ratios, place_in_sample
 from creditdesk.model.score import model_pd, score, why_no_score
-from creditdesk.model.spec import REASONS, Link, ModelSpec
+from creditdesk.model.spec import REASONS, Factor, Link, ModelSpec, terms_of
 from creditdesk.model.treat import Design, treat, treat_reference
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.compute import RatioTable
@@ -70,38 +71,67 @@ def factor_standings(
     scored: Scored, catalogue: Catalogue, table: RatioTable, period: int
 ) -> tuple[FactorStanding, ...]:
     """Show every factor of one period, in the model's order."""
-    return tuple(_factor(scored, catalogue, table, number, period) for number in range(len(scored.spec.factors)))
+    kinds = _kinds(scored.spec, catalogue)
+    return tuple(_factor(scored, kind, _why(scored, catalogue, table, kind, period), period) for kind in kinds)
 
 
-def _factor(scored: Scored, catalogue: Catalogue, table: RatioTable, number: int, period: int) -> FactorStanding:
-    factor, design = scored.spec.factors[number], scored.design
-    value, code = float(scored.values[number, period]), int(scored.reasons[number, period])
-    treated, reference = float(design.treated[number, period]), float(scored.reference.treated[number])
-    known = not np.isnan(scored.scores[period])
-    contributions = scored.contributions
-    reason = REASONS[code - 1] if code else None
+@dataclass(frozen=True, slots=True)
+class _Kind:
+    """Hold what a model says of one factor whatever the borrower; ``terms``: places of its terms."""
+
+    number: int
+    factor: Factor
+    unit: str
+    treatment: Treatment
+    terms: tuple[int, ...]
+
+
+@lru_cache(maxsize=64)
+def _kinds(spec: ModelSpec, catalogue: Catalogue) -> tuple[_Kind, ...]:
+    """Describe the factors of a model; kept, as neither model nor catalogue changes."""
+    owners = [term.factor for term in terms_of(spec)]
+    return tuple(
+        _Kind(
+            number,
+            factor,
+            catalogue.spec(factor.ratio).unit.value,
+            treatment_of(factor, None),
+            tuple(place for place, owner in enumerate(owners) if owner == number),
+        )
+        for number, factor in enumerate(spec.factors)
+    )
+
+
+def _why(scored: Scored, catalogue: Catalogue, table: RatioTable, kind: _Kind, period: int) -> tuple[str, str] | None:
+    """Return why a factor has no value, as key and sentence; None where it has one."""
+    code = int(scored.reasons[kind.number, period])
+    return (REASONS[code - 1], reason_text(catalogue, table, kind.factor.ratio, period)) if code else None
+
+
+def _factor(scored: Scored, kind: _Kind, why: tuple[str, str] | None, period: int) -> FactorStanding:
+    number, factor, design, contributions = kind.number, kind.factor, scored.design, scored.contributions
+    value, treated = float(scored.values[number, period]), float(design.treated[number, period])
+    reference = float(scored.reference.treated[number])
+    known = not isnan(scored.scores[period])
     return FactorStanding(
         key=factor.key,
         label=factor.label,
         ratio=factor.ratio,
-        unit=catalogue.spec(factor.ratio).unit.value,
-        value=None if code else value,
-        reason=reason,
-        reason_text=reason_text(catalogue, table, factor.ratio, period) if code else "",
-        treated=None if np.isnan(treated) else treated,
+        unit=kind.unit,
+        value=None if why else value,
+        reason=why[0] if why else None,
+        reason_text=why[1] if why else "",
+        treated=None if isnan(treated) else treated,
         log_odds=float(contributions.log_odds[number, period]) if known else None,
         pd_share=float(contributions.pd_share[number, period]) if known and scored.spec.link is not Link.NONE else None,
         capped=bool(design.capped[number, period]),
-        terms=tuple(_terms(scored, number, period)),
-        reference_value=None if np.isnan(reference) else reference,
-        place=None if code else place_in_sample(scored.spec, factor.key, value),
-        treatment=treatment_of(factor, reason),
+        terms=tuple(_term(scored, place, period) for place in kind.terms),
+        reference_value=None if isnan(reference) else reference,
+        place=None if why else place_in_sample(scored.spec, factor.key, value),
+        treatment=treatment_of(factor, why[0]) if why else kind.treatment,
     )
 
 
-def _terms(scored: Scored, number: int, period: int) -> Iterator[Term]:
-    design, reference = scored.design, scored.reference
-    for place, term in enumerate(design.names):
-        if term.factor == number:
-            value, start = float(design.terms[place, period]), float(reference.terms[place])
-            yield Term(term.name, value, term.coefficient, start)
+def _term(scored: Scored, place: int, period: int) -> Term:
+    term, design = scored.design.names[place], scored.design
+    return Term(term.name, float(design.terms[place, period]), term.coefficient, float(scored.reference.terms[place]))

@@ -43,15 +43,16 @@ def treat(spec: ModelSpec, values: FloatArray, reasons: ReasonArray) -> Design:
     else a code of ``REASON_CODES``. Raises BugError where a ratio has neither a value nor a reason.
     """
     known = reasons == 0
-    if np.any(np.isnan(values) & known):
+    if (np.isnan(values) & known).any():
         message = "a ratio has neither a value nor a reason for having none"
         raise BugError(message)
     laid, column = layout(spec), (-1, *(1,) * (values.ndim - 1))
     low, high, row = (one.reshape(column) for one in (laid.low, laid.high, np.arange(len(laid.low))))
-    treated = np.where(known, np.clip(values, low, high), laid.at_cap[row, reasons])
+    treated = np.where(known, np.minimum(np.maximum(values, low), high), laid.at_cap[row, reasons])
     terms = np.empty((len(laid.names), *values.shape[1:]))
     terms[laid.main] = _main_terms(laid, treated, column)
-    terms[laid.switches] = laid.switched[np.arange(len(laid.switches)).reshape(column), reasons[laid.owners]]
+    if len(laid.switches):
+        terms[laid.switches] = laid.switched[np.arange(len(laid.switches)).reshape(column), reasons[laid.owners]]
     return Design(
         names=laid.names,
         terms=terms,

@@ -152,6 +152,8 @@ def _unit_jumps(statements: StatementSet) -> Iterator[Finding]:
         pair = np.abs(first[np.ix_(lines, [before, after])])
         both = pair[np.all((pair > 0) & np.isfinite(pair), axis=1)]
         jumps = np.log10(both[:, 1]) - np.log10(both[:, 0])  # a quotient of extremes would overflow
+        if not (np.abs(jumps) > UNIT_JUMPS[0] - _JUMP_SLACK).any():
+            continue
         for power in (sign * size for size in UNIT_JUMPS for sign in (1, -1)):
             count = int(np.count_nonzero(np.abs(jumps - power) < _JUMP_SLACK))
             if count >= _JUMP_LINES and 2 * count > len(jumps):
