@@ -9,9 +9,8 @@ from creditdesk.flow.ground import Ground
 
 
 def write_cash_flow(ground: Ground, asked: Asked, entries: Entries, terms: Terms) -> None:
-    """Take marks on section totals, move cash by what balances, and write every cash flow line that follows."""
+    """Take marks on the other totals, move cash by what balances, and write every cash flow line that follows."""
     roles = ground.plan.book.roles
-    _balance_investing(ground, asked, entries)
     _balance_financing(ground, asked, entries)
     operating = _operating(ground, asked, entries)
     if roles.operating_cash_flow in asked.levels:
@@ -55,7 +54,8 @@ def _operating(ground: Ground, asked: Asked, entries: Entries) -> Jet:
     return change + interest_paid_change(ground, asked, entries) if ground.interest_in_financing else change
 
 
-def _balance_investing(ground: Ground, asked: Asked, entries: Entries) -> None:
+def balance_investing(ground: Ground, asked: Asked, entries: Entries) -> None:
+    """Let a marked total of investing take its balance line along, before the year is closed."""
     line = ground.plan.book.roles.investing_cash_flow
     if line in asked.levels:
         _plug(ground, entries, line, section_change(ground, entries, Section.INVESTING))

@@ -11,7 +11,7 @@ from creditdesk.base.jets import NIL, Jet
 from creditdesk.flow.asked import Asked, Directions, read_moves, refusals
 from creditdesk.flow.assumptions import Assumptions, Overrides
 from creditdesk.flow.book import FlowBook
-from creditdesk.flow.cash import write_cash_flow
+from creditdesk.flow.cash import balance_investing, write_cash_flow
 from creditdesk.flow.closing import Terms, close_year
 from creditdesk.flow.doubts import flow_doubts
 from creditdesk.flow.entries import Entries, total
@@ -108,6 +108,7 @@ def run_flow(
 def _run(ground: Ground, moves: Moves, directions: Directions) -> _Pass:
     asked = read_moves(ground, moves, directions)
     entries = move_operations(ground, asked)
+    balance_investing(ground, asked, entries)
     terms = close_year(ground, asked, entries)
     write_cash_flow(ground, asked, entries, terms)
     own, changes = _add_up(ground, asked, entries)
