@@ -245,7 +245,7 @@ def new_case_by_mouse(window: Watched, hands: Hands, kept: Path) -> None:
     pasted_into(window, hands, "Obligor's name", OBLIGOR)
     hands.click(window.look("scene")["things"]["Yearly periods"]["lower"])
     window.scene(lambda shown: shown["things"]["Yearly periods"]["text"] == "2")
-    pressed(window, hands, "OK")
+    pressed(window, hands, "Make…")
     dialog(window, hands, "Keep the case in")
     pasted_into(window, hands, "fileNameEdit", str(kept))
     pressed(window, hands, "Save")
