@@ -129,7 +129,7 @@ def _held(ground: Ground, target: str, marked: Moves) -> Iterator[str]:
     """Say of a balance line that is not marked which marked section total it balances."""
     for line in _section_totals(ground):
         if target not in marked and line in marked and ground.plan.counters[line].counter == target:
-            yield f"{ground.label(target)} takes what the mark on {ground.label(line).lower()} leaves."
+            yield f"{ground.label(target)}: takes what the mark on {ground.label(line).lower()} leaves."
 
 
 def _jet(ground: Ground, target: str, move: Move, slope: FloatArray | None) -> Jet:
@@ -151,9 +151,9 @@ def _reasons(ground: Ground, target: str, move: Move, marked: Moves) -> Iterator
         follower = next(one for one in ground.plan.book.followers if one.days == target)
         yield from _undisclosed(ground, follower.days, follower.line, base_of(ground, follower), _cash(ground))
         if isnan(days_of(ground, follower)):
-            yield f"{ground.label(base_of(ground, follower))} is nil: there are no days to keep."
+            yield f"{ground.label(base_of(ground, follower))}: nil, so there are no days to keep."
         if follower.line in marked:
-            yield f"{ground.label(follower.line)} is marked itself, and that counts."
+            yield f"{ground.label(follower.line)}: marked itself, and that counts."
 
 
 def _cash(ground: Ground) -> str:
@@ -165,8 +165,8 @@ def _undisclosed(ground: Ground, target: str, *needed: str) -> Iterator[str]:
     for key in needed:
         if not ground.known(key):
             label = ground.label(key)
-            own = f"{label} {period_label(ground.period)} is not disclosed"
-            yield f"{own}: there is nothing to move." if key == target else f"{own}, and the mark runs through it."
+            own = f"{label} {period_label(ground.period)}: not disclosed"
+            yield f"{own}, so there is nothing to move." if key == target else f"{own}, and the mark runs through it."
 
 
 def _driver_reasons(ground: Ground, target: str, move: Move, marked: Moves) -> Iterator[str]:
@@ -186,7 +186,7 @@ def _driver_reasons(ground: Ground, target: str, move: Move, marked: Moves) -> I
         yield "Selling prices cannot fall by 100 % or more."
     fixed = {OPERATING_RESULT: roles.result_line, INTEREST_RATE: roles.finance_costs}.get(target)
     if fixed is not None and fixed in marked:
-        yield f"{ground.label(fixed)} is marked itself, and that counts."
+        yield f"{ground.label(fixed)}: marked itself, and that counts."
 
 
 def _line_reasons(ground: Ground, line: str, move: Move, marked: Moves) -> Iterator[str]:
@@ -204,7 +204,7 @@ def _line_reasons(ground: Ground, line: str, move: Move, marked: Moves) -> Itera
     if entry is not None:
         yield from _undisclosed(ground, line, entry.counter)
         if line in _section_totals(ground) and entry.counter in marked:
-            yield f"{ground.label(entry.counter)} is marked itself: nothing is left that could take it."
+            yield f"{ground.label(entry.counter)}: marked itself, so nothing is left that could take it."
     if line == roles.cash and not balancing_line(ground, marked):
         yield "Nothing is left to balance with: cash is marked, and no debt can take what it takes."
 

@@ -20,7 +20,7 @@ def flow_doubts(ground: Ground, asked: Asked, changes: Mapping[str, Jet], terms:
     """List the doubts of a flow; those on amounts only for one point, as draws differ."""
     found = list(_not_following(ground, asked, changes, terms))
     if all(np.ndim(one.value) == 0 for one in (*changes.values(), terms.drawn)):
-        found += _short_of_cash(ground, changes, terms)
+        found += _short_of_cash(ground, asked, changes, terms)
         found += _beyond_commitments(ground, changes, terms)
         found += _below_nil(ground, changes)
     return tuple(found)
@@ -48,17 +48,17 @@ def _not_following(ground: Ground, asked: Asked, changes: Mapping[str, Jet], ter
     if terms.rate and any(line in changes for line in ground.plan.debt):
         waiting.append((roles.finance_costs, "debt"))
     if any(line in changes for line in ground.plan.before_tax) and not ground.known(roles.profit_before_tax):
-        text = f"Profit before tax {year} is not disclosed: income tax does not follow."
+        text = f"{ground.label(roles.profit_before_tax)} {year}: not disclosed, so income tax does not follow."
         yield _finding(ground, "stays", roles.income_tax, text)
     elif any(line in changes for line in ground.plan.before_tax):
         waiting.append((roles.income_tax, "profit"))
     for line, base in waiting:
         if not ground.known(line) and line not in asked.levels:
-            text = f"{ground.label(line)} {year} is not disclosed: it does not follow {base}."
+            text = f"{ground.label(line)} {year}: not disclosed, so nothing there follows {base}."
             yield _finding(ground, "stays", line, text)
 
 
-def _short_of_cash(ground: Ground, changes: Mapping[str, Jet], terms: Terms) -> Iterator[Finding]:
+def _short_of_cash(ground: Ground, asked: Asked, changes: Mapping[str, Jet], terms: Terms) -> Iterator[Finding]:
     roles = ground.plan.book.roles
     if not ground.known(roles.cash):
         return
@@ -66,12 +66,14 @@ def _short_of_cash(ground: Ground, changes: Mapping[str, Jet], terms: Terms) -> 
     if after >= terms.minimum - _NOISE * max(1.0, abs(terms.minimum), ground.ink[roles.cash]) or terms.balancing:
         return
     chosen = str(ground.assumptions.values["balancing_debt"])
-    why = "no debt is chosen to fill it"
-    if chosen != NO_DEBT:
-        state = "is not disclosed" if not ground.known(chosen) else "is marked"
-        why = f"{ground.label(chosen).lower()}, which would fill it, {state}"
-        if ground.known(chosen) and chosen not in changes:
-            why = f"{ground.label(roles.financing_cash_flow).lower()} is marked, and new debt would move it"
+    if chosen == NO_DEBT:
+        why = "no debt is chosen to fill it"
+    elif not ground.known(chosen):
+        why = f"the debt that would fill it is not disclosed ({ground.label(chosen).lower()})"
+    elif chosen in asked.levels:
+        why = f"the debt that would fill it is marked ({ground.label(chosen).lower()})"
+    else:
+        why = f"{ground.label(roles.financing_cash_flow).lower()} is marked, and new debt would move it"
     edge = "nil" if after < 0 else f"its minimum of {format_amount(terms.minimum)}"
     yield _finding(ground, "short_of_cash", roles.cash, f"Cash comes to {format_amount(after)}, below {edge}: {why}.")
 
@@ -99,5 +101,5 @@ def _below_nil(ground: Ground, changes: Mapping[str, Jet]) -> Iterator[Finding]:
             continue
         after = ground.ink[line] + float(change.value)
         if after < -_NOISE * max(1.0, abs(ground.ink[line])) and ground.ink[line] >= 0:
-            text = f"{ground.label(line)} {period_label(ground.period)} comes to {format_amount(after)}, below nil."
+            text = f"{ground.label(line)} {period_label(ground.period)}: {format_amount(after)}, below nil."
             yield _finding(ground, "below_nil", line, text)
