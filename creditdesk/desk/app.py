@@ -8,7 +8,6 @@ from PySide6.QtGui import QFontDatabase
 from PySide6.QtWidgets import QApplication, QMessageBox, QWidget
 
 from creditdesk.base.errors import UserError
-from creditdesk.base.palette import Palette
 from creditdesk.desk import crash, theme
 from creditdesk.desk.fetching import fetching, spare_what_is_loaded
 from creditdesk.desk.files import show_faults
@@ -50,13 +49,12 @@ class Desk(QObject):
 
     crashed = Signal(Path)
 
-    def __init__(self, housebook: Path | None = None, palette: Palette | None = None) -> None:
+    def __init__(self, housebook: Path | None = None) -> None:
         super().__init__()
         self.windows: list[Window] = []
         self.fault: BaseException | None = None
         self._housebook = housebook or resources_folder() / "housebook"
         self._house: HouseBook | None = None
-        self._palette = palette
         self._jobs = Jobs(self)
         self._start: Start | None = None
         self.crashed.connect(self._on_crash)
@@ -138,14 +136,15 @@ class Desk(QObject):
         """Say why what ``where`` was waiting for cannot be shown, and close it; with nothing else open, that is all."""
         if isinstance(error, UserError):
             show_faults(where, title, error)
-        others = any(window is not where for window in (*self.windows, self._start) if window is not None)
+        shown = [window for window in (*self.windows, self._start) if window is not None and window.isVisible()]
+        others = any(window is not where for window in shown)
         self.fault = None if others else error
         self._close_start() if where is self._start else where.close()
         if others and not isinstance(error, UserError):
             raise error
 
     def _show_window(self, name: str) -> Window:
-        window = Window(self._palette)
+        window = Window()
         window.show_opening(name)
         window.open_asked.connect(self.open_path)
         window.new_asked.connect(self.new_path)
