@@ -145,7 +145,7 @@ class PencilBoard:
 
 
 def _ground(case: Case, house: HouseBook, ink: Standing) -> Ground:
-    spec, period = house.models[ink.model.name].spec, ink.period_index
+    spec, period = house.models[case.model.lead or house.settings.lead_model].spec, ink.period_index
     tables = RatioTables(case, house.catalogue, ink.statements)
     unsized = msgspec.structs.replace(spec.scope, total_assets_low=None, total_assets_high=None)
     who = borrower(case, spec, ink.statements, tables, period)

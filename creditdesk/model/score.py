@@ -13,7 +13,7 @@ BoolArray = NDArray[np.bool_]
 
 def usable(spec: ModelSpec, design: Design) -> BoolArray:
     """Mark the points that have a score: no factor refuses, not more than ``max_missing`` are missing."""
-    refused: BoolArray = design.refused.any(axis=0)
+    refused: BoolArray = np.asarray(design.refused.any(axis=0))
     return ~refused & (design.missing_count() <= spec.max_missing)
 
 

@@ -12,13 +12,13 @@ from hypothesis import strategies as st
 
 from creditdesk.base.errors import BugError, UserError
 from creditdesk.case.assess import assess
-from creditdesk.case.document import Case
+from creditdesk.case.document import Case, ModelChoice
 from creditdesk.case.pencil import PencilBoard, Pencilled
 from creditdesk.case.result import result_bytes
 from creditdesk.case.standing import Standing
 from creditdesk.flow.moves import Move, MoveKind, Moves
 from creditdesk.grading.rules import Effect, HouseRule, RuleFile, compile_rules
-from creditdesk.house.book import HouseBook
+from creditdesk.house.book import HouseBook, LoadedModel, with_model
 from creditdesk.ratios.compute import HELD
 from creditdesk.scenario.marks import Mark, Scenario, moves_of
 from creditdesk.scenario.outcomes import COEFFICIENTS, DRAWS_MOST, Outcomes
@@ -288,6 +288,16 @@ def test_a_rule_may_name_ratios_and_stop_some_draws() -> None:
     assert found.grade[1] == -1
     pencilled = worked_out(Mark("operating_result", BY, -3_000.0), board=board)
     same_numbers(board.evaluate(pencilled.moves), pencilled.standing, house)
+
+
+def test_the_lead_model_may_stand_under_another_name_than_its_own() -> None:
+    model = HOUSE.models[HOUSE.settings.lead_model]
+    shifted = msgspec.structs.replace(model.spec, intercept=model.spec.intercept + 0.5)
+    house = with_model(HOUSE, LoadedModel(shifted, "made up"), "ours.toml")
+    board = PencilBoard(msgspec.structs.replace(demo(), model=ModelChoice("ours.toml")), house)
+    pencilled = worked_out(by_pct("revenue", -10.0), board=board)
+    same_numbers(board.evaluate(pencilled.moves), pencilled.standing)
+    assert float(board.evaluate({}).score) == pytest.approx(number(BOARDS[0].ink.score) + 0.5)
 
 
 def test_an_ink_that_does_not_balance_has_no_grade_under_any_mark() -> None:
