@@ -33,13 +33,14 @@ FloatArray = NDArray[np.float64]
 class Pencilled:
     """Hold a scenario worked out.
 
-    ``steps``: how the marks ran through the statements, in order. ``findings``: what was refused, and what a reader
+    ``flow``: what every line moves by, and the numbers behind interest, tax and balancing. ``steps``: how the marks ran through the statements, in order. ``findings``: what was refused, and what a reader
     should know of the marks; those of the figures stand in ``standing``. ``held``: ratios held at a value.
     """
 
     scenario: Scenario
     moves: Moves
     standing: Standing
+    flow: Flow
     steps: tuple[FlowStep, ...]
     findings: tuple[Finding, ...]
     held: Mapping[str, float]
@@ -73,6 +74,7 @@ class PencilBoard:
             scenario=scenario,
             moves=moves,
             standing=assess_statements(self._case, self._house, pencilled),
+            flow=flow,
             steps=steps(self._book, self.ink.statements, flow),
             findings=(*flow.findings, *findings),
             held=marked,

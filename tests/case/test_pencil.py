@@ -5,6 +5,7 @@ from dataclasses import replace
 from datetime import date
 from statistics import NormalDist
 
+import msgspec
 import numpy as np
 import pytest
 from hypothesis import given, settings
