@@ -215,7 +215,7 @@ class CaseView(QObject):
 
     def _on_recoloured(self) -> None:
         self.finder.recolour(self._window.theme)
-        self._put_charts()
+        self._soon(self._put_charts)  # to draw them takes as long as to dress all the rest
 
     def _show_last_recorded(self) -> None:
         trail = self.session.trail()

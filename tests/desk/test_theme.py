@@ -13,9 +13,10 @@ from creditdesk.base.palette import DARK, LIGHT, Palette
 from creditdesk.case.document import Case
 from creditdesk.desk import theme
 from creditdesk.desk.app import make_application
+from creditdesk.desk.frame import SHEETS
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings, Theme
-from creditdesk.desk.window import SHEETS, Window
+from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
 
 
@@ -56,6 +57,7 @@ def test_a_theme_changed_looks_as_one_worn_from_the_start(
     for choice in (Theme.LIGHT, Theme.DARK):
         window.settings.theme = choice
         window.follow_theme()
+        qtbot.waitUntil(lambda: window.standing._palette is window.theme)  # charts come a moment later
         assert _all_sheets(qtbot, window) == pictures[choice], choice
 
 
