@@ -26,7 +26,7 @@ from creditdesk.house.book import HouseBook
 def open_session(path: Path, house: HouseBook) -> Session:
     """Return a session on a case file, or on a working copy of an exchange file. Raises UserError."""
     if path.suffix != ".deskcase":
-        case = load_any(path, house.chart)
+        case = load_any(path, house.chart, house)
         return new_session(_draft_path(path), case, with_lead_model(house, case, path.parent))
     file = CaseFile.open(path, actor=getpass.getuser())
     return _session(file, house, path)
@@ -40,7 +40,7 @@ def new_session(path: Path, case: Case, house: HouseBook) -> Session:
 def _session(file: CaseFile, house: HouseBook, path: Path) -> Session:
     """Return a session on an open case file, living on the main thread; where there can be none, let the file go."""
     try:
-        check_case(file.case, house.chart, file=str(path))
+        check_case(file.case, house.chart, file=str(path), house=house)
         session = Session(with_lead_model(house, file.case, path.parent), file.case, path, file)
     except BaseException:
         file.close()

@@ -30,7 +30,7 @@ def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look:
         raise UsageError("sheet", f"There is no sheet {sheet!r}: choose one of {', '.join(names)}.")
     palette, width, height = look
     application = make_application()
-    case = load_any(case_path, house.chart)
+    case = load_any(case_path, house.chart, house)
     window = Window(palette)
     CaseView(window, Session(with_lead_model(house, case, case_path.parent), case, case_path))
     window.resize(width, height)

@@ -15,6 +15,7 @@ from creditdesk.case.exchange_schema import exchange_schema
 from creditdesk.house.book import HouseBook
 from creditdesk.house.load import load_house_book
 from creditdesk.house.shipped import resources_folder
+from creditdesk.scenario.stress import asks_for_judgement, scenario_of
 
 NAMES = ("brackwater-millworks", "tarnside-castings")
 PERIODS = (0, 1, 2)
@@ -186,6 +187,18 @@ def test_the_printed_schema_accepts_the_demo_cases_and_what_is_written(demo: Cas
     Draft202012Validator.check_schema(schema)
     for data in (demo_path(name).read_bytes(), write_case(demo, house.chart)):
         assert list(Draft202012Validator(schema).iter_errors(in_json_terms(tomllib.loads(data.decode())))) == []
+
+
+def test_the_what_ifs_name_what_the_house_knows_and_stand_as_they_are_written(
+    demo: Case, name: str, house: HouseBook
+) -> None:
+    assert read_case(demo_path(name).read_bytes(), house.chart, file=name, house=house) == demo
+    assert 2 <= len(demo.scenarios) <= 3
+    assert house.stress is not None
+    assert not any(asks_for_judgement(house.stress, scenario) for scenario in demo.scenarios)
+    assert all(scenario.rationale for scenario in demo.scenarios)
+    (both,) = (scenario for scenario in demo.scenarios if scenario.event == "sales_and_rate")
+    assert both.marks == scenario_of(house.stress, both.event).marks
 
 
 SLIPS: list[tuple[list[str | int], object]] = [
