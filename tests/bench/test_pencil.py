@@ -10,6 +10,7 @@ import numpy as np
 import pytest
 from pytest_benchmark.fixture import BenchmarkFixture
 
+from creditdesk.case.assess import assess
 from creditdesk.case.convert import load_any
 from creditdesk.case.document import Case
 from creditdesk.case.pencil import PencilBoard
@@ -26,7 +27,7 @@ from tests.bench.test_assess import in_turn
 from tests.programs import SOUND
 
 POINTS, DRAWS, ROUNDS = 101, 100_000, 15
-MOST_TIMES_FLAT, MOST_BYTES, MOST_SECONDS = 20, 300_000_000, 0.006
+MOST_TIMES_FLAT, MOST_TIMES_INK, MOST_BYTES = 20, 1.5, 300_000_000
 SALES, RATE = "revenue", "interest_rate"
 
 
@@ -104,12 +105,16 @@ def test_what_many_points_cost(
 
 
 @pytest.mark.long
-def test_what_one_move_of_a_slider_costs(benchmark: BenchmarkFixture, board: PencilBoard) -> None:
+def test_what_one_move_of_a_slider_costs(
+    benchmark: BenchmarkFixture, board: PencilBoard, case: Case, house: HouseBook
+) -> None:
+    """A whole standing in pencil, against that of the ink in the same run: about 4 ms where nothing else runs."""
     marks = (Mark(SALES, MoveKind.BY_PCT, -20.0), Mark(RATE, MoveKind.BY, 200.0))
     scenario = Scenario("sales and rates", marks)
     moves = board.scenario(scenario).moves
     benchmark(board.scenario, scenario)
     if benchmark.enabled:
-        whole, numbers = in_turn(lambda: board.scenario(scenario), lambda: board.evaluate(moves))
-        benchmark.extra_info.update(scenario_ms=1000 * whole, evaluate_ms=1000 * numbers)
-        assert whole <= MOST_SECONDS, benchmark.extra_info
+        whole, ink = in_turn(lambda: board.scenario(scenario), lambda: assess(case, house))
+        numbers, _ = in_turn(lambda: board.evaluate(moves), lambda: None)
+        benchmark.extra_info.update(scenario_ms=1000 * whole, assess_ms=1000 * ink, evaluate_ms=1000 * numbers)
+        assert whole <= MOST_TIMES_INK * ink, benchmark.extra_info
