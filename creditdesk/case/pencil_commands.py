@@ -258,7 +258,8 @@ class RemoveStudy(Edit, frozen=True, tag="remove_study"):
 def inked_adjustment(changes: Iterable[tuple[str, float]], period: date, *, reason: str, author: str) -> Adjustment:
     """Return the restatement that changes lines by the amounts the flow gives; lines that do not change are left out.
 
-    ``changes``: line and amount in the case's unit, together keeping assets = liabilities + equity.
+    ``changes``: line and amount in the case's unit, together keeping assets = liabilities + equity, as ``Flow.entries``
+    does for the marks inked in. Marks that the flow refused, and ratios held at a value, have none.
     """
     entries = tuple(Entry(line, float(amount)) for line, amount in changes if amount)
     return Adjustment(AdjustmentKind.RESTATE, period, entries, reason, author)

@@ -6,9 +6,11 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from creditdesk.base.errors import UserError
+from creditdesk.case.assess import assess
 from creditdesk.case.commands import Command, apply, command_from_json, command_to_json
 from creditdesk.case.document import Case
 from creditdesk.case.exchange import read_case, write_case
+from creditdesk.case.pencil import PencilBoard
 from creditdesk.case.pencil_commands import (
     AddScenario,
     AddStudy,
@@ -34,6 +36,7 @@ from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.statements.adjust import Adjustment, AdjustmentKind, Entry
 from creditdesk.statements.chart import Chart
 from tests import pencils
+from tests.borrowers import SOUND, STRETCHED, demo, shipped_house
 from tests.pencils import DOWNTURN, PLAN, RATE, SALES, STUDIES
 
 DAY = date(2025, 12, 31)
@@ -116,6 +119,20 @@ def test_inking_in_makes_one_adjustment_and_rubs_its_marks_out(penned: Case, cha
         Entry("cash", -5.0), Entry("revenue", -10.0), Entry("retained_earnings", -5.0),
     )  # fmt: skip
     assert (after.figures, after.studies) == (penned.figures, penned.studies)
+
+
+@pytest.mark.parametrize("name", [SOUND, STRETCHED])
+def test_a_scenario_inked_in_stands_where_the_pencil_stood(name: str) -> None:
+    house, case = shipped_house(), demo(name)
+    for scenario in (one for one in case.scenarios if one.marks):
+        pencilled = PencilBoard(case, house).scenario(scenario)
+        changes = [(line, float(jet.value)) for line, jet in pencilled.flow.entries.items()]
+        adjustment = inked_adjustment(changes, case.periods[-1].ends, reason="It came to pass", author="A. Clerk")
+        targets = tuple(mark.target for mark in scenario.marks)
+        inked = apply(case, InkIn(scenario.name, targets, adjustment), house.chart)
+        assert next(one for one in inked.scenarios if one.name == scenario.name).marks == ()
+        assert assess(inked, house).pd == pytest.approx(pencilled.standing.pd, rel=1e-9)
+        assert assess(inked, house).pd != pytest.approx(assess(case, house).pd, rel=1e-3)
 
 
 def test_what_cannot_be_inked_in_is_refused(penned: Case, chart: Chart) -> None:
