@@ -33,8 +33,9 @@ FloatArray = NDArray[np.float64]
 class Pencilled:
     """Hold a scenario worked out.
 
-    ``flow``: what every line moves by, and the numbers behind interest, tax and balancing. ``steps``: how the marks ran through the statements, in order. ``findings``: what was refused, and what a reader
-    should know of the marks; those of the figures stand in ``standing``. ``held``: ratios held at a value.
+    ``flow``: what lines move by, and the numbers behind interest, tax and balancing. ``steps``: how the marks ran
+    through the statements, in order. ``findings``: what was refused, and what a reader should know of the marks; those
+    of the figures stand in ``standing``. ``held``: ratios held at a value.
     """
 
     scenario: Scenario

@@ -84,7 +84,7 @@ class Facts:
         self.statements, self.received = standing.statements, standing.received
         self.periods = self.statements.periods
         self.heads = period_heads(self.periods)
-        self.decimals = _decimals(self.statements.values)
+        self.decimals = amount_decimals(self.statements.values)
         self.before = prior_index(self.periods, standing.period_index)
         self._ends = tuple(period.ends.isoformat() for period in self.periods)
         self._findings = _by_place(standing.findings)
@@ -271,8 +271,8 @@ def gravest(findings: Sequence[Finding]) -> Severity | None:
     return next((severity for severity in Severity if severity in found), None)
 
 
-def _decimals(values: np.ndarray) -> int:
-    """Show none where every amount is whole or one is large, else one, or two where all are small."""
+def amount_decimals(values: np.ndarray) -> int:
+    """Say how many decimals to show: none where all amounts are whole or one is large, two where all are small."""
     known = np.abs(values[np.isfinite(values)])
     if known.size == 0 or known.max() >= _LARGE or np.all(np.abs(known - np.rint(known)) < _WHOLE):
         return 0

@@ -1,0 +1,157 @@
+"""The pencil beside the ink as a Qt table: label, ink, pencil, change, how it follows."""
+
+from collections.abc import Callable, Sequence
+
+from PySide6.QtCore import QAbstractTableModel, QModelIndex, QObject, Qt
+
+from creditdesk.case.words import period_heads, unit_words
+from creditdesk.desk.pencil.draft import PencilDraft
+from creditdesk.desk.pencil.rows import AS_INK, Cell, PencilFacts, Row, View
+from creditdesk.desk.pencil.typed import write_mark
+from creditdesk.desk.tables.typed import Index
+
+COLUMNS = LABEL, INK, PENCIL, CHANGE, WHY = range(5)
+_HEADS = ("", "ink", "pencil", "change", "how it follows")
+_READ = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
+_TYPED = _READ | Qt.ItemFlag.ItemIsEditable
+_TIP = "Type a mark: 35120 a new value, +300 or -5 a change, -20% of the ink, Delete rubs it out"
+Enter = Callable[[str, str], bool]
+
+
+class PencilModel(QAbstractTableModel):
+    """Show a draft; hand what is typed in pencil to ``enter(target, text)``.
+
+    While a mark is tried, rows may come and none goes, so that nothing jumps away under the hand.
+    """
+
+    def __init__(self, draft: PencilDraft, enter: Enter, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self.view = View.MOVES
+        self._draft, self._enter = draft, enter
+        self._rows: tuple[Row, ...] = ()
+        self._facts: PencilFacts | None = None
+        self._cells: dict[str, Cell] = {}
+
+    @property
+    def rows(self) -> Sequence[Row]:
+        """Return the rows shown, top to bottom."""
+        return self._rows
+
+    @property
+    def facts(self) -> PencilFacts:
+        """Return what is known of every row; only once a draft is shown."""
+        assert self._facts is not None
+        return self._facts
+
+    def show_draft(self) -> None:
+        """Show the draft as it stands."""
+        draft = self._draft
+        session = draft.session
+        self._facts = PencilFacts(session.house, session.standing, draft.targets, draft.pencilled)
+        self._cells.clear()
+        rows = self._facts.rows(self.view)
+        if draft.sketching is not None and not set(rows) - set(self._rows):
+            rows = self._rows
+        if rows != self._rows:
+            self.beginResetModel()
+            self._rows = rows
+            self.endResetModel()
+        elif rows:
+            self.dataChanged.emit(self.index(0, INK), self.index(len(rows) - 1, WHY))
+
+    def choose(self, view: View) -> None:
+        """List something else of the same draft."""
+        self.view = view
+        if self._facts is not None:
+            self.show_draft()
+
+    def place(self, key: str) -> QModelIndex:
+        """Return the pencil cell of a row; an invalid index where it is not shown."""
+        number = next((number for number, row in enumerate(self._rows) if row.key == key), -1)
+        return self.index(number, PENCIL) if number >= 0 else QModelIndex()
+
+    def cell(self, row: Row) -> Cell:
+        """Say what stands in a row; worked out when first asked for."""
+        if row.heading:
+            return Cell()
+        if row.key not in self._cells:
+            self._cells[row.key] = self.facts.cell(row.key)
+        return self._cells[row.key]
+
+    def markable(self, row: Row) -> bool:
+        """Say whether a row can be marked."""
+        return not row.heading and row.key in self._draft.targets
+
+    # Qt's questions
+
+    def rowCount(self, parent: Index = QModelIndex()) -> int:
+        """Return the number of rows."""
+        return 0 if parent.isValid() else len(self._rows)
+
+    def columnCount(self, parent: Index = QModelIndex()) -> int:
+        """Return the number of columns."""
+        return 0 if parent.isValid() else len(COLUMNS)
+
+    def headerData(self, section: int, orientation: Qt.Orientation, role: int = Qt.ItemDataRole.DisplayRole) -> object:
+        """Return the heading of a column; over the labels stand unit and period."""
+        if orientation is not Qt.Orientation.Horizontal:
+            return None
+        if role == Qt.ItemDataRole.TextAlignmentRole:
+            side = Qt.AlignmentFlag.AlignRight if INK <= section <= CHANGE else Qt.AlignmentFlag.AlignLeft
+            return side | Qt.AlignmentFlag.AlignVCenter
+        if role != Qt.ItemDataRole.DisplayRole:
+            return None
+        return self._corner() if section == LABEL else _HEADS[section]
+
+    def _corner(self) -> str:
+        case, standing = self._draft.case, self._draft.session.standing
+        return f"{unit_words(case)}, {period_heads(case.periods)[standing.period_index]}"
+
+    def flags(self, index: Index) -> Qt.ItemFlag:
+        """Allow typing in pencil wherever a mark can stand."""
+        row = self._rows[index.row()]
+        return _TYPED if index.column() == PENCIL and self.markable(row) else _READ
+
+    def setData(self, index: Index, value: object, role: int = Qt.ItemDataRole.EditRole) -> bool:
+        """Hand what was typed on; what it means is decided there."""
+        if role != Qt.ItemDataRole.EditRole or not self.flags(index) & Qt.ItemFlag.ItemIsEditable:
+            return False
+        return self._enter(self._rows[index.row()].key, str(value))
+
+    def data(self, index: Index, role: int = Qt.ItemDataRole.DisplayRole) -> object:
+        """Answer for one cell."""
+        if not index.isValid() or self._facts is None:
+            return None
+        row, column = self._rows[index.row()], index.column()
+        match role:
+            case Qt.ItemDataRole.DisplayRole:
+                return self._text(row, column)
+            case Qt.ItemDataRole.EditRole:
+                return self._typed(row) if column == PENCIL else self._text(row, column)
+            case Qt.ItemDataRole.ToolTipRole:
+                return self._tip(row, column)
+            case Qt.ItemDataRole.AccessibleTextRole:
+                return self._spoken(row, column)
+        return None
+
+    def _text(self, row: Row, column: int) -> str:
+        cell = self.cell(row)
+        return (row.label, cell.ink, cell.pencil, cell.change, cell.why)[column]
+
+    def _typed(self, row: Row) -> str:
+        """Return a mark as it may be typed again; what only follows begins blank."""
+        mark, target = self.facts.marks.get(row.key), self._draft.targets.find(row.key)
+        return write_mark(mark, target) if mark is not None and target is not None else ""
+
+    def _tip(self, row: Row, column: int) -> str | None:
+        if column == PENCIL and self.markable(row):
+            return _TIP
+        return self._text(row, column) if column in (LABEL, WHY) else None
+
+    def _spoken(self, row: Row, column: int) -> str:
+        cell = self.cell(row)
+        if column != PENCIL:
+            return f"{row.label}, {_HEADS[column]} {self._text(row, column)}" if column else row.label
+        state = "marked" if cell.marked else "follows" if cell.moved else "as in ink"
+        value = "" if cell.pencil in ("", AS_INK) else f" {cell.pencil}"
+        return f"{row.label}, in pencil{value}, {state}"
