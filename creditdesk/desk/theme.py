@@ -123,6 +123,7 @@ QScrollArea { border: 0; background: $paper; }
 #pages { background: $band; }
 QSplitter::handle { background: $rule; }
 QSplitter::handle:hover { background: $accent; }
+QDialogButtonBox { dialogbuttonbox-buttons-have-icons: 0; }
 QMessageBox #qt_msgbox_label { font-weight: 600; }
 QMessageBox #qt_msgbox_informativelabel { min-width: 420px; }
 QToolTip { background: $sheet; color: $ink; border: 1px solid $rule; padding: 4px; }
