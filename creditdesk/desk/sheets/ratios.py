@@ -229,10 +229,10 @@ class RatiosSheet(Sheet):
         """Measure values and headings of periods, in pixels, with what stands around them."""
         values, heads = self.table.fontMetrics(), QFontMetrics(_heading_font(self.table.font()))
         value = max((values.horizontalAdvance(text) for text in facts.value_texts()), default=0)
-        around = PADDING + TIGHT
+        around, head_around = PADDING + TIGHT, 2 * PADDING
         lines = [[head_in_lines(head, count).split("\n") for head in facts.heads] for count in (1, 2)]
         widest = [max(heads.horizontalAdvance(line) for head in shape for line in head) for shape in lines]
-        return Needs(len(facts.heads), max(value, _YEAR) + around, tuple(width + around for width in widest))
+        return Needs(len(facts.heads), max(value, _YEAR) + around, tuple(width + head_around for width in widest))
 
     def _fit_columns(self) -> None:
         """Share the width among the columns; values are never cut."""

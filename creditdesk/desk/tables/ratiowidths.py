@@ -6,7 +6,7 @@ TREND = 50
 _NAME = (132, 262)
 _PERIOD_FULL = 92
 """Wide enough for the longest reason, “divisor negative” excepted; narrower columns show the shortest words."""
-_SAMPLE = (58, 138, 186, 260)
+_SAMPLE = (58, 138, 192, 260)
 """Room for the bar alone, then for ever longer words beside it."""
 
 
