@@ -84,7 +84,7 @@ class CurveMarks(Marks):
         if not (frame.shows(score) and curve.scores[0] <= score <= curve.scores[-1]):
             return None
         pd = _on_curve(curve, curve.pd, score)
-        words = [f"curve at score {format_number(score, 2)}: PD {format_pd(pd)}"]
+        words = [f"Curve at score {format_number(score, 2)}: PD {format_pd(pd)}"]
         low, high = (_on_curve(curve, bound, score) for bound in (curve.low, curve.high))
         if low == low and high == high:  # nan where there is no band
             words.append(f"uncertainty {format_pd(low)} to {format_pd(high)}")
@@ -148,7 +148,7 @@ def _bin_mark(number: int, one: SampleBin, frame: Frame) -> Mark:
     low, high = min(frame.y(one.low), height - BIN_HALF), max(frame.y(one.high), height + BIN_HALF)
     rate = f"{format_pd(one.rate)} ({one.defaults} of {one.borrowers})" if one.rate > 0 else f"nil of {one.borrowers}"
     bounds = f"{format_pd(one.low) if one.low > 0 else '0'} to {format_pd(one.high)}"
-    words = f"sample at score {format_number(one.score, 2)}: default rate {rate}, interval {bounds}"
+    words = f"Sample at score {format_number(one.score, 2)}: default rate {rate}, interval {bounds}"
     return Mark(f"bin {number}", (x, height), Box(x - BIN_HALF, low, x + BIN_HALF, high), words, score=one.score)
 
 
@@ -162,4 +162,4 @@ def _grade_marks(curve: Curve, frame: Frame) -> Iterator[Mark]:
 
 def _band_words(band: GradeBand) -> str:
     low = format_pd(band.lower) if band.lower > 0 else "0"
-    return f"grade {band.grade}: PD from {low} to below {format_pd(band.upper)}"
+    return f"Grade {band.grade}: PD from {low} to below {format_pd(band.upper)}"

@@ -54,7 +54,7 @@ def _score_lines(standing: Standing, factor: FactorStanding) -> Iterator[tuple[s
         if main:
             yield (
                 "Coefficient",
-                f"{number} on a term of {_term(term.value)} (reference borrower: {_term(term.reference)})",
+                f"{number} on a term of {_term(term.value)} (reference borrower:\u00a0{_term(term.reference)})",
             )
         else:
             name = spoken(term.name.partition(".")[2])

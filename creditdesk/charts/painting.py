@@ -16,13 +16,11 @@ from matplotlib.text import Text
 from numpy.typing import NDArray
 
 from creditdesk.charts.board import Board
-from creditdesk.charts.style import face_of, text_width
+from creditdesk.charts.style import face_of, house_style, text_width
 
 _MOST_WORDS = 600
 _MARGIN = 3
-"""Pixels around the measured word: hinting may move a glyph by less."""
-_HINTED = 1.08
-"""How much wider hinting may make a word."""
+"""Pixels around the measured word: a glyph may reach out of its width by less."""
 _ASCENT, _DESCENT = 1.05, 0.35
 """How far letters reach over and under the baseline, as shares of the type size, in both font families."""
 
@@ -92,12 +90,13 @@ def _painted(text: Text, dpi: float) -> _Word:
     """Paint one word on a ground of its own, high enough for any letter."""
     words, font = text.get_text(), text.get_fontproperties()
     size = font.get_size_in_points() * dpi / 72
-    room = ceil(_HINTED * text_width(words, size, face_of(font)))
+    room = ceil(text_width(words, size, face_of(font)))
     above, below = ceil(_ASCENT * size) + _MARGIN, ceil(_DESCENT * size) + _MARGIN
     ground = RendererAgg(room + 2 * _MARGIN, above + below, dpi)  # type: ignore[no-untyped-call]
     pen = ground.new_gc()
     pen.set_foreground(to_rgba(text.get_color()), isRGBA=True)
-    ground.draw_text(pen, _MARGIN, above, words, font, 0)  # type: ignore[no-untyped-call]
+    with house_style():
+        ground.draw_text(pen, _MARGIN, above, words, font, 0)  # type: ignore[no-untyped-call]
     pixels = np.asarray(ground.buffer_rgba())[::-1].copy()  # type: ignore[no-untyped-call]
     inked = np.flatnonzero(pixels[:, :, 3].any(axis=0))
     return _Word(pixels, int(inked[-1]) + 1 - _MARGIN if inked.size else 0, below)

@@ -54,7 +54,7 @@ def since_last_year(standing: Standing) -> Passage:
     last = standing.last_year
     score = None if last is None else last.score
     return Passage(
-        start="" if last is None or score is None else f"{last.label} {format_number(score, 2)}",
+        start="" if last is None or score is None else f"this borrower in {last.label} {format_number(score, 2)}",
         rows=tuple(_largest_first(_moved_row(move) for move in standing.what_moved)),
         end=_end(standing),
         link=standing.model.link,

@@ -29,7 +29,7 @@ RC: dict[Any, Any] = {
     "path.sketch": None,
     "path.snap": True,
     "text.antialiased": True,
-    "text.hinting": "default",
+    "text.hinting": "none",  # keeps words as far apart as the font wants them, and as wide as they were measured
     "text.parse_math": False,
     "text.usetex": False,
 }

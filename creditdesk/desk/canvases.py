@@ -35,7 +35,7 @@ from creditdesk.charts.painting import Painter
 from creditdesk.charts.placing import Box
 from creditdesk.charts.pointing import Mark, Marks, Step
 from creditdesk.charts.rowmarks import row_marks
-from creditdesk.charts.style import Size, new_figure
+from creditdesk.charts.style import Size, house_style, new_figure
 from creditdesk.desk.callout import Callout
 
 mpl.use("agg")
@@ -80,11 +80,13 @@ class Showing:
 class ChartCanvas(FigureCanvasQTAgg):
     """Show one chart: quickly painted, pointed at with the mouse, walked with the keys, copied out.
 
-    ``chosen``: key and target of a mark that was clicked or opened with Enter. ``draw`` draws everything anew by
-    matplotlib's own way; what is asked for with ``draw_idle`` or ``refresh`` is painted by the painter.
+    ``chosen``: key and target of a mark that was clicked or opened with Enter; ``walked``: key of the mark the keys
+    came to. ``draw`` draws everything anew by matplotlib's own way; what is asked for with ``draw_idle`` or
+    ``refresh`` is painted by the painter.
     """
 
     chosen = Signal(str, str)
+    walked = Signal(str)
     focus_changed = Signal(bool)
 
     def __init__(self, palette: Palette, name: str) -> None:
@@ -175,6 +177,8 @@ class ChartCanvas(FigureCanvasQTAgg):
         step = _step(event)
         if step is not None:
             self._read(self.marks.step(self.mark, step) or self.mark)
+            if self.mark is not None:
+                self.walked.emit(self.mark.key)
         elif event.key() in _ENTER and self.mark is not None:
             self.chosen.emit(self.mark.key, self.mark.target)
         elif event.key() == Qt.Key.Key_Escape and self.mark is not None:
@@ -390,7 +394,8 @@ def _image(figure: Figure) -> QImage:
     """Draw a figure on an image of its own at twice the window's resolution."""
     figure.set_dpi(_PICTURE_SCALE * figure.dpi)
     canvas = FigureCanvasAgg(figure)
-    canvas.draw()  # type: ignore[no-untyped-call]
+    with house_style():
+        canvas.draw()  # type: ignore[no-untyped-call]
     pixels = bytes(canvas.buffer_rgba())  # type: ignore[no-untyped-call]
     width, height = canvas.get_width_height()
     return QImage(pixels, width, height, QImage.Format.Format_RGBA8888).copy()

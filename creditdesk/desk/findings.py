@@ -4,7 +4,7 @@ from collections.abc import Sequence
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QEnterEvent, QFocusEvent, QKeyEvent, QPainter, QPaintEvent, QPalette
-from PySide6.QtWidgets import QAbstractButton, QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QAbstractButton, QGridLayout, QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import Standing
@@ -142,6 +142,36 @@ class FindingsList(QWidget):
         self._here = number
         for other, link in enumerate(self._links):
             link.setFocusPolicy(Qt.FocusPolicy.StrongFocus if other == number else Qt.FocusPolicy.ClickFocus)
+
+
+class CautionsList(QWidget):
+    """List cautions, each with the mark of one."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self._shown: tuple[str, ...] = ()
+        self._rows: list[QLabel] = []
+        self._grid = QGridLayout(self)
+        self._grid.setContentsMargins(0, 0, 0, 0)
+        self._grid.setHorizontalSpacing(6)
+        self._grid.setVerticalSpacing(1)
+        self._grid.setColumnStretch(1, 1)
+
+    def show_cautions(self, cautions: Sequence[str]) -> None:
+        """Show these cautions in place of those before."""
+        if tuple(cautions) == self._shown:
+            return
+        self._shown = tuple(cautions)
+        for row in self._rows:
+            row.setParent(None)
+            row.deleteLater()
+        self._rows = []
+        for number, caution in enumerate(cautions):
+            for column, words in enumerate((MARKS[Severity.QUERY], caution)):
+                row = label("second", words, wrap=column > 0)
+                row.setAlignment(Qt.AlignmentFlag.AlignTop)
+                self._grid.addWidget(row, number, column)
+                self._rows.append(row)
 
 
 def _give_role(widget: QLabel, role: str) -> None:

@@ -51,6 +51,8 @@ class Outcome(QWidget):
         self.copy.clicked.connect(lambda: QApplication.clipboard().setText(self.text))
         self.verify.clicked.connect(lambda: self.verify_asked.emit(self._path))
         buttons = QHBoxLayout()
+        buttons.setContentsMargins(24, 10, 24, 10)
+        buttons.setSpacing(8)
         for button in (self.verify, self.back, self.copy):
             buttons.addWidget(button)
         buttons.addStretch(1)
@@ -61,13 +63,14 @@ class Outcome(QWidget):
         self._box.setContentsMargins(24, 18, 24, 18)
         self._box.setSpacing(14)
         self._box.addWidget(self.told)
-        self._box.addLayout(buttons)
         self._box.addStretch(1)
         inside.setMaximumWidth(_WIDEST)
         self.page.setWidget(inside)
         whole = QVBoxLayout(self)
         whole.setContentsMargins(0, 0, 0, 0)
-        whole.addWidget(self.page)
+        whole.setSpacing(0)
+        whole.addWidget(self.page, 1)
+        whole.addLayout(buttons)
 
     def show_issued(self, issued: "Issued") -> None:
         """Say what was written, who signed with which key, and offer to verify it."""

@@ -11,8 +11,8 @@ from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.case.standing import Standing
 from creditdesk.desk.actions import Entry
 from creditdesk.desk.factorlook import FactorLook
-from creditdesk.desk.findings import FindingsList
-from creditdesk.desk.frame import label
+from creditdesk.desk.findings import CautionsList, FindingsList
+from creditdesk.desk.frame import STANDING_NARROWEST, STANDING_SIZE, label
 from creditdesk.desk.switch import WaySwitch
 from creditdesk.desk.verdict import Verdict
 
@@ -21,11 +21,10 @@ if TYPE_CHECKING:
 
 WIDE = 900
 """From this width in pixels on, verdict and curve stand beside contributions and findings."""
-NARROWEST = 400
 _CURVE_HEIGHTS = (202, 340)
-_WIDE_CURVE_HEIGHTS = (240, 520)
-_HEADINGS = 110
-"""Height of the two headings above the charts with the margins around them."""
+_WIDE_CURVE_HEIGHTS = (240, 640)
+_HEADINGS, _WIDE_HEADINGS = 110, 76
+"""Height of the headings above the charts, two or one, with the margins around them."""
 _TIGHT = 0.9
 """How much closer the rows of the contributions stand where the column is low."""
 _MARGIN = 15
@@ -87,7 +86,7 @@ class StandingColumn(QWidget):
         self.setObjectName("standing")
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
         self.setStyleSheet(_STYLE)
-        self.setMinimumWidth(NARROWEST)
+        self.setMinimumWidth(STANDING_NARROWEST)
         self._grades = grades
         self._standing: Standing | None = None
         self._palette = LIGHT
@@ -95,14 +94,14 @@ class StandingColumn(QWidget):
         self.verdict, self.findings, self.look = Verdict(), FindingsList(), FactorLook()
         self.switch, self.switch_note = WaySwitch(), label("second", wrap=True)
         self.heading = label("heading", _REFERENCE_HEADING, wrap=True)
-        self.cautions = label("second", wrap=True)
+        self.cautions = CautionsList()
         self.curve_place, self.contributions_place = ChartPlace(262), ChartPlace(190)
         self._lay_out()
         self._connect()
 
     def sizeHint(self) -> QSize:
         """Ask for the width the charts read well at."""
-        return QSize(490, 700)
+        return STANDING_SIZE
 
     @property
     def wide(self) -> bool:
@@ -114,9 +113,7 @@ class StandingColumn(QWidget):
         self._standing = standing
         self.verdict.show_standing(standing, self._grades)
         self.findings.show_standing(standing)
-        cautions = "\n".join(f"▲ {caution}" for caution in standing.cautions)
-        if self.cautions.text() != cautions:
-            self.cautions.setText(cautions)
+        self.cautions.show_cautions(standing.cautions)
         self.switch.allow(standing.what_moved_reason)
         self.switch_note.setText(_in_short(standing.what_moved_reason))
         self.switch_note.setToolTip(standing.what_moved_reason)
@@ -175,6 +172,7 @@ class StandingColumn(QWidget):
         self.contributions_place.put(canvases.contributions)
         canvases.curve.chosen.connect(self._on_curve_chosen)
         canvases.contributions.chosen.connect(self._on_factor_chosen)
+        canvases.contributions.walked.connect(self._on_factor_walked)
         self.setFocusProxy(canvases.curve)
         QWidget.setTabOrder(canvases.curve, self.switch.reference)
         QWidget.setTabOrder(self.switch.reference, self.switch.last_year)
@@ -203,13 +201,28 @@ class StandingColumn(QWidget):
     def _fit_curve(self) -> None:
         """Give the curve what the column has left beside what else stands in it, within what it reads well at."""
         lowest, highest = _WIDE_CURVE_HEIGHTS if self.wide else _CURVE_HEIGHTS
-        left = self.height() - self.verdict.sizeHint().height() - _HEADINGS
+        left = self.height() - self.verdict.sizeHint().height() - (_WIDE_HEADINGS if self.wide else _HEADINGS)
         if self._canvases is not None and self._standing is not None:
             rows = self._canvases.contributions_height(self._standing)
             rows = rows if self.wide or left - rows >= lowest else round(_TIGHT * rows)
             self.contributions_place.setFixedHeight(rows)
         left -= 0 if self.wide else self.contributions_place.height()
         self.curve_place.setFixedHeight(min(max(left, lowest), highest))
+        self._put_cautions()
+
+    def _put_cautions(self) -> None:
+        """Let the cautions stand last, or where two columns leave more room."""
+        where = self._left if self.wide and self._room_on_the_left() else self._right
+        if self._minded.parentWidget() is not where:
+            box = where.layout()
+            assert isinstance(box, QVBoxLayout)
+            box.insertWidget(box.count() - 1, self._minded)
+
+    def _room_on_the_left(self) -> bool:
+        """Say whether verdict and curve end above the findings; what is open at the moment does not count."""
+        left = self.verdict.sizeHint().height() + self.curve_place.height()
+        findings = self.findings.heightForWidth(self.findings.width())
+        return left < self.contributions_place.height() + findings
 
     def _closes(self, event: QEvent) -> bool:
         return isinstance(event, QKeyEvent) and event.key() == Qt.Key.Key_Escape and self.look.look is not None
@@ -232,6 +245,11 @@ class StandingColumn(QWidget):
     def _on_factor_chosen(self, key: str, _place: str) -> None:
         self.show_factor(key)
 
+    def _on_factor_walked(self, key: str) -> None:
+        """Let an open second look go along with the keys."""
+        if self.look.look is not None and self._canvases is not None:
+            self.look.show_look(self._canvases.look(key) or self.look.look)
+
     def _on_look_closed(self) -> None:
         self.look.show_look(None)
         if self._canvases is not None:
@@ -250,14 +268,12 @@ class StandingColumn(QWidget):
         self.findings.followed.connect(self._on_finding)
 
     def _lay_out_wide(self, *, wide: bool) -> None:
-        """Put the two columns beside each other or below each other; the cautions stand where there is room."""
+        """Put the two columns beside each other or below each other."""
         way = QBoxLayout.Direction
         self._columns.setDirection(way.LeftToRight if wide else way.TopToBottom)
         self._columns.setSpacing(24 if wide else 9)
         self._columns.setStretch(0, 1 if wide else 0)
-        where = (self._left if wide else self._right).layout()
-        assert isinstance(where, QVBoxLayout)
-        where.insertWidget(where.count() - 1, self._minded)
+        self._put_cautions()
 
     def _lay_out(self) -> None:
         way, heading = QHBoxLayout(), label("heading", "On the fitted curve")
@@ -288,8 +304,8 @@ class StandingColumn(QWidget):
 
 
 def _in_short(reason: str) -> str:
-    """Keep what a reason says first; the factors it goes on to list stand in the chart."""
-    return reason.partition(":")[0].rstrip(".") + "." if reason else ""
+    """Keep what a reason against last year says first; the factors it goes on to list stand in the chart."""
+    return f"Last year cannot be shown. {reason.partition(':')[0].rstrip('.')}." if reason else ""
 
 
 def _column(parts: Sequence[QWidget | QHBoxLayout | int]) -> QWidget:

@@ -1,10 +1,14 @@
 """A block of text that a person writes: handed on as one edit, never overwritten while it is being typed."""
 
+from collections.abc import Sequence
+from math import ceil
+
 from PySide6.QtCore import QEvent, QMimeData, Qt, QTimer, Signal
 from PySide6.QtGui import QFocusEvent, QKeyEvent, QKeySequence
 from PySide6.QtWidgets import QPlainTextEdit
 
 _TYPING_PAUSE = 1500
+_LEAST_LINES = 2
 
 
 class TextBlock(QPlainTextEdit):
@@ -43,6 +47,12 @@ class TextBlock(QPlainTextEdit):
     def take_back(self) -> None:
         """Show the text of the case again in place of what was typed."""
         self._replace(self._known)
+
+    def needed_height(self) -> int:
+        """Return the height in pixels at which the whole text is in sight, two lines at least."""
+        lines = max(round(self.document().size().height()), _LEAST_LINES)
+        around = self.height() - self.viewport().height() + 2 * self.document().documentMargin()
+        return ceil(lines * self.fontMetrics().lineSpacing() + around)
 
     def hand_on(self) -> None:
         """Hand on what was typed and has not been handed on yet."""
@@ -83,3 +93,12 @@ class TextBlock(QPlainTextEdit):
         cursor = self.textCursor()
         cursor.setPosition(min(place, self.document().characterCount() - 1))
         self.setTextCursor(cursor)
+
+
+def fair_shares(needs: Sequence[int], room: int) -> list[int]:
+    """Share ``room``: who needs little gets it, the others get equal parts of the rest; what is left over all share."""
+    shares, left = [0] * len(needs), room
+    for done, (need, number) in enumerate(sorted((need, number) for number, need in enumerate(needs))):
+        shares[number] = min(need, left // (len(needs) - done))
+        left -= shares[number]
+    return [share + left // len(needs) for share in shares]

@@ -6,6 +6,7 @@ from PySide6.QtWidgets import QFrame, QHBoxLayout, QVBoxLayout, QWidget
 from creditdesk.base.display import format_pd
 from creditdesk.base.findings import Severity
 from creditdesk.case.standing import Standing
+from creditdesk.case.words import long_date
 from creditdesk.desk.frame import label
 
 
@@ -45,10 +46,10 @@ class Verdict(QWidget):
         self.interval = label("", wrap=True)
         self.change = label("second", wrap=True)
         self.plate = GradePlate()
-        self._caption = label("second", "Probability of default within a year")
+        self.caption = label("second", wrap=True)
         left = QVBoxLayout()
         left.setSpacing(0)
-        for widget in (self._caption, self.pd, self.interval, self.change):
+        for widget in (self.caption, self.pd, self.interval, self.change):
             left.addWidget(widget)
         left.addStretch(1)
         row = QHBoxLayout(self)
@@ -65,11 +66,17 @@ class Verdict(QWidget):
             self.pd.style().unpolish(self.pd)
             self.pd.style().polish(self.pd)
             self.pd.setWordWrap(not known)
+        self.caption.setText(caption_words(standing) if known else "Probability of default within a year")
         self.pd.setText(format_pd(standing.pd_final or 0.0) if known else no_pd_words(standing))
         self.interval.setText(interval_words(standing) if known else why_no_pd(standing))
         self.interval.setVisible(bool(self.interval.text()))
         self.change.setText(change_words(standing))
         self.plate.show_standing(standing, grades)
+
+
+def caption_words(standing: Standing) -> str:
+    """Say what the figure is and from which day on it counts."""
+    return f"PD within a year, from {long_date(standing.pd_runs_from)}"
 
 
 def interval_words(standing: Standing) -> str:

@@ -114,7 +114,7 @@ def _text(report: SignatureReport, again: Rerun, unmet: tuple[str, ...]) -> str:
     lines = [_headline(report, again, unmet)]
     lines += [_signature_words(facts) for facts in report.signatures]
     lines += report.problems
-    lines.append(_RERUN_WORDS[again.answer].format(difference=again.largest_difference or 0.0))
+    lines.append(_rerun_words(again))
     lines += [*again.problems, *unmet, PROVES]
     return "\n".join(lines)
 
@@ -137,11 +137,18 @@ _STATE_WORDS = {
     State.DAMAGED: "NOT VALID: the file is damaged.",
 }
 _RERUN_WORDS = {
-    "equal": "Re-run from the attachments: every number, grade and text is the same "
-    "(largest relative difference {difference:.1e}).",
+    "equal": "Re-run from the attachments: every number, grade and text is the same{but}.",
     "different": "Re-run from the attachments: NOT the same.",
     "impossible": "Re-run from the attachments: not possible here.",
 }
+
+
+def _rerun_words(again: Rerun) -> str:
+    """Word the answer of a re-run, with the largest relative difference where there is any."""
+    difference = again.largest_difference
+    return _RERUN_WORDS[again.answer].format(
+        but=f", up to a relative difference of {difference:.1e}" if difference else ""
+    )
 
 
 def _signature_words(facts: SignatureFacts) -> str:

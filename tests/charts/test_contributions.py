@@ -12,7 +12,8 @@ from creditdesk.charts.contributions import (
 )
 from creditdesk.charts.passage import contribution_rows
 from creditdesk.charts.style import PAPER, new_figure
-from tests.charts.looking import assert_tidy, centre, words
+from creditdesk.charts.words import factor_value
+from tests.charts.looking import assert_tidy, centre, texts, words
 from tests.standings import factor, factors, standing, without_pd
 
 LONG = "Operating profit before depreciation and exceptional items to average total assets less current liabilities"
@@ -120,3 +121,15 @@ def test_reference_and_total_are_stated() -> None:
     said = words(contributions_figure(standing(), LIGHT, _size(standing(), 340)))
     assert "reference borrower −3.38" in said
     assert "this borrower −4.05" in said
+
+
+def test_values_end_in_one_line_whatever_became_of_them() -> None:
+    factors = standing().factors
+    shown = standing(factors=(replace(factors[0], capped=True), *factors[1:]))
+    figure = contributions_figure(shown, LIGHT, (345, 200))
+    values = {factor_value(one) for one in factors}
+    ends = {text.get_position()[0] for text in texts(figure) if text.get_text() in values}
+    assert len(ends) == 1
+    (note,) = (text for text in texts(figure) if text.get_text() == "capped")
+    assert note.get_position()[0] > ends.pop()
+    assert_tidy(figure)

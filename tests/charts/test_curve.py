@@ -14,6 +14,7 @@ from creditdesk.case.standing import GradeStanding, Interval, Standing
 from creditdesk.charts.curve import BACKDROP, BORROWER, CurveChart, curve_figure
 from creditdesk.charts.frame import Frame, decades, tick_text
 from creditdesk.charts.style import PAPER, new_figure
+from creditdesk.charts.words import sentence
 from creditdesk.house.fontfiles import Face, font_path
 from tests.charts.looking import assert_tidy, centre, lines_at, pixels, texts, words
 from tests.standings import curve, standing, without_pd, year
@@ -194,3 +195,10 @@ def test_a_resized_canvas_lays_the_chart_out_anew() -> None:
     assert chart.frame is not None
     assert chart.frame.plot.right > frame.plot.right
     assert_tidy(chart.board.figure)
+
+
+def test_why_there_is_no_pd_is_a_sentence_on_a_ground_of_its_own() -> None:
+    figure = curve_figure(without_pd(), LIGHT, (520, 330))
+    said = " ".join(words(figure))
+    reason = sentence(without_pd().reasons[0])
+    assert f"No PD. {reason}" in said

@@ -62,7 +62,7 @@ def test_a_read_out_says_score_pd_interval_and_grade() -> None:
     bounds = f"{format_pd(interval.low)} to {format_pd(interval.high)}"
     assert own.words == f"2025: score −4.05, PD {format_pd(shown.pd_calibrated or 0)}, 90 % interval {bounds}, grade 6"
     assert marks.along[0].words == (
-        f"sample at score −6.20: default rate {format_pd(curve().bins[0].rate)} (2 of 660), "
+        f"Sample at score −6.20: default rate {format_pd(curve().bins[0].rate)} (2 of 660), "
         f"interval {format_pd(curve().bins[0].low)} to {format_pd(curve().bins[0].high)}"
     )
 
@@ -80,7 +80,7 @@ def test_the_curve_itself_is_read_where_it_runs_by() -> None:
     assert found is not None
     assert found.key == "curve"
     assert found.score == pytest.approx(score, abs=1e-6)
-    assert found.words.startswith(f"curve at score −2.00: PD {format_pd(float(sigmoid(score)))}, uncertainty ")
+    assert found.words.startswith(f"Curve at score −2.00: PD {format_pd(float(sigmoid(score)))}, uncertainty ")
     assert found.words.endswith("grade 10")
 
 
@@ -89,7 +89,7 @@ def test_away_from_everything_the_grade_at_that_height_answers() -> None:
     for x in (frame.plot.left + 120, frame.plot.right + 12):
         found = marks.at((x, frame.y(0.0013)))
         assert found is not None
-        assert found.words == "grade 2: PD from 0.08\u00a0% to below 0.18\u00a0%"
+        assert found.words == "Grade 2: PD from 0.08\u00a0% to below 0.18\u00a0%"
     assert marks.at((frame.plot.left - 5, frame.y(0.0013))) is None
 
 
@@ -162,7 +162,7 @@ def test_a_bin_without_defaults_says_so() -> None:
     marks, frame = _marks(standing(curve=replace(curve(), bins=(empty, *curve().bins[1:]))))
     found = marks.at((frame.x(empty.score), frame.y(0.004)))
     assert found is not None
-    assert found.words == "sample at score −6.20: default rate nil of 660, interval 0 to 0.40\u00a0%"
+    assert found.words == "Sample at score −6.20: default rate nil of 660, interval 0 to 0.40\u00a0%"
 
 
 @given(st.floats(-7, 0), st.floats(-7, 0))

@@ -27,7 +27,7 @@ def test_every_step_from_ratio_to_score_is_laid_open() -> None:
         "Treated as": "5.92x",
         "Caps": "from −4.06x to 29.60x",
         "Transform": "sign of x times ln(1 + |x|), less 1.5953, divided by 2",
-        "Coefficient": "−0.2337 on a term of 0.3384 (reference borrower: 0)",
+        "Coefficient": "−0.2337 on a term of 0.3384 (reference borrower:\u00a00)",
         "If no interest": "−0.0343, does not apply here",
         "Reference borrower": "5.33x",
         "Contribution": "−0.079 log-odds, lowers PD",

@@ -17,7 +17,7 @@ from creditdesk.charts.board import Board
 from creditdesk.charts.contributions import ContributionsChart
 from creditdesk.charts.curve import BACKDROP, CurveChart
 from creditdesk.charts.painting import Painter
-from creditdesk.charts.style import Align, Type, new_figure
+from creditdesk.charts.style import Align, Type, house_style, new_figure
 from tests.standings import curve, standing, without_pd
 
 Chart = CurveChart | ContributionsChart
@@ -65,7 +65,8 @@ def _painted(painter: Painter, figure: Figure) -> Picture:
 
 def _drawn(figure: Figure) -> Picture:
     canvas = FigureCanvasAgg(figure)
-    canvas.draw()
+    with house_style():
+        canvas.draw()
     return np.asarray(canvas.buffer_rgba()).astype(np.int16)
 
 

@@ -19,7 +19,7 @@ def _drawn(width: float = 340) -> list[str]:
 
 def test_the_way_from_last_year_begins_at_its_score_and_ends_at_this_one() -> None:
     way = since_last_year(moving())
-    assert (way.start, way.end, way.why_none) == ("2024 −3.70", "this borrower −4.05", "")
+    assert (way.start, way.end, way.why_none) == ("this borrower in 2024 −3.70", "this borrower −4.05", "")
     assert sum(row.amount for row in way.rows) == pytest.approx(-4.05 + 3.70)
 
 
@@ -35,7 +35,7 @@ def test_the_largest_moves_come_first_with_both_values() -> None:
 
 def test_the_chart_says_where_it_leads_from() -> None:
     said = _drawn()
-    assert "2024 −3.70" in said
+    assert "this borrower in 2024 −3.70" in said
     assert "this borrower −4.05" in said
     assert not any(text.startswith("reference borrower") for text in said)
     assert any("9.7\u00a0% →" in text for text in said)

@@ -63,7 +63,7 @@ def test_the_keys_read_years_bins_grades_and_the_curve(qtbot: QtBot, canvases: C
     ):
         qtbot.keyClick(curve, key, modifier)
         said.append(read_out(curve).partition(" ")[0])
-    assert said == ["2025:", "sample", "sample", "grade", "curve"]
+    assert said == ["2025:", "Sample", "Sample", "Grade", "Curve"]
     qtbot.keyClick(curve, Qt.Key.Key_Escape)
     assert read_out(curve) == ""
 

@@ -11,8 +11,9 @@ from creditdesk.desk.outcome import grouped
 from creditdesk.desk.signdialogs import CountersignDialog, SignDialog
 from creditdesk.desk.window import SHEETS, Window
 from creditdesk.house.book import HouseBook
+from creditdesk.memo.decision import Decision
 from creditdesk.memo.identity import load_identity, new_identity, write_private
-from creditdesk.memo.issue import issue_signed
+from creditdesk.memo.issue import approve, issue_signed
 from creditdesk.memo.verify import verify_file
 
 PASSPHRASE = "correct horse"
@@ -231,3 +232,23 @@ def test_an_answer_that_comes_after_the_dialog_is_gone_does_no_harm(qtbot: QtBot
 
 def test_fingerprints_are_read_in_groups_of_four() -> None:
     assert grouped("0123456789ab") == "0123 4567 89ab"
+
+
+def test_the_way_back_is_in_sight_however_long_the_answer(
+    qtbot: QtBot, window: Window, signed: Path, approver: Path
+) -> None:
+    out = signed.with_name("both.pdf")
+    approve(
+        signed,
+        out,
+        (approver, PASSPHRASE),
+        (Decision.APPROVE_WITH_CONDITIONS, "Half-yearly figures. " * 60),
+        datetime.now(UTC),
+    )
+    window.resize(1100, 720)
+    window.issuer.verify_path(out)
+    _wait(qtbot, window)
+    outcome = window.memo.outcome
+    qtbot.waitUntil(lambda: outcome.page.verticalScrollBar().maximum() > 0)
+    for button in (outcome.back, outcome.copy):
+        assert button.visibleRegion().boundingRect() == button.rect()

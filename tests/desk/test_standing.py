@@ -1,14 +1,16 @@
+import dataclasses
 from collections.abc import Callable
 from datetime import date
 from itertools import pairwise
 
 import pytest
 from msgspec.structs import replace
-from PySide6.QtCore import QSettings, Qt
+from PySide6.QtCore import QPoint, QSettings, Qt
 from PySide6.QtGui import QFont
 from PySide6.QtWidgets import QAbstractButton, QLabel, QWidget
 from pytestqt.qtbot import QtBot
 
+from creditdesk.base.findings import Finding, Severity
 from creditdesk.base.palette import DARK
 from creditdesk.case.assess import assess
 from creditdesk.case.commands import Figure, SetFigures, apply
@@ -17,9 +19,10 @@ from creditdesk.case.standing import Standing
 from creditdesk.charts.look import second_look
 from creditdesk.desk.app import make_application
 from creditdesk.desk.canvases import MOVED_NAME, REFERENCE_NAME
-from creditdesk.desk.standing import NARROWEST, StandingColumn
+from creditdesk.desk.frame import STANDING_NARROWEST
+from creditdesk.desk.standing import StandingColumn
 from creditdesk.house.book import HouseBook
-from tests.desk.columns import NARROW, WIDE, charts, place_of, settle, shown_column
+from tests.desk.columns import NARROW, WIDE, charts, place_of, point_at, settle, shown_column
 
 Show = Callable[..., StandingColumn]
 
@@ -98,7 +101,10 @@ def test_without_last_year_the_switch_says_why_and_the_choice_outlives_it(
     assert not column.switch.since_last_year
     assert column.switch.last_year.toolTip() == "No period of the case is the year before the assessed one."
     assert column.switch_note.isVisible()
-    assert column.switch_note.text() == "No period of the case is the year before the assessed one."
+    assert (
+        column.switch_note.text()
+        == "Last year cannot be shown. No period of the case is the year before the assessed one."
+    )
     column.switch.turn()
     assert not column.switch.since_last_year
     column.show_standing(sound)
@@ -204,7 +210,7 @@ CASES = ("sound", "stretched", "empty", "one line")
 
 
 @pytest.mark.parametrize("name", CASES)
-@pytest.mark.parametrize("size", [NARROW, (NARROWEST, 600), WIDE, (1860, 900)], ids=str)
+@pytest.mark.parametrize("size", [NARROW, (STANDING_NARROWEST, 600), WIDE, (1860, 900)], ids=str)
 def test_no_text_is_cut_at_any_size(
     show: Show, house: HouseBook, sound_case: Case, stretched_case: Case, name: str, size: tuple[int, int]
 ) -> None:
@@ -298,3 +304,36 @@ def test_the_large_figure_is_larger_than_the_words_that_may_stand_for_it(
 
 def _unbalanced() -> SetFigures:
     return SetFigures((Figure("retained_earnings", 2, 9_000.0),))
+
+
+def test_an_open_second_look_goes_along_with_the_arrow_keys_and_not_with_the_pointer(
+    qtbot: QtBot, show: Show, sound: Standing
+) -> None:
+    column = show(sound)
+    canvas = charts(column).contributions
+    rows = canvas.marks.rows  # type: ignore[attr-defined]
+    canvas.setFocus()
+    qtbot.keyClick(canvas, Qt.Key.Key_Down)
+    assert _factor(column) == ""  # walking alone opens nothing
+    qtbot.keyClick(canvas, Qt.Key.Key_Return)
+    for number in (1, 2, 3):
+        qtbot.keyClick(canvas, Qt.Key.Key_Down)
+        assert _factor(column) == rows[number].key
+    qtbot.keyClick(canvas, Qt.Key.Key_Up)
+    assert _factor(column) == rows[2].key
+    point_at(canvas, place_of(canvas, rows[5]))
+    assert canvas.mark == rows[5]
+    assert _factor(column) == rows[2].key
+
+
+def test_the_cautions_stand_where_there_is_room(show: Show, sound: Standing) -> None:
+    finding = Finding("doubt", Severity.NOTE, "figures.cash[2025-12-31]", "A doubt. " * 20)
+    for count in (0, 20):
+        column = show(dataclasses.replace(sound, findings=(finding,) * count), WIDE)
+        on_the_left = column.cautions.mapTo(column, QPoint(0, 0)).x() < column.width() / 2
+        assert on_the_left is (count > 0)
+        shown = {shown.text() for shown in column.cautions.findChildren(QLabel)}
+        assert set(sound.cautions) <= shown
+        column.resize(*NARROW)
+        settle()
+        assert column.cautions.mapTo(column, QPoint(0, 0)).y() > column.findings.mapTo(column, QPoint(0, 0)).y()

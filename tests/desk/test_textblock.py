@@ -1,9 +1,11 @@
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QLineEdit, QVBoxLayout, QWidget
 from pytestqt.qtbot import QtBot
 
-from creditdesk.desk.textblock import TextBlock
+from creditdesk.desk.textblock import TextBlock, fair_shares
 
 
 class Paper(QWidget):
@@ -73,3 +75,14 @@ def test_the_cursor_stays_within_a_shorter_text(qtbot: QtBot, paper: Paper) -> N
     paper.block.moveCursor(paper.block.textCursor().MoveOperation.End)
     paper.block.show_text("😀")
     assert paper.block.textCursor().position() == 2  # in the editor's own count, two for this one
+
+
+@given(st.lists(st.integers(20, 400), min_size=1, max_size=6), st.integers(0, 1500))
+def test_height_is_shared_by_need(needs: list[int], room: int) -> None:
+    shares = fair_shares(needs, room)
+    assert room - len(needs) < sum(shares) <= room
+    if sum(needs) <= room:
+        assert all(share >= need for share, need in zip(shares, needs, strict=True))
+    else:
+        least = min(share for share, need in zip(shares, needs, strict=True) if share < need)
+        assert all(share <= least + 1 for share in shares)  # nobody has more than the worst off but what it needs

@@ -5,7 +5,8 @@ import pytest
 
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import GradeStanding, PeriodStanding, Standing
-from creditdesk.desk.verdict import change_words, interval_words, no_pd_words, why_no_pd
+from creditdesk.case.words import long_date
+from creditdesk.desk.verdict import caption_words, change_words, interval_words, no_pd_words, why_no_pd
 from tests.standings import standing, without_pd
 
 NBSP = "\u00a0"
@@ -65,3 +66,8 @@ def test_without_a_pd_the_reason_is_a_sentence() -> None:
     shown = standing(usable=False, findings=(stop,))
     assert why_no_pd(shown) == "■ Assets are 7 more. To be resolved first."
     assert why_no_pd(replace(shown, findings=(stop, stop, stop))).endswith("To be resolved first, with 2 more.")
+
+
+def test_the_caption_says_from_which_day_the_year_runs() -> None:
+    shown = standing()
+    assert caption_words(shown) == f"PD within a year, from {long_date(shown.pd_runs_from)}"

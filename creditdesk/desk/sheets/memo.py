@@ -3,7 +3,7 @@
 from collections.abc import Callable, Sequence
 
 from PySide6.QtCore import QByteArray, QTimer, Signal
-from PySide6.QtGui import QHideEvent, QKeySequence, QShowEvent
+from PySide6.QtGui import QHideEvent, QKeySequence, QResizeEvent, QShowEvent
 from PySide6.QtWidgets import (
     QHBoxLayout,
     QPushButton,
@@ -25,7 +25,7 @@ from creditdesk.desk.outcome import Outcome
 from creditdesk.desk.preview import Preview
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.signing import Issuer
-from creditdesk.desk.textblock import TextBlock
+from creditdesk.desk.textblock import TextBlock, fair_shares
 from creditdesk.desk.worker import Jobs, Progress, Stopped
 from creditdesk.house.book import HouseBook
 
@@ -66,8 +66,22 @@ class MemoSheet(Sheet):
         self._case = case
         for key, block in self.blocks.items():
             block.show_text(case.texts.get(key, ""))
+        QTimer.singleShot(0, self, self.share_height)
         if self.isVisible():
             self._pause.start()
+
+    def share_height(self) -> None:
+        """Give each text the height its lines ask for; nothing moves under the hands of whoever types."""
+        if not any(block.changed for block in self.blocks.values()):
+            blocks = list(self.blocks.values())
+            heights = fair_shares([block.needed_height() for block in blocks], sum(block.height() for block in blocks))
+            for block, height in zip(blocks, heights, strict=True):
+                self._texts.setStretchFactor(block, max(height, 1))
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Share the new height among the texts."""
+        super().resizeEvent(event)
+        QTimer.singleShot(0, self, self.share_height)
 
     def go_to(self, place: str) -> None:
         """Put the cursor into the block ``texts.<name>``."""
@@ -207,11 +221,12 @@ class MemoSheet(Sheet):
             buttons.addWidget(button)
         buttons.addWidget(self.busy, 1)
         texts = QWidget()
-        box = QVBoxLayout(texts)
+        box = self._texts = QVBoxLayout(texts)
         box.setContentsMargins(0, 0, 10, 0)
         for key, title, _ in BLOCKS:
             box.addWidget(label("heading", title))
             box.addWidget(self.blocks[key], 1)
+        self.split.splitterMoved.connect(self.share_height)
         self.right.addWidget(self.preview)
         self.right.addWidget(self.outcome)
         self.split.addWidget(texts)
