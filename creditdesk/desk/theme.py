@@ -101,6 +101,8 @@ QCheckBox::indicator { width: 7px; height: 7px; padding: 2px; border: 1px solid 
   background-clip: content; }
 QCheckBox::indicator:checked { background: $accent; }
 QCheckBox::indicator:focus { border-color: $accent; }
+QCheckBox:disabled { color: $second_ink; }
+QCheckBox::indicator:disabled { border-color: $rule; }
 QLabel[role="fault"] { color: $breach; }
 QLineEdit[fault="true"], QComboBox[fault="true"] { border-color: $breach; }
 QLineEdit, QPlainTextEdit { placeholder-text-color: $second_ink; }
