@@ -104,7 +104,7 @@ class PencilDelegate(TypedDelegate):
 class PencilTable(PlainTable):
     """Take the keys of a spreadsheet: type over, F2, Enter onwards, Delete rubs out.
 
-    ``rubbed``: Delete on a row; ``left``: F6 leaves the table, onwards or back; ``at_hand``: the key of the row at hand.
+    ``rubbed``: Delete on a row; ``left``: F6 leaves the table, onwards or back; ``at_hand``: the key of its row.
     """
 
     rubbed = Signal()
