@@ -175,7 +175,7 @@ def test_the_assessed_period_says_what_it_is_and_why(window: Window, sheet: Obli
     assert period.words.text().startswith("Audited to 31\u00a0December 2024")
     assert "by rule it would be 2025" in period.words.text()
     period.field.choose(date(2025, 12, 31))
-    assert period.words.text().endswith("Chosen here, and by rule the same.")
+    assert period.words.text().endswith("Chosen here, as by rule.")
     period.field.choose(None)
     assert window.session.case.assessment.period is None
     assert (period.field.currentText(), window.session.standing.period) == ("By rule: 2025", date(2025, 12, 31))
@@ -193,7 +193,7 @@ def test_the_assessment_date_may_be_given_or_left_out(qtbot: QtBot, window: Wind
     assert "2025-12-31" in words.text()
     _type(qtbot, field, "")
     assert window.session.case.assessment.date is None
-    assert words.text() == "Not given: 31\u00a0December 2025 counts, the end of the assessed period."
+    assert words.text() == "Not given: 31\u00a0December 2025 counts, the period's end."
     assert field.placeholderText() == "2025-12-31"
     assert sheet.assessment.horizon.text() == "31\u00a0December 2025 to 31\u00a0December 2026"
 

@@ -30,7 +30,7 @@ class AssessmentPanel(Form):
         """Show what is given, what is taken where nothing is, and why."""
         self._given = case.assessment
         day = case.assessment.date
-        taken = f"Not given: {long_date(standing.assessed_on)} counts, the end of the assessed period."
+        taken = f"Not given: {long_date(standing.assessed_on)} counts, the period's end."
         self.date.field.setPlaceholderText(standing.period.isoformat())
         self.date.show(day or "", long_date(day) if day is not None else taken)
         choices = period_choices(case)
@@ -56,7 +56,7 @@ def _chosen_words(chosen: PeriodChoice, by_rule: PeriodChoice) -> str:
     """Say that a person chose, and what the rule would choose."""
     rule, _, period = by_rule.label.partition(": ")
     if period == chosen.label:
-        return f"Chosen here, and {rule.lower()} the same."
+        return f"Chosen here, as {rule.lower()}."
     return f"Chosen here; {rule.lower()} it would be {period}."
 
 
