@@ -235,6 +235,18 @@ def test_prices_without_volume() -> None:
     assert found["inventories"] == pytest.approx(210)
 
 
+def test_volume_and_prices_multiply() -> None:
+    # volume of 0.8: 1000 x 0.82 = 820, at prices 10 % higher on half of it 820 x 1.05 = 861; inventories follow
+    found = moved(by_function(), {"revenue": pct(-20), "input_prices": by(10)})
+    assert found["cost_of_sales"] == pytest.approx(861)
+    assert found["inventories"] == pytest.approx(200 * 0.861)
+
+
+def test_tax_that_is_owed_was_not_paid() -> None:
+    found = moved(by_function(), {"tax_payable": by(5)})
+    assert (found["tax_paid"], found["cash"], found["operating_cash_flow"]) == (15, 65, 135)
+
+
 def test_prices_beneath_a_marked_revenue_leave_volume() -> None:
     # revenue 1200 at prices 20 % lower is the volume of before
     found = moved(by_function(), {"selling_prices": by(-20), "revenue": to(1200)})
