@@ -57,6 +57,10 @@ class Board:
         closed = Path(np.vstack([corners, corners[:1]]), closed=True)
         return self._patch(layer, closed, edge, fill, z)
 
+    def shape(self, layer: str, path: Path, fill: Pen, z: float = 1) -> Artist:
+        """Fill what a path encloses, its holes left out."""
+        return self._patch(layer, path, None, fill, z)
+
     def box(self, layer: str, corner: Size, size: Size, fill: Pen, edge: Pen | None = None, z: float = 1) -> Artist:
         """Fill the rectangle of ``size`` whose lower left corner is ``corner``."""
         (x, y), (width, height) = corner, size
