@@ -23,7 +23,7 @@ def cash_after(
     return float(after(ink, flow, "cash"))
 
 
-@settings(max_examples=60)
+@settings(max_examples=30)
 @given(amounts, amounts, amounts, st.sampled_from(["nil", "relief"]), st.sampled_from(["average", "opening"]))
 def test_the_draw_is_the_root_a_bracketing_search_finds(
     sales: float, rate: float, spent: float, losses: str, interest_on: str
@@ -43,7 +43,7 @@ def test_the_draw_is_the_root_a_bracketing_search_finds(
     assert float(after(ink, flow, "cash")) == pytest.approx(flow.terms.minimum, rel=1e-12)
 
 
-@settings(max_examples=60)
+@settings(max_examples=30)
 @given(amounts, amounts, amounts)
 def test_interest_on_the_draw_paid_again_and_again_comes_to_the_same(sales: float, rate: float, spent: float) -> None:
     """Draw what is missing, pay interest on it after tax, draw what is missing then, and so on: a fixed point."""
