@@ -17,7 +17,7 @@ from creditdesk.desk.about import About, Keys, key_sections
 from creditdesk.desk.actions import placed_actions
 from creditdesk.desk.fetching import fetching
 from creditdesk.desk.finds import action_finds, case_finds
-from creditdesk.desk.frame import FIGURES, FIND_KEY, MEMO, OBLIGOR, RATIOS
+from creditdesk.desk.frame import FIGURES, FIND_KEY, MEMO, OBLIGOR, PENCIL, RATIOS
 from creditdesk.desk.headline import describe, recorded_words, status_words
 from creditdesk.desk.palette import CommandPalette, Find
 from creditdesk.desk.revert import RevertDialog, case_after
@@ -67,6 +67,8 @@ class CaseView(QObject):
         stack = self._window.stack
         if stack.has(MEMO):
             self._window.settings.set_split("memo", self._window.memo.split.saveState())
+        if stack.has(PENCIL):
+            self._window.settings.set_split("pencil", self._window.pencil.split.saveState())
         self.session.close()
 
     def finds(self) -> Iterator[Find]:
@@ -145,8 +147,13 @@ class CaseView(QObject):
         self._soon(self._fetch_charts)
 
     def _makers(self) -> "Mapping[str, Callable[[], Sheet]]":
-        makers = self._make_obligor, self._make_figures, self._make_ratios, self._make_memo
-        return dict(zip((OBLIGOR, FIGURES, RATIOS, MEMO), makers, strict=True))
+        return {
+            OBLIGOR: self._make_obligor,
+            FIGURES: self._make_figures,
+            RATIOS: self._make_ratios,
+            PENCIL: self._make_pencil,
+            MEMO: self._make_memo,
+        }
 
     def _make_obligor(self) -> "Sheet":
         from creditdesk.desk.sheets.obligor import ObligorSheet  # a sheet is fetched when it is needed
@@ -162,6 +169,14 @@ class CaseView(QObject):
         from creditdesk.desk.sheets.ratios import RatiosSheet
 
         return RatiosSheet(self.session.house)
+
+    def _make_pencil(self) -> "Sheet":
+        from creditdesk.desk.pencil.draft import PencilDraft
+        from creditdesk.desk.sheets.pencil import PencilSheet
+
+        sheet = PencilSheet(PencilDraft(self.session, self))
+        sheet.restore_split(self._window.settings.split("pencil"))
+        return sheet
 
     def _make_memo(self) -> "Sheet":
         from creditdesk.desk.sheets.memo import MemoSheet
@@ -204,6 +219,7 @@ class CaseView(QObject):
             with fetching():
                 import creditdesk.desk.sheets.memo
                 import creditdesk.desk.sheets.obligor
+                import creditdesk.desk.sheets.pencil
                 import creditdesk.desk.sheets.ratios  # noqa: F401  the main thread finds these in memory
 
         self._window.jobs.start(work, lambda _: self._window.stack.wake(), _fail)

@@ -12,7 +12,7 @@ from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QPushButton, QS
 if TYPE_CHECKING:
     from creditdesk.desk.headline import Headline
 
-SHEETS = OBLIGOR, FIGURES, RATIOS, MEMO = "Obligor", "Figures", "Ratios", "Memo"
+SHEETS = OBLIGOR, FIGURES, RATIOS, PENCIL, MEMO = "Obligor", "Figures", "Ratios", "Pencil", "Memo"
 STANDING = "Standing"
 FIND_KEY, WIDE_KEY = "Ctrl+K", "Alt+0"
 STANDING_SIZE, STANDING_NARROWEST = QSize(490, 700), 400

@@ -11,7 +11,7 @@ from creditdesk.case.convert import load_any
 from creditdesk.case.lead import with_lead_model
 from creditdesk.desk.app import make_application
 from creditdesk.desk.caseview import CaseView
-from creditdesk.desk.frame import SHEETS, STANDING
+from creditdesk.desk.frame import PENCIL, SHEETS, STANDING
 from creditdesk.desk.session import Session
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
@@ -21,6 +21,8 @@ _PATIENCE_MILLISECONDS = 60_000
 
 def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look: tuple[Palette, int, int]) -> None:
     """Write a PNG of a sheet, or of Standing with the window to itself; raises UserError.
+
+    The sheet Pencil shows the case's first scenario, where there is one.
 
     ``look`` is palette, width and height, these as a user sees them at 100 %. Where Qt was told to scale (the
     environment variable QT_SCALE_FACTOR), the picture has so many times more pixels, and shows the same.
@@ -37,6 +39,8 @@ def take_picture(sheet: str, case_path: Path, out: Path, house: HouseBook, look:
     window.show_named(names[sheet.lower()])
     window.show()
     _wait(lambda: window.settled)
+    if names[sheet.lower()] == PENCIL and case.scenarios:
+        window.pencil.draft.choose(case.scenarios[0].name)
     for _ in range(3):
         application.processEvents()
     pixmap = window.grab()

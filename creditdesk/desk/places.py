@@ -14,6 +14,7 @@ _SHEETS = {
     "obligor": "Obligor",
     "assessment": "Obligor",
     "texts": "Memo",
+    "pencil": "Pencil",
 }
 
 

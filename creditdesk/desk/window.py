@@ -18,7 +18,18 @@ from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QSplitter, QVBo
 
 from creditdesk.base.palette import Palette
 from creditdesk.desk import files, theme
-from creditdesk.desk.frame import FIGURES, MEMO, OBLIGOR, RATIOS, SHEETS, STANDING, Header, SheetBar, StandingPlace
+from creditdesk.desk.frame import (
+    FIGURES,
+    MEMO,
+    OBLIGOR,
+    PENCIL,
+    RATIOS,
+    SHEETS,
+    STANDING,
+    Header,
+    SheetBar,
+    StandingPlace,
+)
 from creditdesk.desk.menus import Menus
 from creditdesk.desk.settings import Settings, Theme
 from creditdesk.desk.sheetstack import SheetStack
@@ -31,6 +42,7 @@ if TYPE_CHECKING:
     from creditdesk.desk.sheets.figures import FiguresSheet
     from creditdesk.desk.sheets.memo import MemoSheet
     from creditdesk.desk.sheets.obligor import ObligorSheet
+    from creditdesk.desk.sheets.pencil import PencilSheet
     from creditdesk.desk.sheets.ratios import RatiosSheet
     from creditdesk.desk.signing import Issuer
     from creditdesk.desk.standing import StandingColumn
@@ -127,6 +139,11 @@ class Window(QMainWindow):
     def ratios(self) -> "RatiosSheet":
         """Return the sheet Ratios."""
         return cast("RatiosSheet", self.stack.bring_up(RATIOS))
+
+    @property
+    def pencil(self) -> "PencilSheet":
+        """Return the sheet Pencil."""
+        return cast("PencilSheet", self.stack.bring_up(PENCIL))
 
     @property
     def memo(self) -> "MemoSheet":

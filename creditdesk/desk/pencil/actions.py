@@ -1,7 +1,8 @@
 """What can be done with scenarios and marks, for menu, palette and keys; every edit is one command."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 
+import msgspec
 from PySide6.QtCore import QObject, Signal
 from PySide6.QtWidgets import QMessageBox, QWidget
 
@@ -18,8 +19,7 @@ from creditdesk.desk.actions import Entry
 from creditdesk.desk.pencil.dialogs import EventDialog, InkInDialog, NameDialog
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.targets import TargetKind
-from creditdesk.flow.run import run_flow
-from creditdesk.scenario.marks import Mark, Scenario, moves_of
+from creditdesk.scenario.marks import Mark, Scenario
 
 _NEW_NAME = "What if"
 
@@ -138,12 +138,10 @@ class ScenarioActions(QObject):
 
     def entries_of(self, marks: Sequence[Mark], scenario: Scenario) -> tuple[tuple[str, float], ...]:
         """Return what marks alone come to, line by line, under the scenario's assumptions."""
-        session, board = self._draft.session, self._draft.board
-        if board is None or session.house.flow is None:
+        board = self._draft.board
+        if board is None:
             return ()
-        ink = board.ink
-        moves = moves_of(marks)
-        flow = run_flow(session.house.flow, ink.statements, ink.period_index, moves, scenario.assumptions)
+        flow = board.scenario(msgspec.structs.replace(scenario, marks=tuple(marks))).flow
         return tuple((line, float(jet.value)) for line, jet in flow.entries.items() if float(jet.value))
 
     def _ask_to_ink(self, scenario: Scenario, marks: Sequence[Mark]) -> None:
@@ -211,10 +209,3 @@ class ScenarioActions(QObject):
         agreed = box.clickedButton() is remove
         box.deleteLater()
         return agreed
-
-
-def wrapped(
-    here: Callable[[Callable[[], object]], Callable[[], None]], choices: Sequence[Entry | None]
-) -> list[Entry | None]:
-    """Let each choice first bring its sheet to the front."""
-    return [choice and (*choice[:2], here(choice[2])) for choice in choices]

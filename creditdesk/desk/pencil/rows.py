@@ -10,6 +10,7 @@ from creditdesk.case.standing import Standing
 from creditdesk.desk.pencil.targets import Target, TargetBook, TargetKind
 from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.desk.tables.rows import Choice, RowKind, figure_rows
+from creditdesk.flow.moves import MoveKind
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import HELD, Reason
 from creditdesk.ratios.words import REASON_WORDS
@@ -19,6 +20,7 @@ AS_INK = "="
 """What stands in pencil where nothing moves."""
 _SUMS = ("ebitda", "operating_profit", "profit_before_tax", "net_profit", "total_assets", "total_equity")
 _NOISE = 1e-9
+_UNMOVED, _FIRST_STATEMENT = "as is", "income"
 _DRIVERS, _DAYS, _RATIOS, _MARKS, _FLOW = "Drivers", "Days", "Ratios of the model", "Marks", "Through the statements"
 
 
@@ -104,19 +106,16 @@ class PencilFacts:
             yield from self._rows_of(group.label, keys)
 
     def _statement_rows(self, *, figures_only: bool, wanted: frozenset[str] | None = None) -> Iterator[Row]:
-        """Yield lines and sums as the statements run, a heading where one of them has rows."""
-        heading: Row | None = None
-        noted = frozenset(self.marks)
-        for row in figure_rows(self.ink.received, self.ink.statements, Choice(figures_only, noted=noted)):
-            if row.kind is RowKind.HEADING:
-                heading = Row("", row.label)
-            elif row.kind in (RowKind.LINE, RowKind.SUBTOTAL) and (wanted is None or row.key in wanted):
-                if row.kind is RowKind.LINE and row.key not in self.targets:
-                    continue
-                if heading is not None:
-                    yield heading
-                    heading = None
-                yield Row(row.key, row.label, bold=row.kind is RowKind.SUBTOTAL)
+        """Yield lines and sums, profit before balances as changes begin there; headings where there are rows."""
+        choice = Choice(figures_only, noted=frozenset(self.marks))
+        sections: dict[str, list[Row]] = {}
+        for row in figure_rows(self.ink.received, self.ink.statements, choice):
+            line, known = row.kind is RowKind.LINE, row.kind in (RowKind.LINE, RowKind.SUBTOTAL)
+            if known and (wanted is None or row.key in wanted) and (not line or row.key in self.targets):
+                sections.setdefault(row.section, []).append(Row(row.key, row.label, bold=not line))
+        for section in sorted(sections, key=lambda one: one != _FIRST_STATEMENT):
+            yield Row("", section.replace("_", " ").capitalize())
+            yield from sections[section]
 
     def _wanted(self) -> frozenset[str]:
         """Name lines and sums that are marked or move, or are usually marked first."""
@@ -169,15 +168,12 @@ class PencilFacts:
         )
 
     def _driver_cell(self, target: Target) -> Cell:
-        mark, nil = self.marks.get(target.key), target.text(0.0)
+        mark = self.marks.get(target.key)
         if mark is None:
-            return Cell(ink=nil, pencil=AS_INK if self.pencilled else "")
-        words = self._mark_words(mark, target)
+            return Cell(ink=_UNMOVED, pencil=AS_INK if self.pencilled else "")
         moved = self._in_force(target.key)
-        return Cell(nil, words, "", self._why(target, target.key), moved=moved, marked=True)
-
-    def _mark_words(self, mark: Mark, target: Target) -> str:
-        return mark_words(mark, target).removeprefix("to ")
+        why = "" if moved else self._why(target, target.key)
+        return Cell(_UNMOVED, _driver_words(mark, target), "", why, moved=moved, marked=True)
 
     def _text(self, target: Target, key: str, value: float, *, pencil: bool) -> str:
         """Write a value, for a ratio without one in few words why."""
@@ -216,3 +212,8 @@ class PencilFacts:
         """Return why a mark changes nothing."""
         findings = self.pencilled.findings if self.pencilled is not None else ()
         return next((one.text for one in findings if f".{key}[" in one.place), "the mark changes nothing")
+
+
+def _driver_words(mark: Mark, target: Target) -> str:
+    """Write how far a driver is moved; to and by are one for it."""
+    return mark_words(mark if mark.kind is MoveKind.BY_PCT else Mark(mark.target, MoveKind.BY, mark.amount), target)

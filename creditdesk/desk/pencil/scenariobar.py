@@ -12,7 +12,7 @@ from creditdesk.scenario.marks import Scenario
 INK_WORD, NEW_WORD = "Ink", "+ new"
 IN_MEMO = "¶"
 """Stands behind the name of a scenario that the memo prints."""
-_WIDEST = 210
+_WIDEST, _HEIGHT = 210, 31
 _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
 
 
@@ -37,6 +37,7 @@ class _Strip(QScrollArea):
         super().__init__()
         self.setWidget(inside)
         self.setWidgetResizable(True)
+        self.setFixedHeight(_HEIGHT)
         self.setFrameShape(QFrame.Shape.NoFrame)
         for bar in (self.setHorizontalScrollBarPolicy, self.setVerticalScrollBarPolicy):
             bar(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
@@ -46,7 +47,7 @@ class _Strip(QScrollArea):
 
     def sizeHint(self) -> QSize:
         """Ask for one row."""
-        return QSize(300, 31)
+        return QSize(300, _HEIGHT)
 
     def wheelEvent(self, event: QWheelEvent) -> None:
         """Slide sideways."""
@@ -80,6 +81,7 @@ class ScenarioBar(QWidget):
         self._row.addWidget(self.new)
         self._row.addStretch(1)
         self._strip = _Strip(inside)
+        self.setSizePolicy(QSizePolicy.Policy.Preferred, QSizePolicy.Policy.Fixed)
         whole = QHBoxLayout(self)
         whole.setContentsMargins(0, 0, 0, 0)
         whole.setSpacing(8)

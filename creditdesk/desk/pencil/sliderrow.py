@@ -36,7 +36,7 @@ class MarkSlider(QSlider):
 
     def __init__(self) -> None:
         super().__init__(Qt.Orientation.Horizontal)
-        self.setMinimumWidth(110)
+        self.setMinimumSize(110, 24)
         self.setPageStep(5)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)

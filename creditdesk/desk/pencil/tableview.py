@@ -90,7 +90,7 @@ class PencilDelegate(TypedDelegate):
         """Write what is marked or follows; a mark of its own has its dotted line over the whole cell."""
         cell = self._model.cell(row)
         if cell.pencil == AS_INK and not cell.marked:
-            self._write(painter, rect, AS_INK, Hand.PLAIN, self.palette.rule)
+            self._write(painter, rect, AS_INK, Hand.PLAIN, self.palette.pencil)
             return
         self._write(painter, rect, cell.pencil, Hand.ITALIC, self.palette.pencil)
         if cell.pencil:

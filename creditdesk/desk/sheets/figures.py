@@ -20,8 +20,9 @@ from creditdesk.desk.periodactions import PeriodActions, fill_menu
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.desk.tables.delegates import FiguresDelegate
 from creditdesk.desk.tables.figures import FiguresModel
+from creditdesk.desk.tables.plain import WholeRows
 from creditdesk.desk.tables.rows import RowKind
-from creditdesk.desk.tables.view import FiguresTable, WholeRows
+from creditdesk.desk.tables.view import FiguresTable
 from creditdesk.desk.tracestrip import TraceStrip
 from creditdesk.house.book import HouseBook
 from creditdesk.statements.period import period_ending

@@ -8,7 +8,6 @@ from PySide6.QtCore import (
     QModelIndex,
     QPersistentModelIndex,
     QRect,
-    QSize,
     Qt,
     QTimer,
     Signal,
@@ -267,11 +266,6 @@ class FiguresTable(PlainTable):
     def _place_labels(self) -> None:
         self.labels.place()
 
-    def height_in_rows(self, room: int) -> int:
-        """Return the height, at most ``room`` where that is enough for one row, that cuts no row in two."""
-        around = self.height() - self.viewport().height()
-        return around + max((room - around) // _ROW_HEIGHT, 1) * _ROW_HEIGHT
-
     def recolour(self, palette: Palette) -> None:
         """Draw cells, headings and labels in another palette."""
         for view in (self, self.labels):
@@ -323,30 +317,6 @@ class FrozenLabels(QTableView):
         rule = QColor(self.delegate.palette.rule)
         painter.fillRect(QRect(self.viewport().width() - 1, 0, 1, self.viewport().height()), rule)
         painter.end()
-
-
-class WholeRows(QWidget):
-    """Hold a table at a height that cuts no row in two; what is over stays blank below it."""
-
-    def __init__(self, table: FiguresTable) -> None:
-        super().__init__()
-        self._table = table
-        table.setParent(self)
-        self.setSizePolicy(table.sizePolicy())
-        table.horizontalScrollBar().rangeChanged.connect(self._fit)
-
-    def minimumSizeHint(self) -> QSize:
-        """Ask for what the table needs."""
-        return self._table.minimumSizeHint()
-
-    def resizeEvent(self, event: QResizeEvent) -> None:
-        """Give the table as much as whole rows take."""
-        super().resizeEvent(event)
-        self._fit()
-
-    def _fit(self) -> None:
-        self._table.resize(self.size())  # lets scroll bars come or go first, which take part of the height
-        self._table.resize(self.width(), self._table.height_in_rows(self.height()))
 
 
 def _dress(view: QTableView) -> None:
