@@ -27,6 +27,8 @@ _HEADINGS, _WIDE_HEADINGS = 110, 76
 """Height of the headings above the charts, two or one, with the margins around them."""
 _TIGHT = 0.9
 """How much closer the rows of the contributions stand where the column is low."""
+_LOW = 700
+"""Below this height in pixels two columns are low."""
 _MARGIN = 15
 _CHART_MARGIN = 5
 """Between the frame that shows the focus and the chart; with the column's margin it lines up with the texts."""
@@ -69,6 +71,14 @@ class ChartPlace(QFrame):
         self.setProperty("focused", focused)
         self.style().unpolish(self)
         self.style().polish(self)
+
+
+class _Inside(QWidget):
+    """Hold what scrolls: as high as its width makes it, which broken lines would claim more than."""
+
+    def minimumSizeHint(self) -> QSize:
+        """Leave the height to the width."""
+        return QSize(0, 0)
 
 
 class StandingColumn(QWidget):
@@ -204,7 +214,8 @@ class StandingColumn(QWidget):
         left = self.height() - self.verdict.sizeHint().height() - (_WIDE_HEADINGS if self.wide else _HEADINGS)
         if self._canvases is not None and self._standing is not None:
             rows = self._canvases.contributions_height(self._standing)
-            rows = rows if self.wide or left - rows >= lowest else round(_TIGHT * rows)
+            roomy = self.height() >= _LOW if self.wide else left - rows >= lowest
+            rows = rows if roomy else round(_TIGHT * rows)
             self.contributions_place.setFixedHeight(rows)
         left -= 0 if self.wide else self.contributions_place.height()
         self.curve_place.setFixedHeight(min(max(left, lowest), highest))
@@ -286,7 +297,7 @@ class StandingColumn(QWidget):
         self._minded = _column((cautions, self.cautions))
         for widget in (self.verdict, heading, self.heading, self.switch_note, findings, cautions, self.cautions):
             widget.setContentsMargins(_CHART_MARGIN, 0, _CHART_MARGIN, 0)
-        inside = QWidget()
+        inside = _Inside()
         self._columns = QBoxLayout(QBoxLayout.Direction.TopToBottom, inside)
         self._columns.setContentsMargins(_MARGIN, 14, _MARGIN, 14)
         for part in (self._left, self._right):

@@ -337,3 +337,12 @@ def test_the_cautions_stand_where_there_is_room(show: Show, sound: Standing) -> 
         column.resize(*NARROW)
         settle()
         assert column.cautions.mapTo(column, QPoint(0, 0)).y() > column.findings.mapTo(column, QPoint(0, 0)).y()
+
+
+@pytest.mark.parametrize("size", [NARROW, WIDE, (1900, 900)], ids=str)
+def test_nothing_scrolls_beyond_what_there_is_to_see(show: Show, sound: Standing, size: tuple[int, int]) -> None:
+    finding = Finding("doubt", Severity.NOTE, "figures.cash[2025-12-31]", "A doubt of some length. " * 9)
+    column = show(dataclasses.replace(sound, findings=(finding,) * 7), size)
+    inside = column.view.widget()
+    needed = inside.heightForWidth(inside.width())
+    assert inside.height() == max(needed, column.view.viewport().height())
