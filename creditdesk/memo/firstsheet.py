@@ -3,7 +3,7 @@
 What may be long is cut to its share and printed in full after the page; the curve takes the height that is left.
 """
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import partial
 from typing import cast
@@ -27,11 +27,13 @@ from creditdesk.memo.tagging import DASH, TaggedDrawing, TaggedParagraph, tagged
 
 _LEFT, _GUTTER = 258.0, 22.0
 _RIGHT = TEXT_WIDTH - _LEFT - _GUTTER
-_ROWS = 8
 _FOUND = "spots found"
 _CURVE_LEAST, _CURVE_MOST, _CURVE_WITHOUT_ROOM = 118.0, 228.0, 60.0
 _MOST_LINES = {"request": 3, "recommendation": 6, "conditions": 6, "weak_spots": 5, _FOUND: 7}
 _LEAST_LINES = {"request": 2, "recommendation": 2, "conditions": 2, "weak_spots": 2, _FOUND: 3}
+_MOST_ROWS = {"factors": 8, "ratios": 8, "lines a note": 4}
+_LEAST_ROWS = {"factors": 3, "ratios": 3, "lines a note": 2}
+"""What is taken from only where all texts are cut to their least: rows of tables, lines of each note on the PD."""
 _LINES_A_SPOT = 3
 _POINTER = " … continued on page 2"
 
@@ -46,11 +48,12 @@ class FirstSheet:
 
 def first_sheet(content: MemoContent, standing: Standing) -> FirstSheet:
     """Lay out page one so that it fills one page and never more."""
-    lines = dict(_MOST_LINES)
+    shares = _MOST_LINES | _MOST_ROWS
     while True:
-        page = _Page(content, standing, lines)
+        page = _Page(content, standing, shares)
         room = TEXT_HEIGHT - _height([*page.above, *page.below, *page.foot]) - 1
-        if room >= _CURVE_LEAST or not _take_a_line(lines):
+        enough = room >= _CURVE_LEAST or (room >= _CURVE_WITHOUT_ROOM and not _to_spare(shares, _LEAST_LINES))
+        if enough or not _take_one(shares):
             break
     height = max(min(room, _CURVE_MOST), _CURVE_WITHOUT_ROOM)
     curve = chart(lambda size: curve_figure(standing, PAPER, size), (TEXT_WIDTH, height), content.curve_words)
@@ -69,17 +72,18 @@ def chart(make: Callable[[tuple[float, float]], Figure], size: tuple[float, floa
 
 
 class _Page:
-    """Make page one's parts above and below the curve and at its foot, each text cut to its ``lines``."""
+    """Make page one's parts above and below the curve and at its foot, each cut to its share of lines or rows."""
 
-    def __init__(self, content: MemoContent, standing: Standing, lines: dict[str, int]) -> None:
+    def __init__(self, content: MemoContent, standing: Standing, shares: Mapping[str, int]) -> None:
         self.cut: list[str] = []
-        self._lines = lines
+        self._shares = shares
         first = content.first
         request = self._officer("request", "Request.", first.request, NAME_WIDTH - 8)
-        self.above: list[Flowable] = [masthead(first, request), Spacer(1, 9), *heading("Where the borrower stands")]
+        head = masthead(first, request, shares["lines a note"])
+        self.above: list[Flowable] = [head, Spacer(1, 9), *heading("Where the borrower stands")]
         self.below: list[Flowable] = [
             Spacer(1, 8),
-            _why_and_ratios(content, standing),
+            _why_and_ratios(content, standing, shares),
             Spacer(1, 8),
             *heading("Weak spots"),
             *self._spots(first.spots_found),
@@ -99,7 +103,7 @@ class _Page:
         """Set an officer's text after its head, cut to its lines; an empty one is said to be missing."""
         if not text:
             return TaggedParagraph(f"<b>{head}</b> <i>{NOT_WRITTEN}</i>", BODY)
-        shown, cut = cut_to_lines(partial(_headed, head), text, width, self._lines[key], _POINTER)
+        shown, cut = cut_to_lines(partial(_headed, head), text, width, self._shares[key], _POINTER)
         self.cut += [key] if cut else []
         return _headed(head, shown)
 
@@ -114,7 +118,7 @@ class _Page:
         for spot in spots:
             text, _ = cut_to_lines(_listed, spot.text, TEXT_WIDTH, _LINES_A_SPOT)
             used += lines_of(_listed(text), TEXT_WIDTH)
-            if shown and used > self._lines[_FOUND]:
+            if shown and used > self._shares[_FOUND]:
                 break
             shown.append(marked_up(text))
         marks = [spot.mark or DASH for spot in spots[: len(shown)]]
@@ -123,13 +127,14 @@ class _Page:
         return [*tagged_list(shown, SMALL_ITEM, marks), *([TaggedParagraph(more, NOTE)] if hidden else [])]
 
 
-def _why_and_ratios(content: MemoContent, standing: Standing) -> Flowable:
+def _why_and_ratios(content: MemoContent, standing: Standing, shares: Mapping[str, int]) -> Flowable:
     """Set the contributions beside the key ratios."""
-    rows = min(len(standing.factors), _ROWS)
+    most = shares["factors"]
+    rows = min(len(standing.factors), most)
     size = (_LEFT, contributions_height(rows, PAPER))
-    why = chart(lambda wanted: contributions_figure(standing, PAPER, wanted, _ROWS), size, content.contribution_words)
+    why = chart(lambda wanted: contributions_figure(standing, PAPER, wanted, most), size, content.contribution_words)
     left = [*heading("Why"), why]
-    right = [*heading("Key ratios"), key_ratio_table(content.first, _RIGHT)]
+    right = [*heading("Key ratios"), key_ratio_table(content.first, _RIGHT, shares["ratios"])]
     return columns((left, (), right), (_LEFT, _GUTTER, _RIGHT))
 
 
@@ -142,12 +147,16 @@ def _listed(text: str) -> TaggedParagraph:
     return cast("TaggedParagraph", item)
 
 
-def _take_a_line(lines: dict[str, int]) -> bool:
-    """Take one line from the text that has most to spare; False where none has."""
-    spare = {key: lines[key] - _LEAST_LINES[key] for key in lines}
-    key = max(spare, key=lambda name: spare[name])
-    lines[key] -= 1 if spare[key] > 0 else 0
-    return spare[key] > 0
+def _take_one(shares: dict[str, int]) -> bool:
+    """Take one from the text, or else from the rows, that has most to spare; False where none has."""
+    spare = _to_spare(shares, _LEAST_LINES) or _to_spare(shares, _LEAST_ROWS)
+    if spare:
+        shares[max(spare, key=lambda name: spare[name])] -= 1
+    return bool(spare)
+
+
+def _to_spare(shares: Mapping[str, int], least: Mapping[str, int]) -> dict[str, int]:
+    return {key: shares[key] - number for key, number in least.items() if shares[key] > number}
 
 
 def _height(flowables: Sequence[Flowable]) -> float:
