@@ -17,7 +17,6 @@ from creditdesk.memo.fonts import register_fonts
 from creditdesk.memo.issue import draft_memo
 from creditdesk.memo.page import print_pages
 from creditdesk.memo.structure import Structure
-from creditdesk.statements.period import Period
 from tests.borrowers import SOUND, STRETCHED, demo, shipped_house
 from tests.contents import content, first_page
 from tests.memo.reading import page_texts
@@ -121,7 +120,7 @@ def test_any_case_fits_one_page(case: Case) -> None:
 
 
 def with_months(case: Case, months: int) -> Case:
-    last: Period = msgspec.structs.replace(case.periods[-1], months=months)
+    last = msgspec.structs.replace(case.periods[-1], months=months)
     return msgspec.structs.replace(case, periods=(*case.periods[:-1], last))
 
 
