@@ -1,6 +1,7 @@
 """Many points asked for in blocks: bounded memory, progress, and a stop that is never far."""
 
 from collections.abc import Generator, Mapping, Sequence
+from dataclasses import fields
 from typing import TypeAlias, TypeVar
 
 import numpy as np
@@ -8,15 +9,17 @@ from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Move, MoveKind, Moves
 from creditdesk.scenario.outcomes import Evaluate, Outcomes
+from creditdesk.scenario.specs import Range
 
 FloatArray = NDArray[np.float64]
 Result = TypeVar("Result")
 Progress: TypeAlias = Generator[float, None, Result]
 """Work in parts: yields the share done after each, in (0, 1]; whoever drives it may stop between two."""
+Positions = Mapping[str, tuple[MoveKind, FloatArray]]
+"""Where targets stand, in the unit of a kind: arrays of one length."""
 
 BLOCK = 4096
 """Points in one call."""
-_FIELDS = ("score", "pd_model", "pd_calibrated", "pd", "pd_final", "grade")
 
 
 def finish(work: Progress[Result]) -> Result:
@@ -34,9 +37,15 @@ def with_positions(base: Moves, positions: Mapping[str, tuple[MoveKind, FloatArr
     return {**base, **{target: Move(kind, amount) for target, (kind, amount) in positions.items()}}
 
 
-def in_blocks(
-    evaluate: Evaluate, base: Moves, positions: Mapping[str, tuple[MoveKind, FloatArray]]
-) -> Progress[Outcomes]:
+def position(base: Moves, along: Range) -> float:
+    """Say where moves stand in a range: 0 where they leave its target alone, nan where that is not told in its unit."""
+    move = base.get(along.target)
+    if move is None:
+        return 0.0 if along.kind.relative else float("nan")
+    return float(np.asarray(move.amount)) if move.kind is along.kind else float("nan")
+
+
+def in_blocks(evaluate: Evaluate, base: Moves, positions: Positions) -> Progress[Outcomes]:
     """Evaluate points given by equally long arrays, one for each target."""
     count = len(next(iter(positions.values()))[1])
     parts = []
@@ -49,6 +58,9 @@ def in_blocks(
 
 def joined(parts: Sequence[Outcomes]) -> Outcomes:
     """Put outcomes of blocks together in their order."""
-    fields = {name: np.concatenate([getattr(part, name) for part in parts]) for name in _FIELDS}
+    if len(parts) == 1:
+        return parts[0]
+    names = [field.name for field in fields(Outcomes) if field.name != "amounts"]
+    arrays = {name: np.concatenate([getattr(part, name) for part in parts]) for name in names}
     amounts = {key: np.concatenate([part.amounts[key] for part in parts]) for key in parts[0].amounts}
-    return Outcomes(**fields, amounts=amounts)
+    return Outcomes(**arrays, amounts=amounts)

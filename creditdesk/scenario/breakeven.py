@@ -9,36 +9,37 @@ from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Moves
 from creditdesk.grading.scale import MasterScale
-from creditdesk.scenario.blocks import Progress, with_positions
-from creditdesk.scenario.grid import position
+from creditdesk.scenario.blocks import Progress, position, with_positions
 from creditdesk.scenario.outcomes import Evaluate, Outcomes
 from creditdesk.scenario.specs import BreakEvenSpec, Limit, LimitKind
 
 FloatArray = NDArray[np.float64]
+StateArray = NDArray[np.int64]
 
-_SCAN = 256
+_SCAN = 512
 """Equal steps on either side of the start. Between two of them a limit is taken to break at most once."""
-_INSIDE, _ROUNDS = 63, 8
-"""Points set inside a bracket, and how often: 64 to the 8th is beyond the digits of a double."""
+_INSIDE, _ROUNDS = 255, 5
+"""Points set inside a bracket, and how often: 512 times 256 to the 5th is near the digits of a double."""
+_HOLDS, _BROKEN, _UNKNOWN = 0, 1, 2
 
 
-class Standing(StrEnum):
-    """Say what was found on one side.
+class Ending(StrEnum):
+    """Say what ends one side.
 
-    BREAKS: at the position given. HOLDS: all the way to the end of the range. NOT_KNOWN: beyond the position given
-    the amount is not known.
+    CHANGES: at the position given a limit that holds breaks, or one that is broken holds again. SAME: nothing changes
+    up to the end of the range. NOT_KNOWN: the amount is not known, at the start or beyond the position given.
     """
 
-    BREAKS = "breaks"
-    HOLDS = "holds"
+    CHANGES = "changes"
+    SAME = "same"
     NOT_KNOWN = "not_known"
 
 
 @dataclass(frozen=True, slots=True)
 class Side:
-    """Hold one side: the last position, from the start, at which the limit still holds; the end of the range there."""
+    """Hold one side: ``position`` is the last, from the start, at which all is as it is there."""
 
-    standing: Standing
+    ending: Ending
     position: float
 
 
@@ -71,27 +72,25 @@ def watched(limits: Sequence[Limit]) -> tuple[str, ...]:
 
 
 def break_even(evaluate: Evaluate, base: Moves, spec: BreakEvenSpec, scale: MasterScale) -> Progress[BreakEven]:
-    """Find where each limit breaks on either side of the start.
+    """Find what ends each limit's state on either side of the start.
 
     ``evaluate`` has to tell what ``watched`` names. The start is where the scenario stands, if that is told in the
     unit of the range, else the end of the range that is nearer to nil; it is drawn into the range if it lies outside.
     """
     start = _start(base, spec)
-    ends = (spec.along.low, spec.along.high)
-    scans = [np.linspace(start, end, _SCAN + 1) for end in ends]
+    scans = [np.linspace(start, end, _SCAN + 1) for end in (spec.along.low, spec.along.high)]
     told = evaluate(_at(base, spec, np.concatenate(scans)))
     yield 0.2
     found = []
     for number, limit in enumerate(spec.limits):
         states = _states(limit, told, scale).reshape(2, -1)
-        sides = [_side(evaluate, base, (spec, limit, scale), one) for one in zip(scans, states, strict=True)]
+        sides = []
+        for one in zip(scans, states, strict=True):
+            sides.append(_side(evaluate, base, (spec, limit, scale), one))
+            yield 0.2 + 0.8 * (number + len(sides) / 2) / len(spec.limits)
         amount = float("nan") if limit.kind is LimitKind.GRADE else float(told.amounts[limit.key][0])
         found.append(Break(limit, bool(states[0, 0] == _BROKEN), amount, *sides))
-        yield 0.2 + 0.8 * (number + 1) / len(spec.limits)
     return BreakEven(spec, start, tuple(found))
-
-
-_HOLDS, _BROKEN, _UNKNOWN = 0, 1, 2
 
 
 def _start(base: Moves, spec: BreakEvenSpec) -> float:
@@ -103,7 +102,7 @@ def _at(base: Moves, spec: BreakEvenSpec, positions: FloatArray) -> Moves:
     return with_positions(base, {spec.along.target: (spec.along.kind, positions)})
 
 
-def _states(limit: Limit, told: Outcomes, scale: MasterScale) -> NDArray[np.int64]:
+def _states(limit: Limit, told: Outcomes, scale: MasterScale) -> StateArray:
     """Say of each point whether the limit holds, is broken, or is not known."""
     if limit.kind is LimitKind.GRADE:
         place = scale.position(limit.key)
@@ -118,14 +117,14 @@ def _side(
     evaluate: Evaluate,
     base: Moves,
     asked: tuple[BreakEvenSpec, Limit, MasterScale],
-    scanned: tuple[FloatArray, NDArray[np.int64]],
+    scanned: tuple[FloatArray, StateArray],
 ) -> Side:
     """Find the first change of state from the start onwards, and where it lies."""
     spec, limit, scale = asked
     positions, states = scanned
     changed = np.flatnonzero(states != states[0])
     if not changed.size:
-        return Side(Standing.NOT_KNOWN if states[0] == _UNKNOWN else Standing.HOLDS, float(positions[-1]))
+        return Side(Ending.NOT_KNOWN if states[0] == _UNKNOWN else Ending.SAME, float(positions[-1]))
     last, first, beyond = positions[changed[0] - 1], positions[changed[0]], int(states[changed[0]])
     for _ in range(_ROUNDS):
         points = np.linspace(last, first, _INSIDE + 2)
@@ -133,4 +132,4 @@ def _side(
         place = max(int(np.argmax(own != states[0])), 1)
         last, first, beyond = points[place - 1], points[place], int(own[place])
     unknown = _UNKNOWN in (beyond, int(states[0]))
-    return Side(Standing.NOT_KNOWN if unknown else Standing.BREAKS, float(last))
+    return Side(Ending.NOT_KNOWN if unknown else Ending.CHANGES, float(last))

@@ -6,9 +6,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Moves
-from creditdesk.scenario.blocks import Progress, in_blocks
+from creditdesk.scenario.blocks import Progress, in_blocks, position
 from creditdesk.scenario.outcomes import Evaluate
-from creditdesk.scenario.specs import GridSpec, Range
+from creditdesk.scenario.specs import GridSpec
 
 FloatArray = NDArray[np.float64]
 
@@ -46,11 +46,3 @@ def grid(evaluate: Evaluate, base: Moves, spec: GridSpec) -> Progress[Grid]:
         grade=found.grade.reshape(wide.shape),
         at=(position(base, spec.across), position(base, spec.up)),
     )
-
-
-def position(base: Moves, along: Range) -> float:
-    """Say where moves stand in a range: 0 where they leave its target alone, nan where that is not told in its unit."""
-    move = base.get(along.target)
-    if move is None:
-        return 0.0 if along.kind.relative else float("nan")
-    return float(np.asarray(move.amount)) if move.kind is along.kind else float("nan")

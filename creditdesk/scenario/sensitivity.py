@@ -4,12 +4,14 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from creditdesk.flow.moves import MoveKind, Moves
-from creditdesk.scenario.blocks import Progress, in_blocks
-from creditdesk.scenario.grid import position
+from creditdesk.scenario.blocks import Progress, in_blocks, position
 from creditdesk.scenario.outcomes import Evaluate
 from creditdesk.scenario.specs import Range
+
+FloatArray = NDArray[np.float64]
 
 Slope = Callable[[Sequence[str]], Mapping[str, float]]
 """Give d PD per unit of each target, through flow, ratio and treatment; nan where there is none."""
@@ -34,7 +36,8 @@ def sensitivities(
 ) -> Progress[tuple[Sensitivity, ...]]:
     """Move one target at a time to both ends of its range, from where ``base`` stands; the largest effect first.
 
-    A target that ``base`` moves already is moved on from there, where that is told in the unit of its range.
+    Ends BY an amount or per cent count from where ``base`` stands; where that is told in another unit, nothing is
+    known of the range.
     """
     slopes = slope(tuple(one.target for one in ranges))
     start = evaluate(base)
@@ -48,9 +51,11 @@ def sensitivities(
     return tuple(sorted(found, key=lambda one: (np.isnan(one.effect), -abs(one.effect), one.along.target)))
 
 
-def _ends(evaluate: Evaluate, base: Moves, one: Range) -> Progress[np.ndarray]:
+def _ends(evaluate: Evaluate, base: Moves, one: Range) -> Progress[FloatArray]:
     start = position(base, one) if one.kind.relative else 0.0
-    ends = np.array([one.low, one.high]) + (0.0 if np.isnan(start) else start)
+    if np.isnan(start):
+        return np.full(2, np.nan)
+    ends = start + np.array([one.low, one.high])
     told = yield from in_blocks(evaluate, base, {one.target: (one.kind, ends)})
     return told.pd
 

@@ -11,12 +11,11 @@ from numpy.typing import NDArray
 
 from creditdesk.base.numbers import normal_cdf, normal_quantile
 from creditdesk.flow.moves import MoveKind, Moves
-from creditdesk.scenario.blocks import BLOCK, Progress, with_positions
+from creditdesk.scenario.blocks import BLOCK, Progress, position, with_positions
 from creditdesk.scenario.outcomes import COEFFICIENTS, Evaluate
 from creditdesk.scenario.specs import Correlation, Shape, SimulationSpec, UncertainInput
 
 FloatArray = NDArray[np.float64]
-Positions = Mapping[str, tuple[MoveKind, FloatArray]]
 
 LEVELS = (0.05, 0.25, 0.5, 0.75, 0.95)
 """Quantiles that are told."""
@@ -29,9 +28,10 @@ _BARS = 60
 class Spread:
     """Hold a simulation. All PDs are after the floor and before house rules.
 
-    ``quantiles`` at ``LEVELS``, ``mean`` with its Monte Carlo ``error`` (one standard error), ``grades``: share of the
-    draws by place of the final grade, ``none``: share without a PD. ``edges``, ``counts``: a histogram over log-odds of
-    the PD. ``scores``: 5th, 50th and 95th percentile of the score, for the fan on the curve.
+    ``quantiles`` of the PD and ``scores``, those of the score for the fan on the curve, at ``LEVELS``. ``mean`` with
+    its Monte Carlo ``error`` (one standard error). ``grades``: share of the draws by place of the final grade, -1 for
+    none. ``without``: share without a PD, left out of all but ``grades``. ``edges``, ``counts``: a histogram over
+    log-odds of the PD.
     """
 
     spec: SimulationSpec
@@ -39,7 +39,7 @@ class Spread:
     mean: float
     error: float
     grades: Mapping[int, float]
-    none: float
+    without: float
     edges: FloatArray
     counts: NDArray[np.int64]
     scores: FloatArray
@@ -48,16 +48,19 @@ class Spread:
 def simulate(evaluate: Evaluate, base: Moves, spec: SimulationSpec) -> Progress[Spread]:
     """Draw inputs and coefficients ``spec.draws`` times, each draw through flow and house rules.
 
-    The same specification gives the same draws: blocks of one size, one stream from ``spec.seed``.
+    The range of an input, BY an amount or per cent, counts from where ``base`` stands; where that is told in another
+    unit, the input takes its place. The same specification gives the same draws, in blocks of any size: one stream from
+    ``spec.seed``, read draw by draw.
     """
     stream = np.random.Generator(np.random.PCG64(spec.seed))
     factor = correlation_factor(spec.inputs, spec.correlations)
+    starts = np.array([start_of(base, one) for one in spec.inputs])
     pds: FloatArray = np.empty(spec.draws)
     scores: FloatArray = np.empty(spec.draws)
     places = np.empty(spec.draws, dtype=np.int64)
     for start in range(0, spec.draws, BLOCK):
         count = min(BLOCK, spec.draws - start)
-        positions = _drawn(stream, factor, spec, count)
+        positions = _drawn(stream, (factor, starts), spec, count)
         told = evaluate(with_positions(base, positions))
         part = slice(start, start + count)
         pds[part], scores[part], places[part] = told.pd, told.score, told.grade
@@ -90,14 +93,23 @@ def position_of(one: UncertainInput, score: FloatArray) -> FloatArray:
     return np.asarray(100.0 * np.expm1((lower + upper) / 2 + (upper - lower) / 2 / reach * score))
 
 
-def _drawn(stream: np.random.Generator, factor: FloatArray, spec: SimulationSpec, count: int) -> Positions:
-    scores = stream.standard_normal((len(spec.inputs), count))
-    moved = factor @ scores
-    positions = {
-        one.range.target: (one.range.kind, position_of(one, row)) for one, row in zip(spec.inputs, moved, strict=True)
-    }
-    off = stream.standard_normal(count) if spec.coefficients else None
-    return positions if off is None else {**positions, COEFFICIENTS: (MoveKind.BY, off)}
+def start_of(base: Moves, one: UncertainInput) -> float:
+    """Return from where the range of an input counts: where ``base`` stands in its unit, else 0."""
+    start = position(base, one.range) if one.range.kind.relative else 0.0
+    return 0.0 if np.isnan(start) else start
+
+
+def _drawn(
+    stream: np.random.Generator, laid: tuple[FloatArray, FloatArray], spec: SimulationSpec, count: int
+) -> dict[str, tuple[MoveKind, FloatArray]]:
+    """Draw the positions of the inputs; sums are taken term by term, so that they do not depend on the block."""
+    factor, starts = laid
+    scores = stream.standard_normal((count, len(spec.inputs) + spec.coefficients))
+    positions = {}
+    for number, one in enumerate(spec.inputs):
+        moved = sum((factor[number, other] * scores[:, other] for other in range(number + 1)), np.zeros(count))
+        positions[one.range.target] = (one.range.kind, starts[number] + position_of(one, moved))
+    return {**positions, COEFFICIENTS: (MoveKind.BY, scores[:, -1])} if spec.coefficients else positions
 
 
 def _summary(spec: SimulationSpec, pds: FloatArray, scores: FloatArray, places: NDArray[np.int64]) -> Spread:
@@ -114,8 +126,8 @@ def _summary(spec: SimulationSpec, pds: FloatArray, scores: FloatArray, places: 
         mean=float(known.mean()) if found else float("nan"),
         error=float(known.std(ddof=1) / np.sqrt(known.size)) if known.size > 1 else float("nan"),
         grades={int(place): float(times) / spec.draws for place, times in zip(numbers, repeats, strict=True)},
-        none=1.0 - known.size / spec.draws,
+        without=1.0 - known.size / spec.draws,
         edges=edges,
         counts=counts.astype(np.int64),
-        scores=np.nanquantile(scores, (0.05, 0.5, 0.95)) if found else np.full(3, np.nan),
+        scores=np.nanquantile(scores, LEVELS) if found else np.full(len(LEVELS), np.nan),
     )
