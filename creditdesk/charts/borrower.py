@@ -2,7 +2,7 @@
 
 import re
 from collections.abc import Iterator, Sequence
-from math import isfinite
+from math import hypot, isfinite
 
 import numpy as np
 
@@ -12,10 +12,11 @@ from creditdesk.charts.board import Board
 from creditdesk.charts.frame import DEEPEST, Frame
 from creditdesk.charts.placing import Box, Taken, around, leader, spaced
 from creditdesk.charts.style import CAP_HEIGHT, LINE_HEIGHT, Pen, Size, Type, text_width, type_size, wrap
-from creditdesk.charts.words import period_name, sentence
+from creditdesk.charts.words import period_name, with_full_stop
 from creditdesk.house.fontfiles import Face
 
 DOT, SMALL_DOT = 4.4, 2.2
+_SAME = 1.0
 # Above left and below right of a rising curve there is room.
 _ABOVE_FIRST = (135.0, 115.0, 155.0, 180.0, 90.0, 315.0, 295.0, 270.0, 0.0, 45.0, 225.0)
 _BELOW_FIRST = (315.0, 295.0, 335.0, 270.0, 135.0, 115.0, 155.0, 0.0, 90.0, 180.0, 45.0, 225.0)
@@ -35,16 +36,16 @@ def draw_borrower(
     point = frame.x(standing.score), frame.y(standing.pd_calibrated)
     taken = Taken(frame.plot, list(obstacles))
     taken.add([around(point, DOT + 1), *_interval_boxes(frame, standing, point)])
-    past = _past_points(frame, standing.past)
+    past = _together(_past_points(frame, standing.past))
     taken.add(around(place, SMALL_DOT + 1) for _, place in past)
     _draw_inset(board, layer, taken, standing, palette)
     taken.add(_draw_way_to_grade(board, layer, frame, standing, palette))
     _write_grades(board, layer, frame, standing, palette)
     _draw_dot(board, layer, frame, standing, palette)
     _label_dot(board, layer, taken, (point, _own_label(standing)), palette)
-    for year, place in reversed(past):
+    for years, place in reversed(past):
         board.dot(layer, place, SMALL_DOT, Pen(palette.sheet), Pen(palette.accent, 0.9), z=3)
-        _label_past(board, layer, taken, (place, year.label), palette)
+        _label_past(board, layer, taken, (place, years), palette)
 
 
 def write_reason(
@@ -60,8 +61,10 @@ def write_reason(
     for lines in _reason_lines(standing, frame, style):
         width = max(text_width(line, style.size, style.face) for line in lines)
         box = Box(0, 0, width, len(lines) * leading).moved(frame.plot.right - width - 6, frame.plot.bottom + 6)
-        if taken.free(box):
-            corner, size = (box.left - 4, box.bottom - 1), (width + 8, box.top - box.bottom + 5)
+        frame_around = Box(box.left - 4, box.bottom - 1, box.right + 4, box.top + 4)
+        if taken.free(frame_around):
+            corner = frame_around.left, frame_around.bottom
+            size = frame_around.right - frame_around.left, frame_around.top - frame_around.bottom
             board.box(layer, corner, size, Pen(palette.sheet), Pen(palette.rule, 0.8), z=2.5)
             board.lines(layer, (box.left, box.top), lines, style, leading)
             return
@@ -70,7 +73,7 @@ def write_reason(
 def _reason_lines(standing: Standing, frame: Frame, style: Type) -> Iterator[list[str]]:
     """Offer the reason why there is no PD in full, then without what stands in parentheses, then the fact alone."""
     room = frame.plot.right - frame.plot.left
-    full = " ".join(("No PD.", *map(sentence, standing.reasons)))
+    full = " ".join(("No PD.", *map(with_full_stop, standing.reasons)))
     for words in (full, re.sub(r" \([^()]*\)", "", full), "No PD."):
         for share in (0.42, 0.5, 0.6):
             yield wrap(words, share * room, style.size, style.face)
@@ -87,6 +90,20 @@ def _past_points(frame: Frame, past: Sequence[PeriodStanding]) -> list[tuple[Per
         for year in past
         if year.score is not None and year.pd_calibrated is not None and isfinite(year.score)
     ]
+
+
+def _together(points: Sequence[tuple[PeriodStanding, Size]]) -> list[tuple[str, Size]]:
+    """Name the years at each point, those in one that cannot be told apart."""
+    found: list[tuple[list[str], Size]] = []
+    for year, place in points:
+        same = next(
+            (labels for labels, other in found if hypot(place[0] - other[0], place[1] - other[1]) < _SAME), None
+        )
+        if same is None:
+            found.append(([year.label], place))
+        else:
+            same.append(year.label)
+    return [(", ".join(sorted(labels)), place) for labels, place in found]
 
 
 def _interval_boxes(frame: Frame, standing: Standing, point: Size) -> list[Box]:

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from creditdesk.base.display import format_number
 from creditdesk.case.standing import FactorMove, FactorStanding, Standing
-from creditdesk.charts.words import factor_value, sentence, value_or_reason
+from creditdesk.charts.words import factor_value, value_or_reason, with_full_stop
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,7 +45,7 @@ def from_reference(standing: Standing, limit: int | None = None) -> Passage:
         rows=tuple(contribution_rows(standing, limit)),
         end=_end(standing),
         link=standing.model.link,
-        why_none=" ".join(("No score.", *map(sentence, standing.reasons))) if standing.score is None else "",
+        why_none=" ".join(("No score.", *map(with_full_stop, standing.reasons))) if standing.score is None else "",
     )
 
 

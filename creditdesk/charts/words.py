@@ -5,6 +5,7 @@ from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.ratios.spec import Unit
 from creditdesk.ratios.words import REASON_WORDS as REASON_WORDS
 from creditdesk.ratios.words import format_ratio
+from creditdesk.ratios.words import with_full_stop as with_full_stop
 from creditdesk.statements.period import period_label
 
 
@@ -34,11 +35,6 @@ def signed(value: float, decimals: int = 2) -> str:
 def reads_as_nil(value: float, decimals: int = 2) -> bool:
     """Say whether a contribution is written as nil."""
     return not any(digit in format_number(value, decimals) for digit in "123456789∞")
-
-
-def sentence(words: str) -> str:
-    """End what a reason or a finding says as a sentence ends."""
-    return words if words.endswith((".", "!", "?")) or not words else f"{words}."
 
 
 def contribution_scale(link: str) -> str:

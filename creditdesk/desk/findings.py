@@ -11,6 +11,7 @@ from creditdesk.case.standing import Standing
 from creditdesk.desk.frame import label
 from creditdesk.desk.places import place_words
 from creditdesk.desk.tables.cells import MARKS
+from creditdesk.ratios.words import with_full_stop
 
 _ROLES = {Severity.STOP: "breach", Severity.QUERY: "caution", Severity.NOTE: "second"}
 _STEPS = {Qt.Key.Key_Up: -1, Qt.Key.Key_Down: 1}
@@ -49,7 +50,7 @@ class FindingLink(QAbstractButton):
         self.finding = finding
         self._sign.setText(MARKS[finding.severity])
         _give_role(self._sign, _ROLES[finding.severity])
-        self._words.setText(finding.text)
+        self._words.setText(with_full_stop(finding.text))
         self._place.setText(place)
         self.setAccessibleName(f"{finding.severity.value}: {finding.text} {place}")
 

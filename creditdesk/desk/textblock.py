@@ -3,12 +3,14 @@
 from collections.abc import Sequence
 from math import ceil
 
-from PySide6.QtCore import QEvent, QMimeData, Qt, QTimer, Signal
-from PySide6.QtGui import QFocusEvent, QKeyEvent, QKeySequence
+from PySide6.QtCore import QEvent, QMimeData, QRect, Qt, QTimer, Signal
+from PySide6.QtGui import QFocusEvent, QFontMetricsF, QKeyEvent, QKeySequence
 from PySide6.QtWidgets import QPlainTextEdit
 
 _TYPING_PAUSE = 1500
 _LEAST_LINES = 2
+_ENDLESS = 100_000
+_SLACK = 2
 
 
 class TextBlock(QPlainTextEdit):
@@ -50,9 +52,15 @@ class TextBlock(QPlainTextEdit):
 
     def needed_height(self) -> int:
         """Return the height in pixels at which the whole text is in sight, two lines at least."""
-        lines = max(round(self.document().size().height()), _LEAST_LINES)
-        around = self.height() - self.viewport().height() + 2 * self.document().documentMargin()
-        return ceil(lines * self.fontMetrics().lineSpacing() + around)
+        inside, margin = self.contentsRect(), ceil(self.document().documentMargin())
+        room, metrics = QRect(0, 0, inside.width() - 2 * margin, _ENDLESS), self.fontMetrics()
+        heights = (metrics.boundingRect(room, Qt.TextFlag.TextWordWrap, part or " ").height() for part in self._parts())
+        lines = max(sum(round(height / metrics.lineSpacing()) for height in heights), _LEAST_LINES)
+        around = self.height() - inside.height() + 2 * margin
+        return lines * ceil(QFontMetricsF(self.font()).lineSpacing()) + around + _SLACK
+
+    def _parts(self) -> list[str]:
+        return self.toPlainText().split("\n")
 
     def hand_on(self) -> None:
         """Hand on what was typed and has not been handed on yet."""

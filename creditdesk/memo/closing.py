@@ -6,7 +6,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.standing import SecondOpinion, Standing
 from creditdesk.case.words import long_date
-from creditdesk.charts.words import sentence
+from creditdesk.charts.words import with_full_stop
 from creditdesk.grading.scale import MasterScale
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
@@ -173,7 +173,7 @@ def _finding_row(finding: Finding, standing: Standing, names: Sequence[tuple[str
         (
             Cell(MARKS[finding.severity], tone=_TONES[finding.severity]),
             Cell(place_words(finding.place, standing.statements, names), tone=Tone.SECOND),
-            Cell(sentence(finding.text)),
+            Cell(with_full_stop(finding.text)),
         )
     )
 

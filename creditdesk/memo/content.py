@@ -7,7 +7,7 @@ from creditdesk.base.errors import BugError
 from creditdesk.case.document import TEXT_BLOCKS, Case
 from creditdesk.case.standing import Standing
 from creditdesk.case.words import long_date
-from creditdesk.charts.words import sentence
+from creditdesk.charts.words import with_full_stop
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.attach import Attachment
 from creditdesk.memo.blocks import Block, Listing, MemoContent, Pairs, Prose, Section, Subheading, Tone, without_empty
@@ -104,9 +104,9 @@ def _grade_section(standing: Standing) -> Section:
     blocks: list[Block] = [
         Pairs("From score to grade", tuple(facts)),
         Subheading("Reasons for the final grade"),
-        Listing(tuple(map(sentence, standing.grade.reasons))),
+        Listing(tuple(map(with_full_stop, standing.grade.reasons))),
         Subheading("Principal reasons"),
-        Listing(tuple(sentence(reason) for reason in standing.reasons if reason not in standing.grade.reasons)),
+        Listing(tuple(with_full_stop(reason) for reason in standing.reasons if reason not in standing.grade.reasons)),
     ]
     return Section("From score to grade", without_empty(blocks))
 

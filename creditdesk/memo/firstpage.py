@@ -12,9 +12,9 @@ from creditdesk.charts.words import (
     factor_value,
     ratio_text,
     reads_as_nil,
-    sentence,
     signed,
     what_it_moves,
+    with_full_stop,
 )
 from creditdesk.house.book import HouseBook
 from creditdesk.memo.blocks import FirstPage, Spot
@@ -61,7 +61,7 @@ def spots_found(standing: Standing, house: HouseBook) -> tuple[Spot, ...]:
     raising = [pair for pair in raising_factors(standing.factors) if not reads_as_nil(pair[1])][:_FACTORS_NAMED]
     return (
         *_findings(standing, Severity.STOP),
-        *(Spot(sentence(reason)) for reason in (standing.reasons if standing.score is None else ())),
+        *(Spot(with_full_stop(reason)) for reason in (standing.reasons if standing.score is None else ())),
         *(Spot(_factor_sentence(factor, raise_by, standing, house)) for factor, raise_by in raising),
         *_findings(standing, Severity.QUERY),
     )
@@ -72,7 +72,7 @@ def curve_words(standing: Standing) -> str:
     if standing.curve is None:
         return no_curve_words(standing)
     if standing.score is None or standing.pd_calibrated is None:
-        reasons = " ".join(map(sentence, standing.reasons))
+        reasons = " ".join(map(with_full_stop, standing.reasons))
         return f"The fitted curve of the model. The borrower has no place on it: {reasons}"
     words = f"The borrower stands on the fitted curve at score {format_number(standing.score, 2)}"
     words += f" and PD {format_pd(standing.pd_calibrated)}."
@@ -86,7 +86,7 @@ def contribution_words(standing: Standing) -> str:
     """Say in words what the chart of contributions shows, for readers that hear it."""
     scale = contribution_scale(standing.model.link)
     if standing.score is None:
-        return "There is no score, so there are no contributions. " + " ".join(map(sentence, standing.reasons))
+        return "There is no score, so there are no contributions. " + " ".join(map(with_full_stop, standing.reasons))
     start, end = format_number(standing.reference.score, 2), format_number(standing.score, 2)
     parts = [f"{_of(one)} {_effect(one)}." for one in standing.factors]
     return f"The reference borrower stands at {start} and this one at {end}, in {scale}. {' '.join(parts)}"
@@ -126,7 +126,7 @@ def _pd_text(standing: Standing) -> str:
 def _pd_notes(standing: Standing) -> tuple[str, ...]:
     """Return interval, horizon and the model's own PD where another one counts."""
     if standing.pd_final is None:
-        return tuple(sentence(reason) for reason in standing.reasons[:2])
+        return tuple(with_full_stop(reason) for reason in standing.reasons[:2])
     if not standing.usable:
         return ("until the findings marked ■ are resolved",)
     notes = []
@@ -157,7 +157,7 @@ def _grade_note(standing: Standing, grades: int) -> str:
 
 def _findings(standing: Standing, severity: Severity) -> list[Spot]:
     mark = MARKS[severity].split()[0]
-    return [Spot(sentence(finding.text), mark) for finding in standing.findings if finding.severity is severity]
+    return [Spot(with_full_stop(finding.text), mark) for finding in standing.findings if finding.severity is severity]
 
 
 def _factor_sentence(factor: FactorStanding, raise_by: float, standing: Standing, house: HouseBook) -> str:

@@ -51,6 +51,11 @@ def titled(key: str) -> str:
     return words[:1].upper() + words[1:]
 
 
+def with_full_stop(words: str) -> str:
+    """End what a reason or a finding says as a sentence ends."""
+    return words if words.endswith((".", "!", "?")) or not words else f"{words}."
+
+
 def format_ratio(value: float, unit: Unit, style: NumberStyle = PLAIN) -> str:
     """Write a ratio as its unit asks: 26.5 %, 2.50x, 64 days, 1 200; blank for nan."""
     match unit:

@@ -14,7 +14,7 @@ from creditdesk.case.standing import GradeStanding, Interval, Standing
 from creditdesk.charts.curve import BACKDROP, BORROWER, CurveChart, curve_figure
 from creditdesk.charts.frame import Frame, decades, tick_text
 from creditdesk.charts.style import PAPER, new_figure
-from creditdesk.charts.words import sentence
+from creditdesk.charts.words import with_full_stop
 from creditdesk.house.fontfiles import Face, font_path
 from tests.charts.looking import assert_tidy, centre, lines_at, pixels, texts, words
 from tests.standings import curve, standing, without_pd, year
@@ -200,5 +200,13 @@ def test_a_resized_canvas_lays_the_chart_out_anew() -> None:
 def test_why_there_is_no_pd_is_a_sentence_on_a_ground_of_its_own() -> None:
     figure = curve_figure(without_pd(), LIGHT, (520, 330))
     said = " ".join(words(figure))
-    reason = sentence(without_pd().reasons[0])
+    reason = with_full_stop(without_pd().reasons[0])
     assert f"No PD. {reason}" in said
+
+
+def test_years_at_one_point_share_one_label() -> None:
+    past = tuple(year(date(ends, 12, 31), score) for ends, score in ((2021, -3.7), (2022, -3.3), (2023, -3.7)))
+    said = words(curve_figure(standing(past=past), LIGHT, (520, 330)))
+    assert "2021, 2023" in said
+    assert "2022" in said
+    assert "2021" not in said

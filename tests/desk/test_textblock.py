@@ -86,3 +86,19 @@ def test_height_is_shared_by_need(needs: list[int], room: int) -> None:
     else:
         least = min(share for share, need in zip(shares, needs, strict=True) if share < need)
         assert all(share <= least + 1 for share in shares)  # nobody has more than the worst off but what it needs
+
+
+def test_a_block_of_the_height_it_needs_does_not_scroll(qtbot: QtBot) -> None:
+    for text in ("", "one line", "word " * 60, "line\n" * 7 + "word " * 30):
+        block = TextBlock("Request", "hint")
+        qtbot.addWidget(block)
+        block.show_text(text)
+        block.resize(240, 60)
+        block.show()
+        needed = block.needed_height()
+        block.resize(240, needed)
+        qtbot.waitExposed(block)
+        assert block.verticalScrollBar().maximum() == 0
+        if text.count("word") > 1:
+            block.resize(240, needed - block.fontMetrics().lineSpacing() - 4)
+            assert block.verticalScrollBar().maximum() > 0

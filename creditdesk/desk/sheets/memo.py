@@ -222,6 +222,7 @@ class MemoSheet(Sheet):
         buttons.addWidget(self.busy, 1)
         texts = QWidget()
         box = self._texts = QVBoxLayout(texts)
+        box.setSpacing(4)
         box.setContentsMargins(0, 0, 10, 0)
         for key, title, _ in BLOCKS:
             box.addWidget(label("heading", title))
