@@ -3,6 +3,9 @@
 from collections.abc import Sequence
 from datetime import date
 
+import numpy as np
+from numpy.typing import NDArray
+
 from creditdesk.base.display import FIXED_SPACE
 from creditdesk.case.document import Case
 from creditdesk.case.sectors import SECTIONS_ISIC4 as SECTIONS_ISIC4
@@ -20,6 +23,8 @@ _OPINIONS = {
     Opinion.DISCLAIMER: "disclaimer of opinion",
 }
 _UNITS = {1: "", 1000: f"{FIXED_SPACE}thousands", 1_000_000: f"{FIXED_SPACE}millions"}
+_LARGE, _MIDDLING = 10_000.0, 100.0
+_WHOLE = 1e-9
 
 
 def long_date(day: date) -> str:
@@ -60,3 +65,11 @@ def basis_words(period: Period) -> str:
     if period.consolidated:
         words.append("consolidated")
     return ", ".join(words)
+
+
+def amount_decimals(amounts: NDArray[np.float64]) -> int:
+    """Say how many decimals to show: none where all amounts are whole or one is large, two where all are small."""
+    known = np.abs(amounts[np.isfinite(amounts)])
+    if known.size == 0 or known.max() >= _LARGE or np.all(np.abs(known - np.rint(known)) < _WHOLE):
+        return 0
+    return 1 if known.max() >= _MIDDLING else 2

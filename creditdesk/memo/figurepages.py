@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
-from creditdesk.case.words import basis_words, long_date, period_heads, unit_words
+from creditdesk.case.words import amount_decimals, basis_words, long_date, period_heads, unit_words
 from creditdesk.memo.blocks import Block, Cell, Grid, Prose, Row, RowKind, Section, Subheading, Tone, group_row
 from creditdesk.memo.blocks import without_empty as _without_empty
 from creditdesk.memo.text import NOT_DISCLOSED, amount_text
@@ -45,7 +45,7 @@ class _Figures:
 def figures_section(case: Case, standing: Standing) -> Section:
     """Return the section with all figures that were disclosed, and the adjustments with their reasons."""
     statements = standing.statements
-    figures = _Figures(standing.received, statements, _entries(case, statements), _decimals(statements))
+    figures = _Figures(standing.received, statements, _entries(case, statements), amount_decimals(statements.values))
     heads, rows = period_heads(statements.periods), tuple(_rows(figures))
     share = 1.0 if len(heads) > 4 else 0.8
     grid = Grid(
@@ -160,14 +160,6 @@ def _entries(case: Case, statements: StatementSet) -> dict[str, FloatArray]:
                 amounts = added.setdefault(entry.line, np.zeros(len(statements.periods)))
                 amounts[ends[adjustment.period]] += entry.amount
     return added
-
-
-def _decimals(statements: StatementSet) -> int:
-    """Return none where every amount is whole or large, else one, or two where all are small."""
-    known = statements.values[np.isfinite(statements.values)]
-    if known.size == 0 or np.abs(known).max() >= 10_000 or np.all(np.abs(known - np.rint(known)) < 1e-9):
-        return 0
-    return 1 if np.abs(known).max() >= 100 else 2
 
 
 def _never_disclosed(statements: StatementSet) -> list[Block]:

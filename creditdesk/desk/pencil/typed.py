@@ -4,9 +4,9 @@ import math
 import re
 from collections.abc import Mapping
 
-from creditdesk.base.display import format_number
 from creditdesk.base.errors import UserError
-from creditdesk.desk.pencil.targets import Target, TargetKind
+from creditdesk.case.targets import Target, TargetKind
+from creditdesk.case.targets import mark_words as mark_words
 from creditdesk.flow.moves import MoveKind
 from creditdesk.intake.amounts import AmountKind, parse_amount
 from creditdesk.intake.numerals import DecimalMark
@@ -51,16 +51,6 @@ def write_mark(mark: Mark, target: Target) -> str:
     if mark.kind is MoveKind.TO:
         return number if amount >= 0 else f"={number}"
     return f"{'' if number.startswith('-') else '+'}{number}{'%' if mark.kind is MoveKind.BY_PCT else ''}"
-
-
-def mark_words(mark: Mark, target: Target) -> str:
-    """Write a mark as it is read: to 35 120, +300, −20 %."""
-    if mark.kind is MoveKind.TO:
-        return f"to {target.text(mark.amount)}"
-    if mark.kind is MoveKind.BY:
-        return target.difference(mark.amount)
-    places = next((count for count in (0, 1) if round(mark.amount, count) == mark.amount), 2)
-    return f"{'+' if mark.amount > 0 else ''}{format_number(mark.amount, places)}\N{NO-BREAK SPACE}%"
 
 
 def _of_percent(text: str, target: Target, *, signed: bool, kind: MoveKind) -> MoveKind:

@@ -10,7 +10,7 @@ from creditdesk.base.display import format_amount, format_percent
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
-from creditdesk.case.words import period_heads
+from creditdesk.case.words import amount_decimals, period_heads
 from creditdesk.desk.tables.rows import Row, RowKind, differing
 from creditdesk.ratios.words import within
 from creditdesk.statements.chart import LineItem, Nature, Subtotal
@@ -20,7 +20,7 @@ from creditdesk.statements.statement import Disclosure
 MARKS = {Severity.STOP: "■", Severity.QUERY: "▲", Severity.NOTE: "●"}
 """The shapes of the severities as letters, for texts."""
 
-_LARGE, _MIDDLING, _WHOLE = 10_000, 100, 1e-9
+
 _COARSE = 0.9995
 """From a change of 100 % on, tenths of a percent say nothing."""
 
@@ -269,14 +269,6 @@ def gravest(findings: Sequence[Finding]) -> Severity | None:
     """Return the gravest severity among findings, None where there are none."""
     found = {finding.severity for finding in findings}
     return next((severity for severity in Severity if severity in found), None)
-
-
-def amount_decimals(values: np.ndarray) -> int:
-    """Say how many decimals to show: none where all amounts are whole or one is large, two where all are small."""
-    known = np.abs(values[np.isfinite(values)])
-    if known.size == 0 or known.max() >= _LARGE or np.all(np.abs(known - np.rint(known)) < _WHOLE):
-        return 0
-    return 1 if known.max() >= _MIDDLING else 2
 
 
 def _by_place(findings: Sequence[Finding]) -> Mapping[str, list[Finding]]:
