@@ -52,10 +52,11 @@ class CaseView(QObject):
         window.undo_group.addStack(session.undo_stack)
         window.undo_group.setActiveStack(session.undo_stack)
         window.menus.add_case(self.standing.entries())
+        window.stack.fill(self._makers(), session.case, session.standing)
         self._connect()
         self._show_last_recorded()
         self._show_verdict()
-        self._soon(self._show_sheets)
+        self._soon(self._show_front)
 
     @property
     def charted(self) -> bool:
@@ -138,10 +139,10 @@ class CaseView(QObject):
         self.standing.show_standing(standing)
         self._offer_revert()
 
-    def _show_sheets(self) -> None:
+    def _show_front(self) -> None:
         window = self._window
         untouched = window.focusWidget() in (None, window.stack.front)
-        window.stack.fill(self._makers(), self.session.case, self.session.standing)
+        window.stack.bring_up(window.stack.current_name)
         if untouched:
             window.focus_front()
         self._soon(self._fetch_charts)

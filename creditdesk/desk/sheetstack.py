@@ -65,9 +65,9 @@ class SheetStack(QStackedWidget):
             place.words.setText(words)
 
     def fill(self, makers: "Mapping[str, Callable[[], Sheet]]", case: "Case", standing: "Standing") -> None:
-        """Take what makes each sheet, and show the first case."""
+        """Take what makes each sheet and what they are to show; each shows it when it is brought up."""
         self._makers = makers
-        self.show_standing(case, standing)
+        self._shown, self.behind = (case, standing), list(self._names)
 
     def bring_to_front(self, number: int) -> None:
         """Show the sheet of this number, or its place as long as there is no case to show."""
