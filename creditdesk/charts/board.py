@@ -43,9 +43,9 @@ class Board:
         """Return the marks of ``layer`` in the order drawn."""
         return tuple(self._layers.get(layer, ()))
 
-    def marks_but(self, layer: str) -> list[Artist]:
+    def marks_but(self, *layers: str) -> list[Artist]:
         """Return the marks of all other layers."""
-        return [mark for name, marks in self._layers.items() if name != layer for mark in marks]
+        return [mark for name, marks in self._layers.items() if name not in layers for mark in marks]
 
     def line(self, layer: str, points: ArrayLike, pen: Pen, z: float = 2) -> Artist:
         """Draw an open line through ``points``: rows of x, y."""

@@ -10,6 +10,14 @@ from creditdesk.base.palette import Palette
 from creditdesk.case.standing import Standing
 from creditdesk.charts.board import Board
 from creditdesk.charts.passage import Passage, Row, from_reference, since_last_year
+from creditdesk.charts.pencil import (
+    PENCIL,
+    Outline,
+    amount_room,
+    draw_outline_bar,
+    outline_of,
+    reach_of,
+)
 from creditdesk.charts.placing import Box
 from creditdesk.charts.style import (
     CAP_HEIGHT,
@@ -38,7 +46,10 @@ BAR_ALPHA = 0.88
 
 @dataclass(frozen=True, slots=True)
 class Columns:
-    """Hold the columns in points: labels end at ``label``, values at ``value``, notes after them, bars at ``zero``."""
+    """Hold the columns in points: labels end at ``label``, values at ``value``, notes after them, bars at ``zero``.
+
+    ``amount``: where amounts begin, None for behind their bars.
+    """
 
     label: float
     value: float
@@ -46,6 +57,7 @@ class Columns:
     zero: float
     per_unit: float
     end: float
+    amount: float | None = None
 
 
 class ContributionsChart:
@@ -56,17 +68,42 @@ class ContributionsChart:
         self.passage: Passage | None = None
         self._palette = palette
         self._limit = limit
+        self._pencil: Standing | None = None
+        self._reach: Size | None = None
         figure.canvas.mpl_connect("resize_event", self._on_resize)
 
     def show(self, standing: Standing, *, moved: bool = False) -> None:
         """Draw ``standing``, or what ``moved`` since last year; the canvas has still to be asked to repaint."""
         self.passage = since_last_year(standing) if moved else from_reference(standing, self._limit)
+        self._reach = None
         self._draw(self.passage)
 
+    def show_pencil(self, pencil: Standing | None) -> None:
+        """Draw the pencil's bars as outlines over the ink, which makes room once and stays; None takes them away."""
+        self._pencil = pencil
+        if self.passage is None:
+            return
+        reach = None if pencil is None else self._reach_with(pencil, self.passage)
+        if reach != self._reach:
+            self._draw(self.passage)
+        else:
+            self._draw_pencil(self.passage)
+
+    def _reach_with(self, pencil: Standing, passage: Passage) -> Size:
+        return reach_of(outline_of(pencil, passage), passage, self._reach or (0.0, 0.0))
+
     def _draw(self, passage: Passage) -> None:
+        self._reach = None if self._pencil is None else self._reach_with(self._pencil, passage)
         self.board.clear(LAYER)
         with house_style():
-            _draw(self.board, passage, self._palette)
+            _draw(self.board, passage, self._palette, self._reach)
+        self._draw_pencil(passage)
+
+    def _draw_pencil(self, passage: Passage) -> None:
+        self.board.clear(PENCIL)
+        if self._pencil is not None:
+            with house_style():
+                _draw_outline(self.board, passage, outline_of(self._pencil, passage), (self._palette, self._reach))
 
     def _on_resize(self, _event: Event) -> None:
         if self.passage is not None:
@@ -118,11 +155,11 @@ def row_layout(size: Size, count: int, palette: Palette) -> RowLayout:
     return RowLayout(size[0], size[1] - pitch * 0.5, pitch, count)
 
 
-def _draw(board: Board, passage: Passage, palette: Palette) -> None:
+def _draw(board: Board, passage: Passage, palette: Palette, reach: Size | None) -> None:
     rows, size = passage.rows, type_size(palette)
     layout = row_layout(board.size, len(rows), palette)
     board.words(LAYER, (0, layout.start), passage.start, Type(palette.second_ink, size))
-    columns = _columns(rows, layout.width, size)
+    columns = _columns(rows, layout.width, palette, reach)
     scored = bool(rows) and not passage.why_none
     if scored:
         upright = [(columns.zero, layout.start - layout.pitch * 0.35), (columns.zero, layout.bottom)]
@@ -133,11 +170,33 @@ def _draw(board: Board, passage: Passage, palette: Palette) -> None:
         if scored:
             _draw_bar(board, row, place, columns, (passage, palette))
     board.line(LAYER, [(0, layout.bottom), (layout.width, layout.bottom)], Pen(palette.ink, 0.9))
-    _draw_total(board, passage, (layout.width, layout.bottom - layout.pitch * 0.55), palette)
+    _draw_total(board, passage, _total_place(layout), palette, legend=reach is None)
 
 
-def _columns(rows: Sequence[Row], width: float, size: float) -> Columns:
-    """Share the width: labels and values as wide as they need within bounds, bars the rest."""
+def _total_place(layout: RowLayout) -> Size:
+    return layout.width, layout.bottom - layout.pitch * 0.55
+
+
+def _draw_outline(board: Board, passage: Passage, outline: Outline, look: tuple[Palette, Size | None]) -> None:
+    """Draw the pencil's bars on the rows of the ink, and its score beside the ink's."""
+    palette, reach = look
+    layout = row_layout(board.size, len(passage.rows), palette)
+    columns = _columns(passage.rows, layout.width, palette, reach)
+    for number, row in enumerate(passage.rows):
+        amount = outline.amounts.get(row.key)
+        if amount is not None:
+            ends = columns.zero, columns.zero + amount * columns.per_unit
+            draw_outline_bar(board, (layout.middle(number), layout.pitch), ends, amount, (palette, columns.end))
+    style = Type(palette.pencil, type_size(palette), Face.SANS_ITALIC, "right")
+    board.words(PENCIL, _total_place(layout), outline.end, style)
+
+
+def _columns(rows: Sequence[Row], width: float, palette: Palette, reach: Size | None) -> Columns:
+    """Share the width: labels and values as wide as they need within bounds, bars the rest.
+
+    ``reach``: how far bars go with the pencil's, whose amounts stand at the right edge, the ink's before them.
+    """
+    size = type_size(palette)
     label = min(max((text_width(row.label, size) for row in rows), default=0.0), width * 0.36)
     values = max((text_width(row.value, size, Face.SANS_SEMIBOLD) for row in rows), default=0.0)
     value = label + _GAP + min(values, width * 0.27)
@@ -146,10 +205,12 @@ def _columns(rows: Sequence[Row], width: float, size: float) -> Columns:
     amount = max((text_width(signed(row.amount), size) for row in rows), default=0.0) + 3 * _MARK + 9
     left = max((-row.amount for row in rows), default=0.0)
     right = max((row.amount for row in rows), default=0.0)
-    left, right = max(left, 0.0), max(right, 0.0)
-    room = max(width - note - _GAP - amount, 10.0)
+    left, right = reach or (max(left, 0.0), max(right, 0.0))
+    amounts = amount + (amount_room(palette) if reach is not None else 0.0)
+    room = max(width - note - _GAP - amounts, 10.0)
     per_unit = room / (left + right) if left + right > 0 else 0.0
-    return Columns(label, value, note, note + _GAP + left * per_unit, per_unit, width)
+    start = width - amounts if reach is not None else None
+    return Columns(label, value, note, note + _GAP + left * per_unit, per_unit, width, start)
 
 
 def _draw_texts(board: Board, row: Row, place: tuple[float, float], columns: Columns, palette: Palette) -> None:
@@ -173,7 +234,7 @@ def _draw_bar(
     colour = _bar_colour(passage.link, palette, raises)
     board.box(LAYER, (low, y - pitch * 0.29), (high - low, pitch * 0.58), Pen(colour, alpha=BAR_ALPHA))
     written = signed(row.amount)
-    x = high + 5
+    x = (high if columns.amount is None else columns.amount) + 5
     ink = palette.ink if raises else palette.second_ink
     board.words(LAYER, (x, y), written, Type(ink, size))
     if written.strip("0.,"):
@@ -216,7 +277,7 @@ def _stack(board: Board, place: tuple[float, float, float], lines: Sequence[str]
     board.lines(LAYER, (x, top), lines, small, leading)
 
 
-def _draw_total(board: Board, passage: Passage, place: Size, palette: Palette) -> None:
+def _draw_total(board: Board, passage: Passage, place: Size, palette: Palette, *, legend: bool) -> None:
     width, y = place
     size = type_size(palette)
     if passage.why_none:
@@ -225,6 +286,8 @@ def _draw_total(board: Board, passage: Passage, place: Size, palette: Palette) -
         board.words(LAYER, (0, y), shorten(words, width, size), Type(palette.caution, size))
         return
     board.words(LAYER, (0, y), passage.end, Type(palette.ink, size, Face.SANS_SEMIBOLD))
+    if not legend:
+        return
     start = text_width(passage.end, size, Face.SANS_SEMIBOLD) + 12
     moved = what_it_moves(passage.link)
     _draw_legend(board, (start, width, y), (contribution_scale(passage.link), moved), palette)

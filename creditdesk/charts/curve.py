@@ -12,6 +12,7 @@ from creditdesk.charts.backdrop import curve_boxes, draw_backdrop
 from creditdesk.charts.board import Board
 from creditdesk.charts.borrower import draw_borrower, write_reason
 from creditdesk.charts.frame import Frame, make_frame
+from creditdesk.charts.pencil import PENCIL, draw_point, taken_by
 from creditdesk.charts.style import Size, Type, house_style, new_figure, type_size, wrap
 
 if TYPE_CHECKING:
@@ -34,6 +35,8 @@ class CurveChart:
         self._standing: Standing | None = None
         self._drawn: tuple[object, ...] = ()
         self._obstacles: list[Box] = []
+        self._pencil: Standing | None = None
+        self._around: list[Box] = []
         figure.canvas.mpl_connect("resize_event", self._on_resize)
 
     def show(self, standing: Standing) -> None:
@@ -42,8 +45,21 @@ class CurveChart:
         with house_style():
             self._draw(standing)
 
+    def show_pencil(self, pencil: Standing | None) -> None:
+        """Draw where the borrower would stand, over the ink, which stays as it is; None takes it away."""
+        self._pencil = pencil
+        self.board.clear(PENCIL)
+        if pencil is not None and self.frame is not None:
+            with house_style():
+                draw_point(self.board, self.frame, pencil, (self._palette, self._around))
+
     def _draw(self, standing: Standing) -> None:
         self.board.clear(BORROWER)
+        self._draw_ink(standing)
+        self._around = [*self._obstacles, *taken_by(self.board.marks(BORROWER))]
+        self.show_pencil(self._pencil)
+
+    def _draw_ink(self, standing: Standing) -> None:
         if standing.curve is None:
             self._show_words(standing)
             return

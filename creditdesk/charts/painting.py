@@ -35,28 +35,44 @@ class _Word:
 
 
 class Painter:
-    """Paint a board again and again; the layer ``kept`` is painted anew only when its marks or the size change."""
+    """Paint a board again and again, and no more of it than has changed.
 
-    def __init__(self, board: Board, kept: str = "") -> None:
+    The layer ``kept`` is painted anew only when its marks or the size change; all others but ``moving`` likewise over
+    it. ``grounds``: how often either was; to move the marks of the moving layer paints those alone.
+    """
+
+    def __init__(self, board: Board, kept: str = "", moving: str = "") -> None:
         self._board = board
-        self._kept = kept
+        self._kept, self._moving = kept, moving
         self._words: OrderedDict[tuple[object, ...], _Word] = OrderedDict()
-        self._state: tuple[object, ...] = ()
+        self._states: tuple[tuple[object, ...], tuple[object, ...]] = ((), ())
+        self._backdrop: object = None
         self._ground: object = None
+        self.grounds = 0
 
     def paint(self, renderer: RendererAgg) -> None:
         """Paint all marks on ``renderer``, whatever stood there before."""
-        figure, kept = self._board.figure, self._board.marks(self._kept)
-        state = (renderer.width, renderer.height, renderer.dpi, kept)
-        if state != self._state:
-            renderer.clear()  # type: ignore[no-untyped-call]
-            figure.patch.draw(renderer)
-            self._paint(kept, renderer)
-            self._ground = renderer.copy_from_bbox(figure.bbox)
-            self._state = state
-        else:
+        kept, standing = self._board.marks(self._kept), self._board.marks_but(self._kept, self._moving)
+        under = (renderer.width, renderer.height, renderer.dpi, kept)
+        over = (*under, *standing)
+        if over == self._states[1]:
             renderer.restore_region(self._ground)  # type: ignore[no-untyped-call]
-        self._paint(self._board.marks_but(self._kept), renderer)
+        else:
+            self._paint_ground(renderer, under)
+            self._paint(standing, renderer)
+            self._ground = renderer.copy_from_bbox(self._board.figure.bbox) if self._moving else None
+            self._states = under, over if self._moving else ()
+        self._paint(self._board.marks(self._moving), renderer)
+
+    def _paint_ground(self, renderer: RendererAgg, state: tuple[object, ...]) -> None:
+        self.grounds += 1
+        if state == self._states[0]:
+            renderer.restore_region(self._backdrop)  # type: ignore[no-untyped-call]
+            return
+        renderer.clear()  # type: ignore[no-untyped-call]
+        self._board.figure.patch.draw(renderer)
+        self._paint(self._board.marks(self._kept), renderer)
+        self._backdrop = renderer.copy_from_bbox(self._board.figure.bbox)
 
     def _paint(self, marks: Iterable[Artist], renderer: RendererAgg) -> None:
         for mark in sorted(marks, key=lambda one: one.get_zorder()):

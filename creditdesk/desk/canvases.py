@@ -32,6 +32,7 @@ from creditdesk.charts.curvemarks import CurveMarks
 from creditdesk.charts.look import Look, second_look
 from creditdesk.charts.numbers import contribution_numbers, curve_numbers
 from creditdesk.charts.painting import Painter
+from creditdesk.charts.pencil import PENCIL
 from creditdesk.charts.placing import Box
 from creditdesk.charts.pointing import Mark, Marks, Step
 from creditdesk.charts.rowmarks import row_marks
@@ -287,7 +288,7 @@ class ChartCanvases:
         self._contributions_chart = ContributionsChart(self.contributions.figure, palette)
         self.curve.put(
             Showing(
-                painter=Painter(self._curve_chart.board, BACKDROP),
+                painter=Painter(self._curve_chart.board, BACKDROP, PENCIL),
                 marks=self._curve_marks,
                 foot=self._curve_foot,
                 numbers=self._curve_numbers,
@@ -296,7 +297,7 @@ class ChartCanvases:
         )
         self.contributions.put(
             Showing(
-                painter=Painter(self._contributions_chart.board),
+                painter=Painter(self._contributions_chart.board, moving=PENCIL),
                 marks=self._row_marks,
                 foot=self._contributions_foot,
                 numbers=self._row_numbers,
@@ -310,6 +311,13 @@ class ChartCanvases:
         self._curve_chart.show(standing)
         self.curve.refresh()
         self._show_contributions(standing)
+
+    def show_pencil(self, pencil: Standing | None) -> None:
+        """Draw on both charts where the borrower would stand; None takes it away. The ink is not drawn anew."""
+        self._curve_chart.show_pencil(pencil)
+        self._contributions_chart.show_pencil(pencil)
+        for canvas in (self.curve, self.contributions):
+            canvas.draw_idle()
 
     def show_moved(self, *, moved: bool) -> None:
         """Draw what ``moved`` since last year, or the contributions from the reference borrower."""

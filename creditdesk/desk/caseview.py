@@ -6,6 +6,7 @@ then the sheet in front, then the charts, then the sheets behind.
 
 from collections.abc import Callable, Iterator, Mapping
 from datetime import datetime
+from functools import partial
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QObject, Qt, QTimer
@@ -30,6 +31,7 @@ if TYPE_CHECKING:
     from types import ModuleType
 
     from creditdesk.case.document import Case
+    from creditdesk.desk.pencil.draft import PencilDraft
     from creditdesk.desk.sheets.base import Sheet
 
 _BREATH_MILLISECONDS, _PAINT_MILLISECONDS = 5, 50
@@ -172,12 +174,19 @@ class CaseView(QObject):
         return RatiosSheet(self.session.house)
 
     def _make_pencil(self) -> "Sheet":
-        from creditdesk.desk.pencil.draft import PencilDraft
+        from creditdesk.desk.pencil.draft import INK, PencilDraft
         from creditdesk.desk.sheets.pencil import PencilSheet
 
-        sheet = PencilSheet(PencilDraft(self.session, self))
+        draft = PencilDraft(self.session, self)
+        sheet = PencilSheet(draft)
+        for moved in (draft.changed, draft.moved):
+            moved.connect(partial(self._show_pencil, draft))
+        self.standing.put_away_asked.connect(partial(draft.choose, INK))
         sheet.restore_split(self._window.settings.split("pencil"))
         return sheet
+
+    def _show_pencil(self, draft: "PencilDraft") -> None:
+        self.standing.show_pencil(draft.pencilled, draft.active)
 
     def _make_memo(self) -> "Sheet":
         from creditdesk.desk.sheets.memo import MemoSheet

@@ -35,7 +35,7 @@ def place_words(standing: Standing, place: str) -> str:
 
 
 def _label(standing: Standing, what: str, key: str) -> str:
-    if what == "figures":
+    if what in ("figures", "pencil"):
         chart = standing.statements.chart
         labels = {one.key: one.label for one in chart.subtotals} | {one.key: one.label for one in chart.lines}
         return labels.get(key, titled(key))

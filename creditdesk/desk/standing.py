@@ -1,6 +1,8 @@
 """The Standing column: where the borrower stands, why, how sure we are, and what to mind."""
 
+import re
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QCoreApplication, QEvent, QSize, Qt, QTimer, Signal
@@ -17,6 +19,7 @@ from creditdesk.desk.switch import WaySwitch
 from creditdesk.desk.verdict import Verdict
 
 if TYPE_CHECKING:
+    from creditdesk.case.pencil import Pencilled
     from creditdesk.desk.canvases import ChartCanvas, ChartCanvases
 
 WIDE = 900
@@ -34,6 +37,7 @@ _CHART_MARGIN = 5
 """Between the frame that shows the focus and the chart; with the column's margin it lines up with the texts."""
 _REFERENCE_HEADING, _MOVED_HEADING = "From the reference borrower to this one", "From last year to this one"
 _MODEL = "model."
+_PENCIL_PLACE = re.compile(r"^(figures|ratios)\.")
 
 # The colours are those of the application's palette, which the theme sets.
 _STYLE = """
@@ -85,11 +89,12 @@ class StandingColumn(QWidget):
     """Hold verdict, curve, contributions, findings and cautions; charts are put in when their library is there.
 
     ``jump_asked``: a place, as findings name it, to be shown by the sheet it belongs to. Wider than ``WIDE`` it lays
-    itself out in two columns, which ``wide_changed`` tells.
+    itself out in two columns, which ``wide_changed`` tells. ``put_away_asked``: the pencil is to go.
     """
 
     jump_asked = Signal(str)
     wide_changed = Signal(bool)
+    put_away_asked = Signal()
 
     def __init__(self, grades: int) -> None:
         super().__init__()
@@ -102,6 +107,8 @@ class StandingColumn(QWidget):
         self._palette = LIGHT
         self._canvases: ChartCanvases | None = None
         self.verdict, self.findings, self.look = Verdict(), FindingsList(), FactorLook()
+        self.pencil_findings, self.pencil_heading = FindingsList(), label("heading", "In pencil")
+        self._pencil: Pencilled | None = None
         self.switch, self.switch_note = WaySwitch(), label("second", wrap=True)
         self.heading = label("heading", _REFERENCE_HEADING, wrap=True)
         self.cautions = CautionsList()
@@ -132,6 +139,27 @@ class StandingColumn(QWidget):
         if self.isVisible():  # what everyone looks at first comes before the sheets
             QCoreApplication.sendPostedEvents(None, QEvent.Type.LayoutRequest)
             self.view.viewport().repaint()
+
+    def show_pencil(self, pencilled: "Pencilled | None", name: str) -> None:
+        """Show over the ink what a scenario comes to; None takes it away. The ink stays as it is."""
+        turned = (pencilled is None) != (self._pencil is None)
+        self._pencil = pencilled
+        standing = pencilled.standing if pencilled is not None else None
+        self.verdict.pencil.show_pencil(standing, name)
+        self._show_pencil_findings(pencilled)
+        if self._canvases is not None:
+            self._canvases.show_pencil(standing)
+        if turned:
+            self._fit_curve()
+
+    def _show_pencil_findings(self, pencilled: "Pencilled | None") -> None:
+        """List what the marks meet, each leading to its row in pencil."""
+        shown = pencilled is not None and bool(pencilled.findings)
+        self.pencil_heading.setVisible(shown)
+        self.pencil_findings.setVisible(shown)
+        if pencilled is not None and shown:
+            found = tuple(replace(one, place=_PENCIL_PLACE.sub("pencil.", one.place)) for one in pencilled.findings)
+            self.pencil_findings.show_standing(replace(pencilled.standing, findings=found))
 
     def entries(self) -> Sequence[Entry | None]:
         """Return what can be done here, for menu and palette."""
@@ -204,6 +232,7 @@ class StandingColumn(QWidget):
             if self._canvases.moved != moved:
                 self._canvases.show_moved(moved=moved)
             self._canvases.show_standing(self._standing)
+            self._canvases.show_pencil(self._pencil.standing if self._pencil is not None else None)
             if self.look.look is not None:
                 self.look.show_look(self._canvases.look(self.look.look.key))
             self._fit_curve()
@@ -277,6 +306,8 @@ class StandingColumn(QWidget):
         self.look.jump_asked.connect(self.jump_asked)
         self.look.closed.connect(self._on_look_closed)
         self.findings.followed.connect(self._on_finding)
+        self.pencil_findings.followed.connect(self.jump_asked)
+        self.verdict.pencil.away_asked.connect(self.put_away_asked)
 
     def _lay_out_wide(self, *, wide: bool) -> None:
         """Put the two columns beside each other or below each other."""
@@ -293,9 +324,22 @@ class StandingColumn(QWidget):
         way.addWidget(self.switch)
         findings, cautions = label("heading", "Findings"), label("heading", "Cautions")
         self._left = _column((self.verdict, 10, heading, self.curve_place))
-        self._right = _column((way, self.switch_note, self.contributions_place, self.look, findings, self.findings))
+        pencil = (self.pencil_heading, self.pencil_findings)
+        found = (self.look, findings, self.findings, *pencil)
+        self._right = _column((way, self.switch_note, self.contributions_place, *found))
+        self.pencil_heading.hide()
+        self.pencil_findings.hide()
         self._minded = _column((cautions, self.cautions))
-        for widget in (self.verdict, heading, self.heading, self.switch_note, findings, cautions, self.cautions):
+        for widget in (
+            self.verdict,
+            heading,
+            self.heading,
+            self.switch_note,
+            findings,
+            cautions,
+            self.cautions,
+            *pencil[:1],
+        ):
             widget.setContentsMargins(_CHART_MARGIN, 0, _CHART_MARGIN, 0)
         inside = _Inside()
         self._columns = QBoxLayout(QBoxLayout.Direction.TopToBottom, inside)

@@ -32,9 +32,10 @@ _ROLES = {
     "caution": (_Role.BrightText,),
     "breach": (_Role.LinkVisited,),
     "strength": (_Role.Midlight,),
+    "pencil": (_Role.Shadow,),
 }
-"""The roles that carry each colour, the one the style sheet names first. Qt knows no caution, breach or strength: they
-take roles that nothing draws with where the style sheet rules."""
+"""The roles that carry each colour, the one the style sheet names first. Qt knows no caution, breach, strength, pencil:
+these take roles that nothing draws with where the style sheet rules."""
 
 _STYLE = Template("""
 QMainWindow, QDialog, #desk, QMenuBar, QMenu, QStatusBar { background: $paper; }
@@ -55,6 +56,8 @@ QLabel[role="obligor"] { font-family: "$serif"; font-size: 19pt; font-weight: 60
 QLabel[role="heading"] { font-family: "$serif"; font-size: 11.5pt; font-weight: 600; color: $accent; }
 QLabel[role="second"] { color: $second_ink; }
 QLabel[role="caution"] { color: $caution; }
+QLabel[role="pencil"] { color: $pencil; font-style: italic; font-size: 12pt; border: 0;
+  border-bottom: 1px dotted $pencil; padding-bottom: 1px; }
 QLabel[role="strong"] { font-weight: 600; }
 QLabel[role="strength"] { color: $strength; font-weight: 600; }
 #outcome QLabel[role="strength"], #outcome QLabel[role="breach"] { font-family: "$serif"; font-size: 14pt; }
@@ -84,6 +87,9 @@ QPushButton:default { border-color: $accent; font-weight: 600; }
 QPushButton:focus, QToolButton:focus { border-color: $accent; background: $selection; }
 QPushButton[role="link"] { border: 0; background: transparent; color: $accent; padding: 0 4px; }
 QPushButton[role="link"]:hover, QPushButton[role="link"]:focus { background: $selection; }
+QPushButton[role="scenario"] { margin-right: -1px; padding: 4px 12px; }
+QPushButton[role="scenario"]:checked { background: $sheet; font-weight: 600; border-bottom-color: $accent; }
+QPushButton[role="scenario"]:focus { background: $selection; }
 QPushButton[role="small"] { padding: 1px 9px; }
 QProgressBar { background: $band; border: 1px solid $rule; }
 QProgressBar::chunk { background: $accent; }

@@ -8,6 +8,7 @@ from creditdesk.base.findings import Severity
 from creditdesk.case.standing import Standing
 from creditdesk.case.words import long_date
 from creditdesk.desk.frame import label
+from creditdesk.desk.pencilline import PencilLine
 
 
 class GradePlate(QFrame):
@@ -45,11 +46,12 @@ class Verdict(QWidget):
         self.pd = label("pd")
         self.interval = label("", wrap=True)
         self.change = label("second", wrap=True)
+        self.pencil = PencilLine()
         self.plate = GradePlate()
         self.caption = label("second", wrap=True)
         left = QVBoxLayout()
         left.setSpacing(0)
-        for widget in (self.caption, self.pd, self.interval, self.change):
+        for widget in (self.caption, self.pd, self.interval, self.change, self.pencil):
             left.addWidget(widget)
         left.addStretch(1)
         row = QHBoxLayout(self)

@@ -14,9 +14,10 @@ from creditdesk.base.numbers import sigmoid
 from creditdesk.base.palette import DARK, LIGHT, Palette
 from creditdesk.case.standing import Standing
 from creditdesk.charts.board import Board
-from creditdesk.charts.contributions import ContributionsChart
+from creditdesk.charts.contributions import LAYER, ContributionsChart
 from creditdesk.charts.curve import BACKDROP, CurveChart
 from creditdesk.charts.painting import Painter
+from creditdesk.charts.pencil import PENCIL
 from creditdesk.charts.style import Align, Type, house_style, new_figure
 from tests.standings import curve, standing, without_pd
 
@@ -138,13 +139,76 @@ def test_the_backdrop_is_painted_once_for_all_edits_that_leave_it() -> None:
     chart.show(_at(-4.0))
     renderer = RendererAgg(460, 226, 96)
     painter.paint(renderer)
-    ground = painter._ground
+    ground = painter._backdrop
     chart.show(_at(-3.9))
     painter.paint(renderer)
-    assert painter._ground is ground
+    assert painter._backdrop is ground
     chart.show(standing(curve=replace(curve(), bins=())))
     painter.paint(renderer)
-    assert painter._ground is not ground
+    assert painter._backdrop is not ground
+
+
+@pytest.mark.parametrize("palette", [LIGHT, DARK], ids=["light", "dark"])
+def test_a_pencil_that_moves_paints_itself_alone_and_what_a_fresh_painter_paints(palette: Palette) -> None:
+    for make in (_curve, _contributions):
+        chart, _ = make(palette)
+        kept = BACKDROP if isinstance(chart, CurveChart) else ""
+        painter = Painter(chart.board, kept, PENCIL)
+        chart.show(standing())
+        ink = _painted(painter, chart.board.figure)
+        for number, score in enumerate((-3.0, -3.4, -2.9, -6.0, -3.0)):
+            chart.show_pencil(_at(score))
+            moved = _painted(painter, chart.board.figure)
+            assert not np.array_equal(moved, ink)
+            assert np.array_equal(moved, _painted(Painter(chart.board, kept, PENCIL), chart.board.figure))
+            if number == 0:
+                grounds = painter.grounds
+            assert painter.grounds == grounds
+        chart.show_pencil(None)
+        assert np.array_equal(_painted(painter, chart.board.figure), ink), "rubbed out, every pixel is as it was"
+
+
+def test_pencil_without_a_pd_marks_no_point_and_says_that_there_is_no_score() -> None:
+    chart, _ = _curve()
+    chart.show(standing())
+    chart.show_pencil(without_pd())
+    assert chart.board.marks(PENCIL) == ()
+    rows, _ = _contributions()
+    rows.show(standing())
+    rows.show_pencil(without_pd())
+    assert [mark.get_text() for mark in rows.board.marks(PENCIL) if isinstance(mark, Text)] == ["in pencil: no score"]
+
+
+def test_pencil_outside_the_frame_points_at_it_from_the_edge() -> None:
+    chart, _ = _curve()
+    chart.show(standing())
+    chart.show_pencil(_at(30.0))
+    assert chart.frame is not None
+    assert not chart.frame.shows(30.0)
+    marks = [mark for mark in chart.board.marks(PENCIL) if not isinstance(mark, Text)]
+    assert len(marks) == 1
+    assert len(marks[0].get_path().vertices) == 4, "a closed triangle"  # type: ignore[attr-defined]
+
+
+def test_bars_in_pencil_are_as_long_as_their_amounts_beside_those_in_ink() -> None:
+    chart, _ = _contributions()
+    shown = standing()
+    chart.show(shown)
+    halved = tuple(replace(one, log_odds=(one.log_odds or 0.0) / 2) for one in shown.factors)
+    chart.show_pencil(replace(shown, factors=halved))
+    inked = {round(_width(mark), 3) for mark in chart.board.marks(LAYER) if _is_bar(mark)}
+    pencilled = [_width(mark) for mark in chart.board.marks(PENCIL) if _is_bar(mark)]
+    assert len(pencilled) == len(shown.factors)
+    assert {round(2 * width, 3) for width in pencilled} <= inked
+
+
+def _is_bar(mark: object) -> bool:
+    return not isinstance(mark, Text) and len(mark.get_path().vertices) == 5  # type: ignore[attr-defined]
+
+
+def _width(mark: object) -> float:
+    x = mark.get_path().vertices[:, 0]  # type: ignore[attr-defined]
+    return float(x.max() - x.min())
 
 
 def test_words_are_kept_but_not_without_end() -> None:

@@ -3,7 +3,7 @@
 from collections.abc import Sequence
 
 from PySide6.QtCore import QPoint, QSize, Qt, Signal
-from PySide6.QtGui import QFontMetrics, QKeyEvent, QWheelEvent
+from PySide6.QtGui import QFont, QFontMetrics, QKeyEvent, QWheelEvent
 from PySide6.QtWidgets import QButtonGroup, QFrame, QHBoxLayout, QPushButton, QScrollArea, QSizePolicy, QWidget
 
 from creditdesk.desk.fields import set_role
@@ -12,7 +12,7 @@ from creditdesk.scenario.marks import Scenario
 INK_WORD, NEW_WORD = "Ink", "+ new"
 IN_MEMO = "¶"
 """Stands behind the name of a scenario that the memo prints."""
-_WIDEST, _HEIGHT = 210, 31
+_WIDEST, _HEIGHT, _AROUND = 210, 31, 30
 _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
 
 
@@ -118,6 +118,7 @@ class ScenarioBar(QWidget):
         for tab, (title, tip) in zip(self._tabs, titles, strict=True):
             cut = QFontMetrics(tab.font()).elidedText(title, Qt.TextElideMode.ElideRight, _WIDEST)
             tab.setText(cut.replace("&", "&&"))
+            tab.setMinimumWidth(_bold_width(tab, cut))
             tab.setAccessibleName(f"Scenario {title}")
             tab.setToolTip(tip)
 
@@ -146,6 +147,13 @@ class ScenarioBar(QWidget):
     def _ask_menu(self, number: int, at: QPoint) -> None:
         self._choose(number)
         self.menu_asked.emit(self._tabs[number].mapToGlobal(at))
+
+
+def _bold_width(tab: QPushButton, words: str) -> int:
+    """Return the width that lets words stand also when the tab is chosen, and so bold."""
+    font = QFont(tab.font())
+    font.setWeight(QFont.Weight.DemiBold)
+    return QFontMetrics(font).horizontalAdvance(words) + _AROUND
 
 
 def _titles(scenario: Scenario) -> tuple[str, str]:

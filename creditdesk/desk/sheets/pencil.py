@@ -87,7 +87,9 @@ class PencilSheet(Sheet):
 
     def go_to(self, place: str) -> None:
         """Put the cursor on the row of ``pencil.<target>``, listing all lines where it is not shown."""
-        key = place.removeprefix(_PLACE)
+        key = place.removeprefix(_PLACE).partition("[")[0]
+        if self.stack.currentWidget() is not self._rows_page:
+            self.choose_view(View.MOVES)
         if key and not self.table.go_to(key):
             self.choose_view(View.ALL)
             self.table.go_to(key)
@@ -114,13 +116,23 @@ class PencilSheet(Sheet):
         shown = (self.draft.case, self.draft.pencilled, self.draft.active)
         if shown == self._shown:
             return
+        another = bool(self._shown) and self.draft.active not in ("", self._shown[-1])
         self._shown = shown
         self.bar.show_scenarios(self.draft.case.scenarios, self.draft.active)
         self.about.show_draft()
         self._show_moved()
         self._count_assumptions()
+        if another:
+            self._go_to_mark()
         self.slider.show_target(self.table.key, self.model.facts)
         self.studies.show_draft()
+
+    def _go_to_mark(self) -> None:
+        """Put the cursor of a scenario taken to hand on its first mark, unless it stands on one."""
+        recorded = self.draft.recorded
+        targets = [mark.target for mark in recorded.marks] if recorded is not None else []
+        if targets and self.table.key not in targets:
+            self.table.go_to(targets[0])
 
     def _show_moved(self) -> None:
         """Show what a sketch moves."""
