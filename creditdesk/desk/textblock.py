@@ -3,13 +3,12 @@
 from collections.abc import Sequence
 from math import ceil
 
-from PySide6.QtCore import QEvent, QMimeData, QRect, Qt, QTimer, Signal
-from PySide6.QtGui import QFocusEvent, QFontMetricsF, QKeyEvent, QKeySequence
+from PySide6.QtCore import QEvent, QMimeData, Qt, QTimer, Signal
+from PySide6.QtGui import QFocusEvent, QFontMetricsF, QKeyEvent, QKeySequence, QTextLayout
 from PySide6.QtWidgets import QPlainTextEdit
 
 _TYPING_PAUSE = 1500
 _LEAST_LINES = 2
-_ENDLESS = 100_000
 _SLACK = 2
 
 
@@ -53,14 +52,21 @@ class TextBlock(QPlainTextEdit):
     def needed_height(self) -> int:
         """Return the height in pixels at which the whole text is in sight, two lines at least."""
         inside, margin = self.contentsRect(), ceil(self.document().documentMargin())
-        room, metrics = QRect(0, 0, inside.width() - 2 * margin, _ENDLESS), self.fontMetrics()
-        heights = (metrics.boundingRect(room, Qt.TextFlag.TextWordWrap, part or " ").height() for part in self._parts())
-        lines = max(sum(round(height / metrics.lineSpacing()) for height in heights), _LEAST_LINES)
-        around = self.height() - inside.height() + 2 * margin
-        return lines * ceil(QFontMetricsF(self.font()).lineSpacing()) + around + _SLACK
+        lines = sum(self._lines_of(part, inside.width() - 2 * margin) for part in self.toPlainText().split("\n"))
+        around = self.height() - inside.height() + 2 * margin + _SLACK
+        return max(lines, _LEAST_LINES) * ceil(QFontMetricsF(self.font()).lineSpacing()) + around
 
-    def _parts(self) -> list[str]:
-        return self.toPlainText().split("\n")
+    def _lines_of(self, part: str, width: int) -> int:
+        """Count the lines a part without line ends takes where no scroll bar takes of the width."""
+        layout = QTextLayout(part, self.font())
+        layout.setTextOption(self.document().defaultTextOption())
+        layout.beginLayout()
+        count = 0
+        while (line := layout.createLine()).isValid():
+            line.setLineWidth(width)
+            count += 1
+        layout.endLayout()
+        return max(count, 1)
 
     def hand_on(self) -> None:
         """Hand on what was typed and has not been handed on yet."""

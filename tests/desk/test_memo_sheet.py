@@ -216,3 +216,12 @@ def test_a_file_dropped_on_a_text_is_left_to_the_window(memo: MemoSheet) -> None
     block = memo.blocks["request"]
     assert not block.canInsertFromMimeData(files)
     assert block.canInsertFromMimeData(words)
+
+
+def test_texts_that_fit_are_shown_without_scroll_bars(qtbot: QtBot, window: Window, memo: MemoSheet) -> None:
+    window.resize(1280, 900)
+    window.session.do(SetText("recommendation", "Yes."))
+    window.session.do(SetText("weak_spots", "One line.\n" * 9))
+    blocks = memo.blocks.values()
+    qtbot.waitUntil(lambda: all(block.verticalScrollBar().maximum() == 0 for block in blocks), timeout=5_000)
+    assert memo.blocks["weak_spots"].height() > 2 * memo.blocks["recommendation"].height()

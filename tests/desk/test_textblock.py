@@ -2,7 +2,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLineEdit, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QApplication, QLineEdit, QVBoxLayout, QWidget
 from pytestqt.qtbot import QtBot
 
 from creditdesk.desk.textblock import TextBlock, fair_shares
@@ -93,12 +93,14 @@ def test_a_block_of_the_height_it_needs_does_not_scroll(qtbot: QtBot) -> None:
         block = TextBlock("Request", "hint")
         qtbot.addWidget(block)
         block.show_text(text)
-        block.resize(240, 60)
+        block.resize(240, 600)
         block.show()
+        qtbot.waitExposed(block)
         needed = block.needed_height()
         block.resize(240, needed)
-        qtbot.waitExposed(block)
+        QApplication.processEvents()
         assert block.verticalScrollBar().maximum() == 0
         if text.count("word") > 1:
             block.resize(240, needed - block.fontMetrics().lineSpacing() - 4)
+            QApplication.processEvents()
             assert block.verticalScrollBar().maximum() > 0

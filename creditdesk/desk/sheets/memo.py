@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import QByteArray, QTimer, Signal
+from PySide6.QtCore import QByteArray, Qt, QTimer, Signal
 from PySide6.QtGui import QHideEvent, QKeySequence, QResizeEvent, QShowEvent
 from PySide6.QtWidgets import (
     QHBoxLayout,
@@ -36,6 +36,7 @@ BLOCKS = (
     ("conditions", "Conditions", "What must hold before and after drawing."),
 )
 _PAUSE = 350
+_BAR = Qt.ScrollBarPolicy
 
 
 class MemoSheet(Sheet):
@@ -76,7 +77,11 @@ class MemoSheet(Sheet):
             blocks = list(self.blocks.values())
             heights = fair_shares([block.needed_height() for block in blocks], sum(block.height() for block in blocks))
             for block, height in zip(blocks, heights, strict=True):
+                block.setVerticalScrollBarPolicy(_BAR.ScrollBarAlwaysOff)  # or it would stay for the line it takes
                 self._texts.setStretchFactor(block, max(height, 1))
+            self._texts.activate()
+            for block in blocks:
+                block.setVerticalScrollBarPolicy(_BAR.ScrollBarAsNeeded)
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Share the new height among the texts."""
