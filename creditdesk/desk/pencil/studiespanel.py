@@ -1,18 +1,137 @@
-"""The studies of the scenario at hand, below the table."""
+"""The studies of the scenario at hand, below the table: their names in a row, one of them laid open."""
 
-from PySide6.QtWidgets import QWidget
+from collections.abc import Sequence
 
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QKeyEvent, QKeySequence, QShortcut
+from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QPushButton, QStackedWidget, QVBoxLayout, QWidget
+
+from creditdesk.base.palette import Palette
+from creditdesk.desk.fields import set_role
 from creditdesk.desk.pencil.draft import PencilDraft
+from creditdesk.desk.pencil.study_grid import GridPage
+from creditdesk.desk.pencil.study_page import StudyPage
 from creditdesk.desk.session import Session
+
+_STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
+_RUN_KEYS = "Ctrl+Return"
+
+
+class _Name(QPushButton):
+    """Name one study; the arrows walk to its neighbours."""
+
+    walked = Signal(int)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Walk with the arrows."""
+        step = _STEPS.get(Qt.Key(event.key()))
+        if step is not None and not event.modifiers():
+            self.walked.emit(step)
+        else:
+            super().keyPressEvent(event)
 
 
 class StudiesPanel(QWidget):
-    """Stand where the studies will be."""
+    """Show the studies; one that has no answer yet is begun when its name is chosen.
+
+    ``fault``: a sentence for the status line. A page is made when it is first chosen.
+    """
+
+    fault = Signal(str)
 
     def __init__(self, session: Session, draft: PencilDraft) -> None:
         super().__init__()
-        self._session, self._draft = session, draft
+        self.session, self.draft = session, draft
+        self._palette: Palette | None = None
+        self._pages: dict[type[StudyPage], StudyPage] = {}
+        self.names: list[QPushButton] = []
+        self.stack = QStackedWidget()
         self.setAccessibleName("Studies")
+        self._lay_out()
+        QShortcut(
+            QKeySequence(_RUN_KEYS), self, self.run_or_stop, context=Qt.ShortcutContext.WidgetWithChildrenShortcut
+        )
+        self._show(KINDS[0])
+
+    # Showing
 
     def show_draft(self) -> None:
-        """Show the draft as it stands."""
+        """Show the draft as it stands; pages that are not in sight follow when they are."""
+        self.page.show_draft()
+
+    def recolour(self, palette: Palette) -> None:
+        """Draw in another palette."""
+        self._palette = palette
+        for page in self._pages.values():
+            page.recolour(palette)
+
+    @property
+    def page(self) -> StudyPage:
+        """Return the study laid open."""
+        page = self.stack.currentWidget()
+        assert isinstance(page, StudyPage)
+        return page
+
+    @property
+    def settled(self) -> bool:
+        """Say whether no study runs."""
+        return not any(page.runner.running for page in self._pages.values())
+
+    def stop(self) -> None:
+        """Stop all studies and wait for their workers, because the window closes."""
+        for page in self._pages.values():
+            page.runner.close()
+
+    # Doing
+
+    def choose(self, number: int) -> None:
+        """Lay a study open and begin it where it has no answer yet."""
+        self.names[number].setChecked(True)
+        self._show(KINDS[number])
+        self.page.show_draft()
+        self.page.run_once()
+
+    def run_or_stop(self) -> None:
+        """Begin the study laid open, or stop it."""
+        self.page.run_or_stop()
+
+    def _walk(self, number: int, step: int) -> None:
+        to = min(max(number + step, 0), len(KINDS) - 1)
+        self.names[to].setFocus(Qt.FocusReason.TabFocusReason)
+        self.choose(to)
+
+    def _show(self, kind: type[StudyPage]) -> None:
+        if kind not in self._pages:
+            page = kind(self.draft)
+            page.fault.connect(self.fault)
+            if self._palette is not None:
+                page.recolour(self._palette)
+            self._pages[kind] = page
+            self.stack.addWidget(page)
+        self.stack.setCurrentWidget(self._pages[kind])
+
+    def _lay_out(self) -> None:
+        row, group = QHBoxLayout(), QButtonGroup(self)
+        row.setSpacing(0)
+        for number, kind in enumerate(KINDS):
+            name = _Name(kind.title)
+            name.setCheckable(True)
+            name.setAccessibleName(f"Study: {kind.title}")
+            name.setToolTip(f"{kind.hint} {_RUN_KEYS} runs and stops.")
+            set_role(name, "small")
+            name.clicked.connect(lambda _checked, at=number: self.choose(at))
+            name.walked.connect(lambda step, at=number: self._walk(at, step))
+            group.addButton(name)
+            row.addWidget(name)
+            self.names.append(name)
+        self.names[0].setChecked(True)
+        row.addStretch(1)
+        box = QVBoxLayout(self)
+        box.setContentsMargins(0, 4, 0, 0)
+        box.setSpacing(2)
+        box.addLayout(row)
+        box.addWidget(self.stack, 1)
+
+
+KINDS: Sequence[type[StudyPage]] = (GridPage,)
+"""The studies in the order of their names."""

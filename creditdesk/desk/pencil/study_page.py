@@ -1,0 +1,326 @@
+"""One study of the panel: its form at the left with run and stop, its answer at the right, and how it is kept."""
+
+from collections.abc import Generator, Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any, Generic, TypeVar
+
+import msgspec
+from PySide6.QtCore import QEvent, Qt, Signal
+from PySide6.QtWidgets import QFrame, QHBoxLayout, QProgressBar, QPushButton, QScrollArea, QVBoxLayout, QWidget
+
+from creditdesk.base.errors import UserError
+from creditdesk.base.palette import LIGHT, Palette
+from creditdesk.case.document import Case
+from creditdesk.case.pencil import PencilBoard
+from creditdesk.case.studies import Study, run_study
+from creditdesk.case.study_offers import offered_studies
+from creditdesk.desk.fields import fault_words
+from creditdesk.desk.frame import label
+from creditdesk.desk.pencil.draft import PencilDraft
+from creditdesk.desk.pencil.study_forms import note
+from creditdesk.desk.pencil.study_keeper import Keeper
+from creditdesk.desk.pencil.study_runner import StudyRunner
+from creditdesk.house.book import HouseBook
+from creditdesk.scenario.marks import Scenario
+from creditdesk.scenario.specs import StudySpec
+
+if TYPE_CHECKING:
+    from creditdesk.desk.pencil.targets import TargetBook
+
+Spec = TypeVar("Spec", bound=StudySpec)
+
+_RUN, _STOP = "Run", "Stop"
+STALE = "▲ Of earlier figures, marks or questions: run again."
+"""Stands over an answer to another question than the one at hand."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Asked:
+    """Hold what a study is run on: board and case, the scenario it stands on (None for the ink), and the question.
+
+    ``beside``: targets whose marks do not change the answer, because the study itself moves them.
+    """
+
+    board: PencilBoard
+    house: HouseBook
+    case: Case
+    scenario: Scenario | None
+    spec: Any
+    beside: frozenset[str] = frozenset()
+
+    def same(self, other: "Asked") -> bool:
+        """Say whether both ask the same of the same figures."""
+        return self.board is other.board and self.spec == other.spec and self.ground() == other.ground()
+
+    def ground(self) -> object:
+        """Return what of the scenario changes the answer."""
+        if self.scenario is None:
+            return (), {}
+        marks = tuple(mark for mark in self.scenario.marks if mark.target not in self.beside)
+        return marks, dict(self.scenario.assumptions)
+
+
+class StudyPage(QWidget):
+    """Show one study of the draft's scenario; what kind of study, its form and its answer are a page's own.
+
+    ``fault``: a sentence for the status line. ``title``: its name in the row; ``hint``: what it answers.
+    """
+
+    fault = Signal(str)
+    title = ""
+    hint = ""
+
+    def __init__(self, draft: PencilDraft) -> None:
+        super().__init__()
+        self.draft = draft
+        self.palette_shown: Palette = LIGHT
+        self.runner = StudyRunner(self)
+        self.note = label("second", wrap=True)
+        self.run_button, self.progress = QPushButton(_RUN), QProgressBar()
+        self.form, self.answer = QVBoxLayout(), QVBoxLayout()
+        self.answered: Asked | None = None
+        self._asked: Asked | None = None
+        self._targets: TargetBook | None = None
+        self._lay_out()
+        self.run_button.clicked.connect(self.run_or_stop)
+        self.runner.changed.connect(self._show_running)
+        self.runner.progressed.connect(self.progress.setValue)
+        self.runner.done.connect(self._on_done)
+        self.runner.refused.connect(lambda words: note(self.note, f"▲ {words}", "caution"))
+
+    # What a page is
+
+    def question(self) -> object:
+        """Return what is asked, in the form of a specification. Raises UserError where the form says none."""
+        return None
+
+    def offer(self) -> None:
+        """Offer what the case has: targets, grades, scenarios. Called when these are others than before."""
+
+    def work(self, asked: Asked) -> Generator[float, None, Any]:
+        """Begin the study."""
+        raise NotImplementedError
+
+    def show_answer(self, asked: Asked, result: Any) -> None:  # noqa: ANN401  a page knows its own result
+        """Show a result."""
+        raise NotImplementedError
+
+    def recolour(self, palette: Palette) -> None:
+        """Draw in another palette."""
+        self.palette_shown = palette
+
+    # Doing
+
+    def run_or_stop(self) -> None:
+        """Begin the study, or stop it where it runs."""
+        if self.runner.running:
+            self.runner.stop()
+            note(self.note, "Stopped." if self.answered is None else "Stopped; the answer before stays.")
+        else:
+            self.run()
+
+    def run(self) -> None:
+        """Begin the study on what is at hand."""
+        try:
+            asked = self._at_hand()
+        except UserError as error:
+            note(self.note, f"▲ {fault_words(error)}", "caution")
+            return
+        self._asked = asked
+        note(self.note, "")
+        self.runner.start(lambda: self.work(asked))
+
+    def run_once(self) -> None:
+        """Begin the study where it has no answer yet."""
+        if self.answered is None and not self.runner.running and self.draft.board is not None:
+            self.run()
+
+    def show_draft(self) -> None:
+        """Show the draft as it stands."""
+        if self._targets is not self.draft.targets:
+            self._targets = self.draft.targets
+            self.offer()
+        self.run_button.setEnabled(self.draft.board is not None)
+        self.show_age()
+
+    def show_age(self) -> None:
+        """Say where the answer shown belongs to another question than the one at hand."""
+        if self.runner.running:
+            return
+        if self.draft.board is None:
+            note(self.note, f"▲ Nothing can be studied: {self.draft.why_none}", "caution")
+        elif self.answered is None:
+            note(self.note, self.hint)
+        else:
+            try:
+                stale = not self.answered.same(self._at_hand())
+            except UserError as error:
+                note(self.note, f"▲ {fault_words(error)}", "caution")
+                return
+            note(self.note, STALE if stale else "", "caution")
+
+    def _at_hand(self) -> Asked:
+        board = self.draft.board
+        if board is None:
+            raise UserError("pencil", self.draft.why_none)
+        draft = self.draft
+        return Asked(board, draft.session.house, draft.case, self.standing_on(), self.question(), self.beside())
+
+    def beside(self) -> frozenset[str]:
+        """Name targets whose marks do not change the answer."""
+        return frozenset()
+
+    def standing_on(self) -> Scenario | None:
+        """Return the scenario the study stands on."""
+        return self.draft.recorded
+
+    def _on_done(self, result: object) -> None:
+        if self._asked is not None:
+            self.answered = self._asked
+            self.show_answer(self._asked, result)
+            self.show_age()
+
+    def _show_running(self) -> None:
+        running = self.runner.running
+        self.run_button.setText(_STOP if running else _RUN)
+        self.progress.setValue(0)
+        self.progress.setVisible(running)
+
+    # Making
+
+    def _lay_out(self) -> None:
+        self.run_button.setAccessibleName(f"Run or stop: {self.title}")
+        self.run_button.setToolTip(f"{self.hint} Ctrl+Return runs and stops.")
+        self.progress.setAccessibleName("How far the study is")
+        self.progress.setTextVisible(False)
+        self.progress.setFixedHeight(8)
+        self.progress.hide()
+        inside = QWidget()
+        column = QVBoxLayout(inside)
+        column.setContentsMargins(0, 0, 8, 0)
+        column.setSpacing(5)
+        self.form.setSpacing(5)
+        column.addLayout(self.form)
+        column.addLayout(self._foot())
+        column.addStretch(1)
+        self.side = Side(inside)
+        right = QVBoxLayout()
+        right.setSpacing(3)
+        right.addWidget(self.note)
+        right.addLayout(self.answer, 1)
+        row = QHBoxLayout(self)
+        row.setContentsMargins(0, 4, 0, 0)
+        row.setSpacing(12)
+        row.addWidget(self.side)
+        row.addLayout(right, 1)
+
+    def _foot(self) -> QVBoxLayout:
+        """Lay out run and progress; pages that keep studies add to it."""
+        self.foot = QVBoxLayout()
+        row = QHBoxLayout()
+        row.addWidget(self.run_button)
+        row.addWidget(self.progress, 1)
+        row.addStretch(0)
+        self.foot.addLayout(row)
+        return self.foot
+
+
+class KeptPage(StudyPage, Generic[Spec]):
+    """Show a study that can be kept in the case and printed in the memo."""
+
+    kind: type[Spec]
+
+    def __init__(self, draft: PencilDraft) -> None:
+        super().__init__(draft)
+        self.keeper = Keeper(draft, self.kind, self.question)
+        self.foot.addWidget(self.keeper)
+        self.keeper.wanted.connect(self._on_wanted)
+        self.keeper.fault.connect(self.fault)
+
+    def question(self) -> Spec:
+        """Return the specification in the form, on the scenario at hand."""
+        return msgspec.structs.replace(self.spec(), scenario=self.draft.active, in_memo=False)
+
+    def spec(self) -> Spec:
+        """Return the specification in the form. Raises UserError."""
+        raise NotImplementedError
+
+    def put_spec(self, spec: Spec) -> None:
+        """Show a specification in the form."""
+        raise NotImplementedError
+
+    def usual(self) -> Spec:
+        """Return the specification that is offered first."""
+        return self.offers()[0]
+
+    def offers(self) -> Sequence[Spec]:
+        """Return the specifications offered for the scenario at hand. Raises UserError where there is none."""
+        board, draft = self.draft.board, self.draft
+        if board is None:
+            raise UserError("pencil", draft.why_none)
+        offered = offered_studies(board, draft.session.house, draft.case, draft.active)
+        found = [one for one in offered if isinstance(one, self.kind)]
+        if not found:
+            raise UserError("study", "There is nothing to ask: the house book offers nothing that fits these figures.")
+        return found
+
+    def work(self, asked: Asked) -> Generator[float, None, Study]:
+        """Begin the study."""
+        return run_study(asked.board, asked.house, asked.case, asked.spec)
+
+    def show_answer(self, asked: Asked, result: Study) -> None:
+        """Show a study that was run."""
+        self.show_result(asked, result.result)
+
+    def show_result(self, asked: Asked, result: Any) -> None:  # noqa: ANN401  a page knows its own result
+        """Show the result of a study."""
+        raise NotImplementedError
+
+    def offer(self) -> None:
+        """Offer what the case has; show what is kept, else what is usual."""
+        self.offer_choices()
+        if self.draft.board is None:
+            return
+        kept = self.keeper.chosen
+        try:
+            self.put_spec(kept if isinstance(kept, self.kind) else self.usual())
+        except UserError as error:
+            self.fault.emit(" ".join(error.faults))
+
+    def offer_choices(self) -> None:
+        """Offer targets and grades."""
+
+    def show_draft(self) -> None:
+        """Show the draft as it stands."""
+        self.keeper.show_kept()
+        super().show_draft()
+        self.keeper.show_state()
+
+    def touched(self) -> None:
+        """Take note that the form says something else than before."""
+        self.keeper.show_state()
+        self.show_age()
+
+    def _on_wanted(self, spec: Spec) -> None:
+        self.put_spec(spec)
+        self.touched()
+
+
+class Side(QScrollArea):
+    """Hold a form at its own width; where the panel is low it scrolls."""
+
+    def __init__(self, inside: QWidget) -> None:
+        super().__init__()
+        self._inside = inside
+        self.setWidget(inside)
+        self.setWidgetResizable(True)
+        self.setFrameShape(QFrame.Shape.NoFrame)
+        self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+        inside.installEventFilter(self)
+
+    def eventFilter(self, watched: object, event: QEvent) -> bool:
+        """Be as wide as what is inside."""
+        if event.type() in (QEvent.Type.LayoutRequest, QEvent.Type.Resize, QEvent.Type.Show):
+            self.setFixedWidth(self._inside.sizeHint().width() + 12)
+        return super().eventFilter(self._inside, event)

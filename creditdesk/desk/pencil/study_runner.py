@@ -1,0 +1,99 @@
+"""Run a study in a worker: told how far it is, stopped between two of its parts, at rest before the next begins."""
+
+import sys
+from collections.abc import Callable, Generator
+from importlib import import_module
+from typing import Any
+
+from PySide6.QtCore import QObject, Signal
+
+from creditdesk.base.errors import UserError
+from creditdesk.desk.fetching import fetching
+from creditdesk.desk.pencil.study_canvases import LIBRARY
+from creditdesk.desk.worker import Jobs, Progress, Stopped
+
+Work = Callable[[], Generator[float, None, Any]]
+"""Begin a study: a generator of the share done, whose value is the result."""
+
+
+class StudyRunner(QObject):
+    """Run one study at a time.
+
+    ``changed``: it runs, or no longer does. ``progressed``: per cent done. ``done``: the result, ``refused``: a
+    sentence on why there is none. What was stopped says nothing more.
+    """
+
+    changed = Signal()
+    progressed = Signal(int)
+    done = Signal(object)
+    refused = Signal(str)
+
+    def __init__(self, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self.jobs = Jobs(self)
+        self._progress: Progress | None = None
+
+    @property
+    def running(self) -> bool:
+        """Say whether a study runs whose result is waited for."""
+        return self._progress is not None
+
+    def start(self, begin: Work) -> None:
+        """Run a study; one that runs already is stopped."""
+        self.stop()
+        progress = Progress()
+        self._progress = progress
+        progress.told.connect(lambda _words, done, _total: self._on_told(progress, done))
+
+        def finished(result: object) -> None:
+            if self._ended(progress):
+                self.done.emit(result)
+
+        def failed(error: BaseException) -> None:
+            if not self._ended(progress) or isinstance(error, Stopped):
+                return
+            if not isinstance(error, UserError):
+                raise error
+            self.refused.emit(" ".join(error.faults))
+
+        self.jobs.start(lambda: _driven(begin, progress), finished, failed)
+        self.changed.emit()
+
+    def stop(self) -> None:
+        """Stop what runs: nothing of it will be told, and the worker ends with the part it is at."""
+        if self._progress is not None:
+            self._progress.stop()
+            self._progress = None
+            self.changed.emit()
+
+    def close(self) -> None:
+        """Stop what runs and wait for the worker."""
+        self.stop()
+        self.jobs.stop()
+
+    def _ended(self, progress: Progress) -> bool:
+        """Say whether it is this run that is waited for; then none is any more."""
+        if self._progress is not progress:
+            return False
+        self._progress = None
+        self.changed.emit()
+        return True
+
+    def _on_told(self, progress: Progress, done: int) -> None:
+        if self._progress is progress:
+            self.progressed.emit(done)
+
+
+def _driven(begin: Work, progress: Progress) -> object:
+    """Drive a study to its end, between two parts looking whether it is to stop; the charts are fetched first."""
+    if any(name not in sys.modules for name in LIBRARY):
+        with fetching():
+            for name in LIBRARY:
+                import_module(name)
+    work = begin()
+    while True:
+        try:
+            share = next(work)
+        except StopIteration as end:
+            return end.value
+        progress.step("", round(100 * share), 100)
