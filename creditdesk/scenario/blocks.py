@@ -2,6 +2,7 @@
 
 from collections.abc import Generator, Mapping, Sequence
 from dataclasses import fields
+from types import MappingProxyType
 from typing import TypeAlias, TypeVar
 
 import numpy as np
@@ -17,6 +18,10 @@ Progress: TypeAlias = Generator[float, None, Result]
 """Work in parts: yields the share done after each, in (0, 1]; whoever drives it may stop between two."""
 Positions = Mapping[str, tuple[MoveKind, FloatArray]]
 """Where targets stand, in the unit of a kind: arrays of one length."""
+
+Starts = Mapping[str, float]
+"""Where a scenario stands by target, in the unit of the target's range."""
+NO_STARTS: Starts = MappingProxyType({})
 
 BLOCK = 4096
 """Points in one call."""
@@ -37,8 +42,13 @@ def with_positions(base: Moves, positions: Mapping[str, tuple[MoveKind, FloatArr
     return {**base, **{target: Move(kind, amount) for target, (kind, amount) in positions.items()}}
 
 
-def position(base: Moves, along: Range) -> float:
-    """Say where moves stand in a range: 0 where they leave its target alone, nan where that is not told in its unit."""
+def position(base: Moves, along: Range, starts: Starts = NO_STARTS) -> float:
+    """Say where moves stand in a range: as told by ``starts``, 0 where they leave its target alone, nan if not known.
+
+    Moves may move a target that they do not name, as sales move costs; ``starts`` then has to tell.
+    """
+    if along.target in starts:
+        return starts[along.target]
     move = base.get(along.target)
     if move is None:
         return 0.0 if along.kind.relative else float("nan")

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Moves
 from creditdesk.grading.scale import MasterScale
-from creditdesk.scenario.blocks import Progress, position, with_positions
+from creditdesk.scenario.blocks import NO_STARTS, Progress, Starts, position, with_positions
 from creditdesk.scenario.outcomes import Evaluate, Outcomes
 from creditdesk.scenario.specs import BreakEvenSpec, Limit, LimitKind
 
@@ -71,13 +71,15 @@ def watched(limits: Sequence[Limit]) -> tuple[str, ...]:
     return tuple(dict.fromkeys(limit.key for limit in limits if limit.kind is not LimitKind.GRADE))
 
 
-def break_even(evaluate: Evaluate, base: Moves, spec: BreakEvenSpec, scale: MasterScale) -> Progress[BreakEven]:
+def break_even(
+    evaluate: Evaluate, base: Moves, spec: BreakEvenSpec, scale: MasterScale, starts: Starts = NO_STARTS
+) -> Progress[BreakEven]:
     """Find what ends each limit's state on either side of the start.
 
-    ``evaluate`` has to tell what ``watched`` names. The start is where the scenario stands, if that is told in the
-    unit of the range, else the end of the range that is nearer to nil; it is drawn into the range if it lies outside.
+    ``evaluate`` has to tell what ``watched`` names. The start is where the scenario stands, nil where that is not
+    known in the unit of the range; it is drawn into the range if it lies outside.
     """
-    start = _start(base, spec)
+    start = _start(base, spec, starts)
     scans = [np.linspace(start, end, _SCAN + 1) for end in (spec.along.low, spec.along.high)]
     told = evaluate(_at(base, spec, np.concatenate(scans)))
     yield 0.2
@@ -93,8 +95,8 @@ def break_even(evaluate: Evaluate, base: Moves, spec: BreakEvenSpec, scale: Mast
     return BreakEven(spec, start, tuple(found))
 
 
-def _start(base: Moves, spec: BreakEvenSpec) -> float:
-    found = position(base, spec.along)
+def _start(base: Moves, spec: BreakEvenSpec, starts: Starts) -> float:
+    found = position(base, spec.along, starts)
     return float(np.clip(0.0 if np.isnan(found) else found, spec.along.low, spec.along.high))
 
 

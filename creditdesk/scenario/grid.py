@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Moves
-from creditdesk.scenario.blocks import Progress, in_blocks, position
+from creditdesk.scenario.blocks import NO_STARTS, Progress, Starts, in_blocks, position
 from creditdesk.scenario.outcomes import Evaluate
 from creditdesk.scenario.specs import GridSpec
 
@@ -17,8 +17,8 @@ FloatArray = NDArray[np.float64]
 class Grid:
     """Hold a grid: ``pd`` (after the floor) and ``grade`` (place of the final one, -1 for none) are up x across.
 
-    ``across`` and ``up``: positions in the units of the ranges. ``at``: where the scenario stands in them, nan on an
-    axis whose target it moves in another way.
+    ``across`` and ``up``: positions in the units of the ranges. ``at``: where the scenario stands in them, nan where
+    that is not known in the unit of the axis.
     """
 
     spec: GridSpec
@@ -29,7 +29,7 @@ class Grid:
     at: tuple[float, float]
 
 
-def grid(evaluate: Evaluate, base: Moves, spec: GridSpec) -> Progress[Grid]:
+def grid(evaluate: Evaluate, base: Moves, spec: GridSpec, starts: Starts = NO_STARTS) -> Progress[Grid]:
     """Evaluate a grid over ``base``, whose own moves of the two targets give way to the positions of the axes."""
     across, up = (np.linspace(axis.low, axis.high, spec.points) for axis in (spec.across, spec.up))
     wide, tall = np.meshgrid(across, up)
@@ -44,5 +44,5 @@ def grid(evaluate: Evaluate, base: Moves, spec: GridSpec) -> Progress[Grid]:
         up=up,
         pd=found.pd.reshape(wide.shape),
         grade=found.grade.reshape(wide.shape),
-        at=(position(base, spec.across), position(base, spec.up)),
+        at=(position(base, spec.across, starts), position(base, spec.up, starts)),
     )

@@ -1,6 +1,6 @@
 """The levers of a search as arrays: where they stand, how far they go, in which steps, and what that costs."""
 
-from collections.abc import Sequence
+from collections.abc import Container, Sequence
 from dataclasses import dataclass, replace
 from itertools import product
 
@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Moves
-from creditdesk.scenario.blocks import position, with_positions
+from creditdesk.scenario.blocks import NO_STARTS, Starts, position, with_positions
 from creditdesk.scenario.specs import Lever
 
 FloatArray = NDArray[np.float64]
@@ -32,6 +32,12 @@ class Levers:
     high: FloatArray
     step: FloatArray
     cost: FloatArray
+
+    def without(self, numbers: Container[int]) -> "Levers":
+        """Return the levers save some."""
+        kept = [number for number in range(len(self.levers)) if number not in numbers]
+        arrays = {name: getattr(self, name)[kept] for name in ("start", "low", "high", "step", "cost")}
+        return Levers(tuple(self.levers[number] for number in kept), **arrays)
 
     @property
     def smooth(self) -> NDArray[np.bool_]:
@@ -104,9 +110,10 @@ class Levers:
         return self.on_steps(self.low + self.width * share)
 
 
-def levers_at(base: Moves, levers: Sequence[Lever]) -> tuple[Levers, tuple[str, ...]]:
-    """Lay out levers from where ``base`` stands; name the targets left out, as it moves them in another unit."""
-    placed = [(lever, position(base, lever.range)) for lever in levers]
+def levers_at(base: Moves, levers: Sequence[Lever], starts: Starts = NO_STARTS) -> tuple[Levers, tuple[str, ...]]:
+    """Lay out levers from where ``base`` stands; name the targets left out, as it is not
+    known where it stands in their unit."""
+    placed = [(lever, position(base, lever.range, starts)) for lever in levers]
     usable = [(lever, at) for lever, at in placed if not np.isnan(at)]
     start = np.array([at for _, at in usable])
     laid = Levers(

@@ -6,19 +6,30 @@ the search of ``search`` looks from many places. What is returned has been evalu
 
 from dataclasses import dataclass
 from enum import StrEnum
+from itertools import combinations
 
 import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.flow.moves import Move, Moves
 from creditdesk.grading.scale import MasterScale
-from creditdesk.scenario.blocks import Progress
+from creditdesk.scenario.blocks import NO_STARTS, Progress, Starts
 from creditdesk.scenario.levers import Levers, levers_at
 from creditdesk.scenario.outcomes import Evaluate, Outcomes
 from creditdesk.scenario.search import Found, Search
 from creditdesk.scenario.specs import ReachSpec
 
 FloatArray = NDArray[np.float64]
+
+
+_SAME = 1e-11
+"""Difference of scores up to which a mark at rest makes none."""
+
+
+_LOOKS, _FEW = 16, 3
+_NEAR = 1.3
+"""How much dearer a choice of levers may look, before it is improved, and still be improved."""
+_WORST = 10**6
 
 
 class ReachKind(StrEnum):
@@ -41,7 +52,8 @@ class Reach:
 
     ``plan``: moves of levers, those that move and those ``held`` where they rest although other marks would move their
     lines; where the grade is not reached, those of the best grade found, of the lowest PD within it. ``cost``: of the
-    plan. ``active``: targets pulled as far as they go. ``left_out``: targets that the scenario moves in another unit.
+    plan. ``active``: targets pulled as far as they go. ``left_out``: targets of which it is not known
+    where the scenario stands in their unit.
     ``pd`` after the floor and ``grade`` (place of the final one, -1 for none) there. ``best_grade``: place of the best
     final grade among all points tried, -1 where none has any. ``tried``: points evaluated; ``all_tried``: they are all
     there are, as every lever moves in steps.
@@ -61,45 +73,111 @@ class Reach:
     all_tried: bool
 
 
-def reach(evaluate: Evaluate, base: Moves, spec: ReachSpec, scale: MasterScale) -> Progress[Reach]:
+def reach(
+    evaluate: Evaluate, base: Moves, spec: ReachSpec, scale: MasterScale, starts: Starts = NO_STARTS
+) -> Progress[Reach]:
     """Search from where ``base`` stands: the range of a lever, BY an amount or per cent, is counted from there.
 
-    Rest is always within the range. A lever counts as marked while others are tried, also at rest: its line stays
-    within the range and follows nothing else.
+    Rest is always within the range. A lever whose line other levers move is tried both ways: marked, so that it stays
+    within its range and follows nothing, and left alone.
     """
-    levers, left_out = levers_at(base, spec.levers)
-    search = Search(evaluate, base, levers, (scale.position(spec.grade), scale.upper(spec.grade)))
-    answer = _Answer(evaluate, base, spec, left_out, search)
+    levers, left_out = levers_at(base, spec.levers, starts)
+    goal = scale.position(spec.grade), scale.upper(spec.grade)
+    answer = _Answer(evaluate, base, spec, left_out)
     here = evaluate(base)
     if np.isnan(here.pd):
         return answer.at_rest(ReachKind.NO_PD, here)
-    if 0 <= int(here.grade) <= scale.position(spec.grade):
+    if 0 <= int(here.grade) <= goal[0]:
         return answer.at_rest(ReachKind.ALREADY, here)
     if not levers.levers:
         return answer.at_rest(ReachKind.NOT_REACHED, here)
     yield 0.02
-    found, all_tried = yield from search.spread()
-    starts = found.points[found.reaches]
-    kind = ReachKind.REACHED
-    if all_tried and len(starts):
-        best = starts[int(np.argmin(levers.costs(starts)))]
-    elif len(starts):
-        best = yield from search.cheapest_of(starts)
-    else:
-        kind, best = yield from _without(search, found, all_tried=all_tried)
-    yield 1.0
-    return answer.at(kind, best, all_tried=all_tried)
+    free = yield from _followers(Search(evaluate, base, levers, goal))
+    tries = []
+    for left_alone in _choices(free):
+        marked = levers.without(left_alone)
+        if marked.levers:
+            search = Search(evaluate, base, marked, goal)
+            found, everything = yield from search.spread()
+            tries.append(_Try(search, found, everything))
+    return answer.at((yield from _ended(tries)), tries)
 
 
-def _without(search: Search, found: Found, *, all_tried: bool) -> Progress[tuple[ReachKind, FloatArray]]:
-    """Look further where no point of the spread reaches the grade: the best grade, or a start after all."""
-    search.share = 0.2
-    near = search.pd_reaches(found)
-    best = yield from search.lowest(found, near if near.any() else ~near)
-    if best.reaches[0]:
-        return ReachKind.REACHED, best.points[0] if all_tried else (yield from search.cheapest_of(best.points))
-    rules = near.any() or bool(search.pd_reaches(best)[0])
-    return ReachKind.RULES if rules else ReachKind.NOT_REACHED, best.points[0]
+@dataclass(frozen=True, slots=True, eq=False)
+class _Try:
+    """Hold one choice of levers that are marked, and the points spread over them; ``everything``: all there are."""
+
+    search: Search
+    found: Found
+    everything: bool
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _End:
+    """Hold where a search ended."""
+
+    kind: ReachKind
+    search: Search
+    point: FloatArray
+
+
+def _followers(search: Search) -> Progress[tuple[int, ...]]:
+    """List the levers whose lines move with others when they are not marked themselves."""
+    levers, found = search.levers, []
+    for number in range(len(levers.levers)):
+        points = levers.scattered(_LOOKS)
+        points[:, number] = levers.start[number]
+        if np.max(np.abs(search.scores(points) - search.scores(points, number)), initial=0.0) > _SAME:
+            found.append(number)
+        yield 0.04
+    return tuple(found)
+
+
+def _choices(free: tuple[int, ...]) -> list[tuple[int, ...]]:
+    """List which levers are left alone: every choice of a few, else none, one, all but one or all."""
+    counts = range(len(free) + 1)
+    kept = counts if len(free) <= _FEW else sorted({0, 1, len(free) - 1, len(free)})
+    return [choice for count in kept for choice in combinations(free, count)]
+
+
+def _ended(tries: list[_Try]) -> Progress[_End]:
+    reaching = [one for one in tries if one.found.reaches.any()]
+    if not reaching:
+        return (yield from _without(tries))
+    screened = []
+    for one in reaching:
+        points = one.found.points[one.found.reaches]
+        if one.everything:
+            points = points[[int(np.argmin(one.search.levers.costs(points)))]]
+        else:
+            points = yield from one.search.screened(points)
+        screened.append((one.search.cost(points[0]), one, points))
+    best: _End | None = None
+    for number, (cost, one, points) in enumerate(sorted(screened, key=lambda entry: entry[0])):
+        one.search.share = 0.3 + 0.6 * number / len(screened)
+        if best is None or cost < _NEAR * best.search.cost(best.point):
+            point = points[0] if one.everything else (yield from one.search.cheapest_of(points))
+            if best is None or one.search.cost(point) < best.search.cost(best.point):
+                best = _End(ReachKind.REACHED, one.search, point)
+    assert best is not None
+    return best
+
+
+def _without(tries: list[_Try]) -> Progress[_End]:
+    """Look further where no point of the spreads reaches the grade: the best grade, or a way there after all."""
+    near = [one for one in tries if one.search.pd_reaches(one.found).any()]
+    ends = []
+    for one in near or tries:
+        among = one.search.pd_reaches(one.found)
+        best = yield from one.search.lowest(one.found, among if near else ~among)
+        if best.reaches[0]:
+            point = best.points[0] if one.everything else (yield from one.search.cheapest_of(best.points))
+            return _End(ReachKind.REACHED, one.search, point)
+        rules = bool(near) or bool(one.search.pd_reaches(best)[0])
+        grade = int(best.grade[0]) if best.grade[0] >= 0 else _WORST
+        kind = ReachKind.RULES if rules else ReachKind.NOT_REACHED
+        ends.append((grade, float(best.odds[0]), _End(kind, one.search, best.points[0])))
+    return min(ends, key=lambda entry: entry[:2])[2]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -110,31 +188,30 @@ class _Answer:
     base: Moves
     spec: ReachSpec
     left_out: tuple[str, ...]
-    search: Search
 
     def at_rest(self, kind: ReachKind, here: Outcomes) -> Reach:
         grade = int(here.grade)
         return Reach(self.spec, kind, {}, (), 0.0, (), self.left_out, float(here.pd), grade, grade, 0, all_tried=False)
 
-    def at(self, kind: ReachKind, point: FloatArray, *, all_tried: bool) -> Reach:
-        levers = self.search.levers
+    def at(self, end: _End, tries: list[_Try]) -> Reach:
+        levers, point = end.search.levers, end.point
         moves = self._moves(levers, point)
         moved = [target for target, flag in zip(moves, levers.moved(point), strict=True) if flag]
         held = self._held(moves, [target for target in moves if target not in moved])
         told = self.evaluate({**self.base, **moves})
         return Reach(
             spec=self.spec,
-            kind=kind,
+            kind=end.kind,
             plan={target: move for target, move in moves.items() if target in moved or target in held},
             held=held,
-            cost=float(levers.costs(point[None])[0]),
+            cost=end.search.cost(point),
             active=tuple(target for target, end in zip(moves, levers.at_end(point), strict=True) if end),
             left_out=self.left_out,
             pd=float(told.pd),
             grade=int(told.grade),
-            best_grade=self.search.best_grade,
-            tried=self.search.tried,
-            all_tried=all_tried,
+            best_grade=min((one.search.best_grade for one in tries if one.search.best_grade >= 0), default=-1),
+            tried=sum(one.search.tried for one in tries),
+            all_tried=all(one.everything for one in tries),
         )
 
     def _moves(self, levers: Levers, point: FloatArray) -> dict[str, Move]:
@@ -143,11 +220,12 @@ class _Answer:
 
     def _held(self, moves: Moves, resting: list[str]) -> tuple[str, ...]:
         """Name the levers at rest without whose marks the score would be another."""
-        whole = float(self.evaluate({**self.base, **moves}).score)
+        whole = self.evaluate({**self.base, **moves})
         kept, held = dict(moves), []
         for target in resting:
             without = {other: move for other, move in kept.items() if other != target}
-            if float(self.evaluate({**self.base, **without}).score) == whole:
+            told = self.evaluate({**self.base, **without})
+            if told.grade == whole.grade and abs(told.score - whole.score) <= _SAME:
                 kept = without
             else:
                 held.append(target)

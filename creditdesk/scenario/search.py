@@ -81,6 +81,14 @@ class Search:
         odds = np.where(known, logit(np.where(known, told.pd, 0.5)), _NO_ODDS)
         return Found(points, odds, told.grade, (told.grade >= 0) & (told.grade <= self._place))
 
+    def scores(self, points: FloatArray, unmarked: int | None = None) -> FloatArray:
+        """Return the scores of points, nil where there is none; with one lever not marked at all."""
+        moves = self.levers.moves({}, points)
+        if unmarked is not None:
+            moves = {key: move for key, move in moves.items() if key != self.levers.levers[unmarked].range.target}
+        self.tried += len(points)
+        return np.nan_to_num(np.broadcast_to(self._evaluate({**self._base, **moves}).score, len(points)))
+
     def pd_reaches(self, found: Found) -> FlagArray:
         """Mark the points whose PD alone would do."""
         return np.asarray(found.odds < self._bound)
@@ -153,32 +161,39 @@ class Search:
 
     # Improving
 
-    def cheapest_of(self, points: FloatArray) -> Progress[FloatArray]:
-        """Return the cheapest point found from points that all reach the grade."""
-        yield from self._loading()
-        screened = yield from self._pulled(self._chosen(points, _SCREENED), _COARSE)
-        best: FloatArray = screened[0]
-        starts = self._chosen(screened, _IMPROVED)
-        for number, start in enumerate(starts):
-            self.share = 0.3 + 0.4 * number / len(starts)
-            programmed = yield from self._programmed(start, cheapest)
-            pulled = yield from self._pulled(np.stack([start, programmed]), _EXACT)
-            best = min([best, *pulled], key=self._cost)
-        for number in range(_ROUNDS):
-            self.share = 0.7 + 0.3 * number / _ROUNDS
-            best = yield from self._programmed(best, cheapest_at_kinks)
-            other = yield from self._exchanged(best)
-            if not self._cost(other) < self._cost(best) * (1 - _GAIN):
-                break
-            best = other
-        return best
+    def screened(self, points: FloatArray) -> Progress[FloatArray]:
+        """Pull points that all reach the grade back towards rest, roughly; the cheapest first."""
+        pulled = yield from self._pulled(self._chosen(points, _SCREENED), _COARSE)
+        return self._chosen(pulled, _SCREENED)
 
-    def _loading(self) -> Progress[None]:
+    def cheapest_of(self, screened: FloatArray) -> Progress[FloatArray]:
+        """Return the cheapest point found from the first of some points that all reach the grade."""
         for _ in load_solvers() if self.levers.smooth.any() else ():
             yield self.share
+        best: FloatArray = screened[0]
+        for start in screened[:_IMPROVED]:
+            programmed = yield from self._programmed(start, cheapest)
+            pulled = yield from self._pulled(np.stack([start, programmed]), _EXACT)
+            best = min([best, *pulled], key=self.cost)
+        for _ in range(_ROUNDS):
+            best = yield from self._programmed(best, cheapest_at_kinks)
+            other = yield from self._exchanged(best)
+            if not self.cost(other) < self.cost(best) * (1 - _GAIN):
+                break
+            best = other
+        return self._tidied(best)
 
-    def _cost(self, point: FloatArray) -> float:
+    def cost(self, point: FloatArray) -> float:
+        """Return the cost of one point."""
         return float(self.levers.costs(point[None])[0])
+
+    def _tidied(self, point: FloatArray) -> FloatArray:
+        """Put levers that are all but at an end, or at rest, right there, if the grade stays."""
+        levers = self.levers
+        ends = np.where(point < levers.start, levers.low, levers.high)
+        tidy = np.where(levers.at_end(point), ends, np.where(levers.moved(point), point, levers.start))
+        found = self.ask(np.stack([point, tidy]))
+        return tidy if found.grade[0] == found.grade[1] else point
 
     def _chosen(self, points: FloatArray, most: int) -> FloatArray:
         """Choose the cheapest points, of each set of levers and steps that is moved the cheapest one before others."""
@@ -285,7 +300,7 @@ class Search:
         coarse = yield from self._stepped(points, (yield from self._nearest(points, targets, _COARSE)))
         first = np.argsort(self.levers.costs(coarse), kind="stable")[:_IMPROVED]
         pulled = yield from self._pulled(coarse[first], _EXACT)
-        return min([point, *pulled], key=self._cost)
+        return min([point, *pulled], key=self.cost)
 
     def _pairs(self, point: FloatArray) -> tuple[FloatArray, FloatArray]:
         """List points with one lever elsewhere and another at an end, and the same with the other at rest.
@@ -306,7 +321,7 @@ class Search:
                 points.append(pulled)
                 targets.append(rested)
         ways = np.concatenate(points), np.concatenate(targets)
-        worth = levers.costs(ways[1]) < self._cost(point) * (1 - _GAIN)
+        worth = levers.costs(ways[1]) < self.cost(point) * (1 - _GAIN)
         return ways[0][worth], ways[1][worth]
 
     def _elsewhere(self, point: FloatArray, number: int) -> FloatArray:

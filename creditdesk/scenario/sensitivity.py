@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.flow.moves import MoveKind, Moves
-from creditdesk.scenario.blocks import Progress, in_blocks, position
+from creditdesk.scenario.blocks import NO_STARTS, Progress, Starts, in_blocks, position
 from creditdesk.scenario.outcomes import Evaluate
 from creditdesk.scenario.specs import Range
 
@@ -32,18 +32,18 @@ class Sensitivity:
 
 
 def sensitivities(
-    evaluate: Evaluate, slope: Slope, base: Moves, ranges: Sequence[Range]
+    evaluate: Evaluate, slope: Slope, base: Moves, ranges: Sequence[Range], starts: Starts = NO_STARTS
 ) -> Progress[tuple[Sensitivity, ...]]:
     """Move one target at a time to both ends of its range, from where ``base`` stands; the largest effect first.
 
-    Ends BY an amount or per cent count from where ``base`` stands; where that is told in another unit, nothing is
-    known of the range.
+    Ends BY an amount or per cent count from where ``base`` stands; where that is not known in their unit, nothing is
+    known of the ends.
     """
     slopes = slope(tuple(one.target for one in ranges))
     start = evaluate(base)
     found = []
     for number, one in enumerate(ranges):
-        told = yield from _ends(evaluate, base, one)
+        told = yield from _ends(evaluate, base, one, starts)
         changes = told - float(start.pd)
         effect = changes[int(np.nanargmax(np.abs(changes)))] if not np.isnan(changes).all() else np.nan
         found.append(Sensitivity(one, slopes[one.target], float(told[0]), float(told[1]), float(effect)))
@@ -51,8 +51,8 @@ def sensitivities(
     return tuple(sorted(found, key=lambda one: (np.isnan(one.effect), -abs(one.effect), one.along.target)))
 
 
-def _ends(evaluate: Evaluate, base: Moves, one: Range) -> Progress[FloatArray]:
-    start = position(base, one) if one.kind.relative else 0.0
+def _ends(evaluate: Evaluate, base: Moves, one: Range, starts: Starts) -> Progress[FloatArray]:
+    start = position(base, one, starts) if one.kind.relative else 0.0
     if np.isnan(start):
         return np.full(2, np.nan)
     ends = start + np.array([one.low, one.high])

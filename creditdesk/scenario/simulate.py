@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from creditdesk.base.numbers import normal_cdf, normal_quantile
 from creditdesk.flow.moves import MoveKind, Moves
-from creditdesk.scenario.blocks import BLOCK, Progress, position, with_positions
+from creditdesk.scenario.blocks import BLOCK, NO_STARTS, Progress, Starts, position, with_positions
 from creditdesk.scenario.outcomes import COEFFICIENTS, Evaluate
 from creditdesk.scenario.specs import Correlation, Shape, SimulationSpec, UncertainInput
 
@@ -45,22 +45,22 @@ class Spread:
     scores: FloatArray
 
 
-def simulate(evaluate: Evaluate, base: Moves, spec: SimulationSpec) -> Progress[Spread]:
+def simulate(evaluate: Evaluate, base: Moves, spec: SimulationSpec, starts: Starts = NO_STARTS) -> Progress[Spread]:
     """Draw inputs and coefficients ``spec.draws`` times, each draw through flow and house rules.
 
-    The range of an input, BY an amount or per cent, counts from where ``base`` stands; where that is told in another
-    unit, the input takes its place. The same specification gives the same draws, in blocks of any size: one stream from
+    The range of an input, BY an amount or per cent, counts from where ``base`` stands; where that is not known in
+    its unit, from the ink. The same specification gives the same draws, in blocks of any size: one stream from
     ``spec.seed``, read draw by draw.
     """
     stream = np.random.Generator(np.random.PCG64(spec.seed))
     factor = correlation_factor(spec.inputs, spec.correlations)
-    starts = np.array([start_of(base, one) for one in spec.inputs])
+    begin = np.array([_start(base, one, starts) for one in spec.inputs])
     pds: FloatArray = np.empty(spec.draws)
     scores: FloatArray = np.empty(spec.draws)
     places = np.empty(spec.draws, dtype=np.int64)
     for start in range(0, spec.draws, BLOCK):
         count = min(BLOCK, spec.draws - start)
-        positions = _drawn(stream, (factor, starts), spec, count)
+        positions = _drawn(stream, (factor, begin), spec, count)
         told = evaluate(with_positions(base, positions))
         part = slice(start, start + count)
         pds[part], scores[part], places[part] = told.pd, told.score, told.grade
@@ -93,9 +93,9 @@ def position_of(one: UncertainInput, score: FloatArray) -> FloatArray:
     return np.asarray(100.0 * np.expm1((lower + upper) / 2 + (upper - lower) / 2 / reach * score))
 
 
-def start_of(base: Moves, one: UncertainInput) -> float:
+def _start(base: Moves, one: UncertainInput, starts: Starts) -> float:
     """Return from where the range of an input counts: where ``base`` stands in its unit, else 0."""
-    start = position(base, one.range) if one.range.kind.relative else 0.0
+    start = position(base, one.range, starts) if one.range.kind.relative else 0.0
     return 0.0 if np.isnan(start) else start
 
 
@@ -103,12 +103,12 @@ def _drawn(
     stream: np.random.Generator, laid: tuple[FloatArray, FloatArray], spec: SimulationSpec, count: int
 ) -> dict[str, tuple[MoveKind, FloatArray]]:
     """Draw the positions of the inputs; sums are taken term by term, so that they do not depend on the block."""
-    factor, starts = laid
+    factor, begin = laid
     scores = stream.standard_normal((count, len(spec.inputs) + spec.coefficients))
     positions = {}
     for number, one in enumerate(spec.inputs):
         moved = sum((factor[number, other] * scores[:, other] for other in range(number + 1)), np.zeros(count))
-        positions[one.range.target] = (one.range.kind, starts[number] + position_of(one, moved))
+        positions[one.range.target] = (one.range.kind, begin[number] + position_of(one, moved))
     return {**positions, COEFFICIENTS: (MoveKind.BY, scores[:, -1])} if spec.coefficients else positions
 
 
