@@ -4,17 +4,33 @@ from collections.abc import Sequence
 
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QKeyEvent, QKeySequence, QShortcut
-from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QPushButton, QStackedWidget, QVBoxLayout, QWidget
+from PySide6.QtWidgets import (
+    QButtonGroup,
+    QHBoxLayout,
+    QProgressBar,
+    QPushButton,
+    QSplitter,
+    QStackedWidget,
+    QVBoxLayout,
+    QWidget,
+)
 
 from creditdesk.base.palette import Palette
 from creditdesk.desk.fields import set_role
 from creditdesk.desk.pencil.draft import PencilDraft
+from creditdesk.desk.pencil.study_breakeven import BreakEvenPage
 from creditdesk.desk.pencil.study_grid import GridPage
 from creditdesk.desk.pencil.study_page import StudyPage
 from creditdesk.desk.session import Session
 
 _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
 _RUN_KEYS = "Ctrl+Return"
+_RUN, _STOP = "Run", "Stop"
+_LARGER, _USUAL = "Larger", "Smaller"
+_LOW = 250
+"""Height in pixels in which every study can be read."""
+_USUAL_SHARE = 0.4
+"""Of the height, as the studies have it beside the table at first."""
 
 
 class _Name(QPushButton):
@@ -46,6 +62,7 @@ class StudiesPanel(QWidget):
         self._pages: dict[type[StudyPage], StudyPage] = {}
         self.names: list[QPushButton] = []
         self.stack = QStackedWidget()
+        self.run_button, self.progress, self.size_button = QPushButton(_RUN), QProgressBar(), QPushButton(_LARGER)
         self.setAccessibleName("Studies")
         self._lay_out()
         QShortcut(
@@ -58,6 +75,7 @@ class StudiesPanel(QWidget):
     def show_draft(self) -> None:
         """Show the draft as it stands; pages that are not in sight follow when they are."""
         self.page.show_draft()
+        self._show_running()
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""
@@ -93,7 +111,19 @@ class StudiesPanel(QWidget):
 
     def run_or_stop(self) -> None:
         """Begin the study laid open, or stop it."""
-        self.page.run_or_stop()
+        if self.draft.board is not None:
+            self.page.run_or_stop()
+
+    def turn_size(self) -> None:
+        """Give the studies most of the room, or the table again."""
+        split = self.parentWidget()
+        table = split.widget(0) if isinstance(split, QSplitter) else None
+        if isinstance(split, QSplitter) and table is not None:
+            larger = self.size_button.text() == _LARGER
+            whole = sum(split.sizes())
+            own = whole - table.minimumSizeHint().height() if larger else round(whole * _USUAL_SHARE)
+            split.setSizes([whole - own, own])
+            self.size_button.setText(_USUAL if larger else _LARGER)
 
     def _walk(self, number: int, step: int) -> None:
         to = min(max(number + step, 0), len(KINDS) - 1)
@@ -104,11 +134,22 @@ class StudiesPanel(QWidget):
         if kind not in self._pages:
             page = kind(self.draft)
             page.fault.connect(self.fault)
+            page.runner.changed.connect(self._show_running)
+            page.runner.progressed.connect(self.progress.setValue)
             if self._palette is not None:
                 page.recolour(self._palette)
             self._pages[kind] = page
             self.stack.addWidget(page)
         self.stack.setCurrentWidget(self._pages[kind])
+        self._show_running()
+
+    def _show_running(self) -> None:
+        running = self.page.runner.running
+        self.run_button.setText(_STOP if running else _RUN)
+        self.run_button.setEnabled(self.draft.board is not None)
+        self.progress.setVisible(running)
+        if not running:
+            self.progress.setValue(0)
 
     def _lay_out(self) -> None:
         row, group = QHBoxLayout(), QButtonGroup(self)
@@ -125,13 +166,32 @@ class StudiesPanel(QWidget):
             row.addWidget(name)
             self.names.append(name)
         self.names[0].setChecked(True)
-        row.addStretch(1)
+        row.addSpacing(10)
+        row.addWidget(self.progress, 1)
+        row.addStretch(0)
+        for button, words, do in (
+            (self.size_button, "Give the studies more room, or the table", self.turn_size),
+            (self.run_button, f"Run the study, or stop it ({_RUN_KEYS})", self.run_or_stop),
+        ):
+            set_role(button, "small")
+            button.setToolTip(words)
+            button.clicked.connect(do)
+            row.addWidget(button)
+        self.run_button.setAccessibleName("Run the study, or stop it")
+        self.progress.setAccessibleName("How far the study is")
+        self.progress.setTextVisible(False)
+        self.progress.setFixedHeight(8)
+        keep = self.progress.sizePolicy()
+        keep.setRetainSizeWhenHidden(True)
+        self.progress.setSizePolicy(keep)
+        self.progress.hide()
         box = QVBoxLayout(self)
         box.setContentsMargins(0, 4, 0, 0)
         box.setSpacing(2)
         box.addLayout(row)
         box.addWidget(self.stack, 1)
+        self.setMinimumHeight(_LOW)
 
 
-KINDS: Sequence[type[StudyPage]] = (GridPage,)
+KINDS: Sequence[type[StudyPage]] = (GridPage, BreakEvenPage)
 """The studies in the order of their names."""

@@ -1,9 +1,10 @@
 """The small forms in front of the studies: what moves, from where to where, how many, which ones."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QGridLayout, QLabel, QSizePolicy, QTableWidget, QTableWidgetItem, QWidget
+from PySide6.QtGui import QKeyEvent
+from PySide6.QtWidgets import QGridLayout, QHeaderView, QLabel, QSizePolicy, QTableWidget, QTableWidgetItem, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.desk.blockactions import usual_mark
@@ -16,6 +17,7 @@ from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.specs import Range
 
 _NUMBER_WIDTH = 66
+_TABLE_LOW = 120
 _BROAD = 20.0
 """Per cent, or units, to either side where no house states a usual range."""
 
@@ -94,14 +96,14 @@ class RangeForm(QWidget):
     changed = Signal()
     faulted = Signal(str)
 
-    def __init__(self, title: str) -> None:
+    def __init__(self, title: str, *, wide: bool = False) -> None:
         super().__init__()
         self.target, self.kind = Choice(title, 14), Choice(f"{title}: how it is told", 4)
         self.low = NumberField(f"{title}: from", lambda text: self._read(text))
         self.high = NumberField(f"{title}: to", lambda text: self._read(text))
         self.unit = label("second")
         self._targets: TargetBook | None = None
-        self._lay_out(title)
+        self._lay_out(title, wide=wide)
         self.target.changed.connect(self._on_target)
         self.kind.changed.connect(self._on_kind)
         for field in (self.low, self.high):
@@ -156,7 +158,7 @@ class RangeForm(QWidget):
             self.put(usual_range(self._targets, self._target, self.kind.value))
             self.changed.emit()
 
-    def _lay_out(self, title: str) -> None:
+    def _lay_out(self, title: str, *, wide: bool) -> None:
         grid = QGridLayout(self)
         grid.setContentsMargins(0, 0, 0, 0)
         grid.setHorizontalSpacing(5)
@@ -164,10 +166,11 @@ class RangeForm(QWidget):
         name = label("second", title)
         name.setBuddy(self.target)
         grid.addWidget(name, 0, 0)
-        grid.addWidget(self.target, 0, 1, 1, 4)
+        grid.addWidget(self.target, 0, 1, 1, 1 if wide else 4)
+        row, first = (0, 2) if wide else (1, 0)
         for column, widget in enumerate((self.kind, self.low, label("second", "to"), self.high, self.unit)):
-            grid.addWidget(widget, 1, column)
-        grid.setColumnStretch(5, 1)
+            grid.addWidget(widget, row, first + column)
+        grid.setColumnStretch(first + 5, 1)
         for choice in (self.target, self.kind):
             choice.setSizePolicy(QSizePolicy.Policy.Preferred, QSizePolicy.Policy.Fixed)
 
@@ -191,10 +194,13 @@ def usual_range(targets: TargetBook, target: Target, kind: MoveKind | None = Non
 
 
 class FormTable(QTableWidget):
-    """Hold rows with ticks and numbers; cells that can be typed in stand out by their pen. ``touched``: one changed."""
+    """Hold rows with ticks, numbers that can be typed, and answers; names of its columns are ``heads``.
+
+    ``touched``: a tick or a number is another one; ``opened``: Enter or a click on a cell that leads somewhere.
+    """
 
     touched = Signal(int, int)
-    opened = Signal(int)
+    opened = Signal(int, int)
 
     def __init__(self, name: str, heads: Sequence[str]) -> None:
         super().__init__(0, len(heads))
@@ -207,11 +213,19 @@ class FormTable(QTableWidget):
         self.setShowGrid(False)
         self.setWordWrap(False)
         self.setTabKeyNavigation(False)
+        self.setMinimumHeight(_TABLE_LOW)
         self.setVerticalScrollMode(QTableWidget.ScrollMode.ScrollPerPixel)
         self.setHorizontalScrollMode(QTableWidget.ScrollMode.ScrollPerPixel)
         self._filling = False
         self.itemChanged.connect(self._on_changed)
-        self.itemActivated.connect(lambda item: self.opened.emit(item.row()))
+        self.cellClicked.connect(self._on_clicked)
+
+    def share_width(self, widths: Mapping[int, int], stretched: Sequence[int]) -> None:
+        """Give columns fixed ``widths`` in pixels; those ``stretched`` share the rest."""
+        for column, width in widths.items():
+            self.setColumnWidth(column, width)
+        for column in stretched:
+            self.horizontalHeader().setSectionResizeMode(column, QHeaderView.ResizeMode.Stretch)
 
     def fill(self, rows: Sequence[Sequence[QTableWidgetItem]]) -> None:
         """Show other rows; the cursor stays in its place as far as there are rows."""
@@ -243,24 +257,49 @@ class FormTable(QTableWidget):
             item.setText(words)
         self._filling = False
 
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Take Enter for a click, unless the cell is one to type in; hand Tab on to the next field."""
+        if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter) and not event.modifiers():
+            self._on_clicked(self.currentRow(), self.currentColumn())
+        else:
+            super().keyPressEvent(event)
+
+    def _on_clicked(self, row: int, column: int) -> None:
+        item = self.item(row, column)
+        if item is not None and item.font().underline():
+            self.opened.emit(row, column)
+
     def _on_changed(self, item: QTableWidgetItem) -> None:
         if not self._filling:
             self.touched.emit(item.row(), item.column())
 
 
-def cell(
-    words: str, *, right: bool = False, tick: bool | None = None, typed: bool = False, tip: str = ""
-) -> QTableWidgetItem:
-    """Make one cell: read only unless ``typed``, with a tick where ``tick`` is not None."""
+def cell(words: str, tip: str = "", *, right: bool = False, leads: bool = False) -> QTableWidgetItem:
+    """Make a cell that is read; underlined where it ``leads`` somewhere."""
     item = QTableWidgetItem(words)
-    flags = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
-    if tick is not None:
-        flags |= Qt.ItemFlag.ItemIsUserCheckable
-        item.setCheckState(Qt.CheckState.Checked if tick else Qt.CheckState.Unchecked)
-    item.setFlags(flags | Qt.ItemFlag.ItemIsEditable if typed else flags)
+    item.setFlags(Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable)
     side = Qt.AlignmentFlag.AlignRight if right else Qt.AlignmentFlag.AlignLeft
     item.setTextAlignment(side | Qt.AlignmentFlag.AlignVCenter)
-    item.setToolTip(tip)
+    item.setToolTip(tip or words)
+    if leads:
+        font = item.font()
+        font.setUnderline(True)
+        item.setFont(font)
+    return item
+
+
+def tick_cell(words: str, tip: str = "", *, ticked: bool) -> QTableWidgetItem:
+    """Make a cell with a tick."""
+    item = cell(words, tip)
+    item.setFlags(item.flags() | Qt.ItemFlag.ItemIsUserCheckable)
+    item.setCheckState(Qt.CheckState.Checked if ticked else Qt.CheckState.Unchecked)
+    return item
+
+
+def typed_cell(words: str, tip: str = "") -> QTableWidgetItem:
+    """Make a cell that is typed in."""
+    item = cell(words, tip, right=True)
+    item.setFlags(item.flags() | Qt.ItemFlag.ItemIsEditable)
     return item
 
 

@@ -10,7 +10,7 @@ from creditdesk.base.palette import Palette
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_canvases import StudyChart, grid_chart
 from creditdesk.desk.pencil.study_forms import RangeForm
-from creditdesk.desk.pencil.study_marks import found_mark, ink_at, pencil_at, put_marks
+from creditdesk.desk.pencil.study_marks import found_mark, put_marks, stands_at
 from creditdesk.desk.pencil.study_page import Asked, KeptPage
 from creditdesk.desk.pencil.study_words import position_words
 from creditdesk.scenario.grid import Grid
@@ -109,9 +109,8 @@ def grid_picture(draft: PencilDraft, asked: Asked, found: Grid) -> "GridPicture"
     house, spec = draft.session.house, found.spec
     marked = {mark.target for mark in asked.scenario.marks} if asked.scenario is not None else set[str]()
     moved = marked - {spec.across.target, spec.up.target}
-    ink = (ink_at(draft, spec.across), ink_at(draft, spec.up))
-    pencil = (pencil_at(draft, spec.across), pencil_at(draft, spec.up))
-    held = draft.recorded is not None
+    recorded = draft.recorded
+    ink, pencil = ((stands_at(draft, spec.across, one), stands_at(draft, spec.up, one)) for one in (None, recorded))
     grades = house.scale.keys
     return GridPicture(
         grid=found,
@@ -119,7 +118,7 @@ def grid_picture(draft: PencilDraft, asked: Asked, found: Grid) -> "GridPicture"
         up=_axis(draft, spec.up),
         grades=grades,
         upper=[house.scale.upper(key) for key in grades],
-        dots=(_known(ink) if not moved else None, _known(pencil) if held else None),
+        dots=(_known(ink) if not moved else None, _known(pencil) if recorded is not None else None),
     )
 
 

@@ -25,7 +25,9 @@ class Keeper(QWidget):
     wanted = Signal(object)
     fault = Signal(str)
 
-    def __init__(self, draft: PencilDraft, kind: type, question: Callable[[], StudySpec]) -> None:
+    def __init__(
+        self, draft: PencilDraft, kind: type, question: Callable[[], StudySpec], *, wide: bool = False
+    ) -> None:
         super().__init__()
         self._draft, self._kind, self._question = draft, kind, question
         self._at = _NEW
@@ -36,7 +38,7 @@ class Keeper(QWidget):
         self.in_memo.setToolTip("Keep the study in the case and print it in the memo")
         for button in (self.keep, self.remove):
             set_role(button, "small")
-        self._lay_out()
+        self._lay_out(wide=wide)
         self.kept.changed.connect(self._on_chosen)
         self.keep.clicked.connect(lambda: self._put(in_memo=self.in_memo.isChecked()))
         self.in_memo.clicked.connect(lambda wanted: self._put(in_memo=wanted))
@@ -110,14 +112,14 @@ class Keeper(QWidget):
             self.wanted.emit(self.chosen)
         self.show_state()
 
-    def _lay_out(self) -> None:
+    def _lay_out(self, *, wide: bool) -> None:
         box = QVBoxLayout(self)
         box.setContentsMargins(0, 0, 0, 0)
         box.setSpacing(4)
-        rows = (self.kept, self.remove), (self.keep, self.in_memo)
-        for widgets in rows:
+        lines = ((self.keep, self.in_memo), (self.kept, self.remove))
+        for widgets in ((*lines[0], *lines[1]),) if wide else lines:
             row = QHBoxLayout()
-            row.setSpacing(6)
+            row.setSpacing(8)
             for widget in widgets:
                 row.addWidget(widget)
             row.addStretch(1)

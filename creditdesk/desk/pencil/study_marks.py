@@ -4,13 +4,11 @@ import math
 from collections.abc import Sequence
 
 from creditdesk.case.pencil_commands import SetMarks
-from creditdesk.case.studies import in_units_of
+from creditdesk.case.studies import starts_of
 from creditdesk.desk.pencil.draft import INK, PencilDraft
-from creditdesk.desk.pencil.targets import TargetKind
 from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.flow.moves import MoveKind
-from creditdesk.scenario.blocks import position
-from creditdesk.scenario.marks import Mark, Scenario, moves_of
+from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.specs import Range
 
 _DIGITS = 10
@@ -36,24 +34,9 @@ def marks_named(draft: PencilDraft, marks: Sequence[Mark]) -> list[str]:
     return [f"{target.label} {mark_words(mark, target)}" for mark, target in found if target is not None]
 
 
-def ink_at(draft: PencilDraft, along: Range) -> float:
-    """Return where the ink stands in a range; nan where it has no value there."""
-    target = draft.targets.find(along.target)
-    if along.kind.relative or target is None or target.kind is TargetKind.DRIVER:
-        return 0.0
+def stands_at(draft: PencilDraft, along: Range, scenario: Scenario | None) -> float:
+    """Return where a scenario, None for the ink, stands in a range; nan where its unit does not tell."""
     board = draft.board
     if board is None:
         return math.nan
-    ink = board.ink
-    if target.kind is TargetKind.LINE:
-        return float(ink.statements.row(along.target)[ink.period_index])
-    return ink.ratios.value(along.target, ink.period_index)
-
-
-def pencil_at(draft: PencilDraft, along: Range) -> float:
-    """Return where the scenario at hand stands in a range; nan where the figures do not tell it in that unit."""
-    recorded, board = draft.recorded, draft.board
-    marks = recorded.marks if recorded is not None else ()
-    if board is None or along.target not in {mark.target for mark in marks}:
-        return ink_at(draft, along)
-    return position(in_units_of(board, draft.session.house, moves_of(marks), (along,)), along)
+    return starts_of(board, draft.session.house, scenario or Scenario(INK), (along,)).get(along.target, math.nan)

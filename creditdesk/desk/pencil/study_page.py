@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any, Generic, TypeVar
 
 import msgspec
 from PySide6.QtCore import QEvent, Qt, Signal
-from PySide6.QtWidgets import QFrame, QHBoxLayout, QProgressBar, QPushButton, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QBoxLayout, QFrame, QHBoxLayout, QScrollArea, QVBoxLayout, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import LIGHT, Palette
@@ -29,7 +29,6 @@ if TYPE_CHECKING:
 
 Spec = TypeVar("Spec", bound=StudySpec)
 
-_RUN, _STOP = "Run", "Stop"
 STALE = "▲ Of earlier figures, marks or questions: run again."
 """Stands over an answer to another question than the one at hand."""
 
@@ -63,12 +62,14 @@ class Asked:
 class StudyPage(QWidget):
     """Show one study of the draft's scenario; what kind of study, its form and its answer are a page's own.
 
-    ``fault``: a sentence for the status line. ``title``: its name in the row; ``hint``: what it answers.
+    ``fault``: a sentence for the status line. ``title``: its name in the row; ``hint``: what it answers. ``stacked``:
+    the form stands over the answer, in one line, and not beside it.
     """
 
     fault = Signal(str)
     title = ""
     hint = ""
+    stacked = False
 
     def __init__(self, draft: PencilDraft) -> None:
         super().__init__()
@@ -76,15 +77,14 @@ class StudyPage(QWidget):
         self.palette_shown: Palette = LIGHT
         self.runner = StudyRunner(self)
         self.note = label("second", wrap=True)
-        self.run_button, self.progress = QPushButton(_RUN), QProgressBar()
-        self.form, self.answer = QVBoxLayout(), QVBoxLayout()
+        way = QBoxLayout.Direction
+        self.form = QBoxLayout(way.LeftToRight if self.stacked else way.TopToBottom)
+        self.foot, self.answer = QVBoxLayout(), QVBoxLayout()
         self.answered: Asked | None = None
         self._asked: Asked | None = None
         self._targets: TargetBook | None = None
         self._lay_out()
-        self.run_button.clicked.connect(self.run_or_stop)
-        self.runner.changed.connect(self._show_running)
-        self.runner.progressed.connect(self.progress.setValue)
+        self.runner.changed.connect(self.show_age)
         self.runner.done.connect(self._on_done)
         self.runner.refused.connect(lambda words: note(self.note, f"▲ {words}", "caution"))
 
@@ -140,7 +140,6 @@ class StudyPage(QWidget):
         if self._targets is not self.draft.targets:
             self._targets = self.draft.targets
             self.offer()
-        self.run_button.setEnabled(self.draft.board is not None)
         self.show_age()
 
     def show_age(self) -> None:
@@ -180,49 +179,35 @@ class StudyPage(QWidget):
             self.show_answer(self._asked, result)
             self.show_age()
 
-    def _show_running(self) -> None:
-        running = self.runner.running
-        self.run_button.setText(_STOP if running else _RUN)
-        self.progress.setValue(0)
-        self.progress.setVisible(running)
-
     # Making
 
     def _lay_out(self) -> None:
-        self.run_button.setAccessibleName(f"Run or stop: {self.title}")
-        self.run_button.setToolTip(f"{self.hint} Ctrl+Return runs and stops.")
-        self.progress.setAccessibleName("How far the study is")
-        self.progress.setTextVisible(False)
-        self.progress.setFixedHeight(8)
-        self.progress.hide()
-        inside = QWidget()
-        column = QVBoxLayout(inside)
-        column.setContentsMargins(0, 0, 8, 0)
-        column.setSpacing(5)
-        self.form.setSpacing(5)
-        column.addLayout(self.form)
-        column.addLayout(self._foot())
-        column.addStretch(1)
-        self.side = Side(inside)
+        self.form.setSpacing(6 if self.stacked else 5)
         right = QVBoxLayout()
         right.setSpacing(3)
+        if self.stacked:
+            right.addLayout(self.form)
         right.addWidget(self.note)
         right.addLayout(self.answer, 1)
         row = QHBoxLayout(self)
         row.setContentsMargins(0, 4, 0, 0)
         row.setSpacing(12)
-        row.addWidget(self.side)
+        if self.stacked:
+            right.addLayout(self.foot)
+        else:
+            row.addWidget(self._side())
         row.addLayout(right, 1)
 
-    def _foot(self) -> QVBoxLayout:
-        """Lay out run and progress; pages that keep studies add to it."""
-        self.foot = QVBoxLayout()
-        row = QHBoxLayout()
-        row.addWidget(self.run_button)
-        row.addWidget(self.progress, 1)
-        row.addStretch(0)
-        self.foot.addLayout(row)
-        return self.foot
+    def _side(self) -> QWidget:
+        """Stack the form at the left."""
+        inside = QWidget()
+        column = QVBoxLayout(inside)
+        column.setContentsMargins(0, 0, 8, 0)
+        column.setSpacing(5)
+        column.addLayout(self.form)
+        column.addLayout(self.foot)
+        column.addStretch(1)
+        return Side(inside)
 
 
 class KeptPage(StudyPage, Generic[Spec]):
@@ -232,7 +217,7 @@ class KeptPage(StudyPage, Generic[Spec]):
 
     def __init__(self, draft: PencilDraft) -> None:
         super().__init__(draft)
-        self.keeper = Keeper(draft, self.kind, self.question)
+        self.keeper = Keeper(draft, self.kind, self.question, wide=self.stacked)
         self.foot.addWidget(self.keeper)
         self.keeper.wanted.connect(self._on_wanted)
         self.keeper.fault.connect(self.fault)
