@@ -9,11 +9,11 @@ import msgspec
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.numbers import round_for_comparison
+from creditdesk.case.amounts import amount_of, driver_change
 from creditdesk.case.document import Case
 from creditdesk.case.pencil import PencilBoard, Pencilled
-from creditdesk.case.standing import Standing
 from creditdesk.case.wire import case_digest
-from creditdesk.flow.book import DRIVERS, OPERATING_RESULT
+from creditdesk.flow.book import DRIVERS
 from creditdesk.flow.moves import Move, MoveKind
 from creditdesk.grading.rules import Effect, HouseRule
 from creditdesk.grading.scale import NO_GRADE
@@ -138,14 +138,14 @@ def starts_of(board: PencilBoard, house: HouseBook, scenario: Scenario, ranges: 
     moves, after = moves_of(scenario.marks), board.scenario(scenario).standing
     found = {}
     for one in ranges:
-        ink, move = _value(board.ink, house, one.target), moves.get(one.target)
+        move = moves.get(one.target)
         if move is not None and move.kind is one.kind:
             found[one.target] = float(move.amount)
         elif one.target in DRIVERS:
-            change = 0.0 if move is None else _driven(move, ink)
-            found[one.target] = _told_in(one.kind, change, change, ink)
+            found[one.target] = _driven(board, house, one, move)
         else:
-            value = _value(after, house, one.target) if move is None else float(move.moved(ink))
+            ink = amount_of(board.ink, one.target)
+            value = amount_of(after, one.target) if move is None else float(move.moved(ink))
             found[one.target] = _told_in(one.kind, value, value - ink, ink)
     return {target: start for target, start in found.items() if isfinite(start)}
 
@@ -174,20 +174,12 @@ def _figures(board: PencilBoard, house: HouseBook) -> list[str]:
     return [*(key for key, amount in amounts.items() if amount and not isnan(amount)), *dict.fromkeys(ratios)]
 
 
-def _value(standing: Standing, house: HouseBook, target: str) -> float:
-    """Return what a target stands at, nan where that is not known; the operating result is EBITDA."""
-    period = standing.period_index
-    if target == OPERATING_RESULT and house.flow is not None:
-        return float(standing.statements.row(house.flow.roles.ebitda)[period])
-    if target in standing.statements.index:
-        return float(standing.statements.row(target)[period])
-    return standing.ratios.value(target, period) if target in standing.ratios.index else nan
-
-
-def _driven(move: Move, ink: float) -> float:
-    """Return what a driver is moved by, in its own unit."""
-    amount = float(move.amount)
-    return abs(ink) * amount / 100.0 if move.kind is MoveKind.BY_PCT else amount
+def _driven(board: PencilBoard, house: HouseBook, one: Range, move: Move | None) -> float:
+    """Say how far a driver is moved in the unit of a range; only that of the operating result has per cent."""
+    if move is None or house.flow is None:
+        return 0.0
+    change = driver_change(board.ink, house.flow.roles, move)
+    return _told_in(one.kind, change, change, amount_of(board.ink, house.flow.roles.ebitda))
 
 
 def _told_in(kind: MoveKind, value: float, change: float, ink: float) -> float:
