@@ -142,11 +142,7 @@ class CaseView(QObject):
         self._offer_revert()
 
     def _show_front(self) -> None:
-        window = self._window
-        untouched = window.focusWidget() in (None, window.stack.front)
-        window.stack.bring_up(window.stack.current_name)
-        if untouched:
-            window.focus_front()
+        self._window.stack.bring_up(self._window.stack.current_name)
         self._soon(self._fetch_charts)
 
     def _makers(self) -> "Mapping[str, Callable[[], Sheet]]":

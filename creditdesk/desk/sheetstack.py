@@ -85,9 +85,12 @@ class SheetStack(QStackedWidget):
             sheet = self._made[name] = self._makers[name]()
             number = self._names.index(name)
             place = self._places[number]
+            waited = self.window().focusWidget() is place
             self.insertWidget(number, sheet)
             if self.currentWidget() is place:
                 self.setCurrentWidget(sheet)
+            if waited:
+                sheet.setFocus()
             self.removeWidget(place)
             place.deleteLater()
             self.made.emit(sheet)

@@ -14,6 +14,8 @@ from creditdesk.case.trail import utc_now
 from creditdesk.cli.main import main
 from creditdesk.desk import app
 from creditdesk.desk.app import Desk, make_application
+from creditdesk.desk.frame import SHEETS
+from creditdesk.desk.frame import SHEETS
 from creditdesk.desk.opening import new_session, open_session
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
@@ -155,7 +157,7 @@ def test_the_frame_says_what_is_opened_and_stands_where_it_stays(qtbot: QtBot, d
         (window,) = desk.windows
     assert window.windowTitle().startswith(SOUND.name)
     assert window.header.obligor.accessibleName() == SOUND.name
-    assert [place.words.text() for place in window.stack._places] == [f"Opening {SOUND.name}…"] * 4
+    assert [place.words.text() for place in window.stack._places] == [f"Opening {SOUND.name}…"] * len(SHEETS)
     frame = _places(window)
     qtbot.waitUntil(lambda: window.settled, timeout=20_000)
     assert _places(window) == frame
