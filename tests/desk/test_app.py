@@ -15,7 +15,6 @@ from creditdesk.cli.main import main
 from creditdesk.desk import app
 from creditdesk.desk.app import Desk, make_application
 from creditdesk.desk.frame import SHEETS
-from creditdesk.desk.frame import SHEETS
 from creditdesk.desk.opening import new_session, open_session
 from creditdesk.desk.window import Window
 from creditdesk.house.book import HouseBook
