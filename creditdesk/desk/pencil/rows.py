@@ -102,7 +102,7 @@ class PencilFacts:
         yield from self._statement_rows(figures_only=False)
         catalogue = self.house.catalogue
         for group in catalogue.groups:
-            keys = [spec.key for spec in catalogue.specs if spec.group == group.key]
+            keys = [spec.key for spec in catalogue.specs if spec.group == group.key and spec.key not in self._labels]
             yield from self._rows_of(group.label, keys)
 
     def _statement_rows(self, *, figures_only: bool, wanted: frozenset[str] | None = None) -> Iterator[Row]:
@@ -119,9 +119,14 @@ class PencilFacts:
 
     def _wanted(self) -> frozenset[str]:
         """Name lines and sums that are marked or move, or are usually marked first."""
-        roles = self.house.flow.roles if self.house.flow is not None else None
-        usual = (roles.revenue, roles.finance_costs, roles.income_tax, roles.cash) if roles is not None else ()
-        return frozenset((*self._steps, *self.marks, *self.targets.offered(), *usual, *_SUMS))
+        return frozenset((*self._steps, *self.marks, *self.targets.offered(), *self._usual(), *_SUMS))
+
+    def _usual(self) -> Iterator[str]:
+        """Name the lines through which most marks run."""
+        flow = self.house.flow
+        if flow is not None:
+            yield from (flow.roles.revenue, flow.roles.finance_costs, flow.roles.income_tax, flow.roles.cash)
+            yield from (*flow.costs, *(follower.line for follower in flow.followers))
 
     def _targets_rows(self, title: str, kind: TargetKind) -> Iterator[Row]:
         yield from self._rows_of(title, [target.key for target in self.targets.of(kind)])

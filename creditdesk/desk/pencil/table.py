@@ -8,6 +8,7 @@ from creditdesk.case.words import period_heads, unit_words
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.rows import AS_INK, Cell, PencilFacts, Row, View
 from creditdesk.desk.pencil.typed import write_mark
+from creditdesk.desk.tables.runs import runs
 from creditdesk.desk.tables.typed import Index
 
 COLUMNS = LABEL, INK, PENCIL, CHANGE, WHY = range(5)
@@ -50,20 +51,34 @@ class PencilModel(QAbstractTableModel):
         self._facts = PencilFacts(session.house, session.standing, draft.targets, draft.pencilled)
         self._cells.clear()
         rows = self._facts.rows(self.view)
-        if draft.sketching is not None and not set(rows) - set(self._rows):
-            rows = self._rows
-        if rows != self._rows:
-            self.beginResetModel()
-            self._rows = rows
-            self.endResetModel()
-        elif rows:
-            self.dataChanged.emit(self.index(0, INK), self.index(len(rows) - 1, WHY))
+        if draft.sketching is None or not set(rows) <= set(self._rows):
+            self._follow(rows)
+        if self._rows:
+            self.dataChanged.emit(self.index(0, INK), self.index(len(self._rows) - 1, WHY))
 
     def choose(self, view: View) -> None:
         """List something else of the same draft."""
         self.view = view
         if self._facts is not None:
-            self.show_draft()
+            self.beginResetModel()
+            self._rows = self._facts.rows(view)
+            self.endResetModel()
+
+    def _follow(self, rows: tuple[Row, ...]) -> None:
+        """Take out rows no longer wanted and put in what is new, so that an open editor and the cursor stay."""
+        wanted, present = set(rows), set(self._rows)
+        for first, last in reversed(list(runs(self._rows, present - wanted))):
+            self.beginRemoveRows(QModelIndex(), first, last)
+            self._rows = self._rows[:first] + self._rows[last + 1 :]
+            self.endRemoveRows()
+        for first, last in runs(rows, wanted - present):
+            self.beginInsertRows(QModelIndex(), first, last)
+            self._rows = self._rows[:first] + rows[first : last + 1] + self._rows[first:]
+            self.endInsertRows()
+        if self._rows != rows:  # the same rows in another order
+            self.beginResetModel()
+            self._rows = rows
+            self.endResetModel()
 
     def place(self, key: str) -> QModelIndex:
         """Return the pencil cell of a row; an invalid index where it is not shown."""
@@ -139,8 +154,10 @@ class PencilModel(QAbstractTableModel):
         return (row.label, cell.ink, cell.pencil, cell.change, cell.why)[column]
 
     def _typed(self, row: Row) -> str:
-        """Return a mark as it may be typed again; what only follows begins blank."""
-        mark, target = self.facts.marks.get(row.key), self._draft.targets.find(row.key)
+        """Return the mark that is kept as it may be typed again; what only follows, or is only tried, begins blank."""
+        recorded, target = self._draft.recorded, self._draft.targets.find(row.key)
+        marks = recorded.marks if recorded is not None else ()
+        mark = next((one for one in marks if one.target == row.key), None)
         return write_mark(mark, target) if mark is not None and target is not None else ""
 
     def _tip(self, row: Row, column: int) -> str | None:

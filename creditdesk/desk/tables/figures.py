@@ -12,6 +12,7 @@ from creditdesk.case.standing import Standing
 from creditdesk.case.words import basis_words, unit_words
 from creditdesk.desk.tables.cells import MARKS, Cell, Facts, gravest
 from creditdesk.desk.tables.rows import Choice, Row, RowKind, figure_rows
+from creditdesk.desk.tables.runs import runs
 from creditdesk.statements.period import Opinion
 
 Index = QModelIndex | QPersistentModelIndex
@@ -77,11 +78,11 @@ class FiguresModel(QAbstractTableModel):
         """Take out rows no longer wanted and put in what is new, in runs; what stays keeps the chart's order."""
         rows = self._wanted_rows()
         wanted, present = set(rows), set(self._rows)
-        for first, last in reversed(list(_runs(self._rows, present - wanted))):
+        for first, last in reversed(list(runs(self._rows, present - wanted))):
             self.beginRemoveRows(QModelIndex(), first, last)
             self._rows = self._rows[:first] + self._rows[last + 1 :]
             self.endRemoveRows()
-        for first, last in _runs(rows, wanted - present):
+        for first, last in runs(rows, wanted - present):
             self.beginInsertRows(QModelIndex(), first, last)
             self._rows = self._rows[:first] + rows[first : last + 1] + self._rows[first:]
             self.endInsertRows()
@@ -303,14 +304,3 @@ def _rows_of(facts: Facts, section: str) -> Iterator[Row]:
 
 def _finding_words(findings: Sequence[Finding]) -> Iterator[str]:
     return (f"{MARKS[finding.severity]} {finding.text}" for finding in findings)
-
-
-def _runs(rows: Sequence[Row], chosen: set[Row]) -> Iterator[tuple[int, int]]:
-    """Yield first and last number of each run of chosen rows."""
-    first = -1
-    for number, row in enumerate((*rows, None)):
-        if row in chosen:
-            first = number if first < 0 else first
-        elif first >= 0:
-            yield first, number - 1
-            first = -1

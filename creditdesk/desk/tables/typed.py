@@ -58,6 +58,11 @@ class TypedDelegate(QStyledItemDelegate):
         self._edited = QPersistentModelIndex(index)
         return editor
 
+    def setEditorData(self, editor: QWidget, index: Index) -> None:
+        """Begin with what the cell holds; what was typed since stays when the table around it changes."""
+        if not (isinstance(editor, QLineEdit) and editor.isModified()):
+            super().setEditorData(editor, index)
+
     def updateEditorGeometry(self, editor: QWidget, option: QStyleOptionViewItem, index: Index) -> None:
         """Cover the whole cell, and what lies before it where a long sum needs the room."""
         assert isinstance(editor, QLineEdit)
