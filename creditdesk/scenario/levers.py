@@ -2,7 +2,6 @@
 
 from collections.abc import Container, Sequence
 from dataclasses import dataclass, replace
-from itertools import product
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,6 +14,9 @@ FloatArray = NDArray[np.float64]
 
 _HAIR = 1e-9
 """Share of a step or a range within which a position counts as standing there."""
+
+_NEAR_STEPS = np.array([1.0, 2.0, 3.0, 5.0, 8.0])
+_NEAR_SHARES = np.array([0.1, 0.01, 0.001])
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -82,6 +84,16 @@ class Levers:
         spread = np.linspace(self.low[number], self.high[number], rungs)
         return np.unique(np.append(spread, self.start[number]))
 
+    def spots(self, number: int, around: float, rungs: int) -> FloatArray:
+        """List positions to try a lever at: all over its range, thinned where there are many, and near ``around``."""
+        ladder = self.ladder(number, rungs)
+        thinned = ladder[:: 1 + len(ladder) // (4 * rungs)]
+        near = self.step[number] * _NEAR_STEPS if self.step[number] else self.width[number] * _NEAR_SHARES
+        near = around + np.concatenate([-near, near])
+        inside = near[(near >= self.low[number]) & (near <= self.high[number])]
+        always = (self.low[number], self.start[number], self.high[number])
+        return np.unique(np.concatenate([thinned, inside, always]))
+
     def on_steps(self, points: FloatArray, *, outwards: bool = False) -> FloatArray:
         """Put levers that move in steps on the nearest step towards rest, or away from it; the others stay."""
         size = np.where(self.smooth, 1.0, self.step)
@@ -95,7 +107,7 @@ class Levers:
         sides = [self.ladder(number, rungs) for number in range(len(self.levers))]
         if np.prod([float(len(side)) for side in sides]) > most:
             return None
-        return np.array(list(product(*sides)))
+        return np.stack(np.meshgrid(*sides, indexing="ij"), axis=-1).reshape(-1, len(sides))
 
     def scattered(self, count: int) -> FloatArray:
         """Spread points evenly over the ranges, the same ones always.
@@ -111,8 +123,7 @@ class Levers:
 
 
 def levers_at(base: Moves, levers: Sequence[Lever], starts: Starts = NO_STARTS) -> tuple[Levers, tuple[str, ...]]:
-    """Lay out levers from where ``base`` stands; name the targets left out, as it is not
-    known where it stands in their unit."""
+    """Lay out levers from where ``base`` stands; name those left out, as that is not known in their unit."""
     placed = [(lever, position(base, lever.range, starts)) for lever in levers]
     usable = [(lever, at) for lever, at in placed if not np.isnan(at)]
     start = np.array([at for _, at in usable])

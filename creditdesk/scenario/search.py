@@ -34,8 +34,6 @@ _COARSE, _EXACT = 1e-3, 3e-10
 _NUDGE = 1e-7
 _ROUNDS, _RUNGS = 6, 17
 _GAIN = 1e-7
-_NEAR = (1.0, 0.1, 0.01, 0.001)
-"""Shares of a lever's range by which it is tried on either side of where it stands."""
 _INSIDE = 1e-10
 """Log-odds by which a point stays inside the grade's bound, so that rounding puts it on the right side."""
 _NO_ODDS = 1e3
@@ -142,9 +140,9 @@ class Search:
         for _ in range(_ROUNDS):
             before = float(here.odds[0])
             for number in range(len(self.levers.start)):
-                ladder = self.levers.ladder(number, 2 * _RUNGS)[:BLOCK]
-                points = np.repeat(here.points, len(ladder), axis=0)
-                points[:, number] = ladder
+                spots = self.levers.spots(number, here.points[0, number], 2 * _RUNGS)
+                points = np.repeat(here.points, len(spots), axis=0)
+                points[:, number] = spots
                 tried = self.ask(np.concatenate([here.points, points]))
                 place = self._best(tried, np.arange(len(tried.points)))
                 here = Found(*(part[place : place + 1] for part in _parts(tried)))
@@ -308,7 +306,7 @@ class Search:
         Only those that would be cheaper with the other at rest; the lever itself counts as its own other.
         """
         levers, count = self.levers, len(point)
-        spots = [(number, place) for number in range(count) for place in self._elsewhere(point, number)]
+        spots = [(number, place) for number in range(count) for place in levers.spots(number, point[number], _RUNGS)]
         numbers, places = np.array([number for number, _ in spots]), np.array([place for _, place in spots])
         moved = np.repeat(point[None], len(spots), axis=0)
         moved[np.arange(len(spots)), numbers] = places
@@ -323,15 +321,6 @@ class Search:
         ways = np.concatenate(points), np.concatenate(targets)
         worth = levers.costs(ways[1]) < self.cost(point) * (1 - _GAIN)
         return ways[0][worth], ways[1][worth]
-
-    def _elsewhere(self, point: FloatArray, number: int) -> FloatArray:
-        levers = self.levers
-        spots = levers.ladder(number, _RUNGS)
-        if levers.smooth[number]:
-            near = np.outer((-1.0, 1.0), _NEAR).ravel() * levers.width[number]
-            near = np.clip(point[number] + near, levers.low[number], levers.high[number])
-            spots = np.concatenate([spots, near])
-        return np.unique(spots[spots != point[number]])
 
 
 def _parts(found: Found) -> tuple[NDArray[Any], ...]:
