@@ -21,6 +21,9 @@ from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_breakeven import BreakEvenPage
 from creditdesk.desk.pencil.study_grid import GridPage
 from creditdesk.desk.pencil.study_page import StudyPage
+from creditdesk.desk.pencil.study_reach import ReachPage
+from creditdesk.desk.pencil.study_sensitivity import SensitivityPage
+from creditdesk.desk.pencil.study_spread import SpreadPage
 from creditdesk.desk.session import Session
 
 _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
@@ -193,5 +196,5 @@ class StudiesPanel(QWidget):
         self.setMinimumHeight(_LOW)
 
 
-KINDS: Sequence[type[StudyPage]] = (GridPage, BreakEvenPage)
+KINDS: Sequence[type[StudyPage]] = (GridPage, BreakEvenPage, ReachPage, SensitivityPage, SpreadPage)
 """The studies in the order of their names."""

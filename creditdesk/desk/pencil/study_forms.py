@@ -18,6 +18,11 @@ from creditdesk.scenario.specs import Range
 
 _NUMBER_WIDTH = 66
 _TABLE_LOW = 120
+_TICKS = """
+QTableView::indicator { width: 7px; height: 7px; padding: 2px; border: 1px solid palette(placeholder-text);
+  background: palette(base); background-clip: content; }
+QTableView::indicator:checked { background: palette(link); }
+"""
 _BROAD = 20.0
 """Per cent, or units, to either side where no house states a usual range."""
 
@@ -214,6 +219,7 @@ class FormTable(QTableWidget):
         self.setWordWrap(False)
         self.setTabKeyNavigation(False)
         self.setMinimumHeight(_TABLE_LOW)
+        self.setStyleSheet(_TICKS)
         self.setVerticalScrollMode(QTableWidget.ScrollMode.ScrollPerPixel)
         self.setHorizontalScrollMode(QTableWidget.ScrollMode.ScrollPerPixel)
         self._filling = False

@@ -20,12 +20,15 @@ def found_mark(target: str, kind: MoveKind, amount: float) -> Mark:
     return Mark(target, kind, float(f"{amount:.{_DIGITS}g}"))
 
 
-def put_marks(draft: PencilDraft, marks: Sequence[Mark]) -> bool:
-    """Record marks as one step: in the scenario at hand, else in a new one named after them. Say whether it was."""
+def put_marks(draft: PencilDraft, marks: Sequence[Mark], name: str = "") -> bool:
+    """Record marks as one step: in the scenario at hand, else in a new one. Say whether it was.
+
+    ``name``: of the new scenario, that of its marks where it is "".
+    """
     if draft.active != INK:
         return draft.do(SetMarks(draft.active, tuple(marks)))
     moving = tuple(mark for mark in marks if not (mark.kind.relative and mark.amount == 0))
-    return draft.add(Scenario(", ".join(marks_named(draft, moving)) or "What if", moving))
+    return draft.add(Scenario(name or ", ".join(marks_named(draft, moving)) or "What if", moving))
 
 
 def marks_named(draft: PencilDraft, marks: Sequence[Mark]) -> list[str]:

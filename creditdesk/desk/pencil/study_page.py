@@ -12,6 +12,7 @@ from creditdesk.base.errors import UserError
 from creditdesk.base.palette import LIGHT, Palette
 from creditdesk.case.document import Case
 from creditdesk.case.pencil import PencilBoard
+from creditdesk.case.pencil_checks import study_faults
 from creditdesk.case.studies import Study, run_study
 from creditdesk.case.study_offers import offered_studies
 from creditdesk.desk.fields import fault_words
@@ -63,13 +64,13 @@ class StudyPage(QWidget):
     """Show one study of the draft's scenario; what kind of study, its form and its answer are a page's own.
 
     ``fault``: a sentence for the status line. ``title``: its name in the row; ``hint``: what it answers. ``stacked``:
-    the form stands over the answer, in one line, and not beside it.
+    the form stands over the answer, in one line, and not beside it; ``tall``: beside it, it takes the whole height.
     """
 
     fault = Signal(str)
     title = ""
     hint = ""
-    stacked = False
+    stacked, tall = False, False
 
     def __init__(self, draft: PencilDraft) -> None:
         super().__init__()
@@ -204,9 +205,9 @@ class StudyPage(QWidget):
         column = QVBoxLayout(inside)
         column.setContentsMargins(0, 0, 8, 0)
         column.setSpacing(5)
-        column.addLayout(self.form)
+        column.addLayout(self.form, 1 if self.tall else 0)
         column.addLayout(self.foot)
-        column.addStretch(1)
+        column.addStretch(0 if self.tall else 1)
         return Side(inside)
 
 
@@ -224,7 +225,9 @@ class KeptPage(StudyPage, Generic[Spec]):
 
     def question(self) -> Spec:
         """Return the specification in the form, on the scenario at hand."""
-        return msgspec.structs.replace(self.spec(), scenario=self.draft.active, in_memo=False)
+        asked = msgspec.structs.replace(self.spec(), scenario=self.draft.active, in_memo=False)
+        _check(asked, self.draft.names)
+        return asked
 
     def spec(self) -> Spec:
         """Return the specification in the form. Raises UserError."""
@@ -291,6 +294,26 @@ class KeptPage(StudyPage, Generic[Spec]):
         self.touched()
 
 
+class Words(QScrollArea):
+    """Hold an answer in sentences; where there is little room it scrolls."""
+
+    def __init__(self, name: str) -> None:
+        super().__init__()
+        self.label = label("", wrap=True)
+        self.label.setAlignment(Qt.AlignmentFlag.AlignTop | Qt.AlignmentFlag.AlignLeft)
+        self.label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
+        self.setWidget(self.label)
+        self.setWidgetResizable(True)
+        self.setFrameShape(QFrame.Shape.NoFrame)
+        self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        self.setAccessibleName(name)
+
+    def say(self, words: str) -> None:
+        """Show sentences."""
+        self.label.setText(words)
+        self.setAccessibleDescription(words)
+
+
 class Side(QScrollArea):
     """Hold a form at its own width; where the panel is low it scrolls."""
 
@@ -309,3 +332,11 @@ class Side(QScrollArea):
         if event.type() in (QEvent.Type.LayoutRequest, QEvent.Type.Resize, QEvent.Type.Show):
             self.setFixedWidth(self._inside.sizeHint().width() + 12)
         return super().eventFilter(self._inside, event)
+
+
+def _check(spec: StudySpec, names: Sequence[str]) -> None:
+    """Refuse what a case could not keep. Raises UserError."""
+    scenarios = [{"name": name} for name in names]
+    faults = tuple(study_faults({"scenarios": scenarios, "studies": [msgspec.to_builtins(spec)]}))
+    if faults:
+        raise UserError("study", *(fault.sentence for fault in faults))
