@@ -14,6 +14,7 @@ from numpy.typing import ArrayLike
 from creditdesk.charts.style import CAP_HEIGHT, Pen, Size, Type, drawable, font
 
 _ROUND = "round"
+Corners = tuple[float, float, float, float]
 
 
 class Board:
@@ -65,6 +66,14 @@ class Board:
         """Fill the rectangle of ``size`` whose lower left corner is ``corner``."""
         (x, y), (width, height) = corner, size
         return self.area(layer, [(x, y), (x + width, y), (x + width, y + height), (x, y + height)], fill, edge, z)
+
+    def outline(self, layer: str, boxes: Sequence[Corners], edge: Pen, z: float = 1) -> Artist:
+        """Draw the outlines of rectangles as one mark; each is left, bottom, right and top."""
+        paths = [
+            Path([(left, bottom), (right, bottom), (right, top), (left, top), (left, bottom)], closed=True)
+            for left, bottom, right, top in boxes
+        ]
+        return self._patch(layer, Path.make_compound_path(*paths), edge, None, z)
 
     def dot(self, layer: str, centre: Size, radius: float, fill: Pen, edge: Pen | None = None, z: float = 3) -> Artist:
         """Draw a filled circle."""

@@ -12,9 +12,10 @@ from creditdesk.charts.board import Board
 from creditdesk.charts.passage import Passage, Row, from_reference, since_last_year
 from creditdesk.charts.pencil import (
     PENCIL,
+    Bar,
     Outline,
     amount_room,
-    draw_outline_bar,
+    draw_bars,
     outline_of,
     reach_of,
 )
@@ -42,6 +43,8 @@ _MARK = 2.6
 _OTHER_LINES = 2.6
 """Room for the line above the rows and the total below them, in rows."""
 BAR_ALPHA = 0.88
+_PENCIL_HALF = 0.36
+"""Half the height of a bar in pencil, in rows: it goes around that in ink."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -78,12 +81,16 @@ class ContributionsChart:
         self._reach = None
         self._draw(self.passage)
 
-    def show_pencil(self, pencil: Standing | None) -> None:
-        """Draw the pencil's bars as outlines over the ink, which makes room once and stays; None takes them away."""
+    def show_pencil(self, pencil: Standing | None, *, held: bool = False) -> None:
+        """Draw the pencil's bars as outlines over the ink, which makes room once; None takes them away.
+
+        ``held``: the scale stays, and a bar that would go beyond it ends there.
+        """
         self._pencil = pencil
         if self.passage is None:
             return
-        reach = None if pencil is None else self._reach_with(pencil, self.passage)
+        stays = held and pencil is not None and self._reach is not None
+        reach = None if pencil is None else self._reach if stays else self._reach_with(pencil, self.passage)
         if reach != self._reach:
             self._draw(self.passage)
         else:
@@ -182,11 +189,14 @@ def _draw_outline(board: Board, passage: Passage, outline: Outline, look: tuple[
     palette, reach = look
     layout = row_layout(board.size, len(passage.rows), palette)
     columns = _columns(passage.rows, layout.width, palette, reach)
+    low, high = (-reach[0], reach[1]) if reach is not None else (0.0, 0.0)
+    bars = []
     for number, row in enumerate(passage.rows):
         amount = outline.amounts.get(row.key)
         if amount is not None:
-            ends = columns.zero, columns.zero + amount * columns.per_unit
-            draw_outline_bar(board, (layout.middle(number), layout.pitch), ends, amount, (palette, columns.end))
+            end = columns.zero + min(max(amount, low), high) * columns.per_unit
+            bars.append(Bar(layout.middle(number), _PENCIL_HALF * layout.pitch, (columns.zero, end), amount))
+    draw_bars(board, bars, columns.end, palette)
     style = Type(palette.pencil, type_size(palette), Face.SANS_ITALIC, "right")
     board.words(PENCIL, _total_place(layout), outline.end, style)
 

@@ -9,10 +9,10 @@ from matplotlib.text import Text
 from creditdesk.base.display import format_number
 from creditdesk.base.palette import Palette
 from creditdesk.case.standing import Standing
-from creditdesk.charts.board import Board
+from creditdesk.charts.board import Board, Corners
 from creditdesk.charts.borrower import DOT
 from creditdesk.charts.frame import Frame
-from creditdesk.charts.passage import Passage, from_reference, since_last_year
+from creditdesk.charts.passage import Passage
 from creditdesk.charts.placing import Box, Taken, around
 from creditdesk.charts.style import CAP_HEIGHT, Pen, Size, Type, face_of, text_width, type_size
 from creditdesk.charts.words import signed
@@ -71,9 +71,11 @@ class Outline:
 
 def outline_of(pencil: Standing, passage: Passage) -> Outline:
     """Return what the pencil says on the same way as ``passage``: from the reference, or since last year."""
-    own = since_last_year(pencil) if passage.since_last_year else from_reference(pencil)
-    end = "in pencil: no score" if pencil.score is None else f"in pencil {format_number(pencil.score, 2)}"
-    return Outline({} if own.why_none else {row.key: row.amount for row in own.rows}, end)
+    if pencil.score is None:
+        return Outline({}, "in pencil: no score")
+    parts = pencil.what_moved if passage.since_last_year else pencil.factors
+    amounts = {part.key: part.log_odds for part in parts if part.log_odds is not None}
+    return Outline(amounts, f"in pencil {format_number(pencil.score, 2)}")
 
 
 def reach_of(outline: Outline, passage: Passage, before: Size = (0.0, 0.0)) -> Size:
@@ -91,16 +93,26 @@ def amount_room(palette: Palette) -> float:
     return text_width(_WIDEST, type_size(palette), Face.SANS_ITALIC) + 4
 
 
-def draw_outline_bar(
-    board: Board, place: tuple[float, float], ends: Size, amount: float, look: tuple[Palette, float]
-) -> None:
-    """Draw one bar as an outline, and its amount at the right edge.
+@dataclass(frozen=True, slots=True)
+class Bar:
+    """Place one outline: middle and half height of its row, its two ends in points, its amount."""
 
-    ``place``: middle and pitch of the row; ``ends``: the bar's, in points; ``look``: palette and right edge.
-    """
-    (y, pitch), (palette, edge) = place, look
-    low, high = min(ends), max(ends)
-    pen = Pen(palette.pencil, 1.2, DASHES)
-    board.box(PENCIL, (low, y - pitch * 0.36), (high - low, pitch * 0.72), Pen(palette.sheet, alpha=0.0), pen, z=1.6)
+    middle: float
+    half: float
+    ends: Size
+    amount: float
+
+    @property
+    def corners(self) -> Corners:
+        """Return left, bottom, right and top."""
+        return min(self.ends), self.middle - self.half, max(self.ends), self.middle + self.half
+
+
+def draw_bars(board: Board, bars: Sequence[Bar], edge: float, palette: Palette) -> None:
+    """Draw bars as outlines, their amounts ending at the right ``edge``."""
+    if not bars:
+        return
+    board.outline(PENCIL, [bar.corners for bar in bars], Pen(palette.pencil, 1.2, DASHES), z=1.6)
     style = Type(palette.pencil, type_size(palette), Face.SANS_ITALIC, "right")
-    board.words(PENCIL, (edge, y), signed(amount), style)
+    for bar in bars:
+        board.words(PENCIL, (edge, bar.middle), signed(bar.amount), style)

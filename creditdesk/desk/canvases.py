@@ -312,10 +312,13 @@ class ChartCanvases:
         self.curve.refresh()
         self._show_contributions(standing)
 
-    def show_pencil(self, pencil: Standing | None) -> None:
-        """Draw on both charts where the borrower would stand; None takes it away. The ink is not drawn anew."""
+    def show_pencil(self, pencil: Standing | None, *, held: bool = False) -> None:
+        """Draw on both charts where the borrower would stand; None takes it away. The ink is not drawn anew.
+
+        ``held``: the scale of the contributions stays too, as it must while a slider is moved.
+        """
         self._curve_chart.show_pencil(pencil)
-        self._contributions_chart.show_pencil(pencil)
+        self._contributions_chart.show_pencil(pencil, held=held)
         for canvas in (self.curve, self.contributions):
             canvas.draw_idle()
 

@@ -182,7 +182,7 @@ class CaseView(QObject):
         return sheet
 
     def _show_pencil(self, draft: "PencilDraft") -> None:
-        self.standing.show_pencil(draft.pencilled, draft.active)
+        self.standing.show_pencil(draft.pencilled, draft.active, held=draft.sketching is not None)
 
     def _make_memo(self) -> "Sheet":
         from creditdesk.desk.sheets.memo import MemoSheet
@@ -215,6 +215,9 @@ class CaseView(QObject):
     def _on_charts(self, module: "ModuleType") -> None:
         self._canvases = module
         self._put_charts()
+        second = self.standing.contributions_place
+        second.setUpdatesEnabled(False)  # to paint a chart for the first time takes a turn of its own
+        self._soon(partial(second.setUpdatesEnabled, True))
         self._window.ready.emit()
         self._soon(self._fetch_sheets, _PAINT_MILLISECONDS)
 

@@ -140,15 +140,15 @@ class StandingColumn(QWidget):
             QCoreApplication.sendPostedEvents(None, QEvent.Type.LayoutRequest)
             self.view.viewport().repaint()
 
-    def show_pencil(self, pencilled: "Pencilled | None", name: str) -> None:
-        """Show over the ink what a scenario comes to; None takes it away. The ink stays as it is."""
+    def show_pencil(self, pencilled: "Pencilled | None", name: str, *, held: bool = False) -> None:
+        """Show over the ink what a scenario comes to; None takes it away. ``held``: no scale moves meanwhile."""
         turned = (pencilled is None) != (self._pencil is None)
         self._pencil = pencilled
         standing = pencilled.standing if pencilled is not None else None
         self.verdict.pencil.show_pencil(standing, name)
         self._show_pencil_findings(pencilled)
         if self._canvases is not None:
-            self._canvases.show_pencil(standing)
+            self._canvases.show_pencil(standing, held=held)
         if turned:
             self._fit_curve()
 
@@ -206,6 +206,7 @@ class StandingColumn(QWidget):
         """Put the chart canvases in their places; they follow every standing from now on."""
         self._take_charts_out()
         self._canvases, self._palette = canvases, palette
+        self.verdict.pencil.words.recolour(palette)
         self.curve_place.put(canvases.curve)
         self.contributions_place.put(canvases.contributions)
         canvases.curve.chosen.connect(self._on_curve_chosen)

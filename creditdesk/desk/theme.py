@@ -32,10 +32,9 @@ _ROLES = {
     "caution": (_Role.BrightText,),
     "breach": (_Role.LinkVisited,),
     "strength": (_Role.Midlight,),
-    "pencil": (_Role.Shadow,),
 }
-"""The roles that carry each colour, the one the style sheet names first. Qt knows no caution, breach, strength, pencil:
-these take roles that nothing draws with where the style sheet rules."""
+"""The roles that carry each colour, the one the style sheet names first. Qt knows no caution, breach or strength: they
+take roles that nothing draws with where the style sheet rules."""
 
 _STYLE = Template("""
 QMainWindow, QDialog, #desk, QMenuBar, QMenu, QStatusBar { background: $paper; }
@@ -56,8 +55,6 @@ QLabel[role="obligor"] { font-family: "$serif"; font-size: 19pt; font-weight: 60
 QLabel[role="heading"] { font-family: "$serif"; font-size: 11.5pt; font-weight: 600; color: $accent; }
 QLabel[role="second"] { color: $second_ink; }
 QLabel[role="caution"] { color: $caution; }
-QLabel[role="pencil"] { color: $pencil; font-style: italic; font-size: 12pt; border: 0;
-  border-bottom: 1px dotted $pencil; padding-bottom: 1px; }
 QLabel[role="strong"] { font-weight: 600; }
 QLabel[role="strength"] { color: $strength; font-weight: 600; }
 #outcome QLabel[role="strength"], #outcome QLabel[role="breach"] { font-family: "$serif"; font-size: 14pt; }

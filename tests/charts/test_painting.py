@@ -196,18 +196,18 @@ def test_bars_in_pencil_are_as_long_as_their_amounts_beside_those_in_ink() -> No
     chart.show(shown)
     halved = tuple(replace(one, log_odds=(one.log_odds or 0.0) / 2) for one in shown.factors)
     chart.show_pencil(replace(shown, factors=halved))
-    inked = {round(_width(mark), 3) for mark in chart.board.marks(LAYER) if _is_bar(mark)}
-    pencilled = [_width(mark) for mark in chart.board.marks(PENCIL) if _is_bar(mark)]
-    assert len(pencilled) == len(shown.factors)
-    assert {round(2 * width, 3) for width in pencilled} <= inked
+    inked = {round(_width(mark.get_path().vertices), 3) for mark in chart.board.marks(LAYER) if _is_bar(mark)}
+    (outline,) = [mark for mark in chart.board.marks(PENCIL) if not isinstance(mark, Text)]
+    bars = np.reshape(outline.get_path().vertices[: 6 * len(shown.factors)], (len(shown.factors), -1, 2))
+    assert {round(2 * _width(bar[:4]), 3) for bar in bars} <= inked
 
 
 def _is_bar(mark: object) -> bool:
     return not isinstance(mark, Text) and len(mark.get_path().vertices) == 5  # type: ignore[attr-defined]
 
 
-def _width(mark: object) -> float:
-    x = mark.get_path().vertices[:, 0]  # type: ignore[attr-defined]
+def _width(vertices: NDArray[np.float64]) -> float:
+    x = vertices[:, 0]
     return float(x.max() - x.min())
 
 

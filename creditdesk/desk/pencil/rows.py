@@ -75,6 +75,11 @@ class PencilFacts:
         self._labels = {one.key: one.label for one in ink.statements.chart.subtotals}
         self._amounts = next(iter(targets.of(TargetKind.LINE)))
 
+    @property
+    def moving(self) -> frozenset[str]:
+        """Name what is marked or moves: as long as it is the same, so are the rows."""
+        return frozenset((*self._steps, *self.marks))
+
     # Rows
 
     def rows(self, view: View) -> tuple[Row, ...]:

@@ -1,6 +1,6 @@
 """The pencil beside the ink as a Qt table: label, ink, pencil, change, how it follows."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QObject, Qt
 
@@ -32,6 +32,7 @@ class PencilModel(QAbstractTableModel):
         self._rows: tuple[Row, ...] = ()
         self._facts: PencilFacts | None = None
         self._cells: dict[str, Cell] = {}
+        self._moving: frozenset[str] = frozenset()
 
     @property
     def rows(self) -> Sequence[Row]:
@@ -49,12 +50,22 @@ class PencilModel(QAbstractTableModel):
         draft = self._draft
         session = draft.session
         self._facts = PencilFacts(session.house, session.standing, draft.targets, draft.pencilled)
-        self._cells.clear()
-        rows = self._facts.rows(self.view)
-        if draft.sketching is None or not set(rows) <= set(self._rows):
+        before, self._cells = self._cells, {}
+        if draft.sketching is None or self._facts.moving != self._moving:
+            self._moving = self._facts.moving
+            self._show_rows(keep=draft.sketching is not None)
+        self._tell(before)
+
+    def _show_rows(self, *, keep: bool) -> None:
+        rows = self.facts.rows(self.view)
+        if not (keep and set(rows) <= set(self._rows)):
             self._follow(rows)
-        if self._rows:
-            self.dataChanged.emit(self.index(0, INK), self.index(len(self._rows) - 1, WHY))
+
+    def _tell(self, before: Mapping[str, Cell]) -> None:
+        """Tell of the cells that were asked for before and say something else now."""
+        for number, row in enumerate(self._rows):
+            if row.key in before and self.cell(row) != before[row.key]:
+                self.dataChanged.emit(self.index(number, INK), self.index(number, WHY))
 
     def choose(self, view: View) -> None:
         """List something else of the same draft."""
