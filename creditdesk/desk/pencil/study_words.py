@@ -2,31 +2,21 @@
 
 import math
 
-from creditdesk.base.display import format_number, format_pd
+from creditdesk.base.display import format_number
 from creditdesk.base.errors import UserError
-from creditdesk.desk.pencil.targets import Target, TargetBook, TargetKind
-from creditdesk.desk.pencil.typed import mark_words
+from creditdesk.case.study_words import NO_GRADE as NO_GRADE
+from creditdesk.case.study_words import NO_PD as NO_PD
+from creditdesk.case.study_words import amount_label as amount_label
+from creditdesk.case.study_words import amount_words as amount_words
+from creditdesk.case.study_words import bound_words as bound_words
+from creditdesk.case.study_words import grade_words as grade_words
+from creditdesk.case.study_words import limit_words as limit_words
+from creditdesk.case.study_words import pd_words as pd_words
+from creditdesk.case.study_words import position_words as position_words
+from creditdesk.case.targets import Target, TargetKind
 from creditdesk.flow.moves import MoveKind
-from creditdesk.house.book import HouseBook
 from creditdesk.intake.amounts import parse_amount
 from creditdesk.intake.numerals import DecimalMark
-from creditdesk.ratios.words import format_ratio
-from creditdesk.scenario.marks import Mark
-from creditdesk.scenario.specs import Limit, LimitKind
-
-NO_PD, NO_GRADE = "no PD", "no grade"
-_HAIR = 1e-6
-_FINE = 1
-
-
-def pd_words(pd: float) -> str:
-    """Write a PD, or that there is none."""
-    return NO_PD if math.isnan(pd) else format_pd(pd)
-
-
-def grade_words(house: HouseBook, place: int) -> str:
-    """Name the grade of a place on the master scale."""
-    return NO_GRADE if place < 0 else f"grade {house.scale.keys[place]}"
 
 
 def typed_position(target: Target, kind: MoveKind, value: float) -> str:
@@ -58,49 +48,6 @@ def unit_words(target: Target, kind: MoveKind) -> str:
     if kind is MoveKind.BY_PCT:
         return "%"
     return "points" if target.unit.strip() == "%" and target.kind is not TargetKind.DRIVER else target.unit.strip()
-
-
-def position_words(target: Target, kind: MoveKind, value: float) -> str:
-    """Write a position in full: to 35 120, +300, −20 %."""
-    return mark_words(Mark(target.key, kind, value), target)
-
-
-def bound_words(target: Target, kind: MoveKind, value: float, start: float) -> str:
-    """Write a position found, rounded towards the start, so that what holds there holds at what is read."""
-    places = _FINE if kind is MoveKind.BY_PCT else target.decimals
-    scale = 10.0**places * (1.0 if kind is MoveKind.BY_PCT else target.scale)
-    exact, nearest = value * scale, round(value * scale)
-    if abs(exact - nearest) > _HAIR * max(1.0, abs(exact)):
-        nearest = math.floor(exact) if value > start else math.ceil(exact)
-    return position_words(target, kind, nearest / scale)
-
-
-def limit_words(limit: Limit, house: HouseBook, targets: TargetBook) -> str:
-    """Name a limit: Grade 7, Interest cover 2.00x, Equity below nil."""
-    if limit.kind is LimitKind.GRADE:
-        return f"Grade {limit.key}"
-    way = "below" if limit.kind is LimitKind.BELOW else "above"
-    return f"{amount_label(limit.key, house)} {way} {amount_words(limit.key, limit.at, house, targets)}"
-
-
-def amount_label(key: str, house: HouseBook) -> str:
-    """Return what a line, sum or ratio is called."""
-    if key in house.catalogue.index:
-        return house.catalogue.spec(key).label
-    labels = {one.key: one.label for one in house.chart.lines} | {one.key: one.label for one in house.chart.subtotals}
-    return labels.get(key, key)
-
-
-def amount_words(key: str, value: float, house: HouseBook, targets: TargetBook) -> str:
-    """Write the value of a line, sum or ratio; nil is said as such of amounts."""
-    if math.isnan(value):
-        return "not known"
-    if key in house.catalogue.index:
-        return format_ratio(value, house.catalogue.spec(key).unit)
-    if value == 0:
-        return "nil"
-    found = targets.find(key)
-    return format_number(value, found.decimals if found is not None else 0)
 
 
 def per_unit_words(target: Target, slope: float) -> str:
