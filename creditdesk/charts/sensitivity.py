@@ -19,7 +19,7 @@ from creditdesk.house.fontfiles import Face
 
 LAYER = "sensitivity"
 _GAP = 10.0
-_HEAD_ROWS = 1.6
+_HEAD_ROWS = 1.2
 _FOOT_ROWS = 0.4
 _PITCH = 2.05
 _LABEL_MOST, _UNIT_MOST = 0.28, 0.24
@@ -150,7 +150,7 @@ def _columns(picture: SensitivityPicture, width: float, size: float) -> _Columns
 def _draw_head(board: Board, columns: _Columns, place: tuple[float, float], palette: Palette) -> None:
     """Name the columns and mark round PDs above the bars."""
     top, pitch = place
-    size, y = type_size(palette), top + 0.45 * pitch
+    size, y = type_size(palette), top + 0.55 * pitch
     style = Type(palette.second_ink, size)
     for at, words in columns.scale.ticks(size):
         board.words(LAYER, (at, y), words, style.but(align="center"))

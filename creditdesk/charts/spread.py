@@ -30,7 +30,9 @@ from creditdesk.house.fontfiles import Face
 from creditdesk.scenario.simulate import LEVELS, Spread
 
 LAYER = "spread"
-TITLE = "Spread of the estimate, not of defaults"
+TITLES = ("Spread of the estimate, not of defaults", "Of the estimate, not of defaults", "Estimate, not defaults")
+"""What the bars are, in as many words as there is room for."""
+_GRADE_TITLES = ("Final grade, share of draws", "Final grade, share", "Final grade")
 _GAP = 26.0
 _GRADES_SHARE = 0.34
 _BAR_ALPHA = 0.55
@@ -175,12 +177,14 @@ def _draw_bars(board: Board, picture: SpreadPicture, frame: SpreadFrame, palette
     for at, words in scale.ticks(size):
         board.line(LAYER, [(at, frame.bottom), (at, frame.bottom - 2.5)], Pen(palette.second_ink, 0.7))
         board.text(LAYER, (at, baseline), words, style)
-    title = Type(palette.ink, size)
-    board.text(LAYER, (0, board.size[1] - 0.9 * size), shorten(TITLE, scale.end, size), title)
+    fitting = [words for words in TITLES if text_width(words, size) <= scale.end]
+    title = fitting[0] if fitting else TITLES[-1]
+    board.text(LAYER, (0, board.size[1] - 0.9 * size), title, Type(palette.ink, size))
     below = baseline - LINE_HEIGHT * size
-    board.text(LAYER, (scale.end, below), f"PD, {picture.drawn}", style.but(align="right"))
+    board.text(LAYER, (scale.end, below), "PD", style.but(align="right"))
+    board.text(LAYER, (board.size[0], below), picture.drawn, style.but(align="right"))
     if not np.isnan(picture.pd):
-        room = scale.end - text_width(f"PD, {picture.drawn}", size) - 20
+        room = scale.end - text_width("PD", size) - 20
         board.dot(LAYER, (3.6, below + CAP_HEIGHT * size / 2), 3.2, Pen(palette.ink))
         words = shorten(f"{picture.name} {format_pd(picture.pd)}", max(room, 0.0), size)
         board.text(LAYER, (11, below), words, style.but(align="left"))
@@ -233,7 +237,7 @@ def _draw_grades(board: Board, picture: SpreadPicture, room: Box, palette: Palet
     """Draw the share of each grade, after house rules, as a row."""
     size, rows = type_size(palette), _rows(picture)
     style = Type(palette.ink, size)
-    title = shorten("Final grade, share of draws", room.right - room.left, size)
+    title = next((one for one in _GRADE_TITLES if text_width(one, size) <= room.right - room.left), "")
     board.text(LAYER, (room.left, board.size[1] - 0.9 * size), title, style)
     left = room.left + max((text_width(name, size) for name, _, _ in rows), default=0.0) + 6
     width = room.right - left - text_width("100.0 %", size) - 6

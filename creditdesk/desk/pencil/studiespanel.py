@@ -19,19 +19,21 @@ from creditdesk.base.palette import Palette
 from creditdesk.desk.fields import set_role
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_breakeven import BreakEvenPage
+from creditdesk.desk.pencil.study_compare import ComparePage
 from creditdesk.desk.pencil.study_grid import GridPage
 from creditdesk.desk.pencil.study_page import StudyPage
 from creditdesk.desk.pencil.study_reach import ReachPage
 from creditdesk.desk.pencil.study_sensitivity import SensitivityPage
 from creditdesk.desk.pencil.study_spread import SpreadPage
+from creditdesk.desk.pencil.study_stress import StressPage
 from creditdesk.desk.session import Session
 
 _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
 _RUN_KEYS = "Ctrl+Return"
 _RUN, _STOP = "Run", "Stop"
 _LARGER, _USUAL = "Larger", "Smaller"
-_LOW = 250
-"""Height in pixels in which every study can be read."""
+_NARROW, _LOW = 560, 250
+"""Size in pixels in which every study can be read."""
 _USUAL_SHARE = 0.4
 """Of the height, as the studies have it beside the table at first."""
 
@@ -158,10 +160,10 @@ class StudiesPanel(QWidget):
         row, group = QHBoxLayout(), QButtonGroup(self)
         row.setSpacing(0)
         for number, kind in enumerate(KINDS):
-            name = _Name(kind.title)
+            name = _Name(kind.short)
             name.setCheckable(True)
             name.setAccessibleName(f"Study: {kind.title}")
-            name.setToolTip(f"{kind.hint} {_RUN_KEYS} runs and stops.")
+            name.setToolTip(f"{kind.title}: {kind.hint[:1].lower()}{kind.hint[1:]} {_RUN_KEYS} runs and stops.")
             set_role(name, "small")
             name.clicked.connect(lambda _checked, at=number: self.choose(at))
             name.walked.connect(lambda step, at=number: self._walk(at, step))
@@ -184,6 +186,7 @@ class StudiesPanel(QWidget):
         self.progress.setAccessibleName("How far the study is")
         self.progress.setTextVisible(False)
         self.progress.setFixedHeight(8)
+        self.progress.setMinimumWidth(24)
         keep = self.progress.sizePolicy()
         keep.setRetainSizeWhenHidden(True)
         self.progress.setSizePolicy(keep)
@@ -193,8 +196,16 @@ class StudiesPanel(QWidget):
         box.setSpacing(2)
         box.addLayout(row)
         box.addWidget(self.stack, 1)
-        self.setMinimumHeight(_LOW)
+        self.setMinimumSize(_NARROW, _LOW)
 
 
-KINDS: Sequence[type[StudyPage]] = (GridPage, BreakEvenPage, ReachPage, SensitivityPage, SpreadPage)
+KINDS: Sequence[type[StudyPage]] = (
+    GridPage,
+    BreakEvenPage,
+    ReachPage,
+    SensitivityPage,
+    SpreadPage,
+    StressPage,
+    ComparePage,
+)
 """The studies in the order of their names."""

@@ -6,13 +6,14 @@ import msgspec
 from PySide6.QtWidgets import QTableWidgetItem
 
 from creditdesk.base.errors import UserError
+from creditdesk.case.study_words import side_words
+from creditdesk.case.targets import Target
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import Choice, FormTable, RangeForm, cell, tick_cell, typed_cell
 from creditdesk.desk.pencil.study_marks import found_mark, put_marks
 from creditdesk.desk.pencil.study_page import Asked, KeptPage
-from creditdesk.desk.pencil.study_words import amount_label, amount_words, bound_words, limit_words, read_number
-from creditdesk.desk.pencil.targets import Target
+from creditdesk.desk.pencil.study_words import amount_label, amount_words, limit_words, read_number
 from creditdesk.grading.scale import DEFAULT_GRADE
 from creditdesk.ratios.spec import Unit
 from creditdesk.scenario.breakeven import Break, BreakEven, Ending, Side
@@ -29,7 +30,7 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
     """Show where each limit breaks; a click, or Enter, on a place found puts the pencil there."""
 
     kind = BreakEvenSpec
-    title = "How far until it breaks"
+    title, short = "How far until it breaks", "Until it breaks"
     stacked = True
     hint = "How far one thing may move until the grade, a cover or another limit breaks."
 
@@ -107,12 +108,7 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
         result, target = self._found, self._target
         if result is None or target is None:
             return ""
-        at = bound_words(target, result.spec.along.kind, side.position, result.start)
-        if side.ending is Ending.NOT_KNOWN:
-            return f"not known beyond {at}"
-        if side.ending is Ending.SAME:
-            return f"broken as far as {at}" if found.broken else f"not within {at}"
-        return f"holds again beyond {at}" if found.broken else f"{target.label.lower()} {at}"
+        return side_words(found, side, target, (result.spec.along, result.start))
 
     @property
     def _target(self) -> Target | None:

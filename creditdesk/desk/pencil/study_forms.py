@@ -7,11 +7,11 @@ from PySide6.QtGui import QKeyEvent
 from PySide6.QtWidgets import QGridLayout, QHeaderView, QLabel, QSizePolicy, QTableWidget, QTableWidgetItem, QWidget
 
 from creditdesk.base.errors import UserError
+from creditdesk.case.targets import Target, TargetBook, TargetKind
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.fields import ChoiceField, TextField, fault_words, set_role
 from creditdesk.desk.frame import label
 from creditdesk.desk.pencil.study_words import read_number, read_position, typed_position, unit_words
-from creditdesk.desk.pencil.targets import Target, TargetBook, TargetKind
 from creditdesk.desk.pencil.typed import KIND_WORDS
 from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.specs import Range
@@ -232,6 +232,13 @@ class FormTable(QTableWidget):
             self.setColumnWidth(column, width)
         for column in stretched:
             self.horizontalHeader().setSectionResizeMode(column, QHeaderView.ResizeMode.Stretch)
+
+    def explain(self, tips: Mapping[int, str]) -> None:
+        """Say more of some columns when their names are pointed at."""
+        for column, words in tips.items():
+            item = self.horizontalHeaderItem(column)
+            if item is not None:
+                item.setToolTip(words)
 
     def fill(self, rows: Sequence[Sequence[QTableWidgetItem]]) -> None:
         """Show other rows; the cursor stays in its place as far as there are rows."""

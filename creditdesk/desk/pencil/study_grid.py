@@ -26,7 +26,7 @@ class GridPage(KeptPage[GridSpec]):
     """Show the grid; a click, or Enter on the point the keys came to, puts the pencil there."""
 
     kind = GridSpec
-    title = "Grid"
+    title, short = "Grid", "Grid"
     hint = "The PD over any two things that move, with the lines where the grade changes."
 
     def __init__(self, draft: PencilDraft) -> None:

@@ -5,8 +5,8 @@ from collections.abc import Sequence
 
 from creditdesk.case.pencil_commands import SetMarks
 from creditdesk.case.studies import starts_of
+from creditdesk.case.targets import mark_words
 from creditdesk.desk.pencil.draft import INK, PencilDraft
-from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.specs import Range

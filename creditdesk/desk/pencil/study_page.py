@@ -26,7 +26,7 @@ from creditdesk.scenario.marks import Scenario
 from creditdesk.scenario.specs import StudySpec
 
 if TYPE_CHECKING:
-    from creditdesk.desk.pencil.targets import TargetBook
+    from creditdesk.case.targets import TargetBook
 
 Spec = TypeVar("Spec", bound=StudySpec)
 
@@ -63,12 +63,13 @@ class Asked:
 class StudyPage(QWidget):
     """Show one study of the draft's scenario; what kind of study, its form and its answer are a page's own.
 
-    ``fault``: a sentence for the status line. ``title``: its name in the row; ``hint``: what it answers. ``stacked``:
-    the form stands over the answer, in one line, and not beside it; ``tall``: beside it, it takes the whole height.
+    ``fault``: a sentence for the status line. ``title``: its name, ``short`` in the row of names; ``hint``: what it
+    answers. ``stacked``: the form stands over the answer, in one line, and not beside it; ``tall``: beside it, it takes
+    the whole height.
     """
 
     fault = Signal(str)
-    title = ""
+    title, short = "", ""
     hint = ""
     stacked, tall = False, False
 

@@ -33,7 +33,7 @@ class ReachPage(KeptPage[ReachSpec]):
     """Tick levers, edit their bounds and costs, and take the plan found as pencil marks."""
 
     kind = ReachSpec
-    title = "Reach a grade"
+    title, short = "Reach a grade", "Reach"
     hint = "The smallest plausible change, over the levers ticked, that brings the borrower to a grade."
     tall = True
 

@@ -5,10 +5,9 @@ from math import isnan, nan
 
 from creditdesk.case.standing import Standing
 from creditdesk.case.studies import ReachAnswer
+from creditdesk.case.targets import Target, TargetKind, mark_words
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_words import pd_words
-from creditdesk.desk.pencil.targets import Target, TargetKind
-from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.grading.scale import NO_GRADE
 from creditdesk.scenario.marks import Mark
 from creditdesk.scenario.reach import ReachKind

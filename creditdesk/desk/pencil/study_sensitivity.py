@@ -9,13 +9,13 @@ from PySide6.QtWidgets import QFrame, QScrollArea
 from creditdesk.base.display import format_number
 from creditdesk.base.palette import Palette
 from creditdesk.case.studies import sensitivity
+from creditdesk.case.targets import TargetKind
 from creditdesk.desk.frame import label
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_canvases import StudyChart, sensitivity_chart
 from creditdesk.desk.pencil.study_forms import Choice, NumberField
 from creditdesk.desk.pencil.study_page import Asked, StudyPage
 from creditdesk.desk.pencil.study_words import per_unit_words
-from creditdesk.desk.pencil.targets import TargetKind
 from creditdesk.scenario.marks import Scenario, moves_of
 from creditdesk.scenario.sensitivity import Sensitivity
 
@@ -30,7 +30,7 @@ _NOTE = "One at a time, counted from where the scenario stands; points are perce
 class SensitivityPage(StudyPage):
     """Show the ranked bars; arrows walk them, and a click opens nothing."""
 
-    title = "What moves the PD"
+    title, short = "What moves the PD", "What moves it"
     hint = "What one unit, and a range, of each line and ratio does to the PD, the largest first."
     stacked = True
 

@@ -48,7 +48,7 @@ class SpreadPage(KeptPage[SimulationSpec]):
     """Tick what is uncertain, set ranges, shapes and correlations; see how far the estimate spreads."""
 
     kind = SimulationSpec
-    title = "Spread of the estimate"
+    title, short = "Spread of the estimate", "Spread"
     hint = "How far the estimate of the PD spreads when inputs are not known exactly; it is not a spread of defaults."
     tall = True
 

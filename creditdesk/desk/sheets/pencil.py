@@ -84,6 +84,7 @@ class PencilSheet(Sheet):
         """Draw in another palette."""
         self.table.recolour(palette)
         self.assumptions_table.recolour(palette)
+        self.studies.recolour(palette)
 
     def go_to(self, place: str) -> None:
         """Put the cursor on the row of ``pencil.<target>``, listing all lines where it is not shown."""
@@ -154,6 +155,15 @@ class PencilSheet(Sheet):
         recorded = self.draft.recorded
         count = len(recorded.assumptions) if recorded is not None else 0
         self.views[_ASSUMPTIONS].setText(f"{_ASSUMPTIONS}, {count} changed" if count else _ASSUMPTIONS)
+
+    @property
+    def settled(self) -> bool:
+        """Say whether no study runs."""
+        return self.studies.settled
+
+    def stop(self) -> None:
+        """Let the studies end, because the window closes."""
+        self.studies.stop()
 
     # Doing
 
@@ -275,7 +285,7 @@ class PencilSheet(Sheet):
         draft, table = self.draft, self.table
         draft.changed.connect(self._show_all)
         draft.moved.connect(self._show_moved)
-        for source in (draft, self.edits, self.assumptions):
+        for source in (draft, self.edits, self.assumptions, self.studies):
             source.fault.connect(self.fault)
         self.bar.chosen.connect(draft.choose)
         self.bar.new_asked.connect(self.edits.new)
