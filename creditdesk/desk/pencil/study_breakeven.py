@@ -6,14 +6,14 @@ import msgspec
 from PySide6.QtWidgets import QTableWidgetItem
 
 from creditdesk.base.errors import UserError
-from creditdesk.case.study_words import side_words
+from creditdesk.case.study_words import amount_label, amount_words, limit_words, side_words
 from creditdesk.case.targets import Target
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import Choice, FormTable, RangeForm, cell, tick_cell, typed_cell
 from creditdesk.desk.pencil.study_marks import found_mark, put_marks
 from creditdesk.desk.pencil.study_page import Asked, KeptPage
-from creditdesk.desk.pencil.study_words import amount_label, amount_words, limit_words, read_number
+from creditdesk.desk.pencil.study_words import read_number
 from creditdesk.grading.scale import DEFAULT_GRADE
 from creditdesk.ratios.spec import Unit
 from creditdesk.scenario.breakeven import Break, BreakEven, Ending, Side

@@ -8,12 +8,12 @@ from PySide6.QtGui import QAction
 from PySide6.QtWidgets import QHeaderView, QMenu, QPushButton, QTableWidgetItem
 
 from creditdesk.case.comparison import Column, ColumnKind, Comparison, Row, RowKind, compare
+from creditdesk.case.study_words import amount_words, pd_words
 from creditdesk.desk.fields import set_role
 from creditdesk.desk.frame import label
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import FormTable, cell
 from creditdesk.desk.pencil.study_page import Asked, StudyPage
-from creditdesk.desk.pencil.study_words import amount_words, pd_words
 from creditdesk.flow.book import DRIVERS
 from creditdesk.scenario.marks import Scenario
 

@@ -7,12 +7,12 @@ from PySide6.QtCore import Qt
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
+from creditdesk.case.study_words import position_words
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_canvases import StudyChart, grid_chart
 from creditdesk.desk.pencil.study_forms import RangeForm
 from creditdesk.desk.pencil.study_marks import found_mark, put_marks, stands_at
 from creditdesk.desk.pencil.study_page import Asked, KeptPage
-from creditdesk.desk.pencil.study_words import position_words
 from creditdesk.scenario.grid import Grid
 from creditdesk.scenario.specs import GridSpec, Range
 

@@ -5,9 +5,9 @@ from math import isnan, nan
 
 from creditdesk.case.standing import Standing
 from creditdesk.case.studies import ReachAnswer
+from creditdesk.case.study_words import pd_words
 from creditdesk.case.targets import Target, TargetKind, mark_words
 from creditdesk.desk.pencil.draft import PencilDraft
-from creditdesk.desk.pencil.study_words import pd_words
 from creditdesk.grading.scale import NO_GRADE
 from creditdesk.scenario.marks import Mark
 from creditdesk.scenario.reach import ReachKind

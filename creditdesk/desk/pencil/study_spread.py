@@ -10,6 +10,7 @@ from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QTableWidgetItem
 from creditdesk.base.display import format_percent
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import Palette
+from creditdesk.case.study_words import pd_words
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.frame import label
 from creditdesk.desk.pencil.draft import PencilDraft
@@ -25,7 +26,7 @@ from creditdesk.desk.pencil.study_forms import (
     usual_range,
 )
 from creditdesk.desk.pencil.study_page import Asked, KeptPage
-from creditdesk.desk.pencil.study_words import pd_words, read_number, read_position, typed_position, unit_words
+from creditdesk.desk.pencil.study_words import read_number, read_position, typed_position, unit_words
 from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.marks import moves_of
 from creditdesk.scenario.simulate import LEVELS, Spread

@@ -7,12 +7,12 @@ from PySide6.QtWidgets import QHBoxLayout, QTableWidgetItem
 
 from creditdesk.case.pencil_commands import AddScenario, SetScenarioText, free_name
 from creditdesk.case.stress_table import DEBT_SERVICE_COVER, INTEREST_COVER, StressRow, stress_table
+from creditdesk.case.study_words import amount_words, pd_words
 from creditdesk.desk.frame import label
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import FormTable, cell
 from creditdesk.desk.pencil.study_marks import marks_named
 from creditdesk.desk.pencil.study_page import Asked, StudyPage, Words
-from creditdesk.desk.pencil.study_words import amount_words, pd_words
 from creditdesk.desk.tables.cells import MARKS
 from creditdesk.desk.textblock import TextBlock
 from creditdesk.scenario.marks import Scenario

@@ -4,15 +4,6 @@ import math
 
 from creditdesk.base.display import format_number
 from creditdesk.base.errors import UserError
-from creditdesk.case.study_words import NO_GRADE as NO_GRADE
-from creditdesk.case.study_words import NO_PD as NO_PD
-from creditdesk.case.study_words import amount_label as amount_label
-from creditdesk.case.study_words import amount_words as amount_words
-from creditdesk.case.study_words import bound_words as bound_words
-from creditdesk.case.study_words import grade_words as grade_words
-from creditdesk.case.study_words import limit_words as limit_words
-from creditdesk.case.study_words import pd_words as pd_words
-from creditdesk.case.study_words import position_words as position_words
 from creditdesk.case.targets import Target, TargetKind
 from creditdesk.flow.moves import MoveKind
 from creditdesk.intake.amounts import parse_amount
