@@ -14,6 +14,7 @@ from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.tables.plain import PlainTable
 from creditdesk.desk.tables.typed import Hand, Index, TypedDelegate
 from creditdesk.flow.assumptions import Assumption, Value
+from creditdesk.flow.book import assumption_faults
 from creditdesk.intake.amounts import parse_amount
 from creditdesk.statements.period import Presentation
 
@@ -161,11 +162,20 @@ class AssumptionsModel(QAbstractTableModel):
             return False
         one = self._rows[index.row()]
         try:
-            read = _read(one, str(value))
+            read = self._checked(one, _read(one, str(value)))
         except UserError as error:
             self.fault.emit(" ".join(error.faults))
             return False
         return self._take(one.key, None if read == one.default else read)
+
+    def _checked(self, one: Assumption, value: Value | None) -> Value | None:
+        """Return a value that is allowed. Raises UserError for another one."""
+        flow = self._draft.session.house.flow
+        if flow is not None and value is not None and assumption_faults(flow, {one.key: value}):
+            raise UserError(
+                "assumption", f"{one.label}: found {self.value_words(one, value)}. {self.allowed_words(one)}"
+            )
+        return value
 
 
 class AssumptionsDelegate(TypedDelegate):

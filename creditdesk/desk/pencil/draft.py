@@ -156,6 +156,10 @@ class PencilDraft(QObject):
 
     def mark(self, mark: Mark) -> bool:
         """Record a mark as one step: in the scenario at hand, else in a new one named after it. Say whether it was."""
+        if self.why_none:
+            self.drop()
+            self.fault.emit(f"Nothing can be marked: {self.why_none}")
+            return False
         if mark.kind.relative and mark.amount == 0:
             return self.rub_out((mark.target,))
         if self.active != INK:
