@@ -50,18 +50,18 @@ class Pencilled:
 class PencilBoard:
     """Answer marks on one case: prepared once, asked many times.
 
-    ``ink``: the standing without any mark. Raises UserError where the house book says nothing of how figures flow, and
-    as ``assess``.
+    ``ink``: the standing without any mark. ``model``: one to apply in place of the lead model. Raises UserError where
+    the house book says nothing of how figures flow, and as ``assess``.
     """
 
-    def __init__(self, case: Case, house: HouseBook) -> None:
+    def __init__(self, case: Case, house: HouseBook, model: str = "") -> None:
         if house.flow is None:
             raise UserError("pencil", "flow.toml: the house book has none, so marks cannot run through the statements")
-        self._case, self._house = case, house
+        self._case, self._house, self._model = case, house, model
         self._book = house.flow
         self._statements = case_statements(case, house.chart)
-        self.ink = assess_statements(case, house, self._statements)
-        self._ground = _ground(case, house, self.ink)
+        self.ink = assess_statements(case, house, self._statements, model)
+        self._ground = _ground(case, house, self.ink, model)
         self._chains: dict[tuple[tuple[str, ...], frozenset[str]], Chain] = {}
 
     def scenario(self, scenario: Scenario) -> Pencilled:
@@ -74,7 +74,7 @@ class PencilBoard:
         return Pencilled(
             scenario=scenario,
             moves=moves,
-            standing=assess_statements(self._case, self._house, pencilled),
+            standing=assess_statements(self._case, self._house, pencilled, self._model),
             flow=flow,
             steps=steps(self._book, self.ink.statements, flow),
             findings=(*flow.findings, *findings),
@@ -147,8 +147,8 @@ class PencilBoard:
         return held, tuple(findings)
 
 
-def _ground(case: Case, house: HouseBook, ink: Standing) -> Ground:
-    spec, period = house.models[case.model.lead or house.settings.lead_model].spec, ink.period_index
+def _ground(case: Case, house: HouseBook, ink: Standing, model: str) -> Ground:
+    spec, period = house.models[model or case.model.lead or house.settings.lead_model].spec, ink.period_index
     tables = RatioTables(case, house.catalogue, ink.statements)
     unsized = msgspec.structs.replace(spec.scope, total_assets_low=None, total_assets_high=None)
     who = borrower(case, spec, ink.statements, tables, period)

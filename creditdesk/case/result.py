@@ -6,6 +6,8 @@ from typing import Any
 import numpy as np
 
 from creditdesk.case.standing import FactorStanding, Interval, Standing
+from creditdesk.case.what_if import WhatIf
+from creditdesk.case.what_if_result import findings_result, what_if_result
 from creditdesk.ratios.compute import Reason
 from creditdesk.statements.period import period_ending
 
@@ -14,13 +16,16 @@ FORMAT = "creditdesk-standing"
 VERSION = 1
 
 
-def result_bytes(standing: Standing) -> bytes:
+def result_bytes(standing: Standing, asked: WhatIf | None = None) -> bytes:
     """Return the result as UTF-8 JSON with a line end; equal standings give equal bytes, in any locale."""
-    return (json.dumps(result(standing), ensure_ascii=False, allow_nan=False, indent=1) + "\n").encode()
+    return (json.dumps(result(standing, asked), ensure_ascii=False, allow_nan=False, indent=1) + "\n").encode()
 
 
-def result(standing: Standing) -> Json:
-    """Return the result as plain data; numbers are full doubles, None where there is no value."""
+def result(standing: Standing, asked: WhatIf | None = None) -> Json:
+    """Return the result as plain data; numbers are full doubles, None where there is no value.
+
+    ``asked``: what was asked beside the standing; the keys of what there is none of are left out.
+    """
     return {
         "format": FORMAT,
         "version": VERSION,
@@ -63,11 +68,9 @@ def result(standing: Standing) -> Json:
             }
             for one in standing.second_opinions
         ],
-        "findings": [
-            {"code": one.code, "severity": one.severity.value, "place": one.place, "text": one.text}
-            for one in standing.findings
-        ],
+        "findings": findings_result(standing.findings),
         "cautions": list(standing.cautions),
+        **({} if asked is None else what_if_result(asked)),
     }
 
 

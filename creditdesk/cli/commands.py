@@ -15,7 +15,9 @@ from creditdesk.case.convert import load_any, save_any
 from creditdesk.case.document import Case
 from creditdesk.case.lead import with_lead_model
 from creditdesk.case.result import result_bytes
+from creditdesk.case.what_if import scenarios_of, work_out
 from creditdesk.cli.models import with_model_asked_for
+from creditdesk.cli.progress import terminal_step
 from creditdesk.cli.text import standing_text
 from creditdesk.house.book import HouseBook
 from creditdesk.house.files import write_file
@@ -66,11 +68,12 @@ def assess(options: Namespace) -> int:
     """Print where the borrower stands; grade D or a stop is an answer too."""
     case, house = _case_and_house(options)
     name = options.model or ""
-    standing = assess_case(case, with_model_asked_for(house, name), name)
+    house = with_model_asked_for(house, name)
     if options.json:
-        _say_bytes(result_bytes(standing))
+        asked = work_out(case, house, name, terminal_step())
+        _say_bytes(result_bytes(asked.ink, asked))
     else:
-        _say(standing_text(case, standing))
+        _say(standing_text(case, scenarios_of(case, house, name)))
     return 0
 
 
@@ -81,10 +84,11 @@ def memo(options: Namespace) -> int:
     if options.unsigned and options.identity is not None:
         raise UsageError("identity", "Give either --unsigned or --identity, not both.")
     if options.unsigned:
-        _say(issue.issue_unsigned(*_case_and_house(options), options.out))
+        _say(issue.issue_unsigned(*_case_and_house(options), options.out, terminal_step()))
         return 0
     key = _key(options)
-    _say(issue.issue_signed(*_case_and_house(options), options.out, key, datetime.now(UTC)))
+    case, house = _case_and_house(options)
+    _say(issue.prepare(case, house, options.out, key, datetime.now(UTC), terminal_step()).words)
     return 0
 
 

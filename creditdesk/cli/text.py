@@ -5,18 +5,20 @@ from collections.abc import Iterator
 from creditdesk.base.display import format_number, format_pd
 from creditdesk.case.document import Case
 from creditdesk.case.standing import FactorStanding, SecondOpinion, Standing
+from creditdesk.case.what_if import Answer, WhatIf
 from creditdesk.ratios.spec import Unit
 
 _WIDTH = 34
 _SCALES = {"logit": "log-odds", "probit": "index units", "none": "score units"}
 
 
-def standing_text(case: Case, standing: Standing) -> str:
-    """Return the standing as lines of text."""
-    return "\n".join(_lines(case, standing))
+def standing_text(case: Case, what_if: WhatIf) -> str:
+    """Return the standing, and beside it what the case's scenarios come to, as lines of text."""
+    return "\n".join(_lines(case, what_if))
 
 
-def _lines(case: Case, standing: Standing) -> Iterator[str]:
+def _lines(case: Case, what_if: WhatIf) -> Iterator[str]:
+    standing = what_if.ink
     yield f"{standing.obligor}, {case.obligor.country}"
     yield f"Figures to {standing.period}, assessed on {standing.assessed_on}"
     yield f"Model {standing.model.name} {standing.model.version}, {standing.model.digest}"
@@ -30,7 +32,9 @@ def _lines(case: Case, standing: Standing) -> Iterator[str]:
         yield _factor(factor)
     if standing.score is not None:
         yield f"  {'score':<{_WIDTH}}{'':>20}  {standing.score:+.4f}"
+    scenarios = tuple(line for answer in what_if.answers for line in _scenario(answer))
     for title, texts in (
+        (f"What if; as the figures stand: {_pd_and_grade(standing)}", scenarios),
         ("Reasons", standing.reasons),
         (
             "Second opinions",
@@ -60,6 +64,24 @@ def _verdict(standing: Standing) -> Iterator[str]:
         yield f"{100 * interval.level:.0f} % interval {bounds}: uncertainty of the fitted coefficients only"
     grade = standing.grade
     yield f"Grade {grade.final}" + (f" (by the model {grade.model})" if grade.model != grade.final else "")
+
+
+def _scenario(answer: Answer) -> Iterator[str]:
+    """Word what a scenario comes to, and what a reader should know of it."""
+    scenario, standing = answer.scenario, answer.standing
+    if standing is None:
+        told = "not worked out"
+    elif scenario.marks:
+        told = _pd_and_grade(standing)
+    else:
+        told = "judged in words" if scenario.judgement else "nothing is marked"
+    yield f"{scenario.name:<{_WIDTH}}  {told}"
+    yield from (f"  {finding.severity.value}: {finding.text}" for finding in answer.findings)
+
+
+def _pd_and_grade(standing: Standing) -> str:
+    pd = "none" if standing.pd_final is None else format_pd(standing.pd_final)
+    return f"PD {pd}, grade {standing.grade.final}"
 
 
 def _factor(factor: FactorStanding) -> str:

@@ -3,7 +3,7 @@
 from collections.abc import Iterator
 
 from creditdesk.case.document import Case
-from creditdesk.case.standing import Standing
+from creditdesk.case.what_if import WhatIf
 from creditdesk.house.book import HouseBook
 from creditdesk.house.pack import pack
 from creditdesk.memo.attach import Attachment, Relationship
@@ -15,14 +15,16 @@ from creditdesk.memo.parts import CASE, HOUSE_BOOK, LEAD_MODEL, RESULT
 LANGUAGE = "en-GB"
 
 
-def unsigned_memo(case_bytes: bytes, case: Case, standing: Standing, result_json: bytes, house: HouseBook) -> bytes:
+def unsigned_memo(case_bytes: bytes, case: Case, asked: WhatIf, result_json: bytes, house: HouseBook) -> bytes:
     """Return the memo as PDF without signatures: equal input gives equal bytes.
 
-    ``case_bytes`` is the case as an exchange file, ``result_json`` the standing as JSON; both are attached as they are.
+    ``case_bytes`` is the case as an exchange file, ``result_json`` what is ``asked`` of it as JSON, the standing with
+    its scenarios; both are attached as they are.
     """
+    standing = asked.ink
     lead = house.models.get(case.model.lead)
     attachments = tuple(_attachments(case_bytes, result_json, house, lead.outside if lead else b""))
-    content = memo_content(case, standing, house, attachments)
+    content = memo_content(case, standing, house, attachments, asked)
     pdf, structure = write_memo(content, standing)
     return finish(
         pdf,

@@ -6,6 +6,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.base.errors import BugError
 from creditdesk.case.document import TEXT_BLOCKS, Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.what_if import WhatIf
 from creditdesk.case.words import long_date
 from creditdesk.charts.words import with_full_stop
 from creditdesk.house.book import HouseBook
@@ -25,6 +26,7 @@ from creditdesk.memo.modelcard import contributions_section, model_section
 from creditdesk.memo.parts import CASE
 from creditdesk.memo.ratiopages import ratios_section
 from creditdesk.memo.text import NIL, REPLACEMENT, pd_text, short_digest
+from creditdesk.memo.whatifpages import what_if_section
 from creditdesk.model.spec import ModelSpec
 from creditdesk.ratios.words import titled
 
@@ -32,9 +34,13 @@ OFFICER_TEXTS = ("request", "weak_spots", "recommendation", "conditions")
 
 
 def memo_content(
-    case: Case, standing: Standing, house: HouseBook, attachments: Sequence[Attachment] = ()
+    case: Case,
+    standing: Standing,
+    house: HouseBook,
+    attachments: Sequence[Attachment] = (),
+    asked: WhatIf | None = None,
 ) -> MemoContent:
-    """Return everything the memo says; nothing is computed here that the standing does not hold."""
+    """Return everything the memo says; nothing is computed here that the standing or what is asked does not hold."""
     mark = next((short_digest(part.sha256) for part in attachments if part.name == CASE), "without digest")
     return MemoContent(
         title=f"Credit memo: {case.obligor.name}",
@@ -46,7 +52,7 @@ def memo_content(
         curve_words=curve_words(standing),
         contribution_words=contribution_words(standing),
         first=first_page(case, standing, house),
-        sections=tuple(_sections(case, standing, house, attachments)),
+        sections=tuple(_sections(case, asked or WhatIf(standing, ()), house, attachments)),
     )
 
 
@@ -60,8 +66,9 @@ def officer_section(case: Case, keys: Sequence[str]) -> Section | None:
     return Section("Texts by the officer", tuple(blocks)) if blocks else None
 
 
-def _sections(case: Case, standing: Standing, house: HouseBook, attachments: Sequence[Attachment]) -> Iterator[Section]:
+def _sections(case: Case, asked: WhatIf, house: HouseBook, attachments: Sequence[Attachment]) -> Iterator[Section]:
     """Yield the sections in the order of the memo."""
+    standing = asked.ink
     yield from _unprintable(case)
     texts = officer_section(case, [key for key in TEXT_BLOCKS if key not in OFFICER_TEXTS])
     if texts is not None:
@@ -71,6 +78,9 @@ def _sections(case: Case, standing: Standing, house: HouseBook, attachments: Seq
     yield findings_section(standing, house)
     yield contributions_section(standing)
     yield _grade_section(standing)
+    what_if = what_if_section(case, asked, house)
+    if what_if is not None:
+        yield what_if
     yield model_section(standing, _spec(standing, house), house)
     opinions = opinions_section(standing)
     if opinions is not None:

@@ -1,14 +1,13 @@
 """Issue memos: drawn, signed, countersigned, each written whole or not at all."""
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import datetime
 from pathlib import Path
 
-from creditdesk.case.assess import assess
 from creditdesk.case.document import Case
 from creditdesk.case.exchange import write_case
 from creditdesk.case.result import result_bytes
+from creditdesk.case.what_if import Step, work_out
 from creditdesk.house.book import HouseBook
 from creditdesk.house.files import read_file, write_file
 from creditdesk.memo.build import unsigned_memo
@@ -18,8 +17,6 @@ from creditdesk.memo.sign import sign_as_approver, sign_as_preparer
 
 Key = tuple[Path, str]
 """Identity file and passphrase."""
-Step = Callable[[str, int, int], object]
-"""Told what begins, how many steps are done, and of how many."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,19 +29,15 @@ class Issued:
     fingerprint: str
 
 
-def _untold(words: str, done: int, total: int) -> None:
-    """Take no notice of a step."""
+def draft_memo(case: Case, house: HouseBook, step: Step | None = None) -> bytes:
+    """Return the unsigned memo; equal cases and house books give equal bytes. ``step``: told how far studies are."""
+    asked = work_out(case, house, step=step)
+    return unsigned_memo(write_case(case, house.chart), case, asked, result_bytes(asked.ink, asked), house)
 
 
-def draft_memo(case: Case, house: HouseBook) -> bytes:
-    """Return the unsigned memo; equal cases and house books give equal bytes."""
-    standing = assess(case, house)
-    return unsigned_memo(write_case(case, house.chart), case, standing, result_bytes(standing), house)
-
-
-def issue_unsigned(case: Case, house: HouseBook, out: Path) -> str:
+def issue_unsigned(case: Case, house: HouseBook, out: Path, step: Step | None = None) -> str:
     """Write the unsigned memo and return a sentence about it."""
-    write_file(out, draft_memo(case, house))
+    write_file(out, draft_memo(case, house, step))
     return f"Unsigned memo written to {out}"
 
 
@@ -53,16 +46,21 @@ def issue_signed(case: Case, house: HouseBook, out: Path, key: Key, now: datetim
     return prepare(case, house, out, key, now).words
 
 
-def prepare(case: Case, house: HouseBook, out: Path, key: Key, now: datetime, step: Step = _untold) -> Issued:
+def prepare(case: Case, house: HouseBook, out: Path, key: Key, now: datetime, step: Step | None = None) -> Issued:
     """Write the memo signed by the preparer; ``step`` is told how far it is and may raise to end it."""
-    step("Opening the identity", 0, 3)
+    tell = step or _untold
+    tell("Opening the identity", 0, 3)
     identity = load_identity(*key, now=now)
-    step("Writing the memo", 1, 3)
-    memo = draft_memo(case, house)
-    step("Signing", 2, 3)
+    tell("Writing the memo", 1, 3)
+    memo = draft_memo(case, house, step)
+    tell("Signing", 2, 3)
     write_file(out, sign_as_preparer(memo, identity, time=now))
     words = f"Signed memo written to {out}, certificate SHA-256 {identity.fingerprint_sha256}"
     return Issued(out, words, identity.name, identity.fingerprint_sha256)
+
+
+def _untold(words: str, done: int, total: int) -> None:
+    """Take no notice of a step."""
 
 
 def countersign(memo: Path, out: Path, key: Key, decision: tuple[Decision, str], now: datetime) -> str:

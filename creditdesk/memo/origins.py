@@ -2,7 +2,7 @@
 
 from collections.abc import Mapping
 
-OBLIGOR, FIGURES, RATIOS, STANDING, MEMO = "Obligor", "Figures", "Ratios", "Standing", "Memo"
+OBLIGOR, FIGURES, RATIOS, PENCIL, STANDING, MEMO = "Obligor", "Figures", "Ratios", "Pencil", "Standing", "Memo"
 
 ORIGINS: Mapping[str, tuple[str, ...]] = {
     "The decision on one page": (OBLIGOR, STANDING, RATIOS, MEMO),
@@ -14,6 +14,7 @@ ORIGINS: Mapping[str, tuple[str, ...]] = {
     "Findings": (STANDING,),
     "Contributions of all factors": (STANDING,),
     "From score to grade": (STANDING,),
+    "What-if and stress": (PENCIL,),
     "Model": (OBLIGOR,),
     "Second opinions": (STANDING,),
     "Master scale": (STANDING,),

@@ -53,9 +53,17 @@ def key_ratios(standing: Standing, house: HouseBook) -> tuple[tuple[str, ...], t
         if key in standing.ratios.index:
             spec = house.catalogue.spec(key)
             values = tuple(_value(standing, key, number) for number in range(len(heads)))
-            texts = tuple(_text(standing, spec, number) for number in range(len(heads)))
+            texts = tuple(value_text(standing, spec, number) for number in range(len(heads)))
             found.append(KeyRatio(spec.label, texts[-_SHOWN:], values))
     return heads[-_SHOWN:], tuple(found)
+
+
+def value_text(standing: Standing, spec: RatioSpec, period: int) -> str:
+    """Write a ratio of one period, or in few words why it has no value."""
+    value = _value(standing, spec.key, period)
+    if value is not None:
+        return ratio_text(value, spec.unit)
+    return REASON_WORDS[standing.ratios.reason(spec.key, period).key]
 
 
 def _rows(standing: Standing, house: HouseBook) -> Iterator[Row]:
@@ -72,7 +80,7 @@ def _ratio_row(standing: Standing, spec: RatioSpec) -> Row:
     cells = [Cell(spec.label)]
     for number in range(len(standing.statements.periods)):
         value = _value(standing, spec.key, number)
-        text = _text(standing, spec, number)
+        text = value_text(standing, spec, number)
         if value is not None and standing.ratios.annualised[standing.ratios.index[spec.key], number]:
             text = f"{text} a"
         cells.append(Cell(text, value, Tone.PLAIN if value is not None else Tone.WORDS))
@@ -107,10 +115,3 @@ def _value(standing: Standing, key: str, period: int) -> float | None:
     table = standing.ratios
     row = table.index[key]
     return None if table.reasons[row, period] else float(table.values[row, period])
-
-
-def _text(standing: Standing, spec: RatioSpec, period: int) -> str:
-    value = _value(standing, spec.key, period)
-    if value is not None:
-        return ratio_text(value, spec.unit)
-    return REASON_WORDS[standing.ratios.reason(spec.key, period).key]

@@ -12,9 +12,9 @@ import pikepdf
 import pikepdf.pdfa
 import pytest
 
-from creditdesk.case.assess import assess
 from creditdesk.case.exchange import read_case, write_case
 from creditdesk.case.result import result_bytes
+from creditdesk.case.what_if import work_out
 from creditdesk.house.book import HouseBook, LoadedModel, with_model
 from creditdesk.house.load import load_house_book
 from creditdesk.house.pack import unpack
@@ -31,8 +31,9 @@ def demonstration_memo(name: str, house: HouseBook | None = None) -> bytes:
     house = house or load_house_book(resources_folder() / "housebook")
     path = resources_folder() / "demo" / f"{name}.case.toml"
     case = read_case(path.read_bytes(), house.chart, file=path.name)
-    standing = assess(case, house)
-    return unsigned_memo(write_case(case, house.chart), case, standing, result_bytes(standing), house)
+    asked = work_out(case, house)
+    result = result_bytes(asked.ink, asked)
+    return unsigned_memo(write_case(case, house.chart), case, asked, result, house)
 
 
 @pytest.fixture(scope="module")

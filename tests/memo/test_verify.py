@@ -15,9 +15,9 @@ from hypothesis import strategies as st
 from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
 
 from creditdesk.base.errors import UserError
-from creditdesk.case.assess import assess
 from creditdesk.case.exchange import write_case
 from creditdesk.case.result import result_bytes
+from creditdesk.case.what_if import work_out
 from creditdesk.house.book import HouseBook, Signer
 from creditdesk.memo.attach import attachments
 from creditdesk.memo.build import unsigned_memo
@@ -41,10 +41,10 @@ def listing(*signers: Signer) -> HouseBook:
 def memo_with_result(change: Callable[[dict[str, Any]], object]) -> bytes:
     """Draw the memo of the sound case with a result in it that its assessment does not give."""
     case = demo()
-    standing = assess(case, HOUSE)
-    recorded = json.loads(result_bytes(standing))
+    asked = work_out(case, HOUSE)
+    recorded = json.loads(result_bytes(asked.ink, asked))
     change(recorded)
-    return unsigned_memo(write_case(case, HOUSE.chart), case, standing, json.dumps(recorded).encode(), HOUSE)
+    return unsigned_memo(write_case(case, HOUSE.chart), case, asked, json.dumps(recorded).encode(), HOUSE)
 
 
 @pytest.fixture(scope="module")
