@@ -7,6 +7,7 @@ from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QHBoxLayout, QPushButton, QTableWidgetItem
 
 from creditdesk.base.errors import UserError
+from creditdesk.case.reach_words import reach_words
 from creditdesk.case.studies import ReachAnswer
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.fields import set_role
@@ -15,7 +16,6 @@ from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import Choice, FormTable, cell, tick_cell, typed_cell
 from creditdesk.desk.pencil.study_marks import put_marks
 from creditdesk.desk.pencil.study_page import Asked, KeptPage, Words
-from creditdesk.desk.pencil.study_reach_words import reach_words
 from creditdesk.desk.pencil.study_words import read_number, read_position, typed_position, unit_words
 from creditdesk.grading.scale import DEFAULT_GRADE
 from creditdesk.scenario.marks import Scenario
@@ -75,7 +75,7 @@ class ReachPage(KeptPage[ReachSpec]):
         """Show the plan, or why there is none."""
         self._found = result
         before = asked.board.scenario(asked.scenario or Scenario(""))
-        self.words.say(reach_words(self.draft, result, before.standing))
+        self.words.say(reach_words(self.draft.targets, result, before.standing))
         reached = result.found.kind is ReachKind.REACHED
         self.take.setText(_TAKE if reached else _TAKE_BEST)
         self.take.setVisible(bool(result.marks))

@@ -6,8 +6,7 @@ from math import isnan, nan
 from creditdesk.case.standing import Standing
 from creditdesk.case.studies import ReachAnswer
 from creditdesk.case.study_words import pd_words
-from creditdesk.case.targets import Target, TargetKind, mark_words
-from creditdesk.desk.pencil.draft import PencilDraft
+from creditdesk.case.targets import Target, TargetBook, TargetKind, mark_words
 from creditdesk.grading.scale import NO_GRADE
 from creditdesk.scenario.marks import Mark
 from creditdesk.scenario.reach import ReachKind
@@ -16,13 +15,13 @@ _COUNTS = ("no levers", "one lever", "two levers", "three levers", "four levers"
            "seven levers", "eight levers", "nine levers", "ten levers")  # fmt: skip
 
 
-def moved_words(draft: PencilDraft, marks: Sequence[Mark], sides: tuple[Standing, Standing]) -> dict[str, str]:
+def moved_words(targets: TargetBook, marks: Sequence[Mark], sides: tuple[Standing, Standing]) -> dict[str, str]:
     """Write what each mark of a plan does, by target: Inventory days 74 → 61 days; ``sides``: before and under it."""
-    found = ((mark, draft.targets.find(mark.target)) for mark in marks)
+    found = ((mark, targets.find(mark.target)) for mark in marks)
     return {mark.target: _moved(mark, target, sides) for mark, target in found if target is not None}
 
 
-def reach_words(draft: PencilDraft, answer: ReachAnswer, before: Standing) -> str:
+def reach_words(targets: TargetBook, answer: ReachAnswer, before: Standing) -> str:
     """Say what was found, in sentences."""
     found, goal = answer.found, f"grade {answer.found.spec.grade}"
     comes_to = f"PD {pd_words(found.pd)}, grade {answer.grade}"
@@ -33,34 +32,34 @@ def reach_words(draft: PencilDraft, answer: ReachAnswer, before: Standing) -> st
             return f"Nothing has to move for {goal}: {comes_to}."
         case ReachKind.REACHED:
             count = _COUNTS[len(found.spec.levers)] if len(found.spec.levers) < len(_COUNTS) else "the levers ticked"
-            first = f"Smallest plausible change over {count}: {_plan(draft, answer, before)}. It comes to {comes_to}."
+            first = f"Smallest plausible change over {count}: {_plan(targets, answer, before)}. It comes to {comes_to}."
         case ReachKind.RULES:
             rules = "; ".join(rule.reason.rstrip(".") for rule in answer.caps) or "a house rule"
             first = f"Not reachable: the PD alone would get to {goal}, but the house caps: {rules}."
         case ReachKind.NOT_REACHED:
             first = f"Not reachable: within these ranges the PD does not get to {goal}."
-    return " ".join(filter(None, (first, _best(draft, answer, before), *_notes(draft, answer))))
+    return " ".join(filter(None, (first, _best(targets, answer, before), *_notes(targets, answer))))
 
 
-def _best(draft: PencilDraft, answer: ReachAnswer, before: Standing) -> str:
+def _best(targets: TargetBook, answer: ReachAnswer, before: Standing) -> str:
     if answer.found.kind is ReachKind.REACHED:
         return ""
     if answer.best_grade == NO_GRADE:
         return "No grade is met within them."
-    plan = _plan(draft, answer, before)
+    plan = _plan(targets, answer, before)
     way = f", by {plan}" if plan else ""
     return f"Best within them: grade {answer.best_grade}, PD {pd_words(answer.found.pd)}{way}."
 
 
-def _plan(draft: PencilDraft, answer: ReachAnswer, before: Standing) -> str:
+def _plan(targets: TargetBook, answer: ReachAnswer, before: Standing) -> str:
     held = set(answer.found.held)
     moving = [mark for mark in answer.marks if mark.target not in held]
-    words = moved_words(draft, moving, (before, answer.plan.standing))
+    words = moved_words(targets, moving, (before, answer.plan.standing))
     return ", ".join(f"{text[:1].lower()}{text[1:]}" for text in words.values())
 
 
-def _notes(draft: PencilDraft, answer: ReachAnswer) -> list[str]:
-    found, name = answer.found, draft.targets.label
+def _notes(targets: TargetBook, answer: ReachAnswer) -> list[str]:
+    found, name = answer.found, targets.label
     notes = []
     if found.active and found.kind is ReachKind.REACHED:
         word = "Active bound" if len(found.active) == 1 else "Active bounds"
