@@ -27,7 +27,7 @@ Solver = Callable[[Margin, FloatArray, FloatArray, FloatArray], Pieces]
 ENUMERATED_MOST = 200_000
 """Combinations of steps that are all tried, where every lever moves in steps."""
 _SPREAD_MOST, _SCATTERED = 8192, 512
-_SCREENED, _IMPROVED = 128, 4
+_SCREENED, _LIKELY, _IMPROVED = 128, 32, 4
 _AT_ONCE = 256
 _COARSE, _EXACT = 1e-3, 3e-10
 """How near a point is pulled, as a share of its distance from where it is pulled to."""
@@ -295,9 +295,11 @@ class Search:
             return point
         found = yield from self.ask_all(points)
         points, targets = points[found.reaches], targets[found.reaches]
-        coarse = yield from self._stepped(points, (yield from self._nearest(points, targets, _COARSE)))
-        first = np.argsort(self.levers.costs(coarse), kind="stable")[:_IMPROVED]
-        pulled = yield from self._pulled(coarse[first], _EXACT)
+        for within, kept in ((_COARSE, _LIKELY), (_EXACT, _IMPROVED)):
+            near = yield from self._stepped(points, (yield from self._nearest(points, targets, within)))
+            first = np.argsort(self.levers.costs(near), kind="stable")[:kept]
+            points, targets, near = points[first], targets[first], near[first]
+        pulled = yield from self._pulled(near, _EXACT)
         return min([point, *pulled], key=self.cost)
 
     def _pairs(self, point: FloatArray) -> tuple[FloatArray, FloatArray]:
