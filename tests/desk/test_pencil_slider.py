@@ -9,8 +9,8 @@ from pytestqt.qtbot import QtBot
 
 from creditdesk.case.assess import assess
 from creditdesk.case.document import Case
+from creditdesk.case.targets import TargetBook
 from creditdesk.desk.pencil.span import converted, span_of, usual_kind
-from creditdesk.desk.pencil.targets import TargetBook
 from creditdesk.flow.moves import MoveKind
 from creditdesk.house.book import HouseBook
 from creditdesk.scenario.marks import Mark

@@ -5,7 +5,7 @@ import pytest
 from creditdesk.base.errors import UserError
 from creditdesk.case.assess import assess
 from creditdesk.case.document import Case
-from creditdesk.desk.pencil.targets import Target, TargetBook
+from creditdesk.case.targets import Target, TargetBook
 from creditdesk.desk.pencil.typed import mark_words, read_mark, write_mark
 from creditdesk.flow.moves import MoveKind
 from creditdesk.house.book import HouseBook

@@ -14,11 +14,11 @@ from creditdesk.case.pencil_commands import (
     SetScenarioInMemo,
     inked_adjustment,
 )
+from creditdesk.case.targets import TargetKind
 from creditdesk.case.words import period_heads
 from creditdesk.desk.actions import Entry
 from creditdesk.desk.pencil.dialogs import EventDialog, InkInDialog, NameDialog
 from creditdesk.desk.pencil.draft import PencilDraft
-from creditdesk.desk.pencil.targets import TargetKind
 from creditdesk.scenario.marks import Mark, Scenario
 
 _NEW_NAME = "What if"

@@ -17,9 +17,9 @@ from PySide6.QtWidgets import (
 )
 
 from creditdesk.base.errors import UserError
+from creditdesk.case.targets import TargetBook
 from creditdesk.desk.dialogs import Question
 from creditdesk.desk.frame import label
-from creditdesk.desk.pencil.targets import TargetBook
 from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.stress import StressBook, StressEvent, scenario_of

@@ -10,7 +10,7 @@ from creditdesk.case.commands import Command
 from creditdesk.case.document import Case
 from creditdesk.case.pencil import PencilBoard, Pencilled
 from creditdesk.case.pencil_commands import AddScenario, RubOut, SetMarks, free_name
-from creditdesk.desk.pencil.targets import TargetBook
+from creditdesk.case.targets import TargetBook
 from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.desk.session import Session
 from creditdesk.scenario.marks import Mark, Scenario

@@ -7,7 +7,7 @@ from enum import StrEnum
 
 from creditdesk.case.pencil import Pencilled
 from creditdesk.case.standing import Standing
-from creditdesk.desk.pencil.targets import Target, TargetBook, TargetKind
+from creditdesk.case.targets import Target, TargetBook, TargetKind
 from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.desk.tables.rows import Choice, RowKind, figure_rows
 from creditdesk.flow.moves import MoveKind

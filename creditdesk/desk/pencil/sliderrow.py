@@ -7,13 +7,13 @@ from PySide6.QtGui import QFocusEvent, QKeyEvent, QMouseEvent, QWheelEvent
 from PySide6.QtWidgets import QHBoxLayout, QPushButton, QSizePolicy, QSlider, QWidget
 
 from creditdesk.base.errors import UserError
+from creditdesk.case.targets import Target
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.fields import ChoiceField, TextField, set_role
 from creditdesk.desk.frame import Elided, label
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.rows import PencilFacts
 from creditdesk.desk.pencil.span import Span, converted, span_of, usual_kind
-from creditdesk.desk.pencil.targets import Target
 from creditdesk.desk.pencil.typed import KIND_WORDS, read_mark, write_mark
 from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.marks import Mark

@@ -3,7 +3,7 @@
 import math
 from dataclasses import dataclass
 
-from creditdesk.desk.pencil.targets import Target, TargetBook, TargetKind
+from creditdesk.case.targets import Target, TargetBook, TargetKind
 from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.flow.book import Driver
 from creditdesk.flow.moves import Move, MoveKind
