@@ -2,7 +2,7 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
-from math import isfinite, isnan, nan
+from math import isnan, nan
 from typing import TypeAlias
 
 import msgspec
@@ -28,7 +28,7 @@ from creditdesk.scenario.sensitivity import Sensitivity, around, sensitivities
 from creditdesk.scenario.simulate import Spread, simulate
 from creditdesk.scenario.specs import BreakEvenSpec, GridSpec, Lever, Range, ReachSpec, SimulationSpec, StudySpec
 
-NO_START = "It is not known where the scenario stands in the unit of this lever."
+NO_START = "It is nil or not known where the scenario stands, so there is nothing to move from in this unit."
 
 _NOISE = 1e-12
 
@@ -134,7 +134,7 @@ def sensitivity(
 
 
 def starts_of(board: PencilBoard, house: HouseBook, scenario: Scenario, ranges: Sequence[Range]) -> Starts:
-    """Say where a scenario stands in ranges: by its marks, or by what they move; without what cannot be told there."""
+    """Say where a scenario stands in ranges: by its marks, or by what they move; nan where none tells."""
     moves, after = moves_of(scenario.marks), board.scenario(scenario).standing
     found = {}
     for one in ranges:
@@ -147,7 +147,7 @@ def starts_of(board: PencilBoard, house: HouseBook, scenario: Scenario, ranges: 
             ink = amount_of(board.ink, one.target)
             value = amount_of(after, one.target) if move is None else float(move.moved(ink))
             found[one.target] = _told_in(one.kind, value, value - ink, ink)
-    return {target: start for target, start in found.items() if isfinite(start)}
+    return found
 
 
 def refused_levers(board: PencilBoard, scenario: Scenario, levers: Sequence[Lever]) -> Mapping[str, str]:

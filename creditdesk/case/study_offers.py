@@ -1,6 +1,7 @@
 """Studies offered for a scenario as they stand, so that one click answers; every number of them can be changed."""
 
 from collections.abc import Iterator, Mapping
+from math import isnan
 
 from creditdesk.base.errors import UserError
 from creditdesk.case.document import Case
@@ -41,7 +42,7 @@ def offered_studies(board: PencilBoard, house: HouseBook, case: Case, name: str)
     scenario = scenario_on(case, name)
     here = board.scenario(scenario)
     along = {
-        one.target: _widened(one, starts_of(board, house, scenario, (one,)).get(one.target))
+        one.target: _widened(one, starts_of(board, house, scenario, (one,))[one.target])
         for one in usual_ranges(flow, (flow.roles.revenue, OPERATING_RESULT, INTEREST_RATE))
     }
     sales, rate = along[flow.roles.revenue], along[INTEREST_RATE]
@@ -106,8 +107,8 @@ def _simulation(house: HouseBook, here: Pencilled, name: str, sales: str) -> Sim
     return SimulationSpec(scenario=name, inputs=inputs, coefficients=fitted)
 
 
-def _widened(usual: Range, at: float | None) -> Range:
+def _widened(usual: Range, at: float) -> Range:
     """Let a range hold where the scenario stands."""
-    if at is None:
+    if isnan(at):
         return usual
     return Range(usual.target, usual.kind, min(usual.low, at), max(usual.high, at))
