@@ -40,6 +40,8 @@ GROUND, DOTS = "ground", "dots"
 _BANDS = 24
 _DOT = 4.2
 _KEY_WIDTH = 7.0
+_UNDER = 0.95
+"""Between the sheet and the numbers below it, in type sizes, so that those at its side do not touch them."""
 _NO_RULE = 1e-3
 """Log-odds by which a point stands beyond a grade's edge where a rule, not the PD, puts it there."""
 _STEPS = (1.0, 2.0, 2.5, 5.0)
@@ -194,7 +196,7 @@ def _frame(picture: GridPicture, size: Size, points: float) -> GridFrame:
     grid = picture.grid
     sides = ((float(grid.across[0]), float(grid.across[-1])), (float(grid.up[0]), float(grid.up[-1])))
     top = size[1] - (1.0 + LINE_HEIGHT) * points
-    bottom = (2 * LINE_HEIGHT + 0.6) * points
+    bottom = (2 * LINE_HEIGHT + _UNDER) * points
     labels = [picture.up.write(at) for at in _ticks(sides[1], max(top - bottom, 40.0) / (2.2 * points))]
     left = max((text_width(words, points) for words in labels), default=0.0) + 6
     ends = [picture.across.write(at) for at in sides[0]]
@@ -326,7 +328,7 @@ def _draw_axes(board: Board, picture: GridPicture, frame: GridFrame, palette: Pa
     plot, size = frame.plot, type_size(palette)
     style, pen = Type(palette.second_ink, size, align="center"), Pen(palette.second_ink, 0.6)
     widest = max(text_width(picture.across.write(at), size) for at in frame.across)
-    baseline = plot.bottom - (0.6 + CAP_HEIGHT) * size
+    baseline = plot.bottom - (_UNDER + CAP_HEIGHT) * size
     for at in _ticks(frame.across, (plot.right - plot.left) / (widest + 2 * size)):
         x = frame.x(at)
         board.line(GROUND, [(x, plot.bottom), (x, plot.bottom - 2.5)], pen)

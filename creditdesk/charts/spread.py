@@ -149,7 +149,7 @@ def _frame(picture: SpreadPicture, size: Size, points: float) -> SpreadFrame:
     inside = np.flatnonzero(picture.spread.counts)
     shown = [float(edges[inside[0]]), float(edges[inside[-1] + 1])] if inside.size else []
     known = [float(one) for one in picture.spread.quantiles]
-    scale = scale_for([*shown, *known, picture.pd], (text_width("0.01 %", points) / 2, right))
+    scale = scale_for([*shown, *known, picture.pd], (text_width("0.0001 %", points) / 2, right))
     bottom, top = (2 * LINE_HEIGHT + 0.6) * points, size[1] - (3 * LINE_HEIGHT + 0.9) * points
     rows = Box(right + _GAP, bottom, size[0], size[1] - (LINE_HEIGHT + 0.6) * points)
     return SpreadFrame(scale, bottom, max(top, bottom + 20), rows)
