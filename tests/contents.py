@@ -23,10 +23,10 @@ from creditdesk.memo.blocks import (
 
 KEY_RATIOS = (
     KeyRatio("Equity ratio", ("43.3 %", "44.7 %", "50.3 %"), (0.433, 0.447, 0.503)),
-    KeyRatio("Debt to EBITDA", ("2.19x", "2.30x", "1.61x"), (2.19, 2.3, 1.61)),
-    KeyRatio("Interest cover", ("5.35x", "3.85x", "5.92x"), (5.35, 3.85, 5.92)),
+    KeyRatio("Debt to EBITDA", ("2.19×", "2.30×", "1.61×"), (2.19, 2.3, 1.61)),
+    KeyRatio("Interest cover", ("5.35×", "3.85×", "5.92×"), (5.35, 3.85, 5.92)),
     KeyRatio("Operating margin", ("7.6 %", "6.5 %", "8.2 %"), (0.076, 0.065, 0.082)),
-    KeyRatio("Current ratio", ("1.68x", "not disclosed", "1.78x"), (1.68, None, 1.78)),
+    KeyRatio("Current ratio", ("1.68×", "not disclosed", "1.78×"), (1.68, None, 1.78)),
 )
 WORDS = (
     "Approve a term loan of 2,500 over five years, margin not below 2.35 %, secured on the line that it finances, with "
@@ -47,13 +47,13 @@ def first_page(**changes: object) -> FirstPage:
         key_heads=("2023", "2024", "2025"),
         key_ratios=KEY_RATIOS,
         spots_found=(
-            Spot("Interest cover 5.92x, the reference borrower's 7.40x: +0.27 log-odds."),
+            Spot("Interest cover 5.92×, the reference borrower's 7.40×: +0.27 log-odds."),
             Spot("Quick ratio 0.97, the reference borrower's 1.05: +0.08 log-odds."),
             Spot("Inventories, 2025: Inventories turn in 74 days, slower than 90 % of the sample.", "▲"),
         ),
         weak_spots="One mill, one site: a longer standstill would stop all sales.",
         recommendation=WORDS,
-        conditions="Interest cover at least 2.5x, tested half-yearly; no dividend while debt to EBITDA exceeds 3.0x.",
+        conditions="Interest cover at least 2.5×, tested half-yearly; no dividend while debt to EBITDA exceeds 3.0×.",
         caution="Invented demonstration, not for lending. An estimate from a configured model, not a decision.",
     )
     return replace(page, **changes)  # type: ignore[arg-type]

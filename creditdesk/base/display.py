@@ -1,4 +1,4 @@
-"""Numbers as people read them: probabilities, amounts, multiples, days, percentages.
+"""Numbers and dates as people read them: probabilities, amounts, multiples, days, percentages.
 
 Only for the screen and for paper; nothing computed is ever rounded here. An unknown number (nan) is shown blank,
 because blank means *not disclosed* and a reason in words belongs beside it.
@@ -6,12 +6,19 @@ because blank means *not disclosed* and a reason in words belongs beside it.
 
 import math
 from dataclasses import dataclass
+from datetime import date
 
 MINUS = "\u2212"
 NARROW_SPACE = "\u202f"
 """Thin thousands space; the sans-serif family has it, the serif family has not."""
 FIXED_SPACE = "\u00a0"
 """Space that no line break may replace; both families have it."""
+TIMES = "×"
+"""Stands behind a multiple, close to it, so that it is not read as a multiplication; both families have it."""
+_MONTHS = (
+    "January", "February", "March", "April", "May", "June", "July", "August", "September", "October", "November",
+    "December",
+)  # fmt: skip
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,9 +71,9 @@ def format_number(value: float, decimals: int, style: NumberStyle = PLAIN) -> st
 
 
 def format_times(multiple: float, decimals: int = 2, style: NumberStyle = PLAIN) -> str:
-    """Write a multiple: 2.50x."""
+    """Write a multiple: 2.50×."""
     written = format_number(multiple, decimals, style)
-    return f"{written}x" if written else ""
+    return f"{written}{TIMES}" if written else ""
 
 
 def format_percent(fraction: float, decimals: int = 1, style: NumberStyle = PLAIN) -> str:
@@ -78,6 +85,11 @@ def format_days(days: float, decimals: int = 0, style: NumberStyle = PLAIN) -> s
     """Write a number of days: 1 day, 64 days."""
     written = format_number(days, decimals, style)
     return _with_unit(written, "day" if written.removeprefix(MINUS) == "1" else "days", style)
+
+
+def long_date(day: date) -> str:
+    """Write a date in full, the same in every locale: 31 December 2025."""
+    return f"{day.day}{FIXED_SPACE}{_MONTHS[day.month - 1]} {day.year}"
 
 
 def _digits(magnitude: float, decimals: int, style: NumberStyle) -> str:

@@ -5,7 +5,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from enum import Enum, auto
 
-from creditdesk.base.display import FIXED_SPACE, MINUS, format_amount, format_number
+from creditdesk.base.display import FIXED_SPACE, MINUS, TIMES, format_amount, format_number
 from creditdesk.case.standing import Standing
 from creditdesk.case.words import amount_decimals
 from creditdesk.flow.book import DRIVERS, Driver, DriverUnit, FlowBook, UsualRange
@@ -32,7 +32,7 @@ _UNITS = {
     DriverUnit.PERCENT: f"{FIXED_SPACE}%",
     DriverUnit.BASIS_POINTS: f"{FIXED_SPACE}bp",
     Unit.PERCENT: f"{FIXED_SPACE}%",
-    Unit.TIMES: "x",
+    Unit.TIMES: TIMES,
     Unit.DAYS: f"{FIXED_SPACE}days",
 }
 _DECIMALS = {Unit.PERCENT: 1, Unit.TIMES: 2, Unit.LOG: 2, Unit.NUMBER: 2}

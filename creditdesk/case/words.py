@@ -1,21 +1,17 @@
 """Words for an obligor, its periods and dates: the same in window, charts and memo, and in every locale."""
 
 from collections.abc import Sequence
-from datetime import date
 
 import numpy as np
 from numpy.typing import NDArray
 
 from creditdesk.base.display import FIXED_SPACE
+from creditdesk.base.display import long_date as long_date
 from creditdesk.case.document import Case
 from creditdesk.case.sectors import SECTIONS_ISIC4 as SECTIONS_ISIC4
 from creditdesk.case.sectors import section_name, short_scheme
 from creditdesk.statements.period import Opinion, Period, period_label
 
-_MONTHS = (
-    "January", "February", "March", "April", "May", "June", "July", "August", "September", "October", "November",
-    "December",
-)  # fmt: skip
 _OPINIONS = {
     Opinion.UNQUALIFIED: "unqualified opinion",
     Opinion.QUALIFIED: "qualified opinion",
@@ -25,11 +21,6 @@ _OPINIONS = {
 _UNITS = {1: "", 1000: f"{FIXED_SPACE}thousands", 1_000_000: f"{FIXED_SPACE}millions"}
 _LARGE, _MIDDLING = 10_000.0, 100.0
 _WHOLE = 1e-9
-
-
-def long_date(day: date) -> str:
-    """Write a date in full, the same in every locale: 31 December 2025."""
-    return f"{day.day}{FIXED_SPACE}{_MONTHS[day.month - 1]} {day.year}"
 
 
 def unit_words(case: Case) -> str:

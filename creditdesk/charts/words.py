@@ -10,7 +10,7 @@ from creditdesk.statements.period import period_label
 
 
 def ratio_text(value: float, unit: str) -> str:
-    """Write a ratio in its unit: 26.5 %, 2.50x, 64 days, 1 250."""
+    """Write a ratio in its unit: 26.5 %, 2.50×, 64 days, 1 250."""
     return format_ratio(value, Unit(unit))
 
 

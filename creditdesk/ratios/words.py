@@ -57,7 +57,7 @@ def with_full_stop(words: str) -> str:
 
 
 def format_ratio(value: float, unit: Unit, style: NumberStyle = PLAIN) -> str:
-    """Write a ratio as its unit asks: 26.5 %, 2.50x, 64 days, 1 200; blank for nan."""
+    """Write a ratio as its unit asks: 26.5 %, 2.50×, 64 days, 1 200; blank for nan."""
     match unit:
         case Unit.PERCENT:
             return format_percent(value, style=style)

@@ -98,8 +98,8 @@ def test_units_stand_behind_a_space_that_does_not_break() -> None:
     assert format_days(64.4) == "64\u00a0days"
     assert format_days(1.2) == "1\u00a0day"
     assert format_days(-1.0) == "\u22121\u00a0day"
-    assert format_times(2.5) == "2.50x"
-    assert format_times(-1234.5, 1) == "\u22121\u202f234.5x"
+    assert format_times(2.5) == "2.50×"
+    assert format_times(-1234.5, 1) == "\u22121\u202f234.5×"
 
 
 def test_unknown_is_blank() -> None:

@@ -31,7 +31,7 @@ def test_four_at_most_the_largest_first_as_the_contributions_say() -> None:
 
 def test_a_reason_states_the_value_and_the_reference_borrower_s() -> None:
     one = assess(changed(demo(), finance_costs=(548.0, 702.0, 3_000.0)), HOUSE)
-    assert "Interest cover of 1.21x, against 3.93x of the reference borrower, contributes +0.18" in reasons_of(one)[0]
+    assert "Interest cover of 1.21×, against 3.93× of the reference borrower, contributes +0.18" in reasons_of(one)[0]
 
 
 def test_a_blank_that_raises_the_pd_is_named_with_what_is_missing() -> None:

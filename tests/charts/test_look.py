@@ -23,13 +23,13 @@ def _lines(shown: Standing, key: str = "interest_cover") -> dict[str, str]:
 
 def test_every_step_from_ratio_to_score_is_laid_open() -> None:
     assert _lines(standing(factors=(_one(),))) == {
-        "Value": "5.92x",
-        "Treated as": "5.92x",
-        "Caps": "from −4.06x to 29.60x",
+        "Value": "5.92×",
+        "Treated as": "5.92×",
+        "Caps": "from −4.06× to 29.60×",
         "Transform": "sign of x times ln(1 + |x|), less 1.5953, divided by 2",
         "Coefficient": "−0.2337 on a term of 0.3384 (reference borrower:\u00a00)",
         "If no interest": "−0.0343, does not apply here",
-        "Reference borrower": "5.33x",
+        "Reference borrower": "5.33×",
         "Contribution": "−0.079 log-odds, lowers PD",
         "Share of the PD": "−0.16 percentage points (Aumann and Shapley 1974)",
         "In the sample": "above 60\u00a0% of the development sample",
@@ -38,7 +38,7 @@ def test_every_step_from_ratio_to_score_is_laid_open() -> None:
 
 def test_a_cap_that_was_met_is_named() -> None:
     shown = standing(factors=(replace(_one(), value=40.0, treated=29.6, capped=True),))
-    assert _lines(shown)["Treated as"] == "29.60x, the cap"
+    assert _lines(shown)["Treated as"] == "29.60×, the cap"
 
 
 def test_a_ratio_without_a_value_shows_reason_rule_and_evidence() -> None:

@@ -29,7 +29,7 @@ def test_the_largest_moves_come_first_with_both_values() -> None:
     by_key = {row.key: row for row in way.rows}
     assert by_key["ebit_to_assets"].value == "9.7\u00a0% → 12.6\u00a0%"
     assert by_key["equity_ratio"].value == "50.0\u00a0%"  # nothing to see at this precision
-    assert by_key["interest_cover"].value == "no debt → 5.92x"
+    assert by_key["interest_cover"].value == "no debt → 5.92×"
     assert not by_key["interest_cover"].known
 
 

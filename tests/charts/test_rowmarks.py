@@ -44,7 +44,7 @@ def test_a_row_leads_to_its_ratio_in_the_assessed_period() -> None:
 def test_a_row_says_value_reference_contribution_and_share_of_the_pd() -> None:
     by_key = {mark.key: mark.words for mark in _marks().rows}
     assert by_key["interest_cover"] == (
-        "Interest cover 5.92x, reference 5.33x: +0.27 log-odds, raises PD; +0.54 percentage points of PD"
+        "Interest cover 5.92×, reference 5.33×: +0.27 log-odds, raises PD; +0.54 percentage points of PD"
     )
     moved = {mark.key: mark.words for mark in _marks(moved=True).rows}
     assert moved["ebit_to_assets"] == (

@@ -38,7 +38,7 @@ def test_the_strip_follows_the_cursor_with_value_and_numbers(hands: Hands) -> No
     strip = hands.sheet.strip
     assert strip.title.text() == "Finance costs 2025"
     assert strip.provenance.accessibleName() == "received 612, no adjustment"
-    assert uses(hands)[0] == ["◆", "Interest cover (EBIT)", "5.92x", "= 3\u202f620 ÷ 612"]
+    assert uses(hands)[0] == ["◆", "Interest cover (EBIT)", "5.92×", "= 3\u202f620 ÷ 612"]
     assert strip.count.text() == "used by 12 ratios, ◆ 1 in the lead model"
     hands.at("finance_costs", 1)
     assert uses(hands)[0][3] == "= 2\u202f700 ÷ 702"

@@ -46,6 +46,7 @@ def target(book: TargetBook, key: str) -> Target:
         ("equity_ratio", "-2", BY, -0.02),
         ("equity_ratio", "-20%", BY_PCT, -20.0),
         ("interest_cover", "2.5x", TO, 2.5),
+        ("interest_cover", "2.50×", TO, 2.5),
         ("receivable_days", "60 days", TO, 60.0),
         ("receivable_days", "+10", BY, 10.0),
         ("interest_rate", "+200", BY, 200.0),

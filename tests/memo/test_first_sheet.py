@@ -28,7 +28,7 @@ MANY_FACTORS = tuple(factor(f"Factor {number} " * 5, f"r{number}", "times", 1234
 words = st.sampled_from(["Millworks ", "B", "Straße ", "word\n", "Ⓧ ", "1 "])
 texts = st.builds(lambda word, count: word * count, words, st.integers(0, 900))
 names = st.builds(lambda word, count: word * count, words, st.integers(1, 120))
-cells = st.sampled_from(["1.2x", "not disclosed", "−1 234 567 890.00x", "needs prior period " * 4, "a" * 60])
+cells = st.sampled_from(["1.2×", "not disclosed", "−1 234 567 890.00×", "needs prior period " * 4, "a" * 60])
 heads = st.sampled_from(["2025", "Dec 2025 (6 m)", "Mar 2024 (18 m) restated", "31 December 2025"])
 
 
@@ -69,7 +69,7 @@ def test_any_words_fit_one_page(page: FirstPage, many: bool) -> None:
 
 def test_the_longest_of_everything_fits_one_page() -> None:
     long = "Millworks " * 900
-    ratios = (KeyRatio(long, ("−1 234 567 890.00x", long, long), (1.0, None, None)),) * 9
+    ratios = (KeyRatio(long, ("−1 234 567 890.00×", long, long), (1.0, None, None)),) * 9
     page = first_page(
         obligor=long, description=long, request=long, pd=None, pd_text="not usable", pd_notes=(long,) * 3,
         grade="–", grade_note="no grade", key_heads=("Mar 2024 (18 m) restated",) * 3, key_ratios=ratios,

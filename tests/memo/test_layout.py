@@ -159,7 +159,7 @@ def test_no_row_of_a_table_stands_alone_on_a_page() -> None:
 def test_a_grid_of_few_periods_is_as_wide_as_the_text(periods: int) -> None:
     for line in ("Ratio", "A name so long that it would fill half of the width of the page and more"):
         heads = (line, *(str(2025 - number) for number in range(periods)))
-        rows = (Row((Cell(line), *(Cell("1.00x") for _ in range(periods)))),)
+        rows = (Row((Cell(line), *(Cell("1.00×") for _ in range(periods)))),)
         grid = Grid("Ratios", heads, rows, (3.4, *(0.85 for _ in range(periods))))
         (table, *_) = grid_flowables(grid, TEXT_WIDTH)
         assert sum(table._colWidths) == pytest.approx(TEXT_WIDTH)

@@ -65,7 +65,7 @@ def test_words_and_numbers_of_a_plain_ratio() -> None:
     assert trace.words == "Net debt ÷ annual EBITDA"
     assert trace.filled == "1\u202f020 ÷ 1\u202f030"
     assert (trace.numerator, trace.denominator) == (("Net debt", 1_020.0), ("Annual EBITDA", 1_030.0))
-    assert trace.value_text == "0.99x"
+    assert trace.value_text == "0.99×"
     assert trace.definition == shipped_catalogue().spec("net_debt_to_ebitda").definition
 
 
@@ -74,7 +74,7 @@ def test_months_are_seen() -> None:
     trace = _trace(statements, "debt_to_ebitda", 0)
     assert trace.filled == "6 ÷ (1.2 × 12 ÷ 6)"
     assert trace.annualised
-    assert trace.value_text == "2.50x"
+    assert trace.value_text == "2.50×"
 
 
 def test_opening_and_closing_balance_are_seen() -> None:

@@ -14,7 +14,7 @@ from creditdesk.scenario.marks import Mark
 
 _SIGNED = re.compile(r"\s*[+\-−–](?=.*\d)")
 _PERCENT = re.compile(r"\s*(%|per ?cent|pct)\s*$", re.IGNORECASE)
-_OWN_UNIT = re.compile(r"\s*(bp|basis points?|days?|d|x|times|points?|pt)\s*$", re.IGNORECASE)
+_OWN_UNIT = re.compile(r"\s*(bp|basis points?|days?|d|[x×]|times|points?|pt)\s*$", re.IGNORECASE)
 _DIGITS = 15
 """Significant digits of an amount kept: more would be the rounding of a hundredth of a per cent."""
 
