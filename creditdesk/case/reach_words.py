@@ -8,6 +8,7 @@ from creditdesk.case.studies import ReachAnswer
 from creditdesk.case.study_words import pd_words
 from creditdesk.case.targets import Target, TargetBook, TargetKind, mark_words
 from creditdesk.grading.scale import NO_GRADE
+from creditdesk.ratios.words import within
 from creditdesk.scenario.marks import Mark
 from creditdesk.scenario.reach import ReachKind
 
@@ -55,7 +56,7 @@ def _plan(targets: TargetBook, answer: ReachAnswer, before: Standing) -> str:
     held = set(answer.found.held)
     moving = [mark for mark in answer.marks if mark.target not in held]
     words = moved_words(targets, moving, (before, answer.plan.standing))
-    return ", ".join(f"{text[:1].lower()}{text[1:]}" for text in words.values())
+    return ", ".join(map(within, words.values()))
 
 
 def _notes(targets: TargetBook, answer: ReachAnswer) -> list[str]:

@@ -6,7 +6,7 @@ from creditdesk.base.display import format_number, format_pd
 from creditdesk.case.targets import Target, TargetBook, mark_words
 from creditdesk.flow.moves import MoveKind
 from creditdesk.house.book import HouseBook
-from creditdesk.ratios.words import format_ratio
+from creditdesk.ratios.words import format_ratio, within
 from creditdesk.scenario.breakeven import Break, Ending, Side
 from creditdesk.scenario.marks import Mark
 from creditdesk.scenario.specs import Limit, LimitKind, Range
@@ -77,4 +77,4 @@ def side_words(found: Break, side: Side, target: Target, along: tuple[Range, flo
         return f"not known beyond {at}"
     if side.ending is Ending.SAME:
         return f"broken as far as {at}" if found.broken else f"not within {at}"
-    return f"holds again beyond {at}" if found.broken else f"{target.label.lower()} {at}"
+    return f"holds again beyond {at}" if found.broken else f"{within(target.label)} {at}"

@@ -92,8 +92,7 @@ def _event(row: StressRow) -> Json:
 
 def _study(answer: StudyAnswer) -> Json:
     """Return a study as it was asked for, with its result under the name of its kind."""
-    asked = msgspec.to_builtins(answer.spec, str_keys=True)
-    kind = asked["study"]
+    kind = str(answer.spec.__struct_config__.tag)
     found: Mapping[str, Any] | None
     match answer.result:
         case Grid() as grid:
@@ -106,7 +105,14 @@ def _study(answer: StudyAnswer) -> Json:
             found = _spread(spread)
         case None:
             found = None
-    return {**asked, "scenario": answer.spec.scenario, kind: found, "why_none": answer.why}
+    return {"study": kind, **_plain(answer.spec), kind: found, "why_none": answer.why}
+
+
+def _plain(value: Any) -> Any:  # noqa: ANN401  any part of a specification
+    """Return a specification with every setting, the default ones too."""
+    if isinstance(value, msgspec.Struct):
+        return {name: _plain(getattr(value, name)) for name in value.__struct_fields__}
+    return [_plain(one) for one in value] if isinstance(value, tuple) else value
 
 
 def _grid(grid: Grid) -> Json:

@@ -1,8 +1,15 @@
 """What a memo consists of: strings ready to print, with the numbers behind them, and no layout."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import asdict, dataclass
 from enum import StrEnum
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+
+Draw = Callable[[tuple[float, float]], "Figure"]
 
 
 class Tone(StrEnum):
@@ -48,7 +55,8 @@ class Row:
 class Grid:
     """Hold a table: ``heads`` of all columns, ``shares`` of the width; columns of ``words`` stand left, numbers right.
 
-    ``note`` explains marks below the table. ``name`` is what the table shows, for readers that hear it.
+    ``note`` explains marks below the table. ``name`` is what the table shows, for readers that hear it. ``whole``: not
+    broken where a page holds it.
     """
 
     name: str
@@ -57,6 +65,7 @@ class Grid:
     shares: tuple[float, ...]
     words: tuple[int, ...] = (0,)
     note: str = ""
+    whole: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,7 +98,16 @@ class Subheading:
     text: str
 
 
-Block = Grid | Prose | Listing | Pairs | Subheading
+@dataclass(frozen=True, slots=True)
+class Chart:
+    """Hold a chart: ``words`` are read in its place, ``draw`` makes it at a width and height in points."""
+
+    words: str
+    height: float
+    draw: Draw
+
+
+Block = Grid | Chart | Prose | Listing | Pairs | Subheading
 
 
 @dataclass(frozen=True, slots=True)
@@ -163,8 +181,12 @@ class MemoContent:
     sections: tuple[Section, ...]
 
     def plain(self) -> dict[str, object]:
-        """Return the content as plain data that JSON can hold."""
-        return asdict(self)
+        """Return the content as plain data that JSON can hold; of a chart its words."""
+        return asdict(self, dict_factory=_without_drawing)
+
+
+def _without_drawing(fields: list[tuple[str, object]]) -> dict[str, object]:
+    return {name: value for name, value in fields if not callable(value)}
 
 
 def text_row(*texts: str, kind: RowKind = RowKind.LINE, tone: Tone = Tone.PLAIN) -> Row:

@@ -3,12 +3,11 @@
 What may be long is cut to its share and printed in full after the page; the curve takes the height that is left.
 """
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import partial
 from typing import cast
 
-from matplotlib.figure import Figure
 from reportlab.platypus import Flowable, Spacer
 
 from creditdesk.case.standing import Standing
@@ -17,13 +16,12 @@ from creditdesk.charts.curve import curve_figure
 from creditdesk.charts.style import PAPER
 from creditdesk.memo.blocks import MemoContent, Spot
 from creditdesk.memo.cutting import cut_to_lines, lines_of
+from creditdesk.memo.drawings import chart
 from creditdesk.memo.firstpage import NOT_WRITTEN
 from creditdesk.memo.firstparts import NAME_WIDTH, columns, key_ratio_table, masthead, signature_boxes
-from creditdesk.memo.onpaper import draw_figure
 from creditdesk.memo.sheets import heading
-from creditdesk.memo.structure import TaggedCanvas
 from creditdesk.memo.styles import BODY, FOOT_CAUTION, NOTE, SMALL_ITEM, TEXT_HEIGHT, TEXT_WIDTH, marked_up
-from creditdesk.memo.tagging import DASH, TaggedDrawing, TaggedParagraph, tagged_list
+from creditdesk.memo.tagging import DASH, TaggedParagraph, tagged_list
 
 _LEFT, _GUTTER = 258.0, 22.0
 _RIGHT = TEXT_WIDTH - _LEFT - _GUTTER
@@ -59,16 +57,6 @@ def first_sheet(content: MemoContent, standing: Standing) -> FirstSheet:
     curve = chart(lambda size: curve_figure(standing, PAPER, size), (TEXT_WIDTH, height), content.curve_words)
     rest = Spacer(1, max(room - height, 0.0))
     return FirstSheet((*page.above, curve, *page.below, rest, *page.foot), tuple(page.cut))
-
-
-def chart(make: Callable[[tuple[float, float]], Figure], size: tuple[float, float], words: str) -> TaggedDrawing:
-    """Return a chart of ``size`` points as a drawing that is read as ``words``."""
-    figure = make(size)
-
-    def draw(canvas: TaggedCanvas, x: float, y: float, width: float, height: float) -> None:
-        draw_figure(figure, canvas, x, y, width, height)
-
-    return TaggedDrawing(draw, *size, words)
 
 
 class _Page:

@@ -48,7 +48,7 @@ def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
     """Return the table of a grid, and its note below it."""
     widths = _widths(grid, width)
     size = _fitting_size(grid, widths)
-    heads = [_head(text, widths[column], size) for column, text in enumerate(grid.heads)]
+    heads = [_head(grid, column, widths[column], size) for column in range(len(grid.heads))]
     body = [_cells(row, grid, widths, size) for row in grid.rows]
     table = make_table(
         [heads, *body],
@@ -106,10 +106,14 @@ def _number_cells(row: Row, grid: Grid) -> list[tuple[int, Cell]]:
     ]
 
 
-def _head(text: str, width: float, size: float) -> object:
+def _head(grid: Grid, column: int, width: float, size: float) -> object:
+    """Return a head as plain text where it fits on one line, else as a paragraph that stands as its column does."""
+    text = grid.heads[column]
     if stringWidth(text, SEMIBOLD, size) <= width - 2 * _PADDING:
         return printable(text)
-    return _words(text, ParagraphStyle("head", parent=CELL, fontName=SEMIBOLD, fontSize=size, leading=size * 1.2))
+    style = ParagraphStyle("head", parent=CELL, fontName=SEMIBOLD, fontSize=size, leading=size * 1.2)
+    style.alignment = TA_LEFT if column in grid.words else TA_RIGHT
+    return _words(text, style)
 
 
 def _cells(row: Row, grid: Grid, widths: Sequence[float], size: float) -> list[object]:

@@ -4,13 +4,15 @@ from collections.abc import Sequence
 
 from reportlab.platypus import CondPageBreak, Flowable, HRFlowable, KeepTogether, Spacer
 
-from creditdesk.memo.blocks import Grid, Listing, Pairs, Prose, Section, Subheading
+from creditdesk.memo.blocks import Block, Chart, Grid, Listing, Pairs, Prose, Section, Subheading
+from creditdesk.memo.drawings import chart
 from creditdesk.memo.grids import grid_flowables, pairs_flowables
 from creditdesk.memo.styles import BY_TONE, HEADING, INKS, ITEM, SUBHEADING, TEXT_WIDTH, marked_up
 from creditdesk.memo.tagging import Decoration, TaggedParagraph, tagged_list
 
 _ROOM_FOR_A_BEGINNING = 96.0
-_ROWS_KEPT_TOGETHER = 16
+_SHORT = 16
+"""Rows of a table that is never broken."""
 
 
 class Bookmark(Flowable):
@@ -33,16 +35,20 @@ def section_flowables(section: Section) -> list[Flowable]:
     heads: list[Flowable] = [Bookmark(section.heading), *heading(section.heading)]
     for block in section.blocks:
         if isinstance(block, Subheading):
-            heads.append(TaggedParagraph(marked_up(block.text), SUBHEADING, "H3"))
+            heads += _block_flowables(block)
             continue
         body = _block_flowables(block)
-        short = isinstance(block, Grid) and len(block.rows) <= _ROWS_KEPT_TOGETHER
-        if short:
+        if _kept_together(block):
             flowables.append(KeepTogether([*heads, *body]))
         else:
             flowables += [*([CondPageBreak(_ROOM_FOR_A_BEGINNING)] if heads else []), *heads, *body]
         heads = []
     return [*flowables, *heads, Spacer(1, 12)]
+
+
+def _kept_together(block: Block) -> bool:
+    """Say whether a block stays on one page with its heading."""
+    return isinstance(block, Chart) or (isinstance(block, Grid) and (block.whole or len(block.rows) <= _SHORT))
 
 
 def heading(text: str, level: str = "H2", width: float | str = "100%") -> list[Flowable]:
@@ -51,9 +57,13 @@ def heading(text: str, level: str = "H2", width: float | str = "100%") -> list[F
     return [TaggedParagraph(marked_up(text), HEADING, level), Decoration(rule)]
 
 
-def _block_flowables(block: Grid | Listing | Pairs | Prose) -> Sequence[Flowable]:
+def _block_flowables(block: Block) -> Sequence[Flowable]:
     if isinstance(block, Grid):
         return grid_flowables(block, TEXT_WIDTH)
+    if isinstance(block, Chart):
+        return [Spacer(1, 4), chart(block.draw, (TEXT_WIDTH, block.height), block.words), Spacer(1, 6)]
+    if isinstance(block, Subheading):
+        return [TaggedParagraph(marked_up(block.text), SUBHEADING, "H3")]
     if isinstance(block, Pairs):
         return pairs_flowables(block, TEXT_WIDTH)
     if isinstance(block, Listing):

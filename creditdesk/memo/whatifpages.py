@@ -4,31 +4,24 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 from creditdesk.base.display import MINUS
+from creditdesk.case.comparison import Column, ColumnKind, Comparison, RowKind
+from creditdesk.case.comparison import Row as Compared
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.study_words import pd_words
 from creditdesk.case.targets import TargetBook, TargetKind, mark_words
 from creditdesk.case.what_if import Answer, WhatIf
 from creditdesk.case.words import amount_decimals, period_heads, unit_words
 from creditdesk.charts.words import with_full_stop
+from creditdesk.grading.scale import NO_GRADE
 from creditdesk.house.book import HouseBook
-from creditdesk.memo.blocks import (
-    Block,
-    Cell,
-    Grid,
-    Listing,
-    Prose,
-    Row,
-    RowKind,
-    Section,
-    Subheading,
-    Tone,
-    group_row,
-    without_empty,
-)
+from creditdesk.memo import blocks
+from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Prose, Row, Section, Subheading, Tone, group_row
 from creditdesk.memo.closing import MARKS
 from creditdesk.memo.ratiopages import value_text
-from creditdesk.memo.text import NOT_DISCLOSED, amount_text, pd_text
-from creditdesk.scenario.marks import Mark, Scenario
+from creditdesk.memo.stresspages import stress_blocks
+from creditdesk.memo.studypages import study_blocks
+from creditdesk.memo.text import NOT_DISCLOSED, amount_text
 from creditdesk.statements.period import prior_index
 
 HEADING = "What-if and stress"
@@ -40,125 +33,148 @@ _MEANING = (
 )
 _BESIDE = 4
 """Scenarios side by side in one table."""
-_EQUITY = "total_equity"
+_GROUPS = {RowKind.MARKED: "What is marked", RowKind.AMOUNT: "What it comes to", RowKind.RATIO: "Ratios"}
 
 
 @dataclass(frozen=True, slots=True)
-class _Column:
-    """Hold one column: ``standing`` tells its statements and ratios in ``period``; last year has PD and grade apart."""
+class _Pages:
+    """Carry what every table needs; ``decimals`` of all amounts."""
 
-    head: str
-    standing: Standing
-    period: int
-    pd: str
-    grade: str
-    scenario: Scenario | None = None
+    asked: WhatIf
+    house: HouseBook
+    targets: TargetBook
+    decimals: int
+
+    @property
+    def ink(self) -> Standing:
+        """Return the standing as the figures are."""
+        return self.asked.ink
 
 
 def what_if_section(case: Case, asked: WhatIf, house: HouseBook) -> Section | None:
-    """Return what was asked of the case beside its figures and chosen for the memo; None where nothing was."""
-    if not asked.chosen:
+    """Return what was asked of the case beside its figures and belongs into the memo; None where nothing was.
+
+    The stress events stand there as soon as the case answers one of them, or anything else was chosen.
+    """
+    if not (asked.chosen or asked.studies or any(row.own for row in asked.stress)):
         return None
-    blocks: list[Block] = [Prose(CAUTION, Tone.CAUTION), Prose(_MEANING, Tone.SECOND)]
-    blocks += [Subheading("Scenarios side by side"), *_side_by_side(case, asked, house)]
+    pages = _Pages(asked, house, TargetBook(house, asked.ink), amount_decimals(asked.ink.statements.values))
+    found: list[Block] = [Prose(CAUTION, Tone.CAUTION), Prose(_MEANING, Tone.SECOND)]
+    found += _side_by_side(pages, unit_words(case))
     for answer in asked.chosen:
-        blocks += _one_scenario(answer, asked.ink, house)
-    return Section(HEADING, without_empty(blocks))
+        found += _one_scenario(pages, answer)
+    found += stress_blocks(asked, house, pages.targets)
+    for study in asked.studies:
+        found += study_blocks(study, asked.ink, house, pages.targets)
+    return Section(HEADING, blocks.without_empty(found))
 
 
-def _side_by_side(case: Case, asked: WhatIf, house: HouseBook) -> Iterator[Grid]:
+def _side_by_side(pages: _Pages, unit: str) -> Iterator[Block]:
     """Yield tables of a few scenarios each, all beside last year and the figures as they are."""
-    made = [_scenario_column(answer.standing, answer.scenario) for answer in asked.chosen if answer.standing]
-    targets = TargetBook(house, asked.ink)
+    comparison = pages.asked.comparison
+    if comparison is None:
+        return
+    yield Subheading("Scenarios side by side")
+    record = [place for place, column in enumerate(comparison.columns) if column.kind is not ColumnKind.SCENARIO]
+    made = [place for place, column in enumerate(comparison.columns) if column.kind is ColumnKind.SCENARIO]
     for start in range(0, len(made), _BESIDE):
-        columns = [*_columns_of_record(asked.ink), *made[start : start + _BESIDE]]
+        shown = [*record, *made[start : start + _BESIDE]]
         yield Grid(
             name="Scenarios side by side",
-            heads=(unit_words(case), *(column.head for column in columns)),
-            rows=tuple(_rows(columns, targets, house)),
-            shares=(1.9, *(1.0 for _ in columns)),
-            note=f"{NOT_DISCLOSED} = not disclosed. {_record_note(asked.ink)}",
+            heads=(unit, *(_head(pages, comparison.columns[place]) for place in shown)),
+            rows=tuple(_rows(pages, comparison, shown)),
+            shares=(1.9, *(1.0 for _ in shown)),
+            note=_record_note(pages.ink),
+            whole=True,
         )
 
 
-def _columns_of_record(ink: Standing) -> Iterator[_Column]:
-    heads = period_heads(ink.statements.periods)
-    before, last = prior_index(ink.statements.periods, ink.period_index), ink.last_year
-    if before is not None and last is not None:
-        yield _Column(heads[before], ink, before, pd_text(last.pd), last.grade)
-    yield _Column(f"{heads[ink.period_index]} as it is", ink, ink.period_index, *_verdict(ink))
+def _head(pages: _Pages, column: Column) -> str:
+    if column.kind is ColumnKind.INK:
+        return f"{period_heads(pages.ink.statements.periods)[pages.ink.period_index]} as it is"
+    return column.name
 
 
 def _record_note(ink: Standing) -> str:
     last = ink.last_year
-    return "" if last is None else f"PD and grade of {last.label} are the model's, before house rules."
+    words = f"{NOT_DISCLOSED} = not disclosed."
+    return words if last is None else f"{words} PD and grade of {last.label} are the model's, before house rules."
 
 
-def _scenario_column(standing: Standing, scenario: Scenario) -> _Column:
-    return _Column(scenario.name, standing, standing.period_index, *_verdict(standing), scenario)
-
-
-def _verdict(standing: Standing) -> tuple[str, str]:
-    if not standing.usable:
-        return "not usable", "none"
-    return pd_text(standing.pd_final), standing.grade.final
-
-
-def _rows(columns: Sequence[_Column], targets: TargetBook, house: HouseBook) -> Iterator[Row]:
-    marked = dict.fromkeys(mark.target for column in columns for mark in _marks(column))
-    yield group_row("What is marked")
-    for key in marked:
-        yield Row((Cell(targets.label(key)), *(_marked_cell(column, key, targets) for column in columns)))
-    yield from _assumption_rows(columns, house)
-    yield group_row("What it comes to")
-    yield from (_amount_row(columns, key, house) for key in _sums(house) if key in columns[0].standing.statements.index)
-    yield group_row("Key ratios")
-    for key in house.settings.key_ratios:
-        spec = house.catalogue.spec(key)
-        cells = (Cell(value_text(column.standing, spec, column.period)) for column in columns)
-        yield Row((Cell(spec.label), *cells))
+def _rows(pages: _Pages, comparison: Comparison, shown: Sequence[int]) -> Iterator[Row]:
+    kind = None
+    for row in comparison.rows:
+        if row.kind is RowKind.MARKED and not any(row.marked[place] for place in shown):
+            continue
+        if row.kind is not kind:
+            if kind is RowKind.MARKED:
+                yield from _assumption_rows(pages, [comparison.columns[place] for place in shown])
+            kind = row.kind
+            yield group_row(_GROUPS[kind])
+        yield Row((Cell(row.label), *(_cell(pages, row, comparison.columns[place], place) for place in shown)))
+    columns = [comparison.columns[place] for place in shown]
     yield group_row("Verdict")
-    yield Row((Cell("PD that counts"), *(Cell(column.pd) for column in columns)), RowKind.TOTAL)
-    yield Row((Cell("Final grade"), *(Cell(column.grade) for column in columns)), RowKind.TOTAL)
+    pds = [Cell(_pd(column), None if column.pd_final != column.pd_final else column.pd_final) for column in columns]
+    yield Row((Cell("PD that counts"), *pds), blocks.RowKind.TOTAL)
+    yield Row((Cell("Final grade"), *(Cell(_grade(column)) for column in columns)), blocks.RowKind.TOTAL)
 
 
-def _marks(column: _Column) -> tuple[Mark, ...]:
-    return column.scenario.marks if column.scenario is not None else ()
+def _pd(column: Column) -> str:
+    return pd_words(column.pd_final) if _usable(column) else "not usable"
 
 
-def _marked_cell(column: _Column, key: str, targets: TargetBook) -> Cell:
-    """Write what a target is marked as; in the columns of record, and where it is not marked, what it stands at."""
-    mark = next((one for one in _marks(column) if one.target == key), None)
-    target = targets.find(key)
-    if target is None or target.kind is TargetKind.DRIVER:
-        words = "" if mark is None or target is None else mark_words(mark, target)
-        return Cell(words, tone=Tone.STRONG)
-    amount = _amount(column, key)
-    if mark is None:
-        return Cell(target.text(amount) or NOT_DISCLOSED, None if amount != amount else amount, Tone.SECOND)
-    how = "" if mark.kind.value == "to" else f"{mark_words(mark, target)}: "
-    return Cell(f"{how}{target.text(amount)}", amount, Tone.STRONG)
+def _grade(column: Column) -> str:
+    return column.grade if _usable(column) else NO_GRADE
 
 
-def _amount(column: _Column, key: str) -> float:
-    standing = column.standing
-    if key in standing.statements.index:
-        return float(standing.statements.row(key)[column.period])
-    return standing.ratios.value(key, column.period)
+def _usable(column: Column) -> bool:
+    return column.worked is None or column.worked.standing.usable
 
 
-def _assumption_rows(columns: Sequence[_Column], house: HouseBook) -> Iterator[Row]:
+def _cell(pages: _Pages, row: Compared, column: Column, place: int) -> Cell:
+    """Write a value: what is marked with its mark, a ratio without one with the reason."""
+    value = row.values[place]
+    number = None if value != value else value
+    target = pages.targets.find(row.key)
+    if row.kind is RowKind.MARKED and target is not None:
+        if target.kind is TargetKind.DRIVER:
+            return Cell(_mark(pages, column, row.key) if row.marked[place] else "", number, Tone.STRONG)
+        if row.marked[place]:
+            return Cell(f"{_mark(pages, column, row.key)}{target.text(value)}", number, Tone.STRONG)
+    if row.unit:
+        standing = column.worked.standing if column.worked is not None else pages.ink
+        last = column.kind is ColumnKind.LAST_YEAR
+        period = prior_index(standing.statements.periods, standing.period_index) if last else standing.period_index
+        words = value_text(standing, pages.house.catalogue.spec(row.key), period or 0)
+        return Cell(words, number, Tone.WORDS if number is None else Tone.PLAIN)
+    return Cell(amount_text(value, pages.decimals), number)
+
+
+def _mark(pages: _Pages, column: Column, key: str) -> str:
+    """Write a mark before the value it comes to, alone where that is a driver, not at all where it is the value."""
+    scenario = column.worked.scenario if column.worked is not None else None
+    mark = next((one for one in scenario.marks if one.target == key), None) if scenario is not None else None
+    target = pages.targets.find(key)
+    if mark is None or target is None:
+        return ""
+    if target.kind is TargetKind.DRIVER:
+        return mark_words(mark, target)
+    return f"{mark_words(mark, target)}: " if mark.kind.relative else "set: "
+
+
+def _assumption_rows(pages: _Pages, columns: Sequence[Column]) -> Iterator[Row]:
     """Yield the assumptions that a scenario changes, with the house book's own in the columns of record."""
-    changed = {key for column in columns if column.scenario for key in column.scenario.assumptions}
-    declared = [one for one in (house.flow.assumptions if house.flow is not None else ()) if one.key in changed]
+    own = [column.worked.scenario.assumptions if column.worked is not None else {} for column in columns]
+    changed = {key for assumptions in own for key in assumptions}
+    flow = pages.house.flow
+    declared = [one for one in (flow.assumptions if flow is not None else ()) if one.key in changed]
     if declared:
         yield group_row("Assumptions changed")
     for one in declared:
-        cells = []
-        for column in columns:
-            own = column.scenario.assumptions if column.scenario is not None else {}
-            tone = Tone.STRONG if one.key in own else Tone.SECOND
-            cells.append(Cell(_assumed(own.get(one.key, one.default)), tone=tone))
+        cells = (
+            Cell(_assumed(mine.get(one.key, one.default)), tone=Tone.STRONG if one.key in mine else Tone.SECOND)
+            for mine in own
+        )
         yield Row((Cell(one.label), *cells))
 
 
@@ -168,39 +184,22 @@ def _assumed(value: float | str) -> str:
     return f"{value:.10g}".replace("-", MINUS)
 
 
-def _sums(house: HouseBook) -> Iterator[str]:
-    """Name the amounts shown of every column."""
-    if house.flow is not None:
-        roles = house.flow.roles
-        yield from (roles.revenue, roles.ebitda, roles.profit_before_tax, roles.net_profit, roles.cash, roles.debt)
-    yield _EQUITY
-
-
-def _amount_row(columns: Sequence[_Column], key: str, house: HouseBook) -> Row:
-    decimals = amount_decimals(columns[0].standing.statements.values)
-    amounts = [_amount(column, key) for column in columns]
-    cells = (Cell(amount_text(amount, decimals), None if amount != amount else amount) for amount in amounts)
-    labels = {line.key: line.label for line in house.chart.lines}
-    labels |= {total.key: total.label for total in house.chart.subtotals}
-    return Row((Cell(labels[key]), *cells))
-
-
-def _one_scenario(answer: Answer, ink: Standing, house: HouseBook) -> Iterator[Block]:
+def _one_scenario(pages: _Pages, answer: Answer) -> Iterator[Block]:
     """Yield how one scenario came about: why, step by step, and what a reader should know of it."""
     scenario = answer.scenario
     yield Subheading(scenario.name)
-    if event := _event_label(scenario, house):
+    if event := _event_label(pages.house, scenario.event):
         yield Prose(f"Answers the stress event “{event}”.", Tone.SECOND)
     for words in (scenario.rationale, scenario.judgement):
         if words.strip():
             yield Prose(words.strip())
-    yield _steps(answer, amount_decimals(ink.statements.values))
+    yield _steps(answer, pages.decimals)
     yield Listing(tuple(f"{MARKS[one.severity]}: {with_full_stop(one.text)}" for one in answer.findings))
 
 
-def _event_label(scenario: Scenario, house: HouseBook) -> str:
+def _event_label(house: HouseBook, key: str) -> str:
     events = house.stress.events if house.stress is not None else ()
-    return next((event.label for event in events if event.key == scenario.event), "")
+    return next((event.label for event in events if event.key == key), "")
 
 
 def _steps(answer: Answer, decimals: int) -> Grid:
@@ -210,6 +209,6 @@ def _steps(answer: Answer, decimals: int) -> Grid:
         tone = Tone.STRONG if step.marked else Tone.PLAIN
         known = None if step.before != step.before else step.before
         cells = (Cell(step.label, tone=tone), Cell(before, known), Cell(after, step.after, tone), Cell(step.why))
-        rows.append(Row(cells, RowKind.LINE if step.why else RowKind.TOTAL))
-    heads = ("How it runs through the statements", "As it is", "What-if", "Because")
+        rows.append(Row(cells, blocks.RowKind.LINE if step.why else blocks.RowKind.TOTAL))
+    heads = ("Line", "As it is", "What-if", "Because")
     return Grid(f"Steps of {answer.scenario.name}", heads, tuple(rows), (2.2, 0.8, 0.8, 2.6), words=(0, 3))
