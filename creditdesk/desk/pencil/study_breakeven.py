@@ -11,7 +11,7 @@ from creditdesk.case.targets import Target
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import Choice, FormTable, RangeForm, cell, tick_cell, typed_cell
-from creditdesk.desk.pencil.study_marks import found_mark, put_marks
+from creditdesk.desk.pencil.study_marks import bound_mark, put_marks
 from creditdesk.desk.pencil.study_page import Asked, KeptPage
 from creditdesk.desk.pencil.study_words import read_number
 from creditdesk.grading.scale import DEFAULT_GRADE
@@ -154,4 +154,4 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
         result, found = self._found, self._break_of(self._limits[row][0])
         if result is not None and found is not None and column in (DOWN, UP):
             side, along = (found.down if column == DOWN else found.up), result.spec.along
-            put_marks(self.draft, [found_mark(along.target, along.kind, side.position)])
+            put_marks(self.draft, [bound_mark(along.target, along.kind, side.position, result.start)])

@@ -11,13 +11,23 @@ from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.specs import Range
 
-_DIGITS = 10
-"""Significant digits of a mark that a study found."""
+_DIGITS, _BOUND_DIGITS = 10, 7
+"""Significant digits of a mark that a study found, and of how far one at a bound lies from the start."""
 
 
 def found_mark(target: str, kind: MoveKind, amount: float) -> Mark:
     """Return a mark at a position found, without the rounding of arithmetic."""
     return Mark(target, kind, float(f"{amount:.{_DIGITS}g}"))
+
+
+def bound_mark(target: str, kind: MoveKind, amount: float, start: float) -> Mark:
+    """Return a mark at the last position that holds, rounded towards the start, where it still does."""
+    if amount == start:
+        return Mark(target, kind, amount)
+    places = _BOUND_DIGITS - 1 - math.floor(math.log10(abs(amount - start)))
+    rounded = math.floor if amount > start else math.ceil
+    moved = rounded((amount - start) * 10.0**places) / 10.0**places
+    return Mark(target, kind, float(f"{start + moved:.15g}"))
 
 
 def put_marks(draft: PencilDraft, marks: Sequence[Mark], name: str = "") -> bool:
