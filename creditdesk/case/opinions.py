@@ -56,7 +56,7 @@ class RatioTables:
             catalogue,
             self._statements,
             constants=self.constants(currency),
-            constant_needs={"to_model_currency": f"rate {currency}"},
+            constant_needs={"to_model_currency": f"the exchange rate to {currency}"},
             held={
                 (key, period): value
                 for (key, period), value in self._held.items()

@@ -9,7 +9,7 @@ from creditdesk.formula.compiler import Formula, Use, compile_formula
 from creditdesk.formula.nodes import Chain, Kind, Node, Number
 from creditdesk.formula.vocabulary import ARGUMENTS
 from creditdesk.ratios.expressions import ROW_FUNCTIONS, Expression, fault_of_months, faults_of_time, prepare
-from creditdesk.ratios.spec import CONSTANTS, RatioFile, RatioSpec, SecondFormula
+from creditdesk.ratios.spec import CONSTANTS, RatioFile, RatioSpec, SecondFormula, Unit
 from creditdesk.statements.chart import Chart
 
 
@@ -90,6 +90,8 @@ class Compiler:
             parts=tuple(self.ratios[name] for name in top.formula.names if name in self.ratios),
         )
         self._note_mixtures(row, spec, where)
+        if spec.unit is Unit.YES_NO and row.whole.kind is not Kind.FLAG:
+            self.faults.append(f"{where}: found an amount; allowed with the unit {spec.unit}: one comparison alone")
         return row
 
     def _expression(self, spec: RatioSpec, place: str, text: str) -> Expression | None:

@@ -94,7 +94,8 @@ def compute_ratios(
     """Compute every ratio of the catalogue for every period, and every draw where the statements have draws.
 
     ``constants``: ``unit`` and ``to_model_currency``, nan where not known (or left out). ``constant_needs`` says what
-    is then needed, such as ``{"to_model_currency": "rate USD"}``. What is disclosed is the same in all draws.
+    is then needed, such as ``{"to_model_currency": "the exchange rate to USD"}``. What is disclosed is the same in all
+    draws.
     ``held``: values by (key, period index) that are given and not computed; what combines them follows.
     """
     known = {name: float(constants.get(name, np.nan)) for name in catalogue.plan.constants}

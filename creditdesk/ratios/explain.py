@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from creditdesk.base.display import format_amount
+from creditdesk.base.display import format_amount, long_date
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.compiler import Row
 from creditdesk.ratios.compute import RatioTable, Reason
@@ -33,7 +33,7 @@ def reason_text(catalogue: Catalogue, table: RatioTable, key: str, period: int) 
             surplus = -float(np.asarray(table.inputs.amounts[NET_DEBT])[period])
             return f"Net cash: cash and short-term investments exceed interest-bearing debt by {format_amount(surplus)}"
         case Reason.NO_DEBT:
-            return f"No interest-bearing debt on {table.inputs.periods[period].ends.isoformat()}"
+            return f"No interest-bearing debt on {long_date(table.inputs.periods[period].ends)}"
         case Reason.NOT_DISCLOSED:
             return _not_disclosed(catalogue, table, key, period)
         case Reason.NEEDS_PRIOR_PERIOD:
@@ -50,13 +50,13 @@ def _not_disclosed(catalogue: Catalogue, table: RatioTable, key: str, period: in
         return f"Shown only on an income statement {_LAYOUT[layout]}"
     row = int(table.rows[table.index[key], period])
     gaps = dict.fromkeys(gaps_of(catalogue, table.inputs, row, period))
-    return "; ".join(_gap(catalogue, table, gap, period) for gap in gaps) or "An amount is not known"
+    return sentence("; ".join(_gap(catalogue, table, gap, period) for gap in gaps)) or "An amount is not known"
 
 
 def _gap(catalogue: Catalogue, table: RatioTable, gap: Gap, period: int) -> str:
     """Name an amount that is not known and the blanks behind it: EBITDA not disclosed: needs depreciation."""
-    label = sentence(within(catalogue.labels[gap.name]))
-    when = "" if gap.period == period else f" of {table.inputs.periods[gap.period].ends.isoformat()}"
+    label = within(catalogue.labels[gap.name])
+    when = "" if gap.period == period else f" of {long_date(table.inputs.periods[gap.period].ends)}"
     behind = [within(catalogue.labels.get(line, line)) for line in gap.lines if line != gap.name]
     return f"{label}{when} not disclosed" + (f": needs {', '.join(behind)}" if behind else "")
 

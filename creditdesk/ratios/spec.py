@@ -17,7 +17,10 @@ NET_DEBT = "net_debt"
 
 
 class Unit(StrEnum):
-    """Say how a ratio reads. PERCENT: kept as a fraction. MONEY: in the case's unit. LOG: a natural logarithm."""
+    """Say how a ratio reads.
+
+    PERCENT: kept as a fraction. MONEY: in the case's unit. LOG: a natural logarithm. YES_NO: 1 for yes, 0 for no.
+    """
 
     PERCENT = "percent"
     TIMES = "times"
@@ -25,6 +28,7 @@ class Unit(StrEnum):
     MONEY = "money"
     LOG = "log"
     NUMBER = "number"
+    YES_NO = "yes_no"
 
 
 class Direction(StrEnum):

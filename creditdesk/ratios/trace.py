@@ -1,8 +1,9 @@
 """One ratio of one period laid open: formula, numbers filled in, where each comes from."""
 
+import math
 import re
-from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, field
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 from typing import Literal
 
 import numpy as np
@@ -19,6 +20,9 @@ from creditdesk.statements.chart import Chart
 from creditdesk.statements.statement import StatementSet
 
 _MARK = re.compile("\ue000(\\d+)\ue001")
+_MOST_DECIMALS = 4
+_REST, _REST_SHARE = 1e-9, 1e-12
+"""What adding may leave behind the last digit: as an amount, and as a share of a large one."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,18 +132,26 @@ def _reached(chart: Chart, line: str) -> set[str]:
 
 @dataclass(frozen=True, slots=True)
 class _Filler:
-    """Write a formula with numbers for names, marking each so that it can be found again in the text."""
+    """Write a formula with numbers for names, marking each so that it can be found again in the text.
+
+    ``decimals``: of the amounts of lines and subtotals.
+    """
 
     catalogue: Catalogue
     statements: StatementSet
     table: RatioTable
     style: NumberStyle
+    decimals: int = 0
     items: list[TraceItem] = field(default_factory=list)
 
     def pieces(self, formula: Formula, period: int) -> tuple[str | TraceItem, ...]:
-        """Write a formula as texts and items in turn."""
+        """Write a formula as texts and items in turn, all amounts with the same decimals."""
         self.items.clear()
-        return tuple(piece for piece in self._cut(self._fill(formula, period)) if piece != "")
+        text = self._fill(formula, period)
+        decimals = _decimals([item.amount for item in self.items if item.kind == "line"])
+        if decimals != self.decimals:
+            return replace(self, decimals=decimals, items=[]).pieces(formula, period)
+        return tuple(piece for piece in self._cut(text) if piece != "")
 
     def amount_of(self, formula: Formula, period: int) -> float:
         """Compute an amount of one period; nan where not known."""
@@ -202,14 +214,25 @@ class _Filler:
     def _number(self, name: str, period: int) -> tuple[Literal["line", "ratio", "constant"], float, str]:
         if name in self.statements.index:
             amount = float(self.statements.row(name)[period])
-            return "line", amount, self._amount(amount)
+            return "line", amount, format_amount(amount, self.decimals, self.style) or "not disclosed"
         if name in self.table.inputs.constants:
             amount = self.table.inputs.constants[name]
-            return "constant", amount, self._amount(amount)
+            return "constant", amount, format_amount(amount, _digits(amount), self.style) or "not disclosed"
         amount = self.table.value(name, period)
         return "ratio", amount, format_ratio(amount, self.catalogue.spec(name).unit, self.style) or "no value"
 
-    def _amount(self, amount: float) -> str:
-        """Write an amount with the digits it has, four decimals at most."""
-        decimals = next((digits for digits in range(4) if round(amount, digits) == amount), 4)
-        return format_amount(amount, decimals, self.style) or "not disclosed"
+
+def _decimals(amounts: Sequence[float]) -> int:
+    """Say how many decimals amounts need beside each other: as many as they have, but four digits of the least one."""
+    known = [abs(amount) for amount in amounts if math.isfinite(amount) and amount]
+    if not known:
+        return 0
+    return min(max(map(_digits, known)), max(3 - math.floor(math.log10(min(known))), 0))
+
+
+def _digits(amount: float) -> int:
+    """Count the decimals of a number, four at most, without what adding left behind the last one."""
+    for places in range(_MOST_DECIMALS):
+        if math.isclose(round(amount, places), amount, rel_tol=_REST_SHARE, abs_tol=_REST):
+            return places
+    return _MOST_DECIMALS

@@ -28,6 +28,7 @@ REASON_WORDS: Mapping[str, str] = {
     "negative_denominator": "divisor negative",
 }
 """Why a ratio has no value, by the reason's key, in the few words a table has room for."""
+_ANSWERS = {1.0: "yes", 0.0: "no"}
 _ABBREVIATIONS = re.compile(r"\b(ebitda|ebit)\b", re.IGNORECASE)
 _FUNCTION = re.compile(r"[a-z_]+\(")
 _SIGN_HINT = re.compile(r" \([^()]*[+−-]\)$")
@@ -57,7 +58,7 @@ def with_full_stop(words: str) -> str:
 
 
 def format_ratio(value: float, unit: Unit, style: NumberStyle = PLAIN) -> str:
-    """Write a ratio as its unit asks: 26.5 %, 2.50×, 64 days, 1 200; blank for nan."""
+    """Write a ratio as its unit asks: 26.5 %, 2.50×, 64 days, 1 200, yes; blank for nan."""
     match unit:
         case Unit.PERCENT:
             return format_percent(value, style=style)
@@ -67,9 +68,9 @@ def format_ratio(value: float, unit: Unit, style: NumberStyle = PLAIN) -> str:
             return format_days(value, style=style)
         case Unit.MONEY:
             return format_amount(value, style=style)
-        case Unit.NUMBER if value in (0.0, 1.0):  # a yes or no
-            return format_number(value, 0, style)
-        case Unit.LOG | Unit.NUMBER:
+        case Unit.YES_NO if value in _ANSWERS:
+            return _ANSWERS[value]
+        case Unit.LOG | Unit.NUMBER | Unit.YES_NO:  # a mean of answers lies between yes and no
             return format_number(value, 2, style)
 
 

@@ -81,11 +81,11 @@ def test_without_a_rate_the_size_is_not_disclosed_and_the_rate_is_named() -> Non
     tables = RatioTables(case, HOUSE.catalogue, case_statements(case, HOUSE.chart).adjusted)
     table = tables.of("USD")
     assert table.reason("log_assets", 1).key == "not_disclosed"
-    assert table.needs["log_assets", 1] == ("rate USD",)
+    assert table.needs["log_assets", 1] == ("the exchange rate to USD",)
     assert np.isnan(tables.rate("USD"))
     abroad = assess(case_of(currency="EUR"), HOUSE)
     size = next(factor for factor in abroad.factors if factor.key == "log_assets")
     assert (size.value, size.reason) == (None, "not_disclosed")
-    assert "rate GBP" in size.reason_text
+    assert "the exchange rate to GBP" in size.reason_text
     assert abroad.model.name == LEAD
     assert any("not known" in finding.text for finding in abroad.findings if finding.code == "out_of_scope")

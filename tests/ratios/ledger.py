@@ -114,7 +114,10 @@ def by_hand(
 
 def ratios(statements: StatementSet, constants: Mapping[str, float] = CONSTANTS) -> RatioTable:
     return compute_ratios(
-        shipped_catalogue(), statements, constants=constants, constant_needs={"to_model_currency": "rate EUR"}
+        shipped_catalogue(),
+        statements,
+        constants=constants,
+        constant_needs={"to_model_currency": "the exchange rate to EUR"},
     )
 
 

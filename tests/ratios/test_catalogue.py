@@ -57,6 +57,7 @@ def _faults(*specs: RatioSpec) -> list[str]:
         ({"key": "prior"}, "ratios.prior", "a function"),
         ({"factor": 0.0}, "ratios.mine.factor", "other than 0"),
         ({"plausible_low": 2.0, "plausible_high": 1.0}, "ratios.mine.plausible_low", "below plausible_high"),
+        ({"unit": "yes_no"}, "ratios.mine", "one comparison alone"),
         ({"by_nature": {"note": "x"}}, "ratios.mine.by_nature", "found no formula"),
         ({"otherwise": {"note": "x", "denominator": "tota"}}, "ratios.mine.otherwise.denominator", "unknown name"),
         (

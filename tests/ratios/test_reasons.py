@@ -129,8 +129,8 @@ def test_log_assets_needs_assets_and_a_rate() -> None:
     assert ratios(changed(total_assets=0.0)).reason("log_assets", 1) is Reason.NEGATIVE_DENOMINATOR
     table = ratios(by_hand(SOUND), {"unit": 1000.0, "to_model_currency": math.nan})
     assert table.reason("log_assets", 1) is Reason.NOT_DISCLOSED
-    assert table.needs["log_assets", 1] == ("rate EUR",)
-    assert ratios(by_hand(SOUND), {"unit": 1.0}).needs["log_assets", 0] == ("rate EUR",)
+    assert table.needs["log_assets", 1] == ("the exchange rate to EUR",)
+    assert ratios(by_hand(SOUND), {"unit": 1.0}).needs["log_assets", 0] == ("the exchange rate to EUR",)
 
 
 def test_margins_of_the_other_layout_are_not_disclosed_even_if_amounts_are_there() -> None:

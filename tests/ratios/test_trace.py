@@ -72,9 +72,29 @@ def test_words_and_numbers_of_a_plain_ratio() -> None:
 def test_months_are_seen() -> None:
     statements = by_hand({"ebitda": [1.2], "interest_bearing_debt": [6.0]}, [year(date(2025, 6, 30), 6)])
     trace = _trace(statements, "debt_to_ebitda", 0)
-    assert trace.filled == "6 ÷ (1.2 × 12 ÷ 6)"
+    assert trace.filled == "6.0 ÷ (1.2 × 12 ÷ 6)"
     assert trace.annualised
     assert trace.value_text == "2.50×"
+
+
+@pytest.mark.parametrize(
+    ("debt", "ebitda", "filled"),
+    [
+        (14.0 + 0.44 + 1e-15, 28.7, "14.44 ÷ 28.70"),
+        (0.1 + 0.2, 0.3, "0.3 ÷ 0.3"),
+        (3_620.553, 612.1, "3\u202f620.6 ÷ 612.1"),
+        (20_000.25, 0.4, "20\u202f000.25 ÷ 0.40"),
+        (1.23456, 0.0123456, "1.2346 ÷ 0.0123"),
+        (4e15 + 0.5, 1_234_567.0, "4\u202f000\u202f000\u202f000\u202f000\u202f000 ÷ 1\u202f234\u202f567"),
+        (0.0, 12.5, "0.0 ÷ 12.5"),
+    ],
+)
+def test_amounts_of_a_formula_have_the_same_decimals(debt: float, ebitda: float, filled: str) -> None:
+    """As many as any of them has, but no more than give four digits of the least one."""
+    assert (
+        _trace(by_hand({"ebitda": [ebitda], "interest_bearing_debt": [debt]}, [year(2025)]), "debt_to_ebitda", 0).filled
+        == filled
+    )
 
 
 def test_opening_and_closing_balance_are_seen() -> None:
@@ -118,7 +138,7 @@ def test_a_missing_period_reads_none() -> None:
 def test_labels_are_fitted_into_a_formula() -> None:
     assert _trace(by_hand(SOUND), "cash_debt_service_cover").words.startswith("(EBITDA − income tax paid − ")
     assert "work in progress +" in _trace(by_hand(SOUND), "materials_margin").words
-    assert _trace(by_hand(SOUND), "loss_in_both_years").value_text == "0"
+    assert _trace(by_hand(SOUND), "loss_in_both_years").value_text == "no"
 
 
 def test_reasons_in_words() -> None:
@@ -126,7 +146,10 @@ def test_reasons_in_words() -> None:
     assert _reason(changed(net_debt=-32_400.0), "net_debt_to_ebitda") == (
         "Net cash: cash and short-term investments exceed interest-bearing debt by 32\u202f400"
     )
-    assert _reason(changed(interest_bearing_debt=0.0), "interest_cover") == "No interest-bearing debt on 2025-12-31"
+    assert (
+        _reason(changed(interest_bearing_debt=0.0), "interest_cover")
+        == "No interest-bearing debt on 31\u00a0December 2025"
+    )
     assert _reason(changed(interest_expense=0.0), "interest_cover") == "Nothing to divide by: nil interest expense"
     assert _reason(changed(total_equity=(300.0, -50.0)), "debt_to_equity") == (
         "Total equity below zero (−50): the sign takes the meaning from the ratio"
@@ -144,10 +167,18 @@ def test_reasons_of_what_is_not_disclosed() -> None:
     text = _reason(replace(changed(ebitda=math.nan), needs=needs), "debt_to_ebitda")
     label = shipped_catalogue().labels["depreciation_amortisation"]
     assert text == f"EBITDA not disclosed: needs {label[0].lower()}{label[1:]}"
-    assert _reason(changed(revenue=(math.nan, 5.0)), "revenue_growth") == "Revenue of 2024-12-31 not disclosed"
+    assert _reason(changed(revenue=(math.nan, 5.0)), "revenue_growth") == (
+        "Revenue of 31\u00a0December 2024 not disclosed"
+    )
     assert _reason(by_hand(SOUND), "materials_margin") == "Shown only on an income statement by nature"
     table = ratios(by_hand(SOUND), {"unit": 1.0, "to_model_currency": math.nan})
-    assert reason_text(shipped_catalogue(), table, "log_assets", 1).endswith("needs rate EUR")
+    assert reason_text(shipped_catalogue(), table, "log_assets", 1).endswith("needs the exchange rate to EUR")
+
+
+def test_more_than_one_amount_that_is_not_disclosed_is_one_sentence() -> None:
+    assert _reason(changed(total_assets=(math.nan, math.nan)), "return_on_assets") == (
+        "Total assets not disclosed; total assets of 31\u00a0December 2024 not disclosed"
+    )
 
 
 def test_reasons_of_a_missing_period() -> None:
