@@ -150,6 +150,7 @@ class StandingColumn(QWidget):
         if self._canvases is not None:
             self._canvases.show_pencil(standing, held=held)
         if turned:
+            self.verdict.settle()
             self._fit_curve()
 
     def _show_pencil_findings(self, pencilled: "Pencilled | None") -> None:

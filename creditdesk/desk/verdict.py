@@ -59,6 +59,12 @@ class Verdict(QWidget):
         row.addLayout(left, 1)
         row.addWidget(self.plate, 0, Qt.AlignmentFlag.AlignTop)
 
+    def settle(self) -> None:
+        """Take the height that what is shown needs at once, not in the next turn."""
+        layout = self.layout()
+        if layout is not None:
+            layout.activate()
+
     def show_standing(self, standing: Standing, grades: int) -> None:
         """Show the numbers of ``standing``, or in words why there are none."""
         known = standing.pd_final is not None and standing.usable

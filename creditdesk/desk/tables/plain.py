@@ -1,7 +1,7 @@
 """What the tables of the window have in common."""
 
 from PySide6.QtCore import QEvent, QItemSelectionModel, QModelIndex, QPersistentModelIndex, QSize
-from PySide6.QtGui import QResizeEvent
+from PySide6.QtGui import QResizeEvent, QShowEvent
 from PySide6.QtWidgets import QTableView, QWidget
 
 Index = QModelIndex | QPersistentModelIndex
@@ -51,6 +51,11 @@ class WholeRows(QWidget):
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Give the table as much as whole rows take."""
         super().resizeEvent(event)
+        self._fit()
+
+    def showEvent(self, event: QShowEvent) -> None:
+        """Measure once more what stands around the rows: before it was shown the table had no heading yet."""
+        super().showEvent(event)
         self._fit()
 
     def _fit(self) -> None:
