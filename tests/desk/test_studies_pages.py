@@ -113,7 +113,7 @@ def test_a_click_on_the_grid_and_enter_put_the_pencil_there_in_one_step(on_ink: 
 def test_numbers_of_the_grid_are_copied_whole(on_ink: StudyHands) -> None:
     page = on_ink.page(GridPage)
     assert page.chart is not None
-    rows = [line.split("\t") for line in page.chart._numbers.split("\n")]
+    rows = [line.split("\t") for line in page.chart._numbers().split("\n")]
     assert len(rows) == 102
     assert {len(row) for row in rows} == {102}
     assert page._grid is not None
@@ -280,6 +280,7 @@ def test_rows_are_ranked_as_the_case_ranks_them_and_say_both_ends(hands: StudyHa
     recorded = hands.draft.recorded
     assert recorded is not None
     found = told(sensitivity(hands.board, house, recorded, 10.0))
+    page.which.choose("all")
     rows = page._rows()
     assert [row.key for row in rows] == [one.along.target for one in found]
     for row, one in zip(rows, found, strict=True):
@@ -296,6 +297,8 @@ def test_rows_are_ranked_as_the_case_ranks_them_and_say_both_ends(hands: StudyHa
 
 def test_lines_or_ratios_alone_and_another_range(on_ink: StudyHands) -> None:
     page = on_ink.page(SensitivityPage)
+    assert len(page._rows()) == 12
+    page.which.choose("all")
     every = len(page._rows())
     page.which.choose("ratios")
     ratios = len(page._rows())

@@ -116,7 +116,7 @@ def test_marks_that_the_study_moves_itself_do_not_make_a_grid_old(hands: StudyHa
     hands.draft.mark(Mark("revenue", MoveKind.BY_PCT, -10.0))
     assert page.note.text() == ""
     assert page.chart is not None
-    shown = page.chart._shown
+    shown = page.chart.shown
     assert shown is not None
     assert shown.dots[1] == (-10.0, 200.0)
     hands.draft.mark(Mark("inventory_days", MoveKind.BY, 10.0))

@@ -46,7 +46,7 @@ class StudyChart(Generic[Shown]):
         self._make = make
         self._chart = make(self.canvas.figure, palette)
         self._shown: Shown | None = None
-        self._numbers = ""
+        self._numbers: Callable[[], str] = str
         showing = Showing(
             painter=Painter(self._chart.board, kept),
             marks=self._chart.marks,
@@ -56,14 +56,19 @@ class StudyChart(Generic[Shown]):
         )
         self.canvas.put(showing)
 
-    def show(self, shown: Shown, numbers: str) -> None:
-        """Draw a study; ``numbers``: what is copied of it, tab-separated, with points as decimal marks."""
+    def show(self, shown: Shown, numbers: Callable[[], str]) -> None:
+        """Draw a study; ``numbers``: gives what is copied of it, tab-separated, with points as decimal marks."""
         self._shown, self._numbers = shown, numbers
         self._chart.show(shown)
         self.canvas.refresh()
 
+    @property
+    def shown(self) -> Shown | None:
+        """Return what is drawn."""
+        return self._shown
+
     def _localised(self, decimal: str) -> str:
-        return self._numbers.replace(".", decimal)
+        return self._numbers().replace(".", decimal)
 
     def _alone(self) -> "Figure":
         """Return the chart on a figure of its own, on the ground it has in the window."""

@@ -1,6 +1,5 @@
 """The PD over two things that move: shades, lines between grades, where ink and pencil stand, and the way there."""
 
-import math
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import Qt
@@ -20,6 +19,7 @@ if TYPE_CHECKING:
     from creditdesk.charts.pdgrid import Axis, GridPicture
 
 _LOW = 150
+Dot = tuple[float, float] | None
 
 
 class GridPage(KeptPage[GridSpec]):
@@ -60,12 +60,14 @@ class GridPage(KeptPage[GridSpec]):
             self._put_chart()
         if self.chart is not None:
             picture = grid_picture(self.draft, asked, result)
-            self.chart.show(picture, grid_numbers(picture))
+            self.chart.show(picture, lambda: grid_numbers(picture))
 
     def show_draft(self) -> None:
         """Show the draft as it stands; the dot of the pencil goes along."""
         super().show_draft()
-        if self.answered is not None and self._grid is not None and self.chart is not None:
+        if self.answered is None or self._grid is None or self.chart is None or self.chart.shown is None:
+            return
+        if grid_dots(self.draft, self.answered, self._grid) != self.chart.shown.dots:
             self.show_result(self.answered, self._grid)
 
     def beside(self) -> frozenset[str]:
@@ -107,10 +109,6 @@ def grid_picture(draft: PencilDraft, asked: Asked, found: Grid) -> "GridPicture"
     from creditdesk.charts.pdgrid import GridPicture
 
     house, spec = draft.session.house, found.spec
-    marked = {mark.target for mark in asked.scenario.marks} if asked.scenario is not None else set[str]()
-    moved = marked - {spec.across.target, spec.up.target}
-    recorded = draft.recorded
-    ink, pencil = ((stands_at(draft, spec.across, one), stands_at(draft, spec.up, one)) for one in (None, recorded))
     grades = house.scale.keys
     return GridPicture(
         grid=found,
@@ -118,8 +116,17 @@ def grid_picture(draft: PencilDraft, asked: Asked, found: Grid) -> "GridPicture"
         up=_axis(draft, spec.up),
         grades=grades,
         upper=[house.scale.upper(key) for key in grades],
-        dots=(_known(ink) if not moved else None, _known(pencil) if recorded is not None else None),
+        dots=grid_dots(draft, asked, found),
     )
+
+
+def grid_dots(draft: PencilDraft, asked: Asked, found: Grid) -> tuple[Dot, Dot]:
+    """Return where ink and scenario stand on a grid: the ink only where the scenario marks nothing else."""
+    sides = (found.spec.across, found.spec.up)
+    marked = {mark.target for mark in asked.scenario.marks} if asked.scenario is not None else set[str]()
+    moved, recorded = marked - {side.target for side in sides}, draft.recorded
+    ink = None if moved else stands_at(draft, sides, None)
+    return ink, None if recorded is None else stands_at(draft, sides, recorded)
 
 
 def grid_numbers(picture: "GridPicture") -> str:
@@ -137,7 +144,3 @@ def _axis(draft: PencilDraft, along: Range) -> "Axis":
     if target is None:
         return Axis(along.target, lambda at: f"{at:g}")
     return Axis(target.label, lambda at: position_words(target, along.kind, at))
-
-
-def _known(at: tuple[float, float]) -> tuple[float, float] | None:
-    return None if any(map(math.isnan, at)) else at

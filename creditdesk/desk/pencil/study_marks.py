@@ -47,9 +47,11 @@ def marks_named(draft: PencilDraft, marks: Sequence[Mark]) -> list[str]:
     return [f"{target.label} {mark_words(mark, target)}" for mark, target in found if target is not None]
 
 
-def stands_at(draft: PencilDraft, along: Range, scenario: Scenario | None) -> float:
-    """Return where a scenario, None for the ink, stands in a range; nan where its unit does not tell."""
+def stands_at(draft: PencilDraft, sides: tuple[Range, Range], scenario: Scenario | None) -> tuple[float, float] | None:
+    """Return where a scenario, None for the ink, stands in two ranges; None where their units do not tell."""
     board = draft.board
     if board is None:
-        return math.nan
-    return starts_of(board, draft.session.house, scenario or Scenario(INK), (along,)).get(along.target, math.nan)
+        return None
+    found = starts_of(board, draft.session.house, scenario or Scenario(INK), sides)
+    one, other = (found.get(side.target) for side in sides)
+    return None if one is None or other is None else (one, other)

@@ -219,6 +219,7 @@ class KeptPage(StudyPage, Generic[Spec]):
 
     def __init__(self, draft: PencilDraft) -> None:
         super().__init__(draft)
+        self._offered: tuple[object, Sequence[StudySpec]] | None = None
         self.keeper = Keeper(draft, self.kind, self.question, wide=self.stacked)
         self.foot.addWidget(self.keeper)
         self.keeper.wanted.connect(self._on_wanted)
@@ -247,8 +248,10 @@ class KeptPage(StudyPage, Generic[Spec]):
         board, draft = self.draft.board, self.draft
         if board is None:
             raise UserError("pencil", draft.why_none)
-        offered = offered_studies(board, draft.session.house, draft.case, draft.active)
-        found = [one for one in offered if isinstance(one, self.kind)]
+        key = (board, draft.recorded, draft.active)
+        if self._offered is None or self._offered[0] != key:
+            self._offered = key, offered_studies(board, draft.session.house, draft.case, draft.active)
+        found = [one for one in self._offered[1] if isinstance(one, self.kind)]
         if not found:
             raise UserError("study", "There is nothing to ask: the house book offers nothing that fits these figures.")
         return found

@@ -23,7 +23,8 @@ if TYPE_CHECKING:
     from creditdesk.charts.sensitivity import SensitivityPicture, SensitivityRow
 
 _USUAL_PCT, _MOST_PCT = 10.0, 95.0
-_ALL, _LINES, _RATIOS = "lines and ratios", "lines", "ratios"
+_FIRST, _ALL, _LINES, _RATIOS = "the twelve largest", "all", "lines", "ratios"
+_FIRST_COUNT = 12
 _NOTE = "One at a time, counted from where the scenario stands; points are percentage points of PD."
 
 
@@ -40,8 +41,8 @@ class SensitivityPage(StudyPage):
         self.chart: StudyChart[SensitivityPicture] | None = None
         self.view = QScrollArea()
         self._found: tuple[Sensitivity, ...] = ()
-        self.which.offer([(one, one) for one in (_ALL, _LINES, _RATIOS)])
-        self.which.put(_ALL)
+        self.which.offer([(one, one) for one in (_FIRST, _ALL, _LINES, _RATIOS)])
+        self.which.put(_FIRST)
         self.pct.put(_USUAL_PCT)
         self._lay_out_page()
         self.which.changed.connect(self._redraw)
@@ -80,7 +81,7 @@ class SensitivityPage(StudyPage):
         picture = SensitivityPicture(tuple(self._rows()), self._here)
         height = sensitivity_height(len(picture.rows), self.palette_shown) * self.chart.canvas.pixels_per_point
         self.chart.canvas.setFixedHeight(round(height))
-        self.chart.show(picture, sensitivity_numbers(self._found))
+        self.chart.show(picture, lambda: sensitivity_numbers(self._found))
 
     def _rows(self) -> "Sequence[SensitivityRow]":
         from creditdesk.charts.sensitivity import SensitivityRow
@@ -96,7 +97,7 @@ class SensitivityPage(StudyPage):
             moves = (_percent(one.along.low), _percent(one.along.high))
             words = per_unit_words(target, one.per_unit)
             rows.append(SensitivityRow(target.key, target.label, words, moves, (one.low, one.high)))
-        return rows
+        return rows[:_FIRST_COUNT] if self.which.value == _FIRST else rows
 
     def _lay_out_page(self) -> None:
         for widget in (

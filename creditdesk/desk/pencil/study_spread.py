@@ -106,7 +106,7 @@ class SpreadPage(KeptPage[SimulationSpec]):
         if self.chart is None or self.chart.palette is not self.palette_shown:
             self._put_chart()
         if self.chart is not None:
-            self.chart.show(spread_picture(asked, result), spread_numbers(result))
+            self.chart.show(spread_picture(asked, result), lambda: spread_numbers(result))
         self.words.setText(spread_words(result))
 
     def recolour(self, palette: Palette) -> None:
