@@ -9,6 +9,7 @@ from math import isnan
 import numpy as np
 from numpy.typing import NDArray
 
+from creditdesk.base.display import FIXED_SPACE, format_amount
 from creditdesk.model.spec import HorizonFrom, ModelSpec
 
 FloatArray = NDArray[np.float64]
@@ -45,7 +46,8 @@ def _kind(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
     if scope.legal_forms and borrower.legal_form not in scope.legal_forms:
         yield f"legal form {_words(borrower.legal_form)}: the model was made for {_listed(scope.legal_forms)}"
     if scope.countries and borrower.country not in scope.countries:
-        yield f"country {borrower.country}: the model was made for {_listed(scope.countries)}"
+        made_for = f"the model was made for borrowers in {_listed(scope.countries)}"
+        yield f"country {borrower.country}: {made_for} (country codes of ISO 3166)"
 
 
 def _sector(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
@@ -56,8 +58,8 @@ def _sector(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
     if letters is None:
         yield f"sector by {borrower.sector_scheme}: the model's sectors are stated in {_listed(tuple(sectors))} only"
     elif borrower.sector not in letters:
-        scheme = borrower.sector_scheme
-        yield f"sector {borrower.sector} ({scheme}): the model was made for {_listed(letters)}"
+        made_for = f"the model was made for {'sector' if len(letters) == 1 else 'sectors'} {_listed(letters)}"
+        yield f"sector {borrower.sector} ({borrower.sector_scheme}): {made_for}"
 
 
 def _size(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
@@ -67,9 +69,9 @@ def _size(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
     if isnan(size):
         yield f"total assets in {spec.currency} are not known, so the model's range of sizes cannot be checked"
     elif low is not None and size < low:
-        yield f"total assets {size:,.0f} {spec.currency}: the model was made for {low:,.0f} and above"
+        yield f"total assets {_money(size, spec)}: the model was made for {_money(low, spec)} and above"
     elif high is not None and size > high:
-        yield f"total assets {size:,.0f} {spec.currency}: the model was made for up to {high:,.0f}"
+        yield f"total assets {_money(size, spec)}: the model was made for up to {_money(high, spec)}"
 
 
 def pd_runs_from(spec: ModelSpec, period_end: date, assessed_on: date) -> date:
@@ -90,6 +92,10 @@ def add_months(start: date, months: int) -> date:
     year, month = divmod(start.year * 12 + start.month - 1 + months, 12)
     last = monthrange(year, month + 1)[1]
     return date(year, month + 1, last if ends_month else min(start.day, last))
+
+
+def _money(amount: float, spec: ModelSpec) -> str:
+    return f"{format_amount(amount)}{FIXED_SPACE}{spec.currency}"
 
 
 def _words(key: str) -> str:

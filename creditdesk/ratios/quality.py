@@ -7,7 +7,7 @@ import numpy as np
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.ratios.catalogue import Catalogue
 from creditdesk.ratios.compute import RatioTable
-from creditdesk.ratios.words import format_ratio
+from creditdesk.ratios.words import format_ratio, within
 from creditdesk.statements.period import Period, period_place
 from creditdesk.statements.statement import StatementSet
 
@@ -17,10 +17,13 @@ def ratio_findings(
 ) -> tuple[Finding, ...]:
     """Find what a reader of one period's ratios should know or ask about. Only for tables without draws."""
     ends = statements.periods[period].ends.isoformat()
-    return (*_annualised(table, statements.periods[period], period), *_implausible(catalogue, table, period, ends))
+    return (
+        *_annualised(catalogue, table, statements.periods[period], period),
+        *_implausible(catalogue, table, period, ends),
+    )
 
 
-def _annualised(table: RatioTable, period: Period, place: int) -> Iterator[Finding]:
+def _annualised(catalogue: Catalogue, table: RatioTable, period: Period, place: int) -> Iterator[Finding]:
     """Note which ratios took flows to twelve months."""
     marked = np.flatnonzero(table.annualised[:, place] & ~np.isnan(table.values[:, place]))
     if len(marked):
@@ -30,7 +33,7 @@ def _annualised(table: RatioTable, period: Period, place: int) -> Iterator[Findi
             place=period_place(period),
             text=f"{len(marked)} ratios take flows to 12 months, because this period has {period.months} months or the "
             "prior one has not 12; a season or a one-off in them then weighs more or less than it should: "
-            + ", ".join(table.keys[position] for position in marked),
+            + ", ".join(within(catalogue.labels[table.keys[position]]) for position in marked),
         )
 
 

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator, Sequence
 
+from creditdesk.base.display import long_date
 from creditdesk.base.findings import Finding, Severity
 from creditdesk.statements.period import (
     Basis,
@@ -80,8 +81,8 @@ def _gaps(periods: Sequence[Period], assessed: int) -> Iterator[Finding]:
             continue
         latest = max(other.ends for other in others)
         text = (
-            f"{period_label(period)}, {period.months} months, begins after {start.isoformat()}; the period before ends "
-            f"{latest.isoformat()}: lengths and ends of the periods do not fit together."
+            f"{period_label(period)}, {period.months} months, begins after {long_date(start)}; the period before ends "
+            f"{long_date(latest)}: lengths and ends of the periods do not fit together."
         )
         severity = Severity.QUERY if index == assessed else Severity.NOTE
         yield Finding("period.gap", severity, period_place(period), text)

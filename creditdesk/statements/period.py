@@ -8,6 +8,7 @@ import msgspec
 import numpy as np
 from numpy.typing import NDArray
 
+from creditdesk.base.display import long_date
 from creditdesk.base.errors import UserError
 from creditdesk.base.findings import Finding, Severity
 
@@ -125,7 +126,7 @@ def assessed_period(periods: Sequence[Period], chosen: date | None) -> tuple[int
     index = _latest(periods, actual)
     text = (
         f"No reported period of {FULL_YEAR_MONTHS} months or more: the latest one is assessed, "
-        f"{_months(periods[index].months)} to {periods[index].ends.isoformat()}, basis {periods[index].basis.value}."
+        f"{_months(periods[index].months)} to {long_date(periods[index].ends)}, basis {periods[index].basis.value}."
     )
     return index, (Finding("period.no_full_year", Severity.QUERY, period_place(periods[index]), text),)
 

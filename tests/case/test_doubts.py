@@ -9,6 +9,7 @@ from creditdesk.base.findings import Finding, Severity
 from creditdesk.case.assess import assess
 from creditdesk.case.document import Assessment, Case, LegalForm
 from creditdesk.case.doubts import case_findings
+from creditdesk.case.words import long_date
 from tests.borrowers import STRETCHED, case_of, demo, shipped_house
 from tests.statements.books import CLEAN, without, year
 
@@ -27,8 +28,12 @@ def assessed_on(day: date | None) -> Case:
 @pytest.mark.parametrize(
     ("day", "severities", "words"),
     [
-        (None, [Severity.NOTE], "the end of the assessed period, 2025-12-31, is taken"),
-        (date(2025, 12, 30), [Severity.QUERY], "2025-12-30 lies before the end of the assessed period, 2025-12-31"),
+        (None, [Severity.NOTE], "the end of the assessed period, 31\u00a0December 2025, is taken"),
+        (
+            date(2025, 12, 30),
+            [Severity.QUERY],
+            "30\u00a0December 2025 lies before the end of the assessed period, 31\u00a0December 2025",
+        ),
         (date(2025, 12, 31), [], ""),
         (date(2026, 3, 1), [], ""),
     ],
@@ -59,7 +64,7 @@ def test_figures_are_old_from_the_day_after_the_house_s_limit_of_months(ends: da
     assert bool(findings) is old
     for finding in findings:
         assert (finding.severity, finding.place) == (Severity.QUERY, "assessment.period")
-        assert f"to {ends}, are more than 18 months old on {day}" in finding.text
+        assert f"to {long_date(ends)}, are more than 18 months old on {long_date(day)}" in finding.text
 
 
 def test_every_reason_to_be_out_of_scope_is_a_query_of_its_own_and_the_rule_applies() -> None:
@@ -68,7 +73,7 @@ def test_every_reason_to_be_out_of_scope_is_a_query_of_its_own_and_the_rule_appl
     findings = [finding for finding in one.findings if finding.code == "out_of_scope"]
     assert [finding.severity for finding in findings] == [Severity.QUERY] * 4
     assert {finding.place for finding in findings} == {"model.scope"}
-    for words in ("legal form other", "country DE", "sector F (ISIC4)", "total assets 205,000,000 GBP"):
+    for words in ("legal form other", "country DE", "sector F (ISIC4)", "total assets 205\u202f000\u202f000\u00a0GBP"):
         assert sum(words in finding.text for finding in findings) == 1, words
     assert one.grade.final == "8"
     assert one.usable
@@ -92,7 +97,7 @@ def test_a_factor_at_its_cap_or_without_a_value_is_noted_with_what_the_model_doe
 def test_a_reason_without_a_rule_is_said_to_give_no_score() -> None:
     findings = found(case_of({"cash": 1.0}), "factor_without_value")
     equity = next(finding for finding in findings if finding.place == "model.equity_ratio")
-    assert equity.text.endswith("(not disclosed): the model states no rule for that and gives no score")
+    assert equity.text.endswith("(not disclosed): the model states no rule for that and gives no score.")
 
 
 def test_each_factor_is_spoken_of_once_at_most() -> None:

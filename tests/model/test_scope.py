@@ -36,11 +36,17 @@ def test_a_borrower_inside_gives_no_sentence(make_spec: MakeSpec) -> None:
     ("changes", "words"),
     [
         ({"legal_form": "public_body"}, "legal form public body: the model was made for company, partnership"),
-        ({"country": "DE"}, "country DE: the model was made for GB"),
-        ({"sector": "G"}, "sector G (ISIC4): the model was made for C, F"),
+        ({"country": "DE"}, "country DE: the model was made for borrowers in GB (country codes of ISO 3166)"),
+        ({"sector": "G"}, "sector G (ISIC4): the model was made for sectors C, F"),
         ({"sector_scheme": "NACE2.1"}, "sector by NACE2.1: the model's sectors are stated in ISIC4 only"),
-        ({"total_assets": 1e5}, "total assets 100,000 GBP: the model was made for 200,000 and above"),
-        ({"total_assets": 2e8}, "total assets 200,000,000 GBP: the model was made for up to 100,000,000"),
+        (
+            {"total_assets": 1e5},
+            "total assets 100\u202f000\u00a0GBP: the model was made for 200\u202f000\u00a0GBP and above",
+        ),
+        (
+            {"total_assets": 2e8},
+            "total assets 200\u202f000\u202f000\u00a0GBP: the model was made for up to 100\u202f000\u202f000\u00a0GBP",
+        ),
         ({"total_assets": float("nan")}, "total assets in GBP are not known"),
     ],
 )

@@ -111,7 +111,7 @@ def test_without_a_reported_year_the_latest_actual_period_is_assessed_with_a_que
     assert index == 1
     assert [finding.severity for finding in findings] == [Severity.QUERY]
     assert findings[0].place == "periods[2025-06-30]"
-    assert "6 months to 2025-06-30, basis audited" in findings[0].text
+    assert "6 months to 30\u00a0June 2025, basis audited" in findings[0].text
 
 
 def test_a_chosen_period_must_exist_and_have_ended() -> None:
