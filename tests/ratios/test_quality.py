@@ -22,7 +22,7 @@ def test_annualised_ratios_are_noted_once_for_the_period() -> None:
     (note,) = notes
     assert note.severity is Severity.NOTE
     assert note.place == "periods[2025-06-30]"
-    assert "interest-bearing debt to EBITDA" in note.text
+    assert "debt to EBITDA, " in note.text
     assert "6 months" in note.text
     assert "interest_cover" not in note.text
 
