@@ -1,7 +1,9 @@
 """Scenarios and studies to test with: sound ones by hand, and generated ones, sound or not."""
 
+import msgspec
 from hypothesis import strategies as st
 
+from creditdesk.case.document import Case
 from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.specs import (
@@ -33,6 +35,8 @@ DOWNTURN = Scenario(
 PLAN = Scenario("The borrower's plan", (Mark("cash", MoveKind.TO, 500.0),), judgement="Ambitious.")
 SALES_RANGE = Range("revenue", MoveKind.BY_PCT, -40.0, 20.0)
 RATE_RANGE = Range("interest_rate", MoveKind.BY, 0.0, 400.0)
+DAYS_RANGE = Range("inventory_days", MoveKind.BY, -20.0, 0.0)
+LIMITS = (Limit(LimitKind.GRADE, "7"), Limit(LimitKind.BELOW, "debt_service_cover", 1.0))
 STUDIES: tuple[StudySpec, ...] = (
     GridSpec(across=SALES_RANGE, up=RATE_RANGE, scenario=DOWNTURN.name, in_memo=True),
     BreakEvenSpec(
@@ -47,6 +51,31 @@ STUDIES: tuple[StudySpec, ...] = (
         seed=7,
     ),
 )
+
+
+def with_studies(case: Case, draws: int = 1000) -> Case:
+    """Return a case with a study of each kind for the memo, on its first scenario."""
+    name = case.scenarios[0].name
+    studies: tuple[StudySpec, ...] = (
+        GridSpec(across=SALES_RANGE, up=RATE_RANGE, points=21, scenario=name, in_memo=True),
+        BreakEvenSpec(along=SALES_RANGE, limits=LIMITS, scenario=name, in_memo=True),
+        ReachSpec(
+            grade="6",
+            levers=(Lever(Range("revenue", MoveKind.BY_PCT, 0.0, 25.0), 1.0), Lever(DAYS_RANGE, 0.2)),
+            scenario=name,
+            in_memo=True,
+        ),
+        SimulationSpec(
+            inputs=(UncertainInput(Range("revenue", MoveKind.BY_PCT, -10.0, 10.0)),),
+            coefficients=True,
+            draws=draws,
+            scenario=name,
+            in_memo=True,
+        ),
+        GridSpec(across=SALES_RANGE, up=RATE_RANGE, points=21),
+    )
+    return msgspec.structs.replace(case, studies=studies)
+
 
 amounts = st.floats(-1e9, 1e9) | st.integers(-1000, 1000) | st.sampled_from([0.0, -0.0])
 names = st.sampled_from(["Sales", "Rate", "sales", "Ink", "", " x", "Plan", "é “x”"])

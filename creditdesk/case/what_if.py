@@ -1,7 +1,7 @@
 """What a case asks beside its standing: its scenarios, the house's stress events, and the studies kept for the memo."""
 
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.findings import Finding, Severity
@@ -53,9 +53,9 @@ class StudyAnswer:
 class WhatIf:
     """Hold what is asked of a case beside ``ink``, its standing as the figures are.
 
-    ``answers``: all its scenarios, in their order. ``comparison``: those chosen for the memo side by side. ``stress``:
-    every stress event of the house, the ink first. ``studies``: those chosen for the memo. The last three are empty
-    where a case asks for nothing, or was asked for its scenarios alone.
+    ``answers``: all its scenarios, in their order; ``comparison``: those that could be worked out side by side, None
+    where there are none. ``stress``: every stress event of the house, the ink first. ``studies``: those chosen for the
+    memo. The last two are empty where a case asks for nothing, or was asked for its scenarios alone.
     """
 
     ink: Standing
@@ -83,11 +83,8 @@ def work_out(case: Case, house: HouseBook, model: str = "", step: Step | None = 
     asked, board = _scenarios_of(case, house, model)
     if board is None:
         return asked
-    names = [answer.scenario.name for answer in asked.chosen if answer.pencilled is not None]
-    return WhatIf(
-        ink=asked.ink,
-        answers=asked.answers,
-        comparison=compare(board, house, case, names) if names else None,
+    return replace(
+        asked,
         stress=stress_table(board, house, case) if house.stress is not None else (),
         studies=tuple(_studies(board, house, case, step)),
     )
@@ -102,7 +99,9 @@ def _scenarios_of(case: Case, house: HouseBook, model: str) -> tuple[WhatIf, Pen
         unanswered = tuple(Answer(one, None, (_finding(one, why),)) for one in case.scenarios)
         return WhatIf(assess(case, house, model), unanswered), None
     board = PencilBoard(case, house, model)
-    return WhatIf(board.ink, tuple(_answer(board, scenario) for scenario in case.scenarios)), board
+    answers = tuple(_answer(board, scenario) for scenario in case.scenarios)
+    names = [answer.scenario.name for answer in answers if answer.pencilled is not None]
+    return WhatIf(board.ink, answers, compare(board, house, case, names) if names else None), board
 
 
 def _answer(board: PencilBoard, scenario: Scenario) -> Answer:
@@ -127,14 +126,18 @@ def _study(board: PencilBoard, house: HouseBook, case: Case, asked: tuple[StudyS
     """Run one study, telling ``step`` after each part."""
     spec, step = asked
     words = f"Studying: {KINDS[type(spec)]}{f', {spec.scenario}' if spec.scenario else ''}"
+    tell = step or _untold
     try:
         here = board.scenario(scenario_on(case, spec.scenario))
         work = run_study(board, house, case, spec)
         while True:
-            done = next(work)
-            if step is not None:
-                step(words, round(_PARTS * done), _PARTS)
+            tell(words, round(_PARTS * next(work)), _PARTS)
     except StopIteration as end:
+        tell(words, _PARTS, _PARTS)
         return StudyAnswer(spec, end.value.result, here)
     except UserError as error:
         return StudyAnswer(spec, None, None, " ".join(error.faults))
+
+
+def _untold(words: str, done: int, total: int) -> None:
+    """Take no notice of how far work is."""

@@ -10,7 +10,6 @@ from pathlib import Path
 
 from creditdesk.base.errors import UsageError
 from creditdesk.base.palette import DARK, LIGHT
-from creditdesk.case.assess import assess as assess_case
 from creditdesk.case.convert import load_any, save_any
 from creditdesk.case.document import Case
 from creditdesk.case.lead import with_lead_model
@@ -150,7 +149,7 @@ def convert(options: Namespace) -> int:
         from creditdesk.memo.workbook import workbook  # heavy, and other commands go without
 
         house = with_lead_model(house, case, options.source.parent)
-        write_file(options.target, workbook(case, assess_case(case, house), house))
+        write_file(options.target, workbook(case, scenarios_of(case, house), house))
     else:
         save_any(options.target, case, house.chart)
     _say(f"Written to {options.target}")

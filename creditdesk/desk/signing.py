@@ -80,11 +80,11 @@ class Issuer(QObject):
             return
         case, house = self._session.case, self._session.house
 
-        def work(_progress: Progress) -> object:
+        def work(progress: Progress) -> object:
             with fetching():
                 from creditdesk.memo.issue import issue_unsigned  # heavy, and wanted off the main thread
 
-            return issue_unsigned(case, house, Path(name))
+            return issue_unsigned(case, house, Path(name), progress.step)
 
         self._start("The memo is being written", work, self._say, "The memo was not written")
 
@@ -102,7 +102,7 @@ class Issuer(QObject):
             with fetching():
                 from creditdesk.memo.issue import draft_memo  # heavy, and wanted off the main thread
 
-            return print_pdf(draft_memo(case, house), printer, progress)
+            return print_pdf(draft_memo(case, house, progress.step), printer, progress)
 
         def done(pages: int) -> None:
             self._say(f"{pages} {'page' if pages == 1 else 'pages'} handed to the printer")

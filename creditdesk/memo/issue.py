@@ -55,6 +55,7 @@ def prepare(case: Case, house: HouseBook, out: Path, key: Key, now: datetime, st
     memo = draft_memo(case, house, step)
     tell("Signing", 2, 3)
     write_file(out, sign_as_preparer(memo, identity, time=now))
+    tell("Signing", 3, 3)
     words = f"Signed memo written to {out}, certificate SHA-256 {identity.fingerprint_sha256}"
     return Issued(out, words, identity.name, identity.fingerprint_sha256)
 

@@ -13,7 +13,7 @@ from creditdesk.memo.text import NIL
 from creditdesk.ratios.words import format_ratio
 
 NOT_ANSWERED = "not answered"
-_IN_WORDS = "judged in words"
+_IN_WORDS = "in words"
 _OF_MARKS = ("flow.", "pencil.")
 """Findings of what is marked; those of figures that only follow are the figures' own."""
 _SLOTS = {"I": "borrower", "M": "market"}
@@ -92,6 +92,6 @@ def _notes(row: StressRow, targets: TargetBook) -> Iterator[str]:
     if scenario.rationale.strip():
         yield with_full_stop(" ".join(scenario.rationale.split()))
     if row.event is not None and not row.event.quantified:
-        answer = " ".join(row.judgement.split()) or f"{NOT_ANSWERED}."
+        answer = " ".join(row.judgement.split()) or f"{NOT_ANSWERED.capitalize()}."
         yield f"{row.event.question} {answer}"
     yield from (with_full_stop(one.text) for one in row.findings if one.code.startswith(_OF_MARKS))

@@ -130,7 +130,7 @@ def _break_even(found: BreakEven, house: HouseBook, targets: TargetBook) -> Iter
 def _limit_row(found: BreakEven, one: Break, house: HouseBook, targets: TargetBook) -> Row:
     target, along = targets.find(found.spec.along.target), (found.spec.along, found.start)
     now = "" if one.limit.kind is LimitKind.GRADE else amount_words(one.limit.key, one.at_start, house, targets)
-    state = "broken" if one.broken else now or "holds"
+    state = f"{now} broken".strip() if one.broken else now or "holds"
     sides = [
         Cell("" if target is None else side_words(one, side, target, along), side.position)
         for side in (one.down, one.up)

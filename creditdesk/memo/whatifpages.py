@@ -75,8 +75,10 @@ def _side_by_side(pages: _Pages, unit: str) -> Iterator[Block]:
     if comparison is None:
         return
     yield Subheading("Scenarios side by side")
-    record = [place for place, column in enumerate(comparison.columns) if column.kind is not ColumnKind.SCENARIO]
-    made = [place for place, column in enumerate(comparison.columns) if column.kind is ColumnKind.SCENARIO]
+    record = [place for place, column in enumerate(comparison.columns) if column.worked is None]
+    made = [
+        place for place, column in enumerate(comparison.columns) if column.worked and column.worked.scenario.in_memo
+    ]
     for start in range(0, len(made), _BESIDE):
         shown = [*record, *made[start : start + _BESIDE]]
         yield Grid(

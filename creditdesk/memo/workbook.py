@@ -7,8 +7,10 @@ from openpyxl import Workbook
 from openpyxl.styles import Font
 from openpyxl.worksheet.worksheet import Worksheet
 
+from creditdesk.case.comparison import Comparison
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.what_if import WhatIf
 from creditdesk.charts.words import contribution_scale
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import Reason
@@ -16,14 +18,19 @@ from creditdesk.ratios.compute import Reason
 _BOLD = Font(bold=True)
 
 
-def workbook(case: Case, standing: Standing, house: HouseBook) -> bytes:
-    """Return an .xlsx of ``case``: one sheet each for figures, ratios and standing; blank means not disclosed."""
-    book = Workbook()
+def workbook(case: Case, asked: WhatIf, house: HouseBook) -> bytes:
+    """Return an .xlsx of ``case``: one sheet each for figures, ratios and standing; blank means not disclosed.
+
+    Where the case has scenarios, a further sheet has them side by side.
+    """
+    standing, book = asked.ink, Workbook()
     first = book.active
     assert isinstance(first, Worksheet)
     _figures(first, case, standing)
     _ratios(book.create_sheet("Ratios"), standing, house)
     _standing(book.create_sheet("Standing"), standing)
+    if asked.comparison is not None:
+        _what_if(book.create_sheet("What if"), asked.comparison)
     for sheet in (first, *book.worksheets[1:]):
         sheet.column_dimensions["A"].width = 44
         sheet.freeze_panes = "B2"
@@ -78,6 +85,30 @@ def _standing(sheet: Worksheet, standing: Standing) -> None:
         sheet.append([label, value])
         if isinstance(value, str):
             sheet.cell(sheet.max_row, 2).data_type = "s"  # a text that begins with = is a text, not a formula
+
+
+def _what_if(sheet: Worksheet, comparison: Comparison) -> None:
+    """Write scenarios beside last year and the figures as they are; what a scenario marks is bold."""
+    columns = comparison.columns
+    _texts(sheet, ["", *(column.name or "as it is" for column in columns)])
+    for row in comparison.rows:
+        _texts(
+            sheet, [f"{row.label}, {row.unit.replace('_', ' ')}" if row.unit else row.label, *map(_number, row.values)]
+        )
+        for place, marked in enumerate(row.marked, start=2):
+            if marked:
+                sheet.cell(sheet.max_row, place).font = _BOLD
+    _texts(sheet, ["Score", *(_number(column.score) for column in columns)])
+    _texts(sheet, ["PD that counts", *(_number(column.pd_final) for column in columns)])
+    _texts(sheet, ["Grade", *(column.grade for column in columns)])
+
+
+def _texts(sheet: Worksheet, cells: list[str | float | None]) -> None:
+    """Append a row; a text that begins with = is a text, not a formula."""
+    sheet.append(cells)
+    for place, cell in enumerate(cells, start=1):
+        if isinstance(cell, str):
+            sheet.cell(sheet.max_row, place).data_type = "s"
 
 
 def _number(value: float) -> float | None:

@@ -112,6 +112,37 @@ def test_the_text_says_what_the_json_says(command: Command, case: Path) -> None:
         assert text in done.text
 
 
+@DEMOS
+def test_scenarios_stand_in_text_and_json_against_the_figures_as_they_are(command: Command, case: Path) -> None:
+    result = assessed(command, case)
+    lines = command("assess", case).text.splitlines()
+    start = lines.index(
+        f"What if; as the figures stand: PD {format_pd(result['pd_final'])}, grade {result['grade']['final']}"
+    )
+    told = {line[:36].strip(): line[36:].strip() for line in lines[start:] if line.startswith("  ")}
+    assert result["scenarios"]
+    for one in result["scenarios"]:
+        words = f"PD {format_pd(one['pd_final'])}, grade {one['grade']}" if one["marks"] else "judged in words"
+        assert told[one["name"][:36]] == words
+
+
+def test_without_scenarios_nothing_is_said_of_them(command: Command, tmp_path: Path) -> None:
+    text = SOUND.read_text(encoding="utf-8")
+    bare = tmp_path / "bare.case.toml"
+    bare.write_text(text[: text.index("[[scenarios]]")], encoding="utf-8")
+    with_them, without_them = assessed(command, SOUND), assessed(command, bare)
+    assert not {"scenarios", "stress", "studies"} & without_them.keys()
+    assert without_them == {key: part for key, part in with_them.items() if key not in ("scenarios", "stress")}
+    assert "What if" not in command("assess", bare).text
+
+
+def test_another_model_is_applied_to_the_scenarios_too(command: Command) -> None:
+    result = assessed(command, SOUND, "--model", "altman-1983-z1")
+    scores = [one["score"] for one in result["scenarios"]]
+    assert len({result["score"], *scores}) == 1 + len(scores)
+    assert all(one["pd"] is None for one in result["scenarios"])
+
+
 def test_a_case_file_and_the_exchange_file_it_came_from_give_the_same(command: Command, tmp_path: Path) -> None:
     kept = tmp_path / "case.deskcase"
     assert command("convert", SOUND, kept).code == 0

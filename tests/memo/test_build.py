@@ -22,7 +22,10 @@ from creditdesk.house.shipped import resources_folder
 from creditdesk.memo.attach import attachments
 from creditdesk.memo.build import unsigned_memo
 from creditdesk.memo.finish import claim_universal_access
+from creditdesk.memo.issue import draft_memo
+from tests.borrowers import STRETCHED, demo, shipped_house
 from tests.memo.reading import page_texts
+from tests.pencils import with_studies
 
 ROOT = Path(__file__).resolve().parents[2]
 
@@ -76,9 +79,11 @@ def test_the_memo_has_no_pdfa_violation_and_its_pages_conform(memo: bytes) -> No
     assert report.passed, report.findings
 
 
-def test_an_accessibility_checker_finds_no_error(memo: bytes, tmp_path: Path) -> None:
+@pytest.mark.parametrize("studies", [False, True], ids=["as it is", "with studies"])
+def test_an_accessibility_checker_finds_no_error(memo: bytes, tmp_path: Path, *, studies: bool) -> None:
     # outside check: outloud's PDF/UA-1 and semantic rules, on a copy that declares itself PDF/UA
     path = tmp_path / "memo.pdf"
+    memo = draft_memo(with_studies(demo(STRETCHED)), shipped_house()) if studies else memo
     path.write_bytes(claim_universal_access(memo))
     run = subprocess.run([sys.executable, "-m", "outloud.cli", "-q", path], capture_output=True, text=True, check=False)
     assert run.returncode == 0, run.stdout + run.stderr

@@ -8,11 +8,11 @@ import msgspec
 import pytest
 
 from creditdesk.base.errors import UserError
-from creditdesk.case.assess import assess
 from creditdesk.case.document import Case, ModelChoice
 from creditdesk.case.exchange import read_case, write_case
 from creditdesk.case.lead import with_lead_model
 from creditdesk.case.result import result_bytes
+from creditdesk.case.what_if import work_out
 from creditdesk.house.load import house_book_from_files
 from creditdesk.house.pack import unpack
 from creditdesk.memo import issue
@@ -65,7 +65,8 @@ def test_a_draft_carries_the_case_its_result_and_the_house_book() -> None:
     assert set(parts) == {CASE, RESULT, HOUSE_BOOK}
     assert parts[CASE] == write_case(case, HOUSE.chart)
     assert read_case(parts[CASE], HOUSE.chart, file=CASE) == case
-    assert parts[RESULT] == result_bytes(assess(case, HOUSE))
+    asked = work_out(case, HOUSE)
+    assert parts[RESULT] == result_bytes(asked.ink, asked)
     assert house_book_from_files(unpack(parts[HOUSE_BOOK])).digest == HOUSE.digest
 
 

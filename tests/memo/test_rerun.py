@@ -15,12 +15,14 @@ from creditdesk.case.assess import assess
 from creditdesk.case.document import Case, ModelChoice
 from creditdesk.case.exchange import write_case
 from creditdesk.case.result import result_bytes
+from creditdesk.case.what_if import work_out
 from creditdesk.house.book import HouseBook, with_model
 from creditdesk.house.load import model_from_bytes
 from creditdesk.house.pack import FILE_LIMIT, SIZE_LIMIT, pack
 from creditdesk.memo.parts import CASE, HOUSE_BOOK, LEAD_MODEL, RESULT
 from creditdesk.memo.rerun import TOLERANCE, _differences, rerun
 from tests.borrowers import LEAD, SOUND, STRETCHED, case_of, demo, intercept_as_written, shipped_house
+from tests.pencils import with_studies
 
 HOUSE = shipped_house()
 INTERCEPT = intercept_as_written()
@@ -29,9 +31,10 @@ Parts = dict[str, bytes]
 
 def parts_of(case: Case, house: HouseBook = HOUSE) -> Parts:
     """Return what a memo of ``case`` carries."""
+    asked = work_out(case, house)
     return {
         CASE: write_case(case, house.chart),
-        RESULT: result_bytes(assess(case, house)),
+        RESULT: result_bytes(asked.ink, asked),
         HOUSE_BOOK: pack(house.files),
     }
 
@@ -86,6 +89,41 @@ def test_numbers_may_be_written_as_whole_or_with_a_fraction() -> None:
     assert rerun(with_result(lambda result: result.update(version=1.0))).answer == "equal"
 
 
+def test_a_memo_made_before_scenarios_were_told_is_assessed_as_it_was() -> None:
+    old = {**sound(), RESULT: result_bytes(assess(demo(SOUND), HOUSE))}
+    assert "scenarios" not in json.loads(old[RESULT])
+    again = rerun(old)
+    assert (again.answer, again.largest_difference) == ("equal", 0.0)
+
+
+@cache
+def studied() -> Mapping[str, bytes]:
+    return parts_of(with_studies(demo(SOUND), draws=2_000))
+
+
+def test_studies_chosen_for_the_memo_are_run_again() -> None:
+    recorded = json.loads(studied()[RESULT])
+    assert [one["study"] for one in recorded["studies"]] == ["grid", "break_even", "reach", "simulation"]
+    assert rerun(studied()).answer == "equal"
+
+
+@pytest.mark.parametrize(
+    ("study", "found", "factor", "answer"),
+    [
+        ("simulation", "mean", 1 + 1e-8, "different"),
+        ("reach", "cost", 1 + 1e-8, "equal"),  # a search may end a little elsewhere on another machine
+        ("reach", "cost", 1 + 1e-5, "different"),
+        ("break_even", "start", 1 + 1e-8, "different"),
+    ],
+)
+def test_a_study_s_result_counts(study: str, found: str, factor: float, answer: str) -> None:
+    recorded = json.loads(studied()[RESULT])
+    (one,) = (one for one in recorded["studies"] if one["study"] == study)
+    assert one[study][found]
+    one[study][found] *= factor
+    assert rerun({**studied(), RESULT: json.dumps(recorded).encode()}).answer == answer
+
+
 # ---------------------------------------------------------------------------------------------------- different
 
 CHANGES: dict[str, tuple[Callable[[dict[str, Any]], object], str]] = {
@@ -107,6 +145,20 @@ CHANGES: dict[str, tuple[Callable[[dict[str, Any]], object], str]] = {
     "a value made a table": (lambda one: one.update(score={"a": 1}), "score: recorded a table of 1, re-run -5."),
     "a key left out": (lambda one: one.pop("pd_interval"), "pd_interval: only the re-run gives it"),
     "a key put in": (lambda one: one.update(approved=True), "approved: only recorded"),
+    "a scenario's PD by 1e-8": (
+        lambda one: one["scenarios"][0].update(pd=one["scenarios"][0]["pd"] * (1 + 1e-8)),
+        "scenarios[0].pd: recorded ",
+    ),
+    "a step of a scenario": (
+        lambda one: one["scenarios"][0]["steps"][1].update(after=1.0),
+        "scenarios[0].steps[1].after: recorded 1.0",
+    ),
+    "a scenario left out": (lambda one: one["scenarios"].pop(), "scenarios: recorded a list of 2, re-run a list of 3"),
+    "a stress event's cover": (
+        lambda one: one["stress"][2].update(interest_cover=9.0),
+        "stress[2].interest_cover: recorded 9.0",
+    ),
+    "a judgement": (lambda one: one["stress"][3].update(judgement="None."), "stress[3].judgement: recorded 'None.'"),
     "a number beyond all": (lambda one: one.update(score=10**400), "score: recorded inf, re-run -5."),
 }
 

@@ -7,9 +7,9 @@ import msgspec
 import openpyxl
 import pytest
 
-from creditdesk.case.assess import assess
 from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
+from creditdesk.case.what_if import scenarios_of
 from creditdesk.memo.workbook import workbook
 from tests.borrowers import STRETCHED, case_of, demo, shipped_house
 from tests.statements.books import CLEAN, without
@@ -18,8 +18,8 @@ HOUSE = shipped_house()
 
 
 def opened(case: Case, model: str = "") -> tuple[Standing, Any]:
-    standing = assess(case, HOUSE, model)
-    return standing, openpyxl.load_workbook(BytesIO(workbook(case, standing, HOUSE)))
+    asked = scenarios_of(case, HOUSE, model)
+    return asked.ink, openpyxl.load_workbook(BytesIO(workbook(case, asked, HOUSE)))
 
 
 def rows_of(sheet: Any) -> dict[str, tuple[Any, ...]]:  # noqa: ANN401  openpyxl's sheet
@@ -120,3 +120,29 @@ def test_a_name_is_a_text_whatever_it_begins_with(name: str) -> None:
     _, book = opened(msgspec.structs.replace(demo(), obligor=obligor))
     cell = book["Standing"]["B1"]
     assert (cell.value, cell.data_type) == (name, "s")
+
+
+def test_scenarios_stand_side_by_side_with_last_year_and_the_figures_as_they_are() -> None:
+    asked = scenarios_of(demo(), HOUSE)
+    _, book = opened(demo())
+    rows = rows_of(book["What if"])
+
+    assert rows["head"] == (None, "2024", "as it is", *(answer.scenario.name for answer in asked.answers))
+    assert rows["Revenue"] == (41250, 43900, 35120, 38632, 46534)
+    pds = [answer.standing.pd_final for answer in asked.answers if answer.standing]
+    assert rows["PD that counts"][1:] == tuple(same(pd) for pd in (asked.ink.pd_final, *pds))
+    assert rows["Grade"][2:] == tuple(answer.standing.grade.final for answer in asked.answers if answer.standing)
+    bold = [cell.value for row in book["What if"].iter_rows() for cell in row if cell.font.bold]
+    assert bold[:3] == [35120, 38632, 46534]
+
+
+def test_a_case_without_scenarios_has_no_sheet_of_them() -> None:
+    assert "What if" not in opened(case_of())[1].sheetnames
+
+
+def test_a_scenario_s_name_is_no_formula() -> None:
+    first = msgspec.structs.replace(demo().scenarios[0], name="=1+1")
+    _, book = opened(msgspec.structs.replace(demo(), scenarios=(first,)))
+
+    assert book["What if"].cell(1, 4).value == "=1+1"
+    assert book["What if"].cell(1, 4).data_type == "s"
