@@ -59,6 +59,7 @@ def seen(*, with_pixels: bool) -> Json:
         "places": places(window, window.figures.model.periods - 1),
         "firsts": places(window, 0),
         "sheet": sheet(window),
+        "pencil": pencil(window, with_pixels=with_pixels),
         "standing width": window.standing.width(),
         "focus": focused(),
         "ratios": ratios(window),
@@ -95,6 +96,19 @@ def focused() -> str:
 def sheet(window: Window) -> str:
     """Return the title of the sheet in front."""
     return str(getattr(window.stack.currentWidget(), "title", ""))
+
+
+def pencil(window: Window, *, with_pixels: bool) -> Json:
+    """Return what stands in pencil: in the Standing, and on its sheet while that is in front."""
+    line = window.standing.verdict.pencil
+    shown: Json = {"words": line.words.words if line.isVisible() else "", "key": "", "cells": {}, "pixels": []}
+    if sheet(window) == "Pencil":
+        model = window.pencil.model
+        shown["key"] = window.pencil.table.key
+        shown["active"] = window.pencil.draft.active
+        shown["cells"] = {row.key: model.cell(row).pencil for row in model.rows if row.key}
+        shown["pixels"] = [pixels(window.standing), pixels(window.stack)] if with_pixels else []
+    return shown
 
 
 def ratios(window: Window) -> dict[str, list[str]]:

@@ -2,7 +2,7 @@
 
 from collections.abc import Callable
 
-from PySide6.QtCore import QObject, QRectF, Qt, Signal
+from PySide6.QtCore import QEvent, QItemSelectionModel, QObject, QRectF, Qt, Signal
 from PySide6.QtGui import QColor, QFontMetricsF, QKeyEvent, QPainter, QPen, QResizeEvent
 from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QLineEdit, QStyle, QStyleOptionViewItem, QWidget
 
@@ -146,6 +146,10 @@ class PencilTable(PlainTable):
         """Tell which row is at hand."""
         super().currentChanged(current, previous)
         self.at_hand.emit(self.key)
+
+    def selectionCommand(self, index: Index, event: QEvent | None = None) -> QItemSelectionModel.SelectionFlag:
+        """Choose whole rows, also where the program moves the cursor."""
+        return super().selectionCommand(index, event) | QItemSelectionModel.SelectionFlag.Rows
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
         """Take Delete, Enter and F6; typing on any column of a row marks it."""
