@@ -1,7 +1,6 @@
-"""The cheapest distances that satisfy one condition, improved from a given point: a smooth one, and one with kinks."""
+"""The cheapest distances that satisfy one condition, improved from a given point, also past kinks."""
 
 from collections.abc import Callable, Generator
-from contextlib import suppress
 from importlib import import_module
 from typing import Any, TypeAlias
 
@@ -15,59 +14,44 @@ Pieces: TypeAlias = Generator[None, None, FloatArray]
 """Work in short pieces that comes to a point; it may be stopped between two."""
 
 _DIFFERENCE = 1e-6
-_AT_ONCE, _PARTS = 30, 3
-"""Questions in one call of the solver, and calls; each begins where the last one ended."""
+_RADIUS, _WIDEST, _ROUNDS = 0.1, 0.5, 60
 _STILL = 1e-8
-_RADIUS, _LEAST_RADIUS, _ROUNDS = 0.1, 1e-7, 60
+"""Share of the box's half width that a step has to gain in cost."""
 _SAMPLES = 24
 """Places around a point at which slopes are taken: on either side of every kink nearby."""
 _LIBRARY = ("scipy", "scipy._lib._util", "scipy.linalg", "scipy.sparse.linalg", "scipy.special", "scipy.optimize")
 
 
-def load_solvers() -> Generator[None, None, None]:
-    """Import the solvers part by part: the whole of it takes longer than a stop may wait, the first time."""
+def load_solver() -> Generator[None, None, None]:
+    """Import the solver part by part: the whole of it takes longer than a stop may wait, the first time."""
     for part in _LIBRARY:
         import_module(part)
         yield
 
 
-def cheapest(margin: Margin, cost: FloatArray, room: FloatArray, begin: FloatArray) -> Pieces:
-    """Minimise ``cost`` times distances within 0 and ``room`` where ``margin`` is not below 0.
+def cheapest(margin: Margin, terms: tuple[FloatArray, FloatArray], begin: FloatArray, finest: float) -> Pieces:
+    """Minimise cost times distances within 0 and room where ``margin`` is not below 0, from a point where that is so.
 
-    All distances should be of the order of 1. Sequential quadratic programming (Kraft 1988, SLSQP of scipy). The point
-    found is a local answer, may miss the condition by a hair or altogether, and stalls at kinks: whoever asks has to
-    look.
+    ``terms``: cost and room; distances should be of the order of 1. ``finest``: how near to look. Sequential linear
+    programming within a box that shrinks: the margin is bounded by its tangents at places all around, so that kinks are
+    seen, as in gradient sampling (Burke, Lewis and Overton 2005, from memory). Every step meets the condition and is
+    cheaper; the end is a local answer.
     """
-    scaled, here = cost / np.max(cost), begin
-    for _ in range(_PARTS):
-        found = _improved(_Condition(margin), scaled, room, here)
-        yield
-        still, here = bool(np.max(np.abs(found - here)) <= _STILL), found
-        if still:
-            break
-    return here
-
-
-def cheapest_at_kinks(margin: Margin, cost: FloatArray, room: FloatArray, begin: FloatArray) -> Pieces:
-    """Minimise as ``cheapest`` from a point that meets the condition, also where its margin has kinks.
-
-    Sequential linear programming within a box that shrinks: the margin is bounded by its tangents at places all around,
-    as in gradient sampling (Burke, Lewis and Overton 2005, from memory). Every step meets the condition and is cheaper.
-    """
-    scaled, here, radius = cost / np.max(cost), begin, _RADIUS
+    cost, room = terms[0] / np.max(terms[0]), terms[1]
+    here, radius = begin, _RADIUS
     stream = np.random.default_rng(len(begin))
     for _ in range(_ROUNDS):
         around = here + radius * stream.uniform(-1.0, 1.0, (_SAMPLES, len(here)))
         places = np.concatenate([here[None], np.clip(around, 0.0, room)])
         values, slopes = _with_slopes(margin, places)
-        target = _best_by_tangents((places, values, slopes), scaled, room, radius)
-        found = None if target is None else _inwards(margin, target, slopes.mean(axis=0), (scaled, room, radius))
+        target = _best_by_tangents((places, values, slopes), cost, room, radius)
+        found = None if target is None else _inwards(margin, target, slopes.mean(axis=0), (cost, room, radius))
         yield
-        if found is not None and float(scaled @ (here - found)) > _STILL * radius:
-            here, radius = found, min(2.0 * radius, 0.5)
+        if found is not None and float(cost @ (here - found)) > _STILL * radius:
+            here, radius = found, min(2.0 * radius, _WIDEST)
         else:
-            radius /= 3.0
-        if radius < _LEAST_RADIUS:
+            radius /= 4.0
+        if radius < finest:
             break
     return here
 
@@ -110,54 +94,3 @@ def _inwards(
     points = np.clip(target + ways[:, None] * lead, 0.0, room)
     met = margin(points) >= 0.0
     return np.asarray(points[int(np.argmax(met))]) if met.any() else None
-
-
-class _Enough(Exception):
-    """Leave the solver: it has asked as often as it may."""
-
-
-class _Condition:
-    """Ask for margin and slope at once, and keep the answer of the last point."""
-
-    def __init__(self, margin: Margin) -> None:
-        self._margin = margin
-        self._at: FloatArray = np.empty(0)
-        self._value, self._slope = 0.0, np.empty(0)
-        self._asked = 0
-
-    def _ask(self, distances: FloatArray) -> None:
-        if np.array_equal(distances, self._at):
-            return
-        self._asked += 1
-        if self._asked > _AT_ONCE:
-            raise _Enough
-        values, slopes = _with_slopes(self._margin, distances[None])
-        self._at, self._value, self._slope = distances.copy(), float(values[0]), slopes[0]
-
-    def value(self, distances: FloatArray) -> float:
-        self._ask(distances)
-        return self._value
-
-    def slope(self, distances: FloatArray) -> FloatArray:
-        self._ask(distances)
-        return self._slope
-
-
-def _improved(condition: _Condition, cost: FloatArray, room: FloatArray, begin: FloatArray) -> FloatArray:
-    from scipy.optimize import minimize
-
-    solve: Any = minimize  # its stubs tell arrays of one axis from others, ours do not
-    steps = [begin]
-    with suppress(_Enough):
-        found = solve(
-            lambda distances: float(cost @ distances),
-            begin,
-            jac=lambda _: cost,
-            bounds=[(0.0, float(most)) for most in room],
-            constraints={"type": "ineq", "fun": condition.value, "jac": condition.slope},
-            method="SLSQP",
-            callback=lambda distances: steps.append(distances.copy()),
-            options={"ftol": 1e-13},
-        )
-        steps.append(found.x)
-    return np.asarray(np.clip(steps[-1], 0.0, room))

@@ -216,7 +216,7 @@ class _Answer:
 
     def _moves(self, levers: Levers, point: FloatArray) -> dict[str, Move]:
         ranges = [lever.range for lever in levers.levers]
-        return {one.target: Move(one.kind, float(place)) for one, place in zip(ranges, point, strict=True)}
+        return {one.target: Move(one.kind, float(place) + 0.0) for one, place in zip(ranges, point, strict=True)}
 
     def _held(self, moves: Moves, resting: list[str]) -> tuple[str, ...]:
         """Name the levers at rest without whose marks the score would be another."""

@@ -1,11 +1,10 @@
 """How the cheapest point that reaches a grade is looked for; the set of such points is neither convex nor of one piece.
 
 House rules cut steps into it, caps and floors put kinks into it. So points all over the ranges are pulled back towards
-rest as far as the grade allows, the best of them are improved by sequential quadratic programming, and the best of all
-is tried once more by moving one lever anywhere while another makes up for it, which needs no slopes.
+rest as far as the grade allows, the best of them are improved by linear programming on tangents, and the best of all is
+tried once more by moving one lever anywhere while another makes up for it, which needs no slopes.
 """
 
-from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
@@ -15,20 +14,19 @@ from numpy.typing import NDArray
 from creditdesk.base.numbers import logit
 from creditdesk.flow.moves import Moves
 from creditdesk.scenario.blocks import BLOCK, Progress
-from creditdesk.scenario.cheapest import Margin, Pieces, cheapest, cheapest_at_kinks, load_solvers
+from creditdesk.scenario.cheapest import Pieces, cheapest, load_solver
 from creditdesk.scenario.levers import Levers
 from creditdesk.scenario.outcomes import Evaluate
 
 FloatArray = NDArray[np.float64]
 FlagArray = NDArray[np.bool_]
 
-Solver = Callable[[Margin, FloatArray, FloatArray, FloatArray], Pieces]
-
 ENUMERATED_MOST = 200_000
 """Combinations of steps that are all tried, where every lever moves in steps."""
 _SPREAD_MOST, _SCATTERED = 8192, 512
-_SCREENED, _LIKELY, _IMPROVED = 128, 32, 4
+_SCREENED, _LIKELY, _IMPROVED = 128, 32, 3
 _AT_ONCE = 256
+_ROUGHLY, _FINELY, _TIDY = 3e-3, 1e-6, 1e-6
 _COARSE, _EXACT = 1e-3, 3e-10
 """How near a point is pulled, as a share of its distance from where it is pulled to."""
 _NUDGE = 1e-7
@@ -166,15 +164,15 @@ class Search:
 
     def cheapest_of(self, screened: FloatArray) -> Progress[FloatArray]:
         """Return the cheapest point found from the first of some points that all reach the grade."""
-        for _ in load_solvers() if self.levers.smooth.any() else ():
+        for _ in load_solver() if self.levers.smooth.any() else ():
             yield self.share
         best: FloatArray = screened[0]
         for start in screened[:_IMPROVED]:
-            programmed = yield from self._programmed(start, cheapest)
+            programmed = yield from self._programmed(start, _ROUGHLY)
             pulled = yield from self._pulled(np.stack([start, programmed]), _EXACT)
             best = min([best, *pulled], key=self.cost)
         for _ in range(_ROUNDS):
-            best = yield from self._programmed(best, cheapest_at_kinks)
+            best = yield from self._programmed(best, _FINELY)
             other = yield from self._exchanged(best)
             if not self.cost(other) < self.cost(best) * (1 - _GAIN):
                 break
@@ -186,12 +184,21 @@ class Search:
         return float(self.levers.costs(point[None])[0])
 
     def _tidied(self, point: FloatArray) -> FloatArray:
-        """Put levers that are all but at an end, or at rest, right there, if the grade stays."""
+        """Put levers that are all but at rest or at an end right there, and let another make up for it by a hair."""
         levers = self.levers
-        ends = np.where(point < levers.start, levers.low, levers.high)
-        tidy = np.where(levers.at_end(point), ends, np.where(levers.moved(point), point, levers.start))
-        found = self.ask(np.stack([point, tidy]))
-        return tidy if found.grade[0] == found.grade[1] else point
+        hair = _TIDY * levers.width
+        ends = np.where(np.abs(point - levers.low) < hair, levers.low, point)
+        ends = np.where(np.abs(point - levers.high) < hair, levers.high, ends)
+        tidy = np.where(np.abs(point - levers.start) < hair, levers.start, ends)
+        between = np.flatnonzero((tidy == point) & levers.smooth & (point != levers.start))
+        ways = np.sign(tidy - levers.start) * levers.width * np.eye(len(point))[between]
+        hairs = np.geomspace(1e-10, 1e2 * _TIDY, 25)
+        points = np.concatenate(
+            [tidy[None], *(np.clip(tidy + hairs[:, None] * way, levers.low, levers.high) for way in ways)]
+        )
+        reaching = points[self.ask(points).reaches]
+        best: FloatArray = min([*reaching], key=self.cost, default=point)
+        return best if self.cost(best) <= self.cost(point) * (1 + _TIDY) else point
 
     def _chosen(self, points: FloatArray, most: int) -> FloatArray:
         """Choose the cheapest points, of each set of levers and steps that is moved the cheapest one before others."""
@@ -254,7 +261,7 @@ class Search:
         found = yield from self.ask_all(snapped)
         return np.where(found.reaches[:, None], snapped, points)
 
-    def _programmed(self, start: FloatArray, solver: Solver) -> Progress[FloatArray]:
+    def _programmed(self, start: FloatArray, finest: float) -> Progress[FloatArray]:
         """Let the smooth levers find the cheapest point from one that reaches the grade; distances up and down."""
         levers = self.levers
         rooms = np.stack([levers.high - levers.start, levers.start - levers.low])
@@ -273,7 +280,8 @@ class Search:
 
         begin = np.maximum(signs * (start - levers.start)[numbers] / width, 0.0)
         room = rooms[tuple(np.array(sides).T)] / width
-        shares = yield from self._told(solver(margin, levers.cost[numbers] * width, room, begin))
+        terms = levers.cost[numbers] * width, room
+        shares = yield from self._told(cheapest(margin, terms, begin, finest))
         target = np.clip(rest + shares @ pull, levers.low, levers.high)
         nearest: FloatArray = (yield from self._nearest(start[None], target[None], _EXACT))[0]
         return nearest

@@ -3,13 +3,13 @@
 import numpy as np
 import pytest
 
-from creditdesk.scenario.blocks import FloatArray
-from creditdesk.scenario.cheapest import Margin, Pieces, cheapest, cheapest_at_kinks
+from creditdesk.scenario.cheapest import Margin, Pieces, cheapest, load_solver
+from tests.scenario.worlds import Array
 
-ONES = np.ones(2)
+ONES, FINELY = np.ones(2), 1e-7
 
 
-def ended(pieces: Pieces) -> tuple[FloatArray, int]:
+def ended(pieces: Pieces) -> tuple[Array, int]:
     count = 0
     while True:
         try:
@@ -19,63 +19,64 @@ def ended(pieces: Pieces) -> tuple[FloatArray, int]:
         count += 1
 
 
-def solved(margin: Margin, cost: FloatArray, begin: FloatArray) -> tuple[FloatArray, FloatArray]:
-    return ended(cheapest(margin, cost, ONES, begin))[0], ended(cheapest_at_kinks(margin, cost, ONES, begin))[0]
+def solved(margin: Margin, cost: tuple[float, float], begin: tuple[float, float], finest: float = FINELY) -> Array:
+    return ended(cheapest(margin, (np.array(cost), ONES), np.array(begin), finest))[0]
 
 
 def test_a_straight_line_is_met_at_a_corner() -> None:
-    for found in solved(lambda points: points @ [1.0, 2.0] - 1.0, np.array([1.0, 1.0]), ONES):
-        np.testing.assert_allclose(found, [0.0, 0.5], atol=1e-7)
+    found = solved(lambda points: points @ [1.0, 2.0] - 1.0, (1.0, 1.0), (1.0, 1.0))
+    np.testing.assert_allclose(found, [0.0, 0.5], atol=1e-7)
 
 
 def test_a_curve_is_met_where_cost_and_slope_are_in_proportion() -> None:
     """Minimise a x + b y on sqrt(x) + sqrt(y) = 1: x = (b / (a + b))², by Lagrange's rule."""
-    cost = np.array([1.0, 2.0])
+    cost = (1.0, 2.0)
 
-    def margin(points: FloatArray) -> FloatArray:
+    def margin(points: Array) -> Array:
         return np.asarray(np.sqrt(np.maximum(points, 0.0) + 1e-12).sum(axis=1) - 1.0)
 
-    for found in solved(margin, cost, np.array([0.9, 0.9])):
-        np.testing.assert_allclose(found, [(2 / 3) ** 2, (1 / 3) ** 2], atol=2e-4)
-        assert float(cost @ found) == pytest.approx(2 / 3, abs=1e-6)
+    found = solved(margin, cost, (0.9, 0.9))
+    np.testing.assert_allclose(found, [(2 / 3) ** 2, (1 / 3) ** 2], atol=2e-4)
+    assert float(found @ cost) == pytest.approx(2 / 3, abs=1e-6)
 
 
 def test_a_kink_is_passed() -> None:
     """Two lines at once, min(2x + y, x + 2y) >= 1.2: met at (0.4, 0.4), which no single slope shows."""
 
-    def margin(points: FloatArray) -> FloatArray:
+    def margin(points: Array) -> Array:
         return np.asarray(np.minimum(points @ [2.0, 1.0], points @ [1.0, 2.0]) - 1.2)
 
-    found, pieces = ended(cheapest_at_kinks(margin, np.array([1.0, 1.0]), ONES, np.array([0.1, 1.0])))
+    found = solved(margin, (1.0, 1.0), (0.1, 1.0))
     np.testing.assert_allclose(found, [0.4, 0.4], atol=1e-6)
-    assert pieces > 1
     assert margin(found[None])[0] >= 0.0
 
 
-def test_every_step_past_kinks_meets_the_condition_and_costs_less() -> None:
-    asked: list[FloatArray] = []
+def test_the_point_found_meets_the_condition_and_costs_less() -> None:
+    asked: list[Array] = []
 
-    def margin(points: FloatArray) -> FloatArray:
+    def margin(points: Array) -> Array:
         asked.append(points)
         return np.asarray(np.minimum(points[:, 0], points[:, 1]) + 0.3 * points[:, 0] ** 2 - 0.5)
 
-    begin = np.array([0.9, 0.95])
-    found, _ = ended(cheapest_at_kinks(margin, np.array([2.0, 1.0]), ONES, begin))
+    found = solved(margin, (2.0, 1.0), (0.9, 0.95))
     assert margin(found[None])[0] >= 0.0
     assert float(np.array([2.0, 1.0]) @ found) < 2.75
     assert max(len(points) for points in asked) <= 4096
 
 
-def test_questions_are_bounded() -> None:
-    """Nothing meets the condition: neither solver asks without end, neither raises."""
-    asked = 0
+def test_a_rough_answer_takes_fewer_pieces() -> None:
+    def margin(points: Array) -> Array:
+        return np.asarray(1.0 - np.exp(-3.0 * points).sum(axis=1))
 
-    def margin(points: FloatArray) -> FloatArray:
-        nonlocal asked
-        asked += 1
-        return np.asarray(np.sin(40.0 * points).sum(axis=1) - 5.0)
+    counts = [ended(cheapest(margin, (ONES, ONES), ONES, finest))[1] for finest in (1e-2, 1e-7)]
+    assert counts[0] < counts[1] <= 60
 
-    for solver in (cheapest, cheapest_at_kinks):
-        found, _ = ended(solver(margin, ONES, ONES, np.array([0.5, 0.5])))
-        assert ((found >= 0.0) & (found <= 1.0)).all()
-    assert asked < 500
+
+def test_a_point_without_a_way_on_stays() -> None:
+    """Nothing meets the condition: it neither asks without end nor raises, and ends where it began."""
+    found = solved(lambda points: np.asarray(np.sin(40.0 * points).sum(axis=1) - 5.0), (1.0, 1.0), (0.5, 0.5))
+    np.testing.assert_array_equal(found, [0.5, 0.5])
+
+
+def test_the_solver_is_loaded_in_parts() -> None:
+    assert len(list(load_solver())) > 3

@@ -15,7 +15,7 @@ from creditdesk.scenario.outcomes import Evaluate
 from creditdesk.scenario.reach import Reach, ReachKind, reach
 from creditdesk.scenario.specs import Lever, Range, ReachSpec
 from creditdesk.statements.period import Basis
-from tests.borrowers import changed, demo, shipped_house
+from tests.borrowers import STRETCHED, changed, demo, generated, shipped_house
 from tests.scenario.worlds import SCALE, Array, lever, world
 
 HOUSE = shipped_house()
@@ -190,10 +190,10 @@ def test_levers_are_worth_the_same_where_they_stand_between(grade: str, base: Mo
 def test_two_levers_between_share_by_lagranges_rule() -> None:
     """Log-odds -1 - 4 ln(1+x) - 2 ln(1+y): with equal costs 1+x = 2 (1+y), and 6 ln(1+y) = distance - 4 ln 2."""
     evaluate = world(lambda at: -1.0 - 4.0 * np.log1p(at["x"]) - 2.0 * np.log1p(at["y"]))
-    found = verified(run("6", lever("x", 0, 9, 1), lever("y", 0, 9, 1), evaluate=evaluate), evaluate=evaluate)
-    need = -1.0 - logit(SCALE.upper("6"))
+    found = verified(run("4", lever("x", 0, 9, 1), lever("y", 0, 9, 1), evaluate=evaluate), evaluate=evaluate)
+    need = -1.0 - logit(SCALE.upper("4"))
     y = np.exp((need - 4.0 * np.log(2.0)) / 6.0) - 1.0
-    assert y > 0.0
+    assert y > 0.1
     assert found.cost == pytest.approx(2.0 * (1 + y) - 1.0 + y, rel=1e-7)
     assert places(found) == pytest.approx({"x": 2.0 * (1 + y) - 1.0, "y": y}, rel=1e-3)
 
@@ -355,3 +355,32 @@ def test_too_many_steps_are_searched_not_enumerated() -> None:
     found, smooth = verified(run("3", *levers)), run("3", PRICES, ADMINISTRATION, STOCK)
     assert not found.all_tried
     assert smooth.cost * (1 - 1e-9) <= found.cost <= smooth.cost + 0.01
+
+
+@pytest.mark.long
+@pytest.mark.parametrize("seed", range(6))
+def test_levers_drawn_at_random_are_never_dearer_than_a_grid(monkeypatch: pytest.MonkeyPatch, seed: int) -> None:
+    """Two or three levers of the house with wider bounds, on demonstration and drawn borrowers, one grade better."""
+    draw = np.random.default_rng(seed)
+    cases, tried = [demo(), demo(STRETCHED), *generated(20, seed=4)], 0
+    while tried < 8:
+        monkeypatch.setattr(f"{__name__}.BOARD", board := PencilBoard(cases[draw.integers(len(cases))], HOUSE))
+        base = ({}, CUSTOMER_LEAVES, {"interest_rate": Move(BY, 200.0)})[draw.integers(3)]
+        chosen = [ALL[place] for place in draw.choice(len(ALL), int(draw.integers(2, 4)), replace=False)]
+        place, width = int(board.evaluate(base).grade), float(draw.choice([1.0, 2.0]))
+        if place < 1 or any(one.range.target in base for one in chosen):
+            continue
+        levers = tuple(
+            Lever(
+                Range(one.range.target, one.range.kind, max(one.range.low * width, -99.0), one.range.high * width),
+                one.cost,
+            )
+            for one in chosen
+        )
+        grade = SCALE.keys[place - 1]
+        found = verified(run(grade, *levers, base=base, evaluate=board.evaluate), base, board.evaluate)
+        least = solved_last(grade, levers, base, 101 if len(levers) == 2 else 31)
+        if np.isfinite(least):
+            tried += 1
+            assert found.kind is ReachKind.REACHED
+            assert found.cost <= least * (1 + 1e-6) + 1e-9
