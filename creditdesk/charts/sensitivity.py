@@ -154,7 +154,7 @@ def _draw_head(board: Board, columns: _Columns, place: tuple[float, float], pale
     style = Type(palette.second_ink, size)
     for at, words in columns.scale.ticks(size):
         board.words(LAYER, (at, y), words, style.but(align="center"))
-    board.words(LAYER, (columns.unit, y), "per unit", style.but(align="right"))
+    board.words(LAYER, (columns.unit, y), "points of PD", style.but(align="right"))
     board.words(LAYER, (columns.found, y), "PD at both ends", style.but(align="right"))
     board.line(LAYER, [(0, top), (columns.found, top)], Pen(palette.ink, 0.9))
 

@@ -6,11 +6,12 @@ from time import perf_counter, sleep
 import pytest
 from msgspec.structs import replace
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QAbstractButton, QComboBox, QLineEdit, QPlainTextEdit, QTableWidget
+from PySide6.QtWidgets import QAbstractButton, QComboBox, QLineEdit, QPlainTextEdit, QScrollArea, QTableWidget
 from pytestqt.qtbot import QtBot
 
 from creditdesk.base.errors import UserError
 from creditdesk.base.palette import DARK
+from creditdesk.case.commands import Figure, SetFigures
 from creditdesk.case.document import Case
 from creditdesk.desk.pencil.studiespanel import KINDS
 from creditdesk.desk.pencil.study_breakeven import BreakEvenPage
@@ -22,7 +23,7 @@ from creditdesk.desk.pencil.study_sensitivity import SensitivityPage
 from creditdesk.desk.pencil.study_spread import SpreadPage
 from creditdesk.flow.moves import MoveKind
 from creditdesk.house.book import HouseBook
-from creditdesk.scenario.marks import Mark
+from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.specs import GridSpec
 from tests.desk.pencilsheets import unmarked
 from tests.desk.studyhands import StudyHands, open_studies
@@ -78,6 +79,26 @@ def test_arrows_walk_the_names_and_keys_run(hands: StudyHands) -> None:
     assert page.answered is not None
 
 
+def test_every_study_is_among_the_actions_of_the_sheet(hands: StudyHands) -> None:
+    entries = {entry[0]: entry[2] for entry in hands.hands.sheet.entries() if entry is not None}
+    assert {f"Study: {kind.title.lower()}" for kind in KINDS} <= set(entries)
+    entries["Study: side by side"]()
+    hands.wait()
+    assert hands.panel.names[-1].isChecked()
+    assert hands.panel.page.answered is not None
+    entries["Run the study, or stop it"]()
+    hands.wait()
+
+
+def test_the_studies_take_most_of_the_room_and_give_it_back(hands: StudyHands) -> None:
+    before = hands.panel.height()
+    hands.panel.size_button.click()
+    assert hands.panel.height() > before + 50
+    assert hands.panel.size_button.text() == "Smaller"
+    hands.panel.size_button.click()
+    assert hands.panel.height() < before + 50
+
+
 @pytest.mark.parametrize("kind", KINDS, ids=lambda kind: kind.title)
 def test_every_field_has_a_name_and_nothing_needs_more_room_than_there_is(
     open_on: Callable[..., StudyHands], sound_case: Case, kind: type
@@ -85,10 +106,10 @@ def test_every_field_has_a_name_and_nothing_needs_more_room_than_there_is(
     hands = open_on(sound_case, DOWNTURN, (752, 470))
     page = hands.page(kind)
     hands.qtbot.wait(20)
-    for widget in page.findChildren(QLineEdit) + page.findChildren(QComboBox) + page.findChildren(QPlainTextEdit):
-        assert widget.accessibleName() or widget.objectName().startswith("qt_"), widget
-    for table in page.findChildren(QTableWidget):
-        assert table.accessibleName()
+    for kind_of_widget in (QLineEdit, QComboBox, QPlainTextEdit, QTableWidget, QScrollArea):
+        for widget in page.findChildren(kind_of_widget):
+            part = isinstance(widget.parentWidget(), QComboBox) or widget.objectName().startswith("qt_")
+            assert part or widget.accessibleName(), widget
     for button in page.findChildren(QAbstractButton):
         if button.isVisible() and button.text():
             assert button.width() >= button.sizeHint().width(), button.text()
@@ -109,6 +130,18 @@ def test_an_answer_to_other_marks_is_called_old_until_it_is_run_again(hands: Stu
     hands.qtbot.keyClicks(page.along.low, "9")
     hands.qtbot.keyClick(page.along.low, Qt.Key.Key_Return)
     assert page.note.text() == STALE, "another question is old too"
+
+
+def test_an_answer_of_earlier_figures_is_called_old_and_one_beside_other_scenarios_is_not(hands: StudyHands) -> None:
+    page = hands.page(GridPage)
+    hands.draft.add(Scenario("Another"))
+    hands.draft.choose(DOWNTURN)
+    assert page.note.text() == "", "another scenario changes nothing here"
+    period = hands.session.standing.period_index
+    hands.session.do(SetFigures((Figure("inventories", period, 7000.0),)))
+    assert page.note.text() == STALE
+    hands.run()
+    assert page.note.text() == ""
 
 
 def test_marks_that_the_study_moves_itself_do_not_make_a_grid_old(hands: StudyHands) -> None:

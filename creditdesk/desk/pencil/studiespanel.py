@@ -1,8 +1,8 @@
 """The studies of the scenario at hand, below the table: their names in a row, one of them laid open."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 
-from PySide6.QtCore import Qt, Signal
+from PySide6.QtCore import QSize, Qt, Signal
 from PySide6.QtGui import QKeyEvent, QKeySequence, QShortcut
 from PySide6.QtWidgets import (
     QButtonGroup,
@@ -16,6 +16,7 @@ from PySide6.QtWidgets import (
 )
 
 from creditdesk.base.palette import Palette
+from creditdesk.desk.actions import Entry
 from creditdesk.desk.fields import set_role
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_breakeven import BreakEvenPage
@@ -32,8 +33,8 @@ _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
 _RUN_KEYS = "Ctrl+Return"
 _RUN, _STOP = "Run", "Stop"
 _LARGER, _USUAL = "Larger", "Smaller"
-_NARROW, _LOW = 560, 250
-"""Size in pixels in which every study can be read."""
+_NARROW, _LOW, _WANTED = 560, 250, 420
+"""Width and height in pixels in which every study can be read, and the height at which it reads well."""
 _USUAL_SHARE = 0.4
 """Of the height, as the studies have it beside the table at first."""
 
@@ -77,6 +78,10 @@ class StudiesPanel(QWidget):
 
     # Showing
 
+    def sizeHint(self) -> QSize:
+        """Ask for the height at which charts read well."""
+        return QSize(_NARROW, _WANTED)
+
     def show_draft(self) -> None:
         """Show the draft as it stands; pages that are not in sight follow when they are."""
         self.page.show_draft()
@@ -113,6 +118,14 @@ class StudiesPanel(QWidget):
         self._show(KINDS[number])
         self.page.show_draft()
         self.page.run_once()
+
+    def choices(self) -> Sequence[Entry]:
+        """Return what can be done here, for menu and palette."""
+        studies = [(f"Study: {kind.title.lower()}", None, self._chooser(at)) for at, kind in enumerate(KINDS)]
+        return (*studies, ("Run the study, or stop it", None, self.run_or_stop))
+
+    def _chooser(self, number: int) -> Callable[[], None]:
+        return lambda: self.choose(number)
 
     def run_or_stop(self) -> None:
         """Begin the study laid open, or stop it."""

@@ -209,7 +209,7 @@ class StudyPage(QWidget):
         column.addLayout(self.form, 1 if self.tall else 0)
         column.addLayout(self.foot)
         column.addStretch(0 if self.tall else 1)
-        return Side(inside)
+        return Side(inside, f"Question: {self.title.lower()}")
 
 
 class KeptPage(StudyPage, Generic[Spec]):
@@ -321,9 +321,10 @@ class Words(QScrollArea):
 class Side(QScrollArea):
     """Hold a form at its own width; where the panel is low it scrolls."""
 
-    def __init__(self, inside: QWidget) -> None:
+    def __init__(self, inside: QWidget, name: str) -> None:
         super().__init__()
         self._inside = inside
+        self.setAccessibleName(name)
         self.setWidget(inside)
         self.setWidgetResizable(True)
         self.setFrameShape(QFrame.Shape.NoFrame)

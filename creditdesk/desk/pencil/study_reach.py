@@ -24,7 +24,7 @@ from creditdesk.scenario.specs import Lever, ReachSpec
 
 LEVER, LOW, HIGH, UNIT, COST = range(5)
 _HEADS = ("lever", "from", "to", "", "cost")
-_WIDTHS = {LEVER: 176, LOW: 50, HIGH: 46, UNIT: 54, COST: 48}
+_WIDTHS = {LEVER: 176, LOW: 50, HIGH: 52, UNIT: 48, COST: 48}
 _WIDTH = 392
 _TAKE, _TAKE_BEST = "Take as pencil marks", "Take the best as pencil marks"
 

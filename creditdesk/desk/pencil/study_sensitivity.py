@@ -110,6 +110,7 @@ class SensitivityPage(StudyPage):
             self.form.addWidget(widget)
         self.form.addStretch(1)
         self.view.setWidgetResizable(True)
+        self.view.setAccessibleName("Rows of what moves the PD")
         self.view.setFrameShape(QFrame.Shape.NoFrame)
         self.view.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.view.setFocusPolicy(Qt.FocusPolicy.NoFocus)

@@ -102,7 +102,8 @@ class StressPage(StudyPage):
         event = row.event
         asked = event is not None and not event.quantified
         rationale = row.scenario.rationale or (event.rationale if event is not None else "")
-        parts = [event.question if event is not None and asked else "", rationale]
+        size = ", ".join(marks_named(self.draft, row.scenario.marks))
+        parts = [event.question if event is not None and asked else "", size, rationale]
         parts += [f"{MARKS[one.severity]} {one.text}" for one in row.findings]
         self.words.say("\n".join(filter(None, parts)))
         self.judgement.setVisible(asked)

@@ -54,6 +54,7 @@ def per_unit_words(target: Target, slope: float) -> str:
     places = max(0, 1 - math.floor(math.log10(abs(value)))) if value else 0
     sign = "+" if value > 0 else ""
     unit = unit_words(target, MoveKind.BY)
+    unit = unit if power else unit.removesuffix("s")
     return (
         f"{sign}{format_number(value, min(places, 6))} per {format_number(10.0**power, 0)}{f' {unit}' if unit else ''}"
     )

@@ -171,7 +171,8 @@ class PencilSheet(Sheet):
         """Return what can be done here; keys that fields of other sheets have too stand in the title, unbound."""
         scenarios = [choice and (*choice[:2], self._here(choice[2])) for choice in self.edits.choices()]
         views = [(f"Show: {name} ({key})", None, self._here(self._chooser(name))) for name, key in _KEYS.items()]
-        return (*scenarios, None, *self._mark_choices(bound=False), None, *views)
+        studies = [(title, key, self._here(do)) for title, key, do in self.studies.choices()]
+        return (*scenarios, None, *self._mark_choices(bound=False), None, *views, None, *studies)
 
     def _mark_choices(self, *, bound: bool) -> tuple[Entry, ...]:
         """Return what can be done with marks; ``bound`` False: with the keys in the titles."""
