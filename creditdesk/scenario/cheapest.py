@@ -7,6 +7,8 @@ from typing import Any, TypeAlias
 import numpy as np
 from numpy.typing import NDArray
 
+from creditdesk.scenario.blocks import BLOCK
+
 FloatArray = NDArray[np.float64]
 Margin = Callable[[FloatArray], FloatArray]
 """Give the margin of each of many points, points x coordinates: at or above 0 where the condition is met."""
@@ -19,7 +21,11 @@ _STILL = 1e-8
 """Share of the box's half width that a step has to gain in cost."""
 _SAMPLES = 24
 """Places around a point at which slopes are taken: on either side of every kink nearby."""
-_LIBRARY = ("scipy", "scipy._lib._util", "scipy.linalg", "scipy.sparse.linalg", "scipy.special", "scipy.optimize")
+_LIBRARY = (
+    "numpy.f2py", "numpy.testing", "scipy", "scipy.special", "scipy.fft", "scipy.linalg", "scipy.sparse.linalg",
+    "scipy.spatial.transform", "scipy.optimize",
+)  # fmt: skip
+"""The solver, last, and what it imports itself."""
 
 
 def load_solver() -> Generator[None, None, None]:
@@ -39,9 +45,10 @@ def cheapest(margin: Margin, terms: tuple[FloatArray, FloatArray], begin: FloatA
     """
     cost, room = terms[0] / np.max(terms[0]), terms[1]
     here, radius = begin, _RADIUS
-    stream = np.random.default_rng(len(begin))
+    stream, count = np.random.default_rng(len(begin)), len(begin)
+    samples = max(min(_SAMPLES, BLOCK // (2 * count + 1) - 1), 1)
     for _ in range(_ROUNDS):
-        around = here + radius * stream.uniform(-1.0, 1.0, (_SAMPLES, len(here)))
+        around = here + radius * stream.uniform(-1.0, 1.0, (samples, count))
         places = np.concatenate([here[None], np.clip(around, 0.0, room)])
         values, slopes = _with_slopes(margin, places)
         target = _best_by_tangents((places, values, slopes), cost, room, radius)

@@ -80,3 +80,16 @@ def test_a_point_without_a_way_on_stays() -> None:
 
 def test_the_solver_is_loaded_in_parts() -> None:
     assert len(list(load_solver())) > 3
+
+
+def test_many_levers_are_asked_for_within_a_block() -> None:
+    asked: list[int] = []
+
+    def margin(points: Array) -> Array:
+        asked.append(len(points))
+        return np.asarray(points.sum(axis=1) - 1.0)
+
+    many = np.ones(150)
+    found, _ = ended(cheapest(margin, (np.linspace(1.0, 2.0, 150), many), 0.5 * many, 1e-3))
+    assert max(asked) <= 4096
+    assert found[0] == pytest.approx(1.0, abs=1e-2)
