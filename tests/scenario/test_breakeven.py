@@ -25,7 +25,7 @@ def bisected(holds: Callable[[float], bool], inner: float, outer: float) -> floa
     """Return where a condition that holds inside and not outside changes, one point at a time."""
     assert holds(inner)
     assert not holds(outer)
-    for _ in range(200):
+    for _ in range(60):
         middle = (inner + outer) / 2.0
         inner, outer = (middle, outer) if holds(middle) else (inner, middle)
     return inner

@@ -98,7 +98,7 @@ def test_the_same_seed_gives_the_same_bytes() -> None:
 
 @pytest.mark.parametrize("block", [1, 333, 5000])
 def test_the_size_of_the_blocks_changes_no_byte(monkeypatch: pytest.MonkeyPatch, block: int) -> None:
-    spec = msgspec.structs.replace(BOTH, draws=700 if block == 1 else 5000)
+    spec = msgspec.structs.replace(BOTH, draws=300 if block == 1 else 5000)
     usual = run(spec)
     monkeypatch.setattr(module, "BLOCK", block)
     assert same(run(spec), usual)
