@@ -54,6 +54,7 @@ def _scenario(answer: Answer) -> Json:
         "pd": standing.pd if standing else None,
         "pd_final": standing.pd_final if standing else None,
         "grade": standing.grade.final if standing else None,
+        "usable": standing.usable if standing else None,
         "steps": [] if pencilled is None else [_step(step) for step in pencilled.steps],
         "held": {} if pencilled is None else dict(pencilled.held),
         "findings": findings_result(answer.findings),

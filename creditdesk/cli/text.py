@@ -81,7 +81,7 @@ def _scenario(answer: Answer) -> Iterator[str]:
 
 def _pd_and_grade(standing: Standing) -> str:
     pd = "none" if standing.pd_final is None else format_pd(standing.pd_final)
-    return f"PD {pd}, grade {standing.grade.final}"
+    return f"PD {pd}, grade {standing.grade.final}{'' if standing.usable else ' (not usable)'}"
 
 
 def _factor(factor: FactorStanding) -> str:

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from math import isnan
 
 from creditdesk.base.display import MINUS
 from creditdesk.case.comparison import Column, ColumnKind, Comparison, RowKind
@@ -19,7 +20,7 @@ from creditdesk.memo import blocks
 from creditdesk.memo.blocks import Block, Cell, Grid, Listing, Prose, Row, Section, Subheading, Tone, group_row
 from creditdesk.memo.closing import MARKS
 from creditdesk.memo.ratiopages import value_text
-from creditdesk.memo.stresspages import stress_blocks
+from creditdesk.memo.stresspages import NOT_USABLE, stress_blocks
 from creditdesk.memo.studypages import study_blocks
 from creditdesk.memo.text import NOT_DISCLOSED, amount_text
 from creditdesk.statements.period import prior_index
@@ -116,27 +117,27 @@ def _rows(pages: _Pages, comparison: Comparison, shown: Sequence[int]) -> Iterat
         yield Row((Cell(row.label), *(_cell(pages, row, comparison.columns[place], place) for place in shown)))
     columns = [comparison.columns[place] for place in shown]
     yield group_row("Verdict")
-    pds = [Cell(_pd(column), None if column.pd_final != column.pd_final else column.pd_final) for column in columns]
-    yield Row((Cell("PD that counts"), *pds), blocks.RowKind.TOTAL)
-    yield Row((Cell("Final grade"), *(Cell(_grade(column)) for column in columns)), blocks.RowKind.TOTAL)
+    verdicts = [_verdict(pages, column) for column in columns]
+    yield Row((Cell("PD that counts"), *(pd for pd, _ in verdicts)), blocks.RowKind.TOTAL)
+    yield Row((Cell("Final grade"), *(grade for _, grade in verdicts)), blocks.RowKind.TOTAL)
 
 
-def _pd(column: Column) -> str:
-    return pd_words(column.pd_final) if _usable(column) else "not usable"
-
-
-def _grade(column: Column) -> str:
-    return column.grade if _usable(column) else NO_GRADE
-
-
-def _usable(column: Column) -> bool:
-    return column.worked is None or column.worked.standing.usable
+def _verdict(pages: _Pages, column: Column) -> tuple[Cell, Cell]:
+    """Write PD and grade of a column; figures with a finding of severity stop have none that can be used."""
+    usable = {
+        ColumnKind.LAST_YEAR: True,
+        ColumnKind.INK: pages.ink.usable,
+        ColumnKind.SCENARIO: column.worked is not None and column.worked.standing.usable,
+    }
+    if not usable[column.kind]:
+        return Cell(NOT_USABLE), Cell(NO_GRADE)
+    return Cell(pd_words(column.pd_final), None if isnan(column.pd_final) else column.pd_final), Cell(column.grade)
 
 
 def _cell(pages: _Pages, row: Compared, column: Column, place: int) -> Cell:
     """Write a value: what is marked with its mark, a ratio without one with the reason."""
     value = row.values[place]
-    number = None if value != value else value
+    number = None if isnan(value) else value
     target = pages.targets.find(row.key)
     if row.kind is RowKind.MARKED and target is not None:
         if target.kind is TargetKind.DRIVER:
@@ -209,7 +210,7 @@ def _steps(answer: Answer, decimals: int) -> Grid:
     for step in answer.pencilled.steps if answer.pencilled is not None else ():
         before, after = amount_text(step.before, decimals), amount_text(step.after, decimals)
         tone = Tone.STRONG if step.marked else Tone.PLAIN
-        known = None if step.before != step.before else step.before
+        known = None if isnan(step.before) else step.before
         cells = (Cell(step.label, tone=tone), Cell(before, known), Cell(after, step.after, tone), Cell(step.why))
         rows.append(Row(cells, blocks.RowKind.LINE if step.why else blocks.RowKind.TOTAL))
     heads = ("Line", "As it is", "What-if", "Because")

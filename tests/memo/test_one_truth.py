@@ -10,6 +10,7 @@ from functools import cache
 from io import BytesIO
 from typing import Any
 
+import msgspec
 import pikepdf
 import pypdfium2
 import pytest
@@ -20,13 +21,18 @@ from creditdesk.base.display import MINUS, format_number, format_pd
 from creditdesk.base.palette import LIGHT
 from creditdesk.case.assess import assess
 from creditdesk.case.document import Case
+from creditdesk.case.pencil import PencilBoard
 from creditdesk.case.standing import Standing
 from creditdesk.desk.app import make_application
 from creditdesk.desk.canvases import ChartCanvases
 from creditdesk.desk.standing import StandingColumn
+from creditdesk.memo.attach import attachments
 from creditdesk.memo.issue import draft_memo
 from creditdesk.ratios.words import REASON_WORDS, format_ratio
-from tests.borrowers import generated, model_of, shipped_house
+from creditdesk.scenario.marks import Scenario
+from tests.borrowers import SOUND, STRETCHED, demo, generated, model_of, shipped_house
+from tests.memo.reading import page_texts
+from tests.pencils import RATE, SALES
 
 Json = dict[str, Any]
 COUNT, SEED = 50, 7
@@ -174,6 +180,60 @@ def test_column_page_one_and_json_show_the_same_numbers(column: StandingColumn, 
     result = json.loads(carried)
     on_screen(column, result)
     on_paper(page, result)
+
+
+DOWNTURN = Scenario("Sales fall, rates rise", (SALES, RATE), in_memo=True)
+
+
+def asking(number: int) -> Case:
+    """Return a demonstration case, or one of those drawn with a scenario of its own."""
+    if number < 2:
+        return demo((SOUND, STRETCHED)[number])
+    return msgspec.structs.replace(cases()[number], scenarios=(DOWNTURN,))
+
+
+@pytest.mark.parametrize("number", range(10))
+def test_a_scenario_shows_the_same_numbers_in_the_column_on_paper_and_in_json(
+    column: StandingColumn, number: int
+) -> None:
+    case, house = asking(number), shipped_house()
+    memo = draft_memo(case, house)
+    text = plain(" ".join(page_texts(memo)))
+    result = json.loads(attachments(memo)["result.json"])
+    board = PencilBoard(case, house)
+    column.show_standing(board.ink)
+    for scenario, told in zip(case.scenarios, result["scenarios"], strict=True):
+        column.show_pencil(board.scenario(scenario), scenario.name)
+        words = plain(column.verdict.pencil.words.words)
+        known = told["pd_final"] is not None and told["usable"]
+        assert words == (
+            "in pencil: no PD"
+            if not known
+            else f"in pencil {plain(format_pd(told['pd_final']))}, grade {told['grade']}"
+        )
+    pds, grades = verdict_of(result)
+    assert re.search(
+        rf"Verdict PD that counts ((?:[^ ]+ %|no PD) )?{re.escape(pds)} Final grade ([^ ]+ )?{grades} n\.d\.", text
+    )
+    for event in result["stress"][1:]:
+        label = next(one.label for one in house.stress.events if one.key == event["event"])  # type: ignore[union-attr]
+        if event["marks"] and event["pd_final"] is not None and result["usable"]:
+            pd = plain(format_pd(event["pd_final"]))
+            assert re.search(rf"{re.escape(label)} \([^)]*\) {pd} {event['grade']} ", text)
+
+
+def verdict_of(result: Json) -> tuple[str, str]:
+    """Return PDs and grades as they are to be read: of the figures as they are, then of each scenario chosen."""
+    chosen = [result, *(one for one in result["scenarios"] if one["in_memo"])]
+    pds = [shown_pd(one) for one in chosen]
+    grades = [one["grade"] if isinstance(one["grade"], str) else one["grade"]["final"] for one in chosen]
+    return " ".join(pds), " ".join(grades)
+
+
+def shown_pd(one: Json) -> str:
+    if not one["usable"]:
+        return "not usable"
+    return "no PD" if one["pd_final"] is None else plain(format_pd(one["pd_final"]))
 
 
 def test_the_cases_hold_every_kind() -> None:
