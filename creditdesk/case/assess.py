@@ -52,6 +52,7 @@ class _Desk:
     scored: Scored
     period: int
     scope: tuple[str, ...]
+    opinions: bool
 
 
 def assess(case: Case, house: HouseBook, model: str = "") -> Standing:
@@ -64,15 +65,20 @@ def assess(case: Case, house: HouseBook, model: str = "") -> Standing:
     return assess_statements(case, house, case_statements(case, house.chart), model)
 
 
-def assess_statements(case: Case, house: HouseBook, statements: CaseStatements, model: str = "") -> Standing:
-    """Say where the borrower of ``case`` would stand with ``statements`` in place of its own; else as ``assess``."""
+def assess_statements(
+    case: Case, house: HouseBook, statements: CaseStatements, model: str = "", *, opinions: bool = True
+) -> Standing:
+    """Say where the borrower of ``case`` would stand with ``statements`` in place of its own; else as ``assess``.
+
+    ``opinions`` False leaves the second opinions out: a sketch that is answered at once shows none.
+    """
     chosen = _model(case, house, model)
     period, period_findings = assessed_period(case.periods, case.assessment.period)
     held = {(key, period): value for key, value in statements.held.items()}
     tables = RatioTables(case, house.catalogue, statements.adjusted, held, chosen.spec.currency)
     scored = score_periods(chosen.spec, tables.of(chosen.spec.currency), house.settings.interval_level)
     scope = out_of_scope(chosen.spec, borrower(case, chosen.spec, statements.adjusted, tables, period))
-    desk = _Desk(case, house, chosen, statements, tables, scored, period, scope)
+    desk = _Desk(case, house, chosen, statements, tables, scored, period, scope, opinions)
     return _standing(desk, period_findings)
 
 
@@ -141,7 +147,7 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
         last_year=last_year,
         what_moved=moves,
         what_moved_reason=why_no_moves,
-        second_opinions=_second_opinions(desk),
+        second_opinions=_second_opinions(desk) if desk.opinions else (),
         findings=findings,
         cautions=(*house.settings.cautions, *spec.cautions, *((UNCERTAINTY,) if spec.covariance else ())),
     )

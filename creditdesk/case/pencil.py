@@ -64,8 +64,11 @@ class PencilBoard:
         self._ground = _ground(case, house, self.ink, model)
         self._chains: dict[tuple[tuple[str, ...], frozenset[str]], Chain] = {}
 
-    def scenario(self, scenario: Scenario) -> Pencilled:
-        """Work out a scenario: its standing, by the same pipeline as the ink. Raises UserError ``assumptions``."""
+    def scenario(self, scenario: Scenario, *, opinions: bool = True) -> Pencilled:
+        """Work out a scenario: its standing, by the same pipeline as the ink. Raises UserError ``assumptions``.
+
+        ``opinions`` False leaves out what other models say, which nobody reads while a slider moves.
+        """
         moves = moves_of(scenario.marks)
         flow = run_flow(self._book, self.ink.statements, self.ink.period_index, moves, scenario.assumptions)
         held, findings = self._held(flow)
@@ -74,7 +77,7 @@ class PencilBoard:
         return Pencilled(
             scenario=scenario,
             moves=moves,
-            standing=assess_statements(self._case, self._house, pencilled, self._model),
+            standing=assess_statements(self._case, self._house, pencilled, self._model, opinions=opinions),
             flow=flow,
             steps=steps(self._book, self.ink.statements, flow),
             findings=(*flow.findings, *findings),

@@ -69,11 +69,18 @@ class Board:
 
     def outline(self, layer: str, boxes: Sequence[Corners], edge: Pen, z: float = 1) -> Artist:
         """Draw the outlines of rectangles as one mark; each is left, bottom, right and top."""
-        paths = [
-            Path([(left, bottom), (right, bottom), (right, top), (left, top), (left, bottom)], closed=True)
-            for left, bottom, right, top in boxes
-        ]
-        return self._patch(layer, Path.make_compound_path(*paths), edge, None, z)
+        return self._patch(layer, _outlines(boxes), edge, None, z)
+
+    def reshape(self, mark: Artist, boxes: Sequence[Corners]) -> None:
+        """Let the outlines that ``outline`` drew go around other rectangles."""
+        assert isinstance(mark, PathPatch)
+        mark.set_path(_outlines(boxes))
+
+    def reword(self, mark: Artist, middle: Size, words: str) -> None:
+        """Let a line that ``words`` wrote say something else in another place, in the same type."""
+        assert isinstance(mark, Text)
+        mark.set_text(words)
+        mark.set_position((middle[0], middle[1] - CAP_HEIGHT * mark.get_fontproperties().get_size_in_points() / 2))
 
     def dot(self, layer: str, centre: Size, radius: float, fill: Pen, edge: Pen | None = None, z: float = 3) -> Artist:
         """Draw a filled circle."""
@@ -128,3 +135,12 @@ class Board:
         self.figure.add_artist(artist)
         self._layers.setdefault(layer, []).append(artist)
         return artist
+
+
+def _outlines(boxes: Sequence[Corners]) -> Path:
+    corners = [
+        ((left, bottom), (right, bottom), (right, top), (left, top), (left, bottom))
+        for left, bottom, right, top in boxes
+    ]
+    codes = [Path.MOVETO, Path.LINETO, Path.LINETO, Path.LINETO, Path.CLOSEPOLY] * len(boxes)
+    return Path(np.asarray(corners, dtype=float).reshape(-1, 2), codes)

@@ -102,13 +102,15 @@ class ContributionsChart:
     def _draw(self, passage: Passage) -> None:
         self._reach = None if self._pencil is None else self._reach_with(self._pencil, passage)
         self.board.clear(LAYER)
+        self.board.clear(PENCIL)
         with house_style():
             _draw(self.board, passage, self._palette, self._reach)
         self._draw_pencil(passage)
 
     def _draw_pencil(self, passage: Passage) -> None:
-        self.board.clear(PENCIL)
-        if self._pencil is not None:
+        if self._pencil is None:
+            self.board.clear(PENCIL)
+        else:
             with house_style():
                 _draw_outline(self.board, passage, outline_of(self._pencil, passage), (self._palette, self._reach))
 
@@ -196,9 +198,7 @@ def _draw_outline(board: Board, passage: Passage, outline: Outline, look: tuple[
         if amount is not None:
             end = columns.zero + min(max(amount, low), high) * columns.per_unit
             bars.append(Bar(layout.middle(number), _PENCIL_HALF * layout.pitch, (columns.zero, end), amount))
-    draw_bars(board, bars, columns.end, palette)
-    style = Type(palette.pencil, type_size(palette), Face.SANS_ITALIC, "right")
-    board.words(PENCIL, _total_place(layout), outline.end, style)
+    draw_bars(board, bars, columns.end, (_total_place(layout), outline.end), palette)
 
 
 def _columns(rows: Sequence[Row], width: float, palette: Palette, reach: Size | None) -> Columns:

@@ -108,11 +108,21 @@ class Bar:
         return min(self.ends), self.middle - self.half, max(self.ends), self.middle + self.half
 
 
-def draw_bars(board: Board, bars: Sequence[Bar], edge: float, palette: Palette) -> None:
-    """Draw bars as outlines, their amounts ending at the right ``edge``."""
-    if not bars:
+def draw_bars(board: Board, bars: Sequence[Bar], edge: float, total: tuple[Size, str], palette: Palette) -> None:
+    """Draw bars as outlines, their amounts and the ``total`` ending at the right ``edge``.
+
+    As many as stand there already are only moved, which is what a slider does many times a second.
+    """
+    words = [*(((edge, bar.middle), signed(bar.amount)) for bar in bars), total]
+    corners, marks = [bar.corners for bar in bars], board.marks(PENCIL)
+    if bars and len(marks) == 1 + len(words):
+        board.reshape(marks[0], corners)
+        for mark, (middle, text) in zip(marks[1:], words, strict=True):
+            board.reword(mark, middle, text)
         return
-    board.outline(PENCIL, [bar.corners for bar in bars], Pen(palette.pencil, 1.2, DASHES), z=1.6)
+    board.clear(PENCIL)
+    if bars:
+        board.outline(PENCIL, corners, Pen(palette.pencil, 1.2, DASHES), z=1.6)
     style = Type(palette.pencil, type_size(palette), Face.SANS_ITALIC, "right")
-    for bar in bars:
-        board.words(PENCIL, (edge, bar.middle), signed(bar.amount), style)
+    for middle, text in words:
+        board.words(PENCIL, middle, text, style)

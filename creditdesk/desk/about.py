@@ -53,6 +53,19 @@ HANDS: tuple[Section, ...] = (
         ),
     ),
     (
+        "In the pencil",
+        (
+            ("-20%, +300, 35120", "Mark per cent of the ink, a change, a new value; = before a value below nil"),
+            ("Enter, Escape", "Keep what was typed, drop it"),
+            ("Delete, Ctrl+Backspace", "Rub out the marks of the rows chosen"),
+            ("Ctrl+Shift+Backspace", "Rub out all marks"),
+            ("Ctrl+I", "Ink in the marks chosen"),
+            ("Left, Right on the slider", "Try the next step; it is kept when the key is up"),
+            ("Ctrl+1 to Ctrl+5", "Show what moves, the steps, all lines, the assumptions, the texts"),
+            ("F6", "Leave the table for the slider"),
+        ),
+    ),
+    (
         "In a chart",
         (
             ("Arrows, Home, End", "Walk from mark to mark; with Shift also the marks close by"),

@@ -48,7 +48,7 @@ class PencilDraft(QObject):
         self._sketch: Mark | None = None
         self._prepared: _Prepared | None = None
         self._pencilled: Pencilled | None = None
-        self.worked_out = 0
+        self._whole = True
         session.changed.connect(self._on_changed)
 
     # What is at hand
@@ -114,12 +114,16 @@ class PencilDraft(QObject):
 
     @property
     def pencilled(self) -> Pencilled | None:
-        """Return what the scenario at hand comes to, sketch included; None for the ink, or where it cannot be told."""
+        """Return what the scenario at hand comes to, sketch included; None for the ink, or where it cannot be told.
+
+        Of a sketch other models are not asked.
+        """
         scenario, board = self.scenario, self.board
         if scenario is None or board is None:
             return None
-        if self._pencilled is None or self._pencilled.scenario != scenario:
-            self._pencilled = self._work_out(board, scenario)
+        whole = self._sketch is None
+        if self._pencilled is None or self._pencilled.scenario != scenario or (whole and not self._whole):
+            self._pencilled, self._whole = self._work_out(board, scenario, opinions=whole), whole
         return self._pencilled
 
     def mark_on(self, target: str) -> Mark | None:
@@ -227,10 +231,9 @@ class PencilDraft(QObject):
         except UserError as error:
             return _Prepared(session.case, None, targets, " ".join(error.faults))
 
-    def _work_out(self, board: PencilBoard, scenario: Scenario) -> Pencilled | None:
-        self.worked_out += 1
+    def _work_out(self, board: PencilBoard, scenario: Scenario, *, opinions: bool) -> Pencilled | None:
         try:
-            return board.scenario(scenario)
+            return board.scenario(scenario, opinions=opinions)
         except UserError as error:
             self.fault.emit(" ".join(error.faults))
             return None
