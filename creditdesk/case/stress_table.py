@@ -12,6 +12,7 @@ from creditdesk.case.document import Case
 from creditdesk.case.pencil import PencilBoard
 from creditdesk.flow.book import Roles
 from creditdesk.house.book import HouseBook
+from creditdesk.scenario.blocks import Progress, finish
 from creditdesk.scenario.marks import Scenario
 from creditdesk.scenario.stress import Slot, StressBook, StressEvent, asks_for_judgement, scenario_of
 
@@ -56,6 +57,11 @@ def stress_table(board: PencilBoard, house: HouseBook, case: Case) -> tuple[Stre
     A run of several events takes the case's own marks for each of them. Raises UserError ``stress`` where the house has
     no events.
     """
+    return finish(stress_rows(board, house, case))
+
+
+def stress_rows(board: PencilBoard, house: HouseBook, case: Case) -> Progress[tuple[StressRow, ...]]:
+    """Run the events as ``stress_table`` does, one after the other."""
     book, flow = house.stress, house.flow
     if book is None or flow is None:
         raise UserError("stress", "stress.toml: the house book has none, so there are no stress events to run")
@@ -63,7 +69,11 @@ def stress_table(board: PencilBoard, house: HouseBook, case: Case) -> tuple[Stre
     for event in book.events:
         own = [scenario for scenario in case.scenarios if scenario.event == event.key]
         asked += [(event, scenario, bool(own)) for scenario in own or [default_scenario(book, case, event)]]
-    return tuple(_row(board, flow.roles, book, one) for one in asked)
+    rows = []
+    for number, one in enumerate(asked, 1):
+        rows.append(_row(board, flow.roles, book, one))
+        yield number / len(asked)
+    return tuple(rows)
 
 
 def default_scenario(book: StressBook, case: Case, event: StressEvent) -> Scenario:

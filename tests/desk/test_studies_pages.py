@@ -7,6 +7,7 @@ import pytest
 from msgspec.structs import replace
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QLineEdit
 from pytestqt.qtbot import QtBot
 
 from creditdesk.base.display import format_pd
@@ -197,6 +198,22 @@ def test_limits_are_typed_ticked_and_added(on_ink: StudyHands) -> None:
     page.table.item(row, AT).setText("much")
     assert "expected a number" in on_ink.hands.faults[-1]
     assert page.table.words(row, AT) == "45"
+
+
+def test_a_threshold_is_typed_and_ticked_by_keys_alone(on_ink: StudyHands) -> None:
+    page = on_ink.page(BreakEvenPage)
+    page.table.setFocus()
+    page.table.setCurrentCell(1, AT)
+    on_ink.qtbot.keyClick(page.table, Qt.Key.Key_Return)
+    editor = page.table.findChild(QLineEdit)
+    assert editor is not None
+    on_ink.qtbot.keyClicks(editor, "3")
+    on_ink.qtbot.keyClick(editor, Qt.Key.Key_Return)
+    on_ink.qtbot.waitUntil(lambda: page.question().limits[1].at == 3.0)
+    count = len(page.question().limits)
+    page.table.setCurrentCell(1, LIMIT)
+    on_ink.qtbot.keyClick(page.table, Qt.Key.Key_Space)
+    assert len(page.question().limits) == count - 1
 
 
 def test_without_a_limit_the_form_says_what_is_missing(on_ink: StudyHands) -> None:

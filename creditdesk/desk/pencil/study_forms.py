@@ -271,9 +271,15 @@ class FormTable(QTableWidget):
         self._filling = False
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Take Enter for a click, unless the cell is one to type in; hand Tab on to the next field."""
+        """Take Enter for a click, or as the way into a cell that is typed in."""
+        item = self.item(self.currentRow(), self.currentColumn())
         if event.key() in (Qt.Key.Key_Return, Qt.Key.Key_Enter) and not event.modifiers():
-            self._on_clicked(self.currentRow(), self.currentColumn())
+            if self.state() is QTableWidget.State.EditingState:
+                event.accept()  # the key that ended an entry, handed on by its field
+            elif item is not None and item.flags() & Qt.ItemFlag.ItemIsEditable:
+                self.editItem(item)
+            else:
+                self._on_clicked(self.currentRow(), self.currentColumn())
         else:
             super().keyPressEvent(event)
 

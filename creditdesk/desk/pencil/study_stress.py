@@ -6,7 +6,7 @@ import msgspec
 from PySide6.QtWidgets import QHBoxLayout, QTableWidgetItem
 
 from creditdesk.case.pencil_commands import AddScenario, SetScenarioText, free_name
-from creditdesk.case.stress_table import DEBT_SERVICE_COVER, INTEREST_COVER, StressRow, stress_table
+from creditdesk.case.stress_table import DEBT_SERVICE_COVER, INTEREST_COVER, StressRow, stress_rows
 from creditdesk.case.study_words import amount_words, pd_words
 from creditdesk.desk.frame import label
 from creditdesk.desk.pencil.draft import PencilDraft
@@ -61,8 +61,7 @@ class StressPage(StudyPage):
 
     def work(self, asked: Asked) -> Generator[float, None, tuple[StressRow, ...]]:
         """Run the events."""
-        yield 0.05
-        return stress_table(asked.board, asked.house, asked.case)
+        return stress_rows(asked.board, asked.house, asked.case)
 
     def show_answer(self, asked: Asked, result: tuple[StressRow, ...]) -> None:
         """Show the rows."""
