@@ -163,6 +163,7 @@ class PencilSheet(Sheet):
 
     def stop(self) -> None:
         """Let the studies end, because the window closes."""
+        self.draft.drop()  # what was tried and not kept
         self.studies.stop()
 
     # Doing
