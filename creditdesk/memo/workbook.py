@@ -12,6 +12,7 @@ from creditdesk.case.document import Case
 from creditdesk.case.standing import Standing
 from creditdesk.case.what_if import WhatIf
 from creditdesk.charts.words import contribution_scale
+from creditdesk.flow.book import DRIVERS
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import Reason
 
@@ -30,7 +31,7 @@ def workbook(case: Case, asked: WhatIf, house: HouseBook) -> bytes:
     _ratios(book.create_sheet("Ratios"), standing, house)
     _standing(book.create_sheet("Standing"), standing)
     if asked.comparison is not None:
-        _what_if(book.create_sheet("What if"), asked.comparison)
+        _what_if(book.create_sheet("What if"), asked, asked.comparison)
     for sheet in (first, *book.worksheets[1:]):
         sheet.column_dimensions["A"].width = 44
         sheet.freeze_panes = "B2"
@@ -87,20 +88,22 @@ def _standing(sheet: Worksheet, standing: Standing) -> None:
             sheet.cell(sheet.max_row, 2).data_type = "s"  # a text that begins with = is a text, not a formula
 
 
-def _what_if(sheet: Worksheet, comparison: Comparison) -> None:
+def _what_if(sheet: Worksheet, asked: WhatIf, comparison: Comparison) -> None:
     """Write scenarios beside last year and the figures as they are; what a scenario marks is bold."""
     columns = comparison.columns
     _texts(sheet, ["", *(column.name or "as it is" for column in columns)])
     for row in comparison.rows:
-        _texts(
-            sheet, [f"{row.label}, {row.unit.replace('_', ' ')}" if row.unit else row.label, *map(_number, row.values)]
-        )
+        unit = f", {row.unit.replace('_', ' ')}" if row.key in DRIVERS else ""
+        _texts(sheet, [f"{row.label}{unit}", *map(_number, row.values)])
         for place, marked in enumerate(row.marked, start=2):
             if marked:
                 sheet.cell(sheet.max_row, place).font = _BOLD
     _texts(sheet, ["Score", *(_number(column.score) for column in columns)])
     _texts(sheet, ["PD that counts", *(_number(column.pd_final) for column in columns)])
     _texts(sheet, ["Grade", *(column.grade for column in columns)])
+    for answer in asked.answers:
+        for finding in answer.findings:
+            _texts(sheet, [f"Finding: {answer.scenario.name}", finding.text])
 
 
 def _texts(sheet: Worksheet, cells: list[str | float | None]) -> None:

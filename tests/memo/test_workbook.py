@@ -130,10 +130,20 @@ def test_scenarios_stand_side_by_side_with_last_year_and_the_figures_as_they_are
     assert rows["head"] == (None, "2024", "as it is", *(answer.scenario.name for answer in asked.answers))
     assert rows["Revenue"] == (41250, 43900, 35120, 38632, 46534)
     pds = [answer.standing.pd_final for answer in asked.answers if answer.standing]
+    assert rows["Interest rate, basis points"] == (None, 0, 200, 0, 0)
+    assert "Equity ratio" in rows  # a fraction, as on the sheet of ratios, under no unit
     assert rows["PD that counts"][1:] == tuple(same(pd) for pd in (asked.ink.pd_final, *pds))
     assert rows["Grade"][2:] == tuple(answer.standing.grade.final for answer in asked.answers if answer.standing)
     bold = [cell.value for row in book["What if"].iter_rows() for cell in row if cell.font.bold]
     assert bold[:3] == [35120, 38632, 46534]
+
+
+def test_what_a_reader_should_know_of_a_scenario_stands_below() -> None:
+    asked = scenarios_of(demo(STRETCHED), HOUSE)
+    found = [(f"Finding: {one.scenario.name}", finding.text) for one in asked.answers for finding in one.findings]
+
+    assert found
+    assert facts_of(opened(demo(STRETCHED))[1]["What if"])[-len(found) :] == found
 
 
 def test_a_case_without_scenarios_has_no_sheet_of_them() -> None:
