@@ -254,7 +254,7 @@ def _drawn(case: Case, house: HouseBook, width: int, progress: Progress) -> tupl
         from creditdesk.memo.pages import draw_pages, page_parts
 
     progress.step("Writing the memo")
-    pdf = draft_memo(case, house)
+    pdf = draft_memo(case, house, progress.step)
     pages: list[object] = []
     for number, total, page in draw_pages(pdf, width):
         progress.step(f"Drawing page {number} of {total}", number, total)
