@@ -49,9 +49,9 @@ class CurveChart:
         """Draw where the borrower would stand, over the ink, which stays as it is; None takes it away."""
         self._pencil = pencil
         self.board.clear(PENCIL)
-        if pencil is not None and self.frame is not None:
+        if pencil is not None and self.frame is not None and self._standing is not None:
             with house_style():
-                draw_point(self.board, self.frame, pencil, (self._palette, self._around))
+                draw_point(self.board, self.frame, pencil, self._standing, (self._palette, self._around))
 
     def _draw(self, standing: Standing) -> None:
         self.board.clear(BORROWER)

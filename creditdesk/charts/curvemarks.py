@@ -28,9 +28,9 @@ class CurveMarks(Marks):
     ``along``: years and bins by score; left and right walk them. ``grades``: from the best; up and down walk them.
     """
 
-    def __init__(self, standing: Standing, curve: Curve, frame: Frame) -> None:
+    def __init__(self, standing: Standing, curve: Curve, frame: Frame, pencil: Standing | None = None) -> None:
         self._curve, self._frame = curve, frame
-        years = [*_own_mark(standing, frame), *_past_marks(standing, frame)]
+        years = [*_own_mark(standing, frame), *_pencil_mark(pencil, frame), *_past_marks(standing, frame)]
         bins = [_bin_mark(number, one, frame) for number, one in enumerate(curve.bins) if frame.shows(one.score)]
         self._points = (*years, *bins)
         self.along = tuple(sorted(self._points, key=lambda mark: (mark.score or 0.0, mark.key)))
@@ -126,6 +126,17 @@ def _own_mark(standing: Standing, frame: Frame) -> Iterator[Mark]:
     place = frame.x(standing.score), frame.y(standing.pd_calibrated)
     target = f"periods[{standing.period.isoformat()}]"
     yield Mark("borrower", place, around(place, DOT), ", ".join(words), target, standing.score)
+
+
+def _pencil_mark(pencil: Standing | None, frame: Frame) -> Iterator[Mark]:
+    """Say where the borrower would stand; it leads to the sheet on which that is marked."""
+    if pencil is None or pencil.score is None or pencil.pd_calibrated is None:
+        return
+    words = [f"in pencil: score {format_number(pencil.score, 2)}", f"PD {format_pd(pencil.pd_calibrated)}"]
+    if pencil.usable and pencil.grade.final != "none":
+        words.append(f"grade {pencil.grade.final}")
+    place = frame.x(pencil.score), frame.y(pencil.pd_calibrated)
+    yield Mark("pencil", place, around(place, DOT), ", ".join(words), "pencil.", pencil.score)
 
 
 def _past_marks(standing: Standing, frame: Frame) -> Iterator[Mark]:

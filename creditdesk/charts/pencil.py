@@ -28,16 +28,23 @@ _SPARE = 1.25
 """How much further than asked the scale reaches once it must, so that a slider seldom moves it."""
 
 
-def draw_point(board: Board, frame: Frame, pencil: Standing, look: tuple[Palette, Sequence[Box]]) -> None:
-    """Draw where the borrower would stand; outside the frame as a triangle at its edge, without a PD not at all."""
+def draw_point(
+    board: Board, frame: Frame, pencil: Standing, ink: Standing, look: tuple[Palette, Sequence[Box]]
+) -> None:
+    """Draw where the borrower would stand; outside the frame as a triangle at its edge, without a PD not at all.
+
+    Close to the ink it is a ring around it.
+    """
     palette, obstacles = look
     if pencil.score is None or pencil.pd_calibrated is None:
         return
     point, pen = (frame.x(pencil.score), frame.y(pencil.pd_calibrated)), Pen(palette.pencil, 1.3, DASHES)
-    if frame.shows(pencil.score):
-        board.dot(PENCIL, point, DOT + 0.6, Pen(palette.sheet), pen, z=3.8)
-    else:
+    if not frame.shows(pencil.score):
         board.triangle(PENCIL, point, DOT, palette.pencil, up=pencil.score > frame.score_high)
+    elif ink.score is not None and abs(frame.x(ink.score) - point[0]) < DOT:
+        board.dot(PENCIL, point, DOT + 2.6, Pen(palette.sheet, alpha=0.0), pen, z=3.8)
+    else:
+        board.dot(PENCIL, point, DOT + 0.6, Pen(palette.sheet), pen, z=3.8)
     style = Type(palette.pencil, type_size(palette), Face.SANS_ITALIC)
     size = text_width(WORD, style.size, style.face) + 2, CAP_HEIGHT * style.size + 2.5
     taken = Taken(frame.plot, [*obstacles, around(point, DOT + 1.6)])

@@ -1,5 +1,7 @@
 """The marks of the contributions: one per factor, over the whole width of its row."""
 
+from collections.abc import Mapping
+
 from creditdesk.base.palette import Palette
 from creditdesk.case.standing import FactorStanding, Standing
 from creditdesk.charts.contributions import row_layout
@@ -9,8 +11,13 @@ from creditdesk.charts.style import Size
 from creditdesk.charts.words import contribution_scale, ratio_text, reads_as_nil, signed, what_it_moves
 
 
-def row_marks(standing: Standing, passage: Passage, size: Size, palette: Palette) -> RowMarks:
-    """Return the rows of ``passage`` as they stand on a figure of ``size`` points; the key is the factor's."""
+def row_marks(
+    standing: Standing, passage: Passage, size: Size, palette: Palette, pencil: Mapping[str, float] | None = None
+) -> RowMarks:
+    """Return the rows of ``passage`` as they stand on a figure of ``size`` points; the key is the factor's.
+
+    ``pencil``: what each factor comes to in pencil, by its key.
+    """
     layout = row_layout(size, len(passage.rows), palette)
     factors = {factor.key: factor for factor in standing.factors}
     pd_shares, end = shares(standing, passage), standing.period.isoformat()
@@ -19,6 +26,7 @@ def row_marks(standing: Standing, passage: Passage, size: Size, palette: Palette
         if row.key in factors:  # not the sum of several
             factor, box = factors[row.key], layout.box(number)
             words = _words(row, factor, passage, pd_shares.get(row.key))
+            words += f"; in pencil {signed(pencil[row.key])}" if pencil and row.key in pencil else ""
             marks.append(Mark(row.key, box.centre, box, words, f"ratios.{factor.ratio}[{end}]"))
     return RowMarks(marks)
 

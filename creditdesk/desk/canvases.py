@@ -32,7 +32,7 @@ from creditdesk.charts.curvemarks import CurveMarks
 from creditdesk.charts.look import Look, second_look
 from creditdesk.charts.numbers import contribution_numbers, curve_numbers
 from creditdesk.charts.painting import Painter
-from creditdesk.charts.pencil import PENCIL
+from creditdesk.charts.pencil import PENCIL, outline_of
 from creditdesk.charts.placing import Box
 from creditdesk.charts.pointing import Mark, Marks, Step
 from creditdesk.charts.rowmarks import row_marks
@@ -281,6 +281,7 @@ class ChartCanvases:
     def __init__(self, palette: Palette) -> None:
         self._palette = palette
         self._standing: Standing | None = None
+        self._pencil: Standing | None = None
         self.moved = False
         self.curve = ChartCanvas(palette, CURVE_NAME)
         self.contributions = ChartCanvas(palette, REFERENCE_NAME)
@@ -317,6 +318,7 @@ class ChartCanvases:
 
         ``held``: the scale of the contributions stays too, as it must while a slider is moved.
         """
+        self._pencil = pencil
         self._curve_chart.show_pencil(pencil)
         self._contributions_chart.show_pencil(pencil, held=held)
         for canvas in (self.curve, self.contributions):
@@ -346,13 +348,14 @@ class ChartCanvases:
         standing, frame = self._standing, self._curve_chart.frame
         if standing is None or standing.curve is None or frame is None:
             return Marks()
-        return CurveMarks(standing, standing.curve, frame)
+        return CurveMarks(standing, standing.curve, frame, self._pencil)
 
     def _row_marks(self) -> Marks:
         passage = self._contributions_chart.passage
         if self._standing is None or passage is None:
             return Marks()
-        return row_marks(self._standing, passage, self._contributions_chart.board.size, self._palette)
+        pencil = outline_of(self._pencil, passage).amounts if self._pencil is not None else None
+        return row_marks(self._standing, passage, self._contributions_chart.board.size, self._palette, pencil)
 
     def _curve_foot(self) -> float:
         frame = self._curve_chart.frame

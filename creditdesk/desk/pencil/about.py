@@ -12,6 +12,7 @@ from creditdesk.desk.textblock import TextBlock
 from creditdesk.scenario.marks import Scenario
 from creditdesk.scenario.stress import StressEvent, asks_for_judgement
 
+_BLOCK_HEIGHT = 72
 _RATIONALE, _JUDGEMENT = "rationale", "judgement"
 _NOTHING = "The ink has no texts of its own: choose a scenario, or mark a line to begin one."
 
@@ -97,12 +98,12 @@ class AboutScenario(QScrollArea):
         box.addWidget(self.judgement)
         box.addWidget(self.in_memo)
         for block in self._blocks.values():
-            block.setMinimumHeight(54)
+            block.setFixedHeight(_BLOCK_HEIGHT)
         outer = QVBoxLayout(whole)
         outer.setContentsMargins(10, 6, 10, 6)
         outer.addWidget(self.nothing)
-        outer.addWidget(self._inside, 1)
-        outer.addStretch(0)
+        outer.addWidget(self._inside)
+        outer.addStretch(1)
         self.setWidget(whole)
 
 

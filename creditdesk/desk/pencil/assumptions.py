@@ -23,7 +23,7 @@ _HEADS = ("assumption", "now", "house book", "source")
 _READ = Qt.ItemFlag.ItemIsEnabled | Qt.ItemFlag.ItemIsSelectable
 _TYPED = _READ | Qt.ItemFlag.ItemIsEditable
 _ROW_HEIGHT, _INDENT = 23, 10
-_WIDTHS = {NOW: 130, HOUSE: 130, SOURCE: 120}
+_WIDTHS = {NOW: 124, HOUSE: 92, SOURCE: 112}
 _SELECTED, _FOCUSED = QStyle.StateFlag.State_Selected.value, QStyle.StateFlag.State_HasFocus.value
 Take = Callable[[str, Value | None], bool]
 

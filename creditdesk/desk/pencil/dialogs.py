@@ -24,7 +24,12 @@ from creditdesk.desk.pencil.typed import mark_words
 from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.stress import StressBook, StressEvent, scenario_of
 
-_EVENT_WIDTH, _LIST_WIDTH = 760, 330
+_EVENT_WIDTH, _LIST_WIDTH, _ENTRIES_HEIGHT = 760, 330, 260
+_LIST_STYLE = """
+QListWidget { border: 1px solid palette(mid); background: palette(base); outline: 0; }
+QListWidget::item { padding: 3px 4px; }
+QListWidget::item:selected { background: palette(highlight); color: palette(text); }
+"""
 
 
 class NameDialog(Question):
@@ -58,6 +63,7 @@ class EventDialog(Question):
         self.list = QListWidget()
         self.list.setAccessibleName("Stress events of the house")
         self.list.setFixedWidth(_LIST_WIDTH)
+        self.list.setStyleSheet(_LIST_STYLE)
         self.size_words, self.rationale = label("strong", wrap=True), label("", wrap=True)
         self.question, self.note = label("caution", wrap=True), label("second", wrap=True)
         for event in book.events:
@@ -125,6 +131,7 @@ class InkInDialog(Question):
         self.author.setAccessibleName("Author of the adjustment")
         self.author.setPlaceholderText("may stay blank")
         self.table = entry_table(entries)
+        self.table.setMinimumHeight(_ENTRIES_HEIGHT)
         self.box.addWidget(label("", words, wrap=True))
         self.box.addWidget(self.table)
         self.box.addWidget(label("", "Reason: it stands in the trail and in the memo beside the adjustment"))
@@ -151,6 +158,7 @@ def entry_table(entries: Sequence[tuple[str, str]]) -> QTableWidget:
     table.setSelectionMode(QAbstractItemView.SelectionMode.NoSelection)
     table.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
     table.setTabKeyNavigation(False)
+    table.horizontalHeader().setDefaultAlignment(Qt.AlignmentFlag.AlignLeft)
     table.horizontalHeader().setSectionResizeMode(0, QHeaderView.ResizeMode.Stretch)
     for number, (line, amount) in enumerate(entries):
         item = QTableWidgetItem(amount)

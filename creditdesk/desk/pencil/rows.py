@@ -9,11 +9,11 @@ from creditdesk.case.pencil import Pencilled
 from creditdesk.case.standing import Standing
 from creditdesk.case.targets import Target, TargetBook, TargetKind
 from creditdesk.desk.pencil.typed import mark_words
+from creditdesk.desk.tables.ratiocells import NARROW_WORDS
 from creditdesk.desk.tables.rows import Choice, RowKind, figure_rows
 from creditdesk.flow.moves import MoveKind
 from creditdesk.house.book import HouseBook
 from creditdesk.ratios.compute import HELD, Reason
-from creditdesk.ratios.words import REASON_WORDS
 from creditdesk.scenario.marks import Mark
 
 AS_INK = "="
@@ -151,6 +151,13 @@ class PencilFacts:
 
     # Cells
 
+    @property
+    def widest(self) -> str:
+        """Return the widest amount of the period, as a change with its sign."""
+        known = self.ink.statements.values[:, self.period]
+        most = max((abs(float(amount)) for amount in known if math.isfinite(amount)), default=0.0)
+        return self._amounts.difference(-most)
+
     def value(self, key: str, *, pencil: bool) -> float:
         """Return the value of a row in ink or in pencil; nan where it has none. Drivers stand at nil in ink."""
         standing = self.pencilled.standing if pencil and self.pencilled is not None else self.ink
@@ -191,7 +198,7 @@ class PencilFacts:
         if key in standing.ratios.index and not (pencil and self._in_force(key)):
             reason = standing.ratios.reason(key, self.period)
             if reason is not Reason.VALUE:
-                return REASON_WORDS[reason.key]
+                return NARROW_WORDS[reason.key]
         return target.text(value) or "n.d."
 
     def _differs(self, key: str, before: float, after: float) -> bool:

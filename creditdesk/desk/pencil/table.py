@@ -45,6 +45,11 @@ class PencilModel(QAbstractTableModel):
         assert self._facts is not None
         return self._facts
 
+    @property
+    def widest(self) -> str:
+        """Return the widest amount there is, for the width of a column."""
+        return self._facts.widest if self._facts is not None else ""
+
     def show_draft(self) -> None:
         """Show the draft as it stands."""
         draft = self._draft

@@ -18,6 +18,7 @@ _SELECTED, _FOCUSED = QStyle.StateFlag.State_Selected.value, QStyle.StateFlag.St
 _LEAST = {LABEL: 150, INK: 78, PENCIL: 88, CHANGE: 78}
 _MOST_LABEL = 300
 _SHARE_LABEL = 0.34
+_BESIDE_AMOUNT = 24
 _ENTER = (Qt.Key.Key_Return, Qt.Key.Key_Enter)
 _STEPS = {Qt.Key.Key_Up: (-1, 0), Qt.Key.Key_Down: (1, 0), Qt.Key.Key_Left: (0, -1), Qt.Key.Key_Right: (0, 1)}
 
@@ -122,6 +123,7 @@ class PencilTable(PlainTable):
         delegate.left.connect(self._on_left)
         model.modelAboutToBeReset.connect(self._keep_place)
         model.modelReset.connect(self._find_place)
+        model.modelReset.connect(self.fit)
 
     @property
     def key(self) -> str:
@@ -220,7 +222,8 @@ class PencilTable(PlainTable):
     def fit(self) -> None:
         """Give labels and numbers what they read well at, and how it follows the rest."""
         width = self.viewport().width()
-        widths = dict(_LEAST)
+        amount = round(self.fontMetrics().horizontalAdvance(self.pencil.widest)) + _BESIDE_AMOUNT
+        widths = {column: max(least, amount) for column, least in _LEAST.items()}
         widths[LABEL] = min(max(round(_SHARE_LABEL * width), _LEAST[LABEL]), _MOST_LABEL)
         for column, given in widths.items():
             self.setColumnWidth(column, given)
