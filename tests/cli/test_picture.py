@@ -43,6 +43,12 @@ def test_every_sheet_at_the_size_asked_for(sheet: str, tmp_path: Path) -> None:
     assert len(np.unique(picture.reshape(-1, 3), axis=0)) > 200  # text and charts, not a blank sheet
 
 
+def test_the_sheet_pencil_shows_the_first_scenario_also_in_the_standing(tmp_path: Path) -> None:
+    ink, pencil = taken("figures", tmp_path / "a.png"), taken("pencil", tmp_path / "b.png")
+    standing = np.s_[130:870, 960:]
+    assert (ink[standing] != pencil[standing]).any(axis=2).mean() > 0.01
+
+
 def test_the_dark_theme_and_another_case_are_other_pictures(tmp_path: Path) -> None:
     light, dark = taken("figures", tmp_path / "a.png"), taken("figures", tmp_path / "b.png", "--theme", "dark")
     assert light.shape == dark.shape == (900, 1440, 3)
