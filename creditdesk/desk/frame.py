@@ -7,7 +7,19 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QSize, Qt, Signal
-from PySide6.QtWidgets import QButtonGroup, QHBoxLayout, QLabel, QPushButton, QSizePolicy, QVBoxLayout, QWidget
+from PySide6.QtGui import QFontMetrics, QPainter, QPaintEvent
+from PySide6.QtWidgets import (
+    QButtonGroup,
+    QHBoxLayout,
+    QLabel,
+    QPushButton,
+    QSizePolicy,
+    QStatusBar,
+    QStyle,
+    QStyleOption,
+    QVBoxLayout,
+    QWidget,
+)
 
 if TYPE_CHECKING:
     from creditdesk.desk.headline import Headline
@@ -15,6 +27,8 @@ if TYPE_CHECKING:
 SHEETS = OBLIGOR, FIGURES, RATIOS, PENCIL, MEMO = "Obligor", "Figures", "Ratios", "Pencil", "Memo"
 STANDING = "Standing"
 FIND_KEY, WIDE_KEY = "Ctrl+K", "Alt+0"
+_MARGIN = 22
+"""What the window keeps free at either side."""
 STANDING_SIZE, STANDING_NARROWEST = QSize(490, 700), 400
 """The size the Standing asks for, at which its charts read well, and the least width it takes."""
 
@@ -34,11 +48,11 @@ def label(role: str, text: str = "", *, wrap: bool = False) -> QLabel:
 
 
 class Elided(QLabel):
-    """Show one line that is cut with an ellipsis where it does not fit; the whole stands in the tooltip."""
+    """Show one line, or at most so many, cut with an ellipsis where it does not fit; the whole is in the tooltip."""
 
-    def __init__(self, role: str) -> None:
+    def __init__(self, role: str, lines: int = 1) -> None:
         super().__init__()
-        self._whole = ""
+        self._whole, self._lines = "", lines
         self.setProperty("role", role)
         self.setTextFormat(Qt.TextFormat.PlainText)
         self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
@@ -54,10 +68,18 @@ class Elided(QLabel):
         self._fit()
 
     def _fit(self) -> None:
-        cut = self.fontMetrics().elidedText(self._whole, Qt.TextElideMode.ElideRight, max(self.width(), 20))
-        if cut != self.text():
-            self.setText(cut)
-        self.setToolTip(self._whole if cut != self._whole else "")
+        room, metrics = max(self.width(), 20), self.fontMetrics()
+        rest = self._whole
+        lines: list[str] = []
+        while len(lines) < self._lines - 1 and metrics.horizontalAdvance(rest) > room:
+            line = _begin(rest, room, metrics)
+            if not line:
+                break
+            lines, rest = [*lines, line], rest.removeprefix(line).lstrip()
+        lines.append(metrics.elidedText(rest, Qt.TextElideMode.ElideRight, room))
+        if "\n".join(lines) != self.text():
+            self.setText("\n".join(lines))
+        self.setToolTip(self._whole if lines[-1] != rest else "")
         self.setAccessibleName(self._whole)
 
 
@@ -66,27 +88,26 @@ class Header(QWidget):
 
     def __init__(self) -> None:
         super().__init__()
-        self.obligor = Elided("obligor")
+        self.obligor = Elided("obligor", 2)
         self.description = Elided("second")
         self.state = label("second")
         self.warning = label("caution")
-        left, right = QVBoxLayout(), QVBoxLayout()
-        for box, widgets in ((left, (self.obligor, self.description)), (right, (self.state, self.warning))):
-            box.setSpacing(1)
-            for widget in widgets:
-                box.addWidget(widget)
-        for widget in (self.state, self.warning):
-            widget.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignBottom)
-        row = QHBoxLayout()
-        row.addLayout(left, 1)
-        row.addLayout(right)
+        rows = QVBoxLayout()
+        rows.setSpacing(1)
+        for left, right in ((self.obligor, self.state), (self.description, self.warning)):
+            right.setAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignBottom)
+            row = QHBoxLayout()
+            row.setSpacing(_MARGIN)
+            row.addWidget(left, 1)
+            row.addWidget(right)
+            rows.addLayout(row)
         self.notice = Elided("notice")
         self.notice.hide()
         column = QVBoxLayout(self)
-        column.setContentsMargins(22, 10, 22, 2)
+        column.setContentsMargins(_MARGIN, 10, _MARGIN, 2)
         column.setSpacing(5)
         column.addWidget(self.notice)
-        column.addLayout(row)
+        column.addLayout(rows)
 
     def show_headline(self, obligor: str, headline: "Headline") -> None:
         """Name the obligor, and say what is known of the case; what limits the work stands above everything else."""
@@ -98,6 +119,24 @@ class Header(QWidget):
         self.notice.setVisible(bool(headline.notice))
 
 
+class StatusLine(QStatusBar):
+    """Say at the window's margin what is being said, beside what always stands at the right."""
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Paint the words in line with those that stand here otherwise."""
+        words = self.currentMessage()
+        if not words:
+            super().paintEvent(event)
+            return
+        painter, option = QPainter(self), QStyleOption()
+        option.initFrom(self)
+        self.style().drawPrimitive(QStyle.PrimitiveElement.PE_PanelStatusBar, option, painter, self)
+        shown = [one.x() for one in self.findChildren(QWidget) if one.isVisible() and one.parent() is self]
+        room = self.rect().adjusted(_MARGIN, 0, min(shown, default=self.width()) - self.width(), 0)
+        cut = self.fontMetrics().elidedText(words, Qt.TextElideMode.ElideRight, room.width())
+        painter.drawText(room, Qt.AlignmentFlag.AlignVCenter | Qt.TextFlag.TextSingleLine, cut)
+
+
 class SheetPlace(QWidget):
     """Stand where a sheet will be, and say in one quiet line what is waited for."""
 
@@ -105,7 +144,7 @@ class SheetPlace(QWidget):
         super().__init__()
         self.words = label("second", wrap=True)
         box = QVBoxLayout(self)
-        box.setContentsMargins(22, 18, 22, 18)
+        box.setContentsMargins(_MARGIN, 18, _MARGIN, 18)
         box.addWidget(self.words)
         box.addStretch(1)
 
@@ -136,7 +175,7 @@ class SheetBar(QWidget):
         self.setObjectName("sheets")
         self._group = QButtonGroup(self)
         row = QHBoxLayout(self)
-        row.setContentsMargins(22, 0, 22, 0)
+        row.setContentsMargins(_MARGIN, 0, _MARGIN, 0)
         row.setSpacing(0)
         for number, name in enumerate(names):
             button = QPushButton(name)
@@ -164,6 +203,13 @@ class SheetBar(QWidget):
         self._group.setExclusive(number >= 0)
         for button in self._group.buttons():
             button.setChecked(self._group.id(button) == number)
+
+
+def _begin(text: str, room: int, metrics: QFontMetrics) -> str:
+    """Return as many of the first words as a line has room for; "" where it has none for the first."""
+    words = text.split(" ")
+    fits = (count for count in range(len(words), 0, -1) if metrics.horizontalAdvance(" ".join(words[:count])) <= room)
+    return " ".join(words[: next(fits, 0)])
 
 
 def _right_button(title: str, tip: str) -> QPushButton:

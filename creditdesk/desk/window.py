@@ -14,7 +14,7 @@ from PySide6.QtGui import (
     QShortcut,
     QUndoGroup,
 )
-from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QApplication, QLabel, QMainWindow, QSizePolicy, QSplitter, QVBoxLayout, QWidget
 
 from creditdesk.base.palette import Palette
 from creditdesk.desk import files, theme
@@ -29,6 +29,7 @@ from creditdesk.desk.frame import (
     Header,
     SheetBar,
     StandingPlace,
+    StatusLine,
 )
 from creditdesk.desk.menus import Menus
 from creditdesk.desk.settings import Settings, Theme
@@ -317,7 +318,9 @@ class Window(QMainWindow):
         whole.addWidget(top)
         whole.addWidget(self.split, 1)
         self.setCentralWidget(central)
-        self.statusBar().addWidget(self.recorded)
+        self.setStatusBar(StatusLine())
+        self.recorded.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+        self.statusBar().addWidget(self.recorded, 1)
         self.statusBar().addPermanentWidget(self.counts)
         self.statusBar().setSizeGripEnabled(False)
 

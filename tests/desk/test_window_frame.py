@@ -16,6 +16,8 @@ from creditdesk.case.trail import utc_now
 from creditdesk.desk.actions import keys_of, placed_actions, plain, reason_of
 from creditdesk.desk.app import Desk, make_application
 from creditdesk.desk.caseview import CaseView
+from creditdesk.desk.frame import Header
+from creditdesk.desk.headline import Headline
 from creditdesk.desk.session import Session
 from creditdesk.desk.settings import Settings, Theme
 from creditdesk.desk.sheets.memo import MemoSheet
@@ -135,7 +137,7 @@ def test_the_status_line_says_when_the_last_edit_was_recorded(
     begun, edited = datetime(2026, 3, 2, 9, 15, 30, tzinfo=UTC), datetime(2026, 3, 2, 9, 17, 5, tzinfo=UTC)
     file = CaseFile.create(path, sound_case, actor="officer", clock=lambda: begun)
     window = open_window(Session(house, sound_case, path, file, now=lambda: edited))
-    assert window.recorded.text() == "Last recorded 2026-03-02 09:15 in case.deskcase"
+    assert window.recorded.text() == "Last recorded 2\u00a0March 2026, 09:15 in case.deskcase"
     window.session.do(SetText("request", "Another request"))
     assert window.recorded.text() == "Recorded 09:17:05 in case.deskcase"
 
@@ -150,6 +152,52 @@ def test_a_case_that_cannot_be_recorded_says_so_above_everything(
         assert window.header.notice.isVisible()
         assert second.read_only_because in window.header.notice.accessibleName()
         assert reason_of(_action(window, "Revert to…")) == second.read_only_because
+
+
+LONG = "Wolstenholme, Featherstonehaugh & Sons (Precision Castings and Heavy Machining) Holdings of Northumberland Ltd"
+
+
+@pytest.mark.parametrize(
+    ("name", "width", "lines", "whole"),
+    [
+        ("Brackwater Millworks Ltd", 900, 1, True),
+        (LONG, 1920, 1, True),
+        (LONG, 1200, 2, True),
+        (2 * LONG, 900, 2, False),
+        ("X" * 300, 900, 1, False),
+    ],
+)
+def test_a_long_name_takes_two_lines_at_most_and_a_short_one_no_more_than_before(
+    qtbot: QtBot, name: str, width: int, lines: int, *, whole: bool
+) -> None:
+    make_application()
+    header = Header()
+    qtbot.addWidget(header)
+    header.resize(width, 80)
+    header.show_headline(name, Headline("Manufacturing", "Draft", "▲ demonstration: not for lending", ""))
+    header.show()
+    shown = header.obligor.text().split("\n")
+    assert len(shown) == lines
+    assert all(header.obligor.fontMetrics().horizontalAdvance(line) <= header.obligor.width() for line in shown)
+    assert (" ".join(shown) == name, header.obligor.toolTip()) == (whole, "" if whole else name)
+    assert header.obligor.accessibleName() == name
+
+
+@pytest.mark.parametrize("width", [900, 1400])
+def test_a_fault_is_said_at_the_margin_and_leaves_the_counts_their_place(window: Window, width: int) -> None:
+    window.resize(width, 700)
+    QApplication.processEvents()
+    before = window.counts.geometry()
+    assert before.right() <= window.width()
+    window.show_fault("found no amount " * 20)
+    QApplication.processEvents()
+    line = window.statusBar()
+    picture = line.grab().toImage()
+    ground = picture.pixelColor(2, line.height() // 2)
+    painted = [x for x in range(before.left()) if picture.pixelColor(x, line.height() // 2) != ground]
+    assert 20 <= painted[0] <= 26
+    assert window.counts.geometry() == before
+    assert painted[-1] <= before.left()
 
 
 def test_an_edit_that_cannot_be_undone_is_said_and_nothing_changes(
