@@ -3,6 +3,7 @@
 import re
 
 from creditdesk.case.standing import Standing
+from creditdesk.desk.panels.texts import BACKGROUND, TITLES
 from creditdesk.ratios.words import titled
 from creditdesk.statements.period import period_label
 
@@ -31,7 +32,8 @@ def place_words(standing: Standing, place: str) -> str:
         return ""
     period = _period(standing, found["end"] or "")
     where = ", ".join(part for part in (_label(standing, what, key), period) if part)
-    return f"{_SHEETS[what]}: {where}" if where else _SHEETS[what]
+    sheet = "Obligor" if what == "texts" and key in BACKGROUND else _SHEETS[what]
+    return f"{sheet}: {where}" if where else sheet
 
 
 def _label(standing: Standing, what: str, key: str) -> str:
@@ -41,6 +43,8 @@ def _label(standing: Standing, what: str, key: str) -> str:
         return labels.get(key, titled(key))
     if what == "ratios":
         return next((one.label for one in standing.factors if one.ratio == key), titled(key))
+    if what == "texts":
+        return TITLES.get(key, titled(key))
     return titled(key)
 
 

@@ -29,7 +29,7 @@ REASON_WORDS: Mapping[str, str] = {
 }
 """Why a ratio has no value, by the reason's key, in the few words a table has room for."""
 _ANSWERS = {1.0: "yes", 0.0: "no"}
-_ABBREVIATIONS = re.compile(r"\b(ebitda|ebit)\b", re.IGNORECASE)
+_ABBREVIATIONS = re.compile(r"\b(ebitda|ebit|lei)\b", re.IGNORECASE)
 _FUNCTION = re.compile(r"[a-z_]+\(")
 _SIGN_HINT = re.compile(r" \([^()]*[+−-]\)$")
 _BEFORE = {

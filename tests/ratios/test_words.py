@@ -14,6 +14,7 @@ from creditdesk.ratios.words import format_ratio, spoken, titled
         ("weak_spots", "weak spots", "Weak spots"),
         ("no_ebitda", "no EBITDA", "No EBITDA"),
         ("ebit_to_assets", "EBIT to assets", "EBIT to assets"),
+        ("lei", "LEI", "LEI"),
         ("", "", ""),
     ],
 )

@@ -23,6 +23,8 @@ TITLES: Mapping[str, str] = {
     "environment": "Environment and society",
 }
 """Blocks edited on this sheet; the others belong to the sheets whose matter they are."""
+BACKGROUND = tuple(key for key in TITLES if key != "request")
+"""Blocks whose place is this sheet; the request is edited here too, and its place is the sheet Memo."""
 _LINES = (3, 12)
 """Fewest and most lines a block takes; beyond, it scrolls."""
 _SPARE = 2

@@ -14,7 +14,7 @@ from creditdesk.desk.panels.assessment import AssessmentPanel
 from creditdesk.desk.panels.basis import CurrencyPanel, RatesPanel
 from creditdesk.desk.panels.identity import IdentityPanel
 from creditdesk.desk.panels.models import ModelsPanel
-from creditdesk.desk.panels.texts import TITLES, TextsPanel
+from creditdesk.desk.panels.texts import BACKGROUND, TextsPanel
 from creditdesk.desk.sheets.base import Sheet
 from creditdesk.house.book import HouseBook
 
@@ -29,7 +29,7 @@ class ObligorSheet(Sheet):
 
     title = "Obligor"
     places = (
-        "obligor.", "assessment.", "model.lead", "model.scope", *(f"texts.{key}" for key in TITLES if key != "request"),
+        "obligor.", "assessment.", "model.lead", "model.scope", *(f"texts.{key}" for key in BACKGROUND),
     )  # fmt: skip
 
     def __init__(self, house: HouseBook, do: Callable[[Command], None]) -> None:
