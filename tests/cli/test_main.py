@@ -70,7 +70,7 @@ def test_our_own_bug_is_a_report_and_a_short_word(command: Command, monkeypatch:
     def fail(*_: object) -> None:
         raise ZeroDivisionError("planted")
 
-    monkeypatch.setattr(commands, "assess_case", fail)
+    monkeypatch.setattr(commands, "work_out", fail)
     done = command("assess", SOUND, "--json")
     assert (done.code, done.out, len(done.messages)) == (70, b"", 1)
     assert "our own bug" in done.messages[0]
@@ -85,7 +85,7 @@ def test_an_interruption_is_no_bug(command: Command, monkeypatch: pytest.MonkeyP
     def stop(*_: object) -> None:
         raise KeyboardInterrupt
 
-    monkeypatch.setattr(commands, "assess_case", stop)
+    monkeypatch.setattr(commands, "scenarios_of", stop)
     assert command("assess", SOUND) == Ended(130, b"", ())
 
 

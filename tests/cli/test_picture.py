@@ -86,7 +86,7 @@ def test_a_size_that_is_none_is_wrong_usage(command: Command, tmp_path: Path, si
 def test_what_keeps_a_picture_from_being_taken(tmp_path: Path) -> None:
     out = tmp_path / "a.png"
     for asked, words in (
-        (("nosuch", SOUND, "--out", out), "obligor, figures, ratios, memo, standing"),
+        (("nosuch", SOUND, "--out", out), "obligor, figures, ratios, pencil, memo, standing"),
         (("figures", tmp_path / "none.case.toml", "--out", out), "no such file"),
         (("figures", SOUND, "--out", tmp_path / "no" / "a.png"), "cannot be written"),
     ):
