@@ -84,6 +84,11 @@ class PencilBoard:
             held=marked,
         )
 
+    def findings(self, moves: Moves, overrides: Overrides | None = None) -> tuple[Finding, ...]:
+        """Say what is refused of moves of one point, and what is to be known of them, without working them out."""
+        flow = run_flow(self._book, self.ink.statements, self.ink.period_index, moves, overrides)
+        return (*flow.findings, *self._held(flow)[1])
+
     def evaluate(self, moves: Moves, overrides: Overrides | None = None, watch: Sequence[str] = ()) -> Outcomes:
         """Say what moves come to, for one point or for up to ``DRAWS_MOST`` draws at once.
 

@@ -135,7 +135,7 @@ def sensitivity(
 
 def starts_of(board: PencilBoard, house: HouseBook, scenario: Scenario, ranges: Sequence[Range]) -> Starts:
     """Say where a scenario stands in ranges: by its marks, or by what they move; nan where none tells."""
-    moves, after = moves_of(scenario.marks), board.scenario(scenario).standing
+    moves, after = moves_of(scenario.marks), board.scenario(scenario, opinions=False).standing
     found = {}
     for one in ranges:
         move = moves.get(one.target)
@@ -155,7 +155,7 @@ def refused_levers(board: PencilBoard, scenario: Scenario, levers: Sequence[Leve
     ranges = [lever.range for lever in levers]
     pulled = tuple(Mark(one.target, one.kind, one.low or one.high) for one in ranges)
     own = tuple(mark for mark in scenario.marks if mark.target not in {one.target for one in ranges})
-    findings = board.scenario(msgspec.structs.replace(scenario, marks=(*own, *pulled))).findings
+    findings = board.findings(moves_of((*own, *pulled)), scenario.assumptions)
     said = {one.place.split(".")[1].split("[")[0]: one.text for one in findings if one.code.endswith(".refused")}
     return {one.target: said[one.target] for one in ranges if one.target in said}
 

@@ -11,6 +11,7 @@ from creditdesk.flow.book import INPUT_PRICES, INTEREST_RATE, OPERATING_RESULT, 
 from creditdesk.flow.moves import MoveKind
 from creditdesk.grading.scale import NO_GRADE
 from creditdesk.house.book import HouseBook
+from creditdesk.scenario.marks import Scenario
 from creditdesk.scenario.specs import (
     BreakEvenSpec,
     GridSpec,
@@ -40,11 +41,10 @@ def offered_studies(board: PencilBoard, house: HouseBook, case: Case, name: str)
     if flow is None:
         raise UserError("study", "flow.toml: the house book has none, so there is nothing to study")
     scenario = scenario_on(case, name)
-    here = board.scenario(scenario)
-    along = {
-        one.target: _widened(one, starts_of(board, house, scenario, (one,))[one.target])
-        for one in usual_ranges(flow, (flow.roles.revenue, OPERATING_RESULT, INTEREST_RATE))
-    }
+    here = board.scenario(scenario, opinions=False)
+    usual = tuple(usual_ranges(flow, (flow.roles.revenue, OPERATING_RESULT, INTEREST_RATE)))
+    starts = starts_of(board, house, scenario, usual)
+    along = {one.target: _widened(one, starts[one.target]) for one in usual}
     sales, rate = along[flow.roles.revenue], along[INTEREST_RATE]
     limits = tuple(_limits(house, here))
     return (
@@ -74,12 +74,12 @@ def goal_of(board: PencilBoard, house: HouseBook, here: Pencilled) -> str:
     return house.scale.keys[place - 1] if place else ""
 
 
-def house_levers(board: PencilBoard, house: HouseBook, here: Pencilled) -> tuple[Lever, ...]:
+def house_levers(board: PencilBoard, house: HouseBook, scenario: Scenario) -> tuple[Lever, ...]:
     """Return the house book's levers that change something in this case."""
     flow = house.flow
     offers = flow.levers if flow is not None else ()
     levers = [Lever(Range(one.target, one.kind, one.low, one.high), one.cost, one.step) for one in offers]
-    refused = refused_levers(board, here.scenario, levers)
+    refused = refused_levers(board, scenario, levers)
     return tuple(lever for lever in levers if lever.range.target not in refused)
 
 
@@ -93,9 +93,11 @@ def _limits(house: HouseBook, here: Pencilled) -> Iterator[Limit]:
 
 
 def _reach(board: PencilBoard, house: HouseBook, here: Pencilled, name: str) -> Iterator[ReachSpec]:
-    goal, levers = goal_of(board, house, here), house_levers(board, house, here)
+    """Ask for a grade by the levers that the scenario does not mark itself: those would but undo its marks."""
+    goal, levers = goal_of(board, house, here), house_levers(board, house, here.scenario)
+    others = tuple(lever for lever in levers if lever.range.target not in here.moves)
     if goal and levers:
-        yield ReachSpec(scenario=name, grade=goal, levers=levers)
+        yield ReachSpec(scenario=name, grade=goal, levers=others or levers)
 
 
 def _simulation(house: HouseBook, here: Pencilled, name: str, sales: str) -> SimulationSpec:

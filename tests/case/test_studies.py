@@ -173,7 +173,7 @@ def test_an_unknown_scenario_is_said() -> None:
 def test_the_plan_is_a_scenario_that_reaches_the_grade() -> None:
     case = case_with(DOWN)
     board = PencilBoard(case, HOUSE)
-    levers = house_levers(board, HOUSE, board.scenario(DOWN))
+    levers = house_levers(board, HOUSE, DOWN)
     answer = reached(ReachSpec(scenario="down", grade="6", levers=levers), case)
     assert answer.found.kind is ReachKind.REACHED
     assert answer.grade == answer.plan.standing.grade.final == "6"
@@ -197,7 +197,7 @@ def test_rules_that_cap_are_named_with_their_reasons() -> None:
 def test_a_doubt_about_going_concern_caps_whatever_is_done() -> None:
     case = demo(STRETCHED)
     board = PencilBoard(case, HOUSE)
-    levers = house_levers(board, HOUSE, board.scenario(Scenario("")))
+    levers = house_levers(board, HOUSE, Scenario(""))
     answer = reached(ReachSpec(grade="9", levers=levers), case)
     assert answer.found.kind is ReachKind.RULES
     assert [rule.key for rule in answer.caps] == ["going_concern_doubt"]

@@ -13,6 +13,9 @@ from pytestqt.qtbot import QtBot
 from creditdesk.base.display import format_pd
 from creditdesk.case.comparison import compare
 from creditdesk.case.document import Case
+from creditdesk.case.exchange import read_case, write_case
+from creditdesk.case.pencil import PencilBoard
+from creditdesk.case.pencil_commands import RubOut
 from creditdesk.case.stress_table import stress_table
 from creditdesk.case.studies import ReachAnswer, run_study, sensitivity
 from creditdesk.charts.pointing import Step
@@ -30,7 +33,7 @@ from creditdesk.scenario.grid import Grid
 from creditdesk.scenario.marks import Mark, Scenario
 from creditdesk.scenario.reach import ReachKind
 from creditdesk.scenario.simulate import Spread
-from creditdesk.scenario.specs import BreakEvenSpec, Limit, LimitKind, Shape
+from creditdesk.scenario.specs import BreakEvenSpec, Lever, Limit, LimitKind, Range, ReachSpec, Shape
 from tests.desk.studyhands import StudyHands, open_studies, told
 
 DOWNTURN = "Sales −20 %, rate +200 bp"
@@ -237,8 +240,8 @@ def test_the_way_to_a_grade_is_said_and_taken_as_marks_in_one_step(hands: StudyH
     assert found.found.kind is ReachKind.REACHED
     words = plain(page.words.label.text())
     assert words.startswith("Smallest plausible change over ")
-    assert len(page.question().levers) in (9, 10)
-    assert f"over {'nine' if len(page.question().levers) == 9 else 'ten'} levers: " in words
+    assert len(page.question().levers) == 8
+    assert "over eight levers: " in words
     assert f"PD {plain(format_pd(found.found.pd))}, grade {found.grade}" in words
     for target in found.found.active:
         assert hands.draft.targets.label(target) in words.partition("Active bound")[2]
@@ -249,6 +252,76 @@ def test_the_way_to_a_grade_is_said_and_taken_as_marks_in_one_step(hands: StudyH
     assert int(pencilled.standing.grade.final) <= 6
     for mark in found.marks:
         assert hands.draft.mark_on(mark.target) == mark
+
+
+@pytest.mark.parametrize("scenario", ["", DOWNTURN])
+@pytest.mark.parametrize("borrower", ["sound_case", "stretched_case"])
+def test_the_scenario_made_of_a_plan_has_the_grade_it_promises(
+    request: pytest.FixtureRequest, open_on: Callable[..., StudyHands], borrower: str, scenario: str
+) -> None:
+    hands = open_on(request.getfixturevalue(borrower), scenario)
+    page = hands.page(ReachPage)
+    answer = page.found
+    assert answer is not None
+    assert answer.marks
+    page.take.click()
+    assert made_of(hands, answer) == (answer.grade, *answer.marks)
+    chart = hands.session.house.chart
+    kept = read_case(write_case(hands.case, chart), chart, file="case")
+    again = next(one for one in kept.scenarios if one.name == hands.draft.active)
+    assert PencilBoard(kept, hands.session.house).scenario(again).standing.grade.final == answer.grade
+
+
+def made_of(hands: StudyHands, answer: ReachAnswer) -> tuple[object, ...]:
+    """Return the grade of the scenario at hand, and its marks on what the plan marks."""
+    pencilled = hands.draft.pencilled
+    assert pencilled is not None
+    return pencilled.standing.grade.final, *(hands.draft.mark_on(mark.target) for mark in answer.marks)
+
+
+def test_what_a_plan_holds_is_held_in_the_scenario_made_of_it(on_ink: StudyHands) -> None:
+    page = on_ink.page(ReachPage)
+    sales, costs = Range("revenue", MoveKind.BY_PCT, 0.0, 30.0), Range("cost_of_sales", MoveKind.BY_PCT, -0.5, 0.0)
+    page.put_spec(ReachSpec(grade="3", levers=(Lever(sales, 6.0), Lever(costs, 1000.0))))
+    on_ink.run()
+    answer = page.found
+    assert answer is not None
+    assert answer.found.held == ("cost_of_sales",)
+    page.take.click()
+    assert made_of(on_ink, answer) == ("3", *answer.marks)
+    assert on_ink.draft.mark_on("cost_of_sales") == Mark("cost_of_sales", MoveKind.BY_PCT, 0.0)
+    on_ink.session.do(RubOut(on_ink.draft.active, ("cost_of_sales",)))
+    assert made_of(on_ink, answer)[0] == "4", "the held mark makes the difference"
+
+
+def test_a_plan_for_other_marks_cannot_be_taken(hands: StudyHands) -> None:
+    page = hands.page(ReachPage)
+    assert page.take.isEnabled()
+    hands.draft.mark(Mark("revenue", MoveKind.BY_PCT, -25.0))
+    assert not page.take.isEnabled()
+    hands.run()
+    assert page.take.isEnabled()
+
+
+def test_levers_that_the_scenario_marks_are_not_pulled_unless_ticked(hands: StudyHands) -> None:
+    page = hands.page(ReachPage)
+    listed = [plain(page.table.words(row, 0)) for row in range(page.table.rowCount())]
+    sales = hands.draft.targets.label("revenue")
+    at = listed.index(sales)
+    assert not page.table.ticked(at)
+    assert "revenue" not in {lever.range.target for lever in page.question().levers}
+    assert page.marked.text().startswith(f"{sales}: marked by the scenario.")
+    hands.draft.choose("")
+    assert not page.marked.isVisible()
+    assert "revenue" in {lever.range.target for lever in page.question().levers}, "offered anew, as nobody changed it"
+
+
+def test_a_form_that_was_changed_is_not_offered_anew(hands: StudyHands) -> None:
+    page = hands.page(ReachPage)
+    page.grade.choose("5")
+    before = page.question().levers
+    hands.draft.choose("")
+    assert page.question().levers == before
 
 
 def test_a_house_rule_that_caps_is_named_with_its_reason(stretched: StudyHands, house: HouseBook) -> None:

@@ -3,6 +3,9 @@
 import math
 from collections.abc import Sequence
 
+import numpy as np
+
+from creditdesk.case.pencil import Pencilled
 from creditdesk.case.pencil_commands import SetMarks
 from creditdesk.case.studies import starts_of
 from creditdesk.case.targets import mark_words
@@ -33,12 +36,36 @@ def bound_mark(target: str, kind: MoveKind, amount: float, start: float) -> Mark
 def put_marks(draft: PencilDraft, marks: Sequence[Mark], name: str = "") -> bool:
     """Record marks as one step: in the scenario at hand, else in a new one. Say whether it was.
 
-    ``name``: of the new scenario, that of its marks where it is "".
+    Marks that hold a target where the ink has it are kept, as others would move it. ``name``: of the new scenario,
+    that of the marks that move where it is "".
     """
     if draft.active != INK:
         return draft.do(SetMarks(draft.active, tuple(marks)))
-    moving = tuple(mark for mark in marks if not (mark.kind.relative and mark.amount == 0))
-    return draft.add(Scenario(name or ", ".join(marks_named(draft, moving)) or "What if", moving))
+    kept = _needed(draft, tuple(marks))
+    moving = [mark for mark in kept if not _rests(mark)]
+    return draft.add(Scenario(name or ", ".join(marks_named(draft, moving)) or "What if", kept))
+
+
+def _rests(mark: Mark) -> bool:
+    return mark.kind.relative and mark.amount == 0
+
+
+def _needed(draft: PencilDraft, marks: tuple[Mark, ...]) -> tuple[Mark, ...]:
+    """Leave out the marks at rest without which every figure and every ratio is the same."""
+    board = draft.board
+    if board is None:
+        return marks
+    for mark in filter(_rests, marks):
+        without = tuple(one for one in marks if one is not mark)
+        one, other = (board.scenario(Scenario(INK, some), opinions=False) for some in (marks, without))
+        if _same_figures(one, other):
+            marks = without
+    return marks
+
+
+def _same_figures(one: Pencilled, other: Pencilled) -> bool:
+    tables = ((side.standing.statements.values, side.standing.ratios.values) for side in (one, other))
+    return all(np.array_equal(first, second, equal_nan=True) for first, second in zip(*tables, strict=True))
 
 
 def marks_named(draft: PencilDraft, marks: Sequence[Mark]) -> list[str]:

@@ -144,6 +144,14 @@ class StudyPage(QWidget):
             self.offer()
         self.show_age()
 
+    @property
+    def stale(self) -> bool:
+        """Say whether the answer shown belongs to another question than the one at hand."""
+        try:
+            return self.answered is not None and not self.answered.same(self._at_hand())
+        except UserError:
+            return True
+
     def show_age(self) -> None:
         """Say where the answer shown belongs to another question than the one at hand."""
         if self.runner.running:
@@ -154,11 +162,11 @@ class StudyPage(QWidget):
             note(self.note, self.hint)
         else:
             try:
-                stale = not self.answered.same(self._at_hand())
+                self._at_hand()
             except UserError as error:
                 note(self.note, f"▲ {fault_words(error)}", "caution")
                 return
-            note(self.note, STALE if stale else "", "caution")
+            note(self.note, STALE if self.stale else "", "caution")
 
     def _at_hand(self) -> Asked:
         board = self.draft.board
@@ -220,6 +228,7 @@ class KeptPage(StudyPage, Generic[Spec]):
     def __init__(self, draft: PencilDraft) -> None:
         super().__init__(draft)
         self._offered: tuple[object, Sequence[StudySpec]] | None = None
+        self._as_offered: tuple[object, Spec] | None = None
         self.keeper = Keeper(draft, self.kind, self.question, wide=self.stacked)
         self.foot.addWidget(self.keeper)
         self.keeper.wanted.connect(self._on_wanted)
@@ -275,9 +284,28 @@ class KeptPage(StudyPage, Generic[Spec]):
             return
         kept = self.keeper.chosen
         try:
-            self.put_spec(kept if isinstance(kept, self.kind) else self.usual())
+            if isinstance(kept, self.kind):
+                self.put_spec(kept)
+            else:
+                self._put_usual()
         except UserError as error:
             self.fault.emit(" ".join(error.faults))
+
+    def _put_usual(self) -> None:
+        """Show what is usual for the scenario at hand, and remember that nobody has changed it. Raises UserError."""
+        self.put_spec(self.usual())
+        self._as_offered = self.draft.recorded, self.spec()
+
+    def _offer_again(self) -> None:
+        """Offer what is usual for another scenario or other marks, where the form is as it was offered."""
+        if self._as_offered is None or self.draft.board is None or self.keeper.chosen is not None:
+            return
+        scenario, spec = self._as_offered
+        try:
+            if scenario != self.draft.recorded and self.spec() == spec:
+                self._put_usual()
+        except UserError:
+            self._as_offered = None
 
     def offer_choices(self) -> None:
         """Offer targets and grades."""
@@ -285,6 +313,7 @@ class KeptPage(StudyPage, Generic[Spec]):
     def show_draft(self) -> None:
         """Show the draft as it stands."""
         self.keeper.show_kept()
+        self._offer_again()
         super().show_draft()
         self.keeper.show_state()
 

@@ -9,10 +9,11 @@ from PySide6.QtWidgets import QHBoxLayout, QPushButton, QTableWidgetItem
 from creditdesk.base.errors import UserError
 from creditdesk.case.reach_words import reach_words
 from creditdesk.case.studies import ReachAnswer
+from creditdesk.case.study_offers import house_levers
 from creditdesk.desk.blockactions import usual_mark
 from creditdesk.desk.fields import set_role
 from creditdesk.desk.frame import label
-from creditdesk.desk.pencil.draft import PencilDraft
+from creditdesk.desk.pencil.draft import INK, PencilDraft
 from creditdesk.desk.pencil.study_forms import Choice, FormTable, cell, tick_cell, typed_cell
 from creditdesk.desk.pencil.study_marks import put_marks
 from creditdesk.desk.pencil.study_page import Asked, KeptPage, Words
@@ -26,6 +27,7 @@ LEVER, LOW, HIGH, UNIT, COST = range(5)
 _HEADS = ("lever", "from", "to", "", "cost")
 _WIDTHS = {LEVER: 176, LOW: 50, HIGH: 52, UNIT: 48, COST: 48}
 _WIDTH = 392
+_UNDOES = "To tick it lets the plan undo that."
 _TAKE, _TAKE_BEST = "Take as pencil marks", "Take the best as pencil marks"
 
 
@@ -44,6 +46,7 @@ class ReachPage(KeptPage[ReachSpec]):
         self.words, self.take = Words("Way to the grade"), QPushButton(_TAKE)
         self._levers: list[tuple[Lever, bool]] = []
         self._found: ReachAnswer | None = None
+        self.marked = label("second", wrap=True)
         self._lay_out_page()
         self.grade.changed.connect(self.touched)
         self.table.touched.connect(self._on_touched)
@@ -70,6 +73,12 @@ class ReachPage(KeptPage[ReachSpec]):
         others = [lever for lever in self._house_levers() if lever.range.target not in pulled]
         self._levers = [*((lever, True) for lever in spec.levers), *((lever, False) for lever in others)]
         self._fill()
+        self._say_marked()
+
+    @property
+    def found(self) -> ReachAnswer | None:
+        """Return the answer shown."""
+        return self._found
 
     def show_result(self, asked: Asked, result: ReachAnswer) -> None:
         """Show the plan, or why there is none."""
@@ -82,12 +91,28 @@ class ReachPage(KeptPage[ReachSpec]):
 
     # Within
 
+    def show_age(self) -> None:
+        """Say where the answer is of another question; its plan can then not be taken, as it promises nothing."""
+        super().show_age()
+        self.take.setEnabled(not self.stale)
+
+    def show_draft(self) -> None:
+        """Show the draft as it stands; what it marks itself is said."""
+        super().show_draft()
+        self._say_marked()
+
     def _house_levers(self) -> Iterable[Lever]:
-        try:
-            offered = self.offers()
-        except UserError:
-            return ()
-        return offered[0].levers
+        board, draft = self.draft.board, self.draft
+        return () if board is None else house_levers(board, draft.session.house, draft.recorded or Scenario(INK))
+
+    def _say_marked(self) -> None:
+        """Say which levers the scenario marks itself."""
+        recorded = self.draft.recorded
+        own = {mark.target for mark in recorded.marks} if recorded is not None else set[str]()
+        levers = [lever.range.target for lever, _ in self._levers]
+        marked = [self.draft.targets.label(target) for target in levers if target in own]
+        self.marked.setText(f"{', '.join(marked)}: marked by the scenario. {_UNDOES}" if marked else "")
+        self.marked.setVisible(bool(marked))
 
     def _fill(self) -> None:
         self.table.fill([self._row(lever, wanted=wanted) for lever, wanted in self._levers])
@@ -155,5 +180,6 @@ class ReachPage(KeptPage[ReachSpec]):
         self.table.setFixedWidth(_WIDTH)
         self.form.addLayout(head)
         self.form.addWidget(self.table, 1)
+        self.form.addWidget(self.marked)
         self.answer.addWidget(self.words, 1)
         self.answer.addWidget(self.take, 0, Qt.AlignmentFlag.AlignLeft)
