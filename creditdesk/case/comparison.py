@@ -14,6 +14,7 @@ from creditdesk.case.stress_table import DEBT_SERVICE_COVER, INTEREST_COVER
 from creditdesk.case.studies import scenario_on
 from creditdesk.flow.book import DRIVERS, FlowBook
 from creditdesk.house.book import HouseBook
+from creditdesk.scenario.blocks import Progress, finish
 from creditdesk.statements.period import prior_index
 
 _COVERS = (INTEREST_COVER, DEBT_SERVICE_COVER)
@@ -82,9 +83,17 @@ def compare(board: PencilBoard, house: HouseBook, case: Case, names: Sequence[st
 
     Raises UserError ``study`` for an unknown scenario, and where the house book has no flow.
     """
+    return finish(comparing(board, house, case, names))
+
+
+def comparing(board: PencilBoard, house: HouseBook, case: Case, names: Sequence[str]) -> Progress[Comparison]:
+    """Compare as ``compare`` does, one scenario after the other."""
     if house.flow is None:
         raise UserError("study", "flow.toml: the house book has none, so there are no scenarios to compare")
-    worked = [board.scenario(scenario_on(case, name)) for name in names]
+    worked = []
+    for number, name in enumerate(names, 1):
+        worked.append(board.scenario(scenario_on(case, name)))
+        yield number / (len(names) + 1)
     ink, last = board.ink, board.ink.last_year
     columns = [
         *([] if last is None else [_last_column(last)]),

@@ -16,6 +16,9 @@ FloatArray = NDArray[np.float64]
 Slope = Callable[[Sequence[str]], Mapping[str, float]]
 """Give d PD per unit of each target, through flow, ratio and treatment; nan where there is none."""
 
+_AT_ONCE, _SLOPES_SHARE = 8, 0.2
+"""Slopes that are taken in one part, and the share of the work that all of them are."""
+
 
 @dataclass(frozen=True, slots=True)
 class Sensitivity:
@@ -39,7 +42,7 @@ def sensitivities(
     Ends BY an amount or per cent count from where ``base`` stands; where that is not known in their unit, nothing is
     known of the ends.
     """
-    slopes = slope(tuple(one.target for one in ranges))
+    slopes = yield from _slopes(slope, [one.target for one in ranges])
     start = evaluate(base)
     found = []
     for number, one in enumerate(ranges):
@@ -47,8 +50,17 @@ def sensitivities(
         changes = told - float(start.pd)
         effect = changes[int(np.nanargmax(np.abs(changes)))] if not np.isnan(changes).all() else np.nan
         found.append(Sensitivity(one, slopes[one.target], float(told[0]), float(told[1]), float(effect)))
-        yield (number + 1) / len(ranges)
+        yield _SLOPES_SHARE + (1.0 - _SLOPES_SHARE) * (number + 1) / len(ranges)
     return tuple(sorted(found, key=lambda one: (np.isnan(one.effect), -abs(one.effect), one.along.target)))
+
+
+def _slopes(slope: Slope, targets: Sequence[str]) -> Progress[dict[str, float]]:
+    """Take the slopes a few at a time, as all of them at once take longer than a stop may wait."""
+    found: dict[str, float] = {}
+    for first in range(0, len(targets), _AT_ONCE):
+        found |= slope(targets[first : first + _AT_ONCE])
+        yield _SLOPES_SHARE * min((first + _AT_ONCE) / len(targets), 1.0)
+    return found
 
 
 def _ends(evaluate: Evaluate, base: Moves, one: Range, starts: Starts) -> Progress[FloatArray]:

@@ -7,7 +7,7 @@ from PySide6.QtCore import Qt
 from PySide6.QtGui import QAction
 from PySide6.QtWidgets import QHeaderView, QMenu, QPushButton, QTableWidgetItem
 
-from creditdesk.case.comparison import Column, ColumnKind, Comparison, Row, RowKind, compare
+from creditdesk.case.comparison import Column, ColumnKind, Comparison, Row, RowKind, comparing
 from creditdesk.case.study_words import amount_words, pd_words
 from creditdesk.desk.fields import set_role
 from creditdesk.desk.frame import label
@@ -60,8 +60,7 @@ class ComparePage(StudyPage):
 
     def work(self, asked: Asked) -> Generator[float, None, Comparison]:
         """Work the scenarios out."""
-        yield 0.05
-        return compare(asked.board, asked.house, asked.case, [str(one[0]) for one in asked.spec])
+        return comparing(asked.board, asked.house, asked.case, [str(one[0]) for one in asked.spec])
 
     def show_draft(self) -> None:
         """Show the draft as it stands."""
