@@ -46,8 +46,7 @@ def _kind(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:
     if scope.legal_forms and borrower.legal_form not in scope.legal_forms:
         yield f"legal form {_words(borrower.legal_form)}: the model was made for {_listed(scope.legal_forms)}"
     if scope.countries and borrower.country not in scope.countries:
-        made_for = f"the model was made for borrowers in {_listed(scope.countries)}"
-        yield f"country {borrower.country}: {made_for} (country codes of ISO 3166)"
+        yield f"country code {borrower.country}: the model was made for borrowers in {_listed(scope.countries)}"
 
 
 def _sector(spec: ModelSpec, borrower: Borrower) -> Iterator[str]:

@@ -55,7 +55,7 @@ def test_every_reason_against_is_said_and_counted(house: HouseBook, sound: Case)
     offer = _offers(_with(sound, country="FR", sector="F", legal_form=LegalForm.OTHER), house)["northlight-sme"]
     assert len(offer.outside) == 3
     assert scope_words(offer) == "3 reasons against"
-    assert any("Country FR" in reason and "GB" in reason for reason in offer.outside)
+    assert any("Country code FR" in reason and "GB" in reason for reason in offer.outside)
     assert scope_words(_offers(sound, house)["northlight-sme"]) == "within its scope"
 
 

@@ -163,10 +163,7 @@ def test_the_country_is_named_and_a_scope_it_is_outside_of_says_so(
     assert sheet.models.facts.words("Scope check").startswith("Within its scope")
     _type(qtbot, sheet.identity.country.field, "NL")
     assert sheet.identity.country.words.text() == "Netherlands"
-    assert (
-        sheet.models.facts.words("Scope check")
-        == "▲ Country NL: the model was made for borrowers in GB (country codes of ISO 3166)."
-    )
+    assert sheet.models.facts.words("Scope check") == "▲ Country code NL: the model was made for borrowers in GB."
     assert sheet.models.table.item(0, 3).text() == "▲ 1 reason against"
     assert any(finding.place == "model.scope" for finding in window.session.standing.findings)
 

@@ -36,7 +36,7 @@ def test_a_borrower_inside_gives_no_sentence(make_spec: MakeSpec) -> None:
     ("changes", "words"),
     [
         ({"legal_form": "public_body"}, "legal form public body: the model was made for company, partnership"),
-        ({"country": "DE"}, "country DE: the model was made for borrowers in GB (country codes of ISO 3166)"),
+        ({"country": "DE"}, "country code DE: the model was made for borrowers in GB"),
         ({"sector": "G"}, "sector G (ISIC4): the model was made for sectors C, F"),
         ({"sector_scheme": "NACE2.1"}, "sector by NACE2.1: the model's sectors are stated in ISIC4 only"),
         (
