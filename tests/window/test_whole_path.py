@@ -170,7 +170,7 @@ def test_with_keys_alone(display: str, hands: Hands, drafts: Path, identity: Pat
         figures_are_right(window.wait(figures_stand))
         hands.press("alt+3")
         ratios_are_right(window.wait(lambda shown: shown["sheet"] == "Ratios"))
-        hands.press("alt+4", "ctrl+g")
+        hands.press("alt+5", "ctrl+g")
         dialog(window, hands, "Sign the memo as preparer")
         for field, text in (("Identity file", str(identity)), ("Passphrase", PASSPHRASE), ("Memo goes to", str(out))):
             typed_into(window, hands, field, text)
