@@ -114,6 +114,12 @@ QComboBox::drop-down { border: 0; width: 20px; }
 QComboBox::down-arrow { width: 0; height: 0; border-left: 4px solid $sheet; border-right: 4px solid $sheet;
   border-top: 5px solid $second_ink; }
 QComboBox QAbstractItemView { background: $sheet; border: 1px solid $rule; outline: 0; }
+QSlider::groove:horizontal { height: 4px; background: $rule; border-radius: 2px; }
+QSlider::handle:horizontal { width: 12px; margin: -6px 0; border-radius: 7px; background: $sheet;
+  border: 1.5px solid $second_ink; }
+QSlider::handle:horizontal:hover, QSlider::handle:horizontal:focus { border-color: $accent; }
+QSlider::handle:horizontal:focus { background: $selection; }
+QSlider::handle:horizontal:disabled { border-color: $rule; }
 QTableView { background: $paper; alternate-background-color: $paper; border: 0; gridline-color: transparent;
   outline: 0; }
 QTableView::item { border-bottom: 1px solid $rule; padding: 0 7px; }

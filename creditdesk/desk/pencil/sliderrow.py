@@ -18,15 +18,6 @@ from creditdesk.desk.pencil.typed import KIND_WORDS, read_mark, write_mark
 from creditdesk.flow.moves import MoveKind
 from creditdesk.scenario.marks import Mark
 
-_STYLE = """
-QSlider::groove:horizontal { height: 4px; background: palette(mid); border-radius: 2px; }
-QSlider::handle:horizontal { width: 12px; margin: -6px 0; border-radius: 7px; background: palette(base);
-  border: 1.5px solid palette(placeholder-text); }
-QSlider::handle:horizontal:hover, QSlider::handle:horizontal:focus { border-color: palette(link); }
-QSlider::handle:horizontal:focus { background: palette(highlight); }
-QSlider::handle:horizontal:disabled { border-color: palette(mid); }
-"""
-
 
 class MarkSlider(QSlider):
     """Slide by mouse and arrows. ``let_go``: button or key is up again; ``dropped``: Escape."""
@@ -40,7 +31,6 @@ class MarkSlider(QSlider):
         self.setPageStep(5)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Fixed)
-        self.setStyleSheet(_STYLE)
 
     def mouseReleaseEvent(self, event: QMouseEvent) -> None:
         """Let go."""
