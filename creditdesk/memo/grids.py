@@ -10,6 +10,7 @@ from reportlab.pdfbase.pdfmetrics import stringWidth
 from reportlab.platypus import Flowable, Table
 
 from creditdesk.memo.blocks import Cell, Grid, Pairs, Row, RowKind, Tone
+from creditdesk.memo.cutting import cut_to_lines
 from creditdesk.memo.structure import Element
 from creditdesk.memo.styles import CELL, CELL_SECOND, INKS, ITALIC, NOTE, SANS, SEMIBOLD, SEMIBOLD_ITALIC, marked_up
 from creditdesk.memo.tables import Command, make_table
@@ -22,6 +23,9 @@ _WIDEST_WORDS = 330.0
 _SIZE = 7.8
 _SMALLEST = 5.4
 _COMPANY = 3
+_LINES_A_CELL = 16
+"""Lines of one cell; as many rows as are kept together still stand on a page with that."""
+_CUT = " … cut here, in full in the attached case"
 _TONES = {
     Tone.PLAIN: (SANS, INKS.ink),
     Tone.STRONG: (SEMIBOLD, INKS.ink),
@@ -64,7 +68,7 @@ def grid_flowables(grid: Grid, width: float) -> list[Flowable]:
 def pairs_flowables(pairs: Pairs, width: float) -> list[Flowable]:
     """Return facts with their names as a table of two columns."""
     widths = [0.24 * width, 0.76 * width]
-    rows = [[_words(name, CELL_SECOND), _words(text, CELL)] for name, text in pairs.facts]
+    rows = [[_words(name, CELL_SECOND, widths[0]), _words(text, CELL, widths[1])] for name, text in pairs.facts]
     style: list[Command] = [
         ("FONT", (0, 0), (-1, -1), SANS, _SIZE),
         ("VALIGN", (0, 0), (-1, -1), "TOP"),
@@ -113,13 +117,13 @@ def _head(grid: Grid, column: int, width: float, size: float) -> object:
         return printable(text)
     style = ParagraphStyle("head", parent=CELL, fontName=SEMIBOLD, fontSize=size, leading=size * 1.2)
     style.alignment = TA_LEFT if column in grid.words else TA_RIGHT
-    return _words(text, style)
+    return _words(text, style, width)
 
 
 def _cells(row: Row, grid: Grid, widths: Sequence[float], size: float) -> list[object]:
     empty = [""] * len(grid.heads)
     if row.kind is RowKind.NOTE:
-        return [_words(row.cells[0].text, CELL_SECOND), *empty[1:]]
+        return [_words(row.cells[0].text, CELL_SECOND, sum(widths)), *empty[1:]]
     if row.kind is RowKind.GROUP:
         return [printable(row.cells[0].text), *empty[1:]]
     make = partial(_cell, row=row, grid=grid, widths=widths, size=size)
@@ -141,7 +145,7 @@ def _cell(cell: Cell, column: int, *, row: Row, grid: Grid, widths: Sequence[flo
         size = max(0.97 * size * room / longest, _SMALLEST)
     style = ParagraphStyle("cell", parent=CELL, fontName=font, textColor=colour, fontSize=size, leading=size * 1.22)
     style.alignment = TA_LEFT if column in grid.words else TA_RIGHT
-    return _words(cell.text, style)
+    return _words(cell.text, style, widths[column] - indent)
 
 
 def _look(cell: Cell, row: Row) -> tuple[str, Color]:
@@ -155,8 +159,13 @@ def _look(cell: Cell, row: Row) -> tuple[str, Color]:
     return font, colour
 
 
-def _words(text: str, style: ParagraphStyle) -> TaggedParagraph:
-    return TaggedParagraph(marked_up(text), style)
+def _words(text: str, style: ParagraphStyle, width: float) -> TaggedParagraph:
+    """Set a text as a cell of ``width``; one so long that its row could not stand on a page with others is cut."""
+
+    def set_as(words: str) -> TaggedParagraph:
+        return TaggedParagraph(marked_up(words), style)
+
+    return set_as(cut_to_lines(set_as, text, width - 2 * _PADDING, _LINES_A_CELL, _CUT)[0])
 
 
 def _frame_commands(grid: Grid, size: float) -> list[Command]:

@@ -9,7 +9,7 @@ import pikepdf
 import pytest
 
 from creditdesk.case.standing import GradeStanding
-from creditdesk.memo.blocks import Cell, Grid, MemoContent, Pairs, Row, Section, Spot
+from creditdesk.memo.blocks import Cell, Grid, MemoContent, Pairs, Row, Section, Spot, note_row
 from creditdesk.memo.grids import grid_flowables
 from creditdesk.memo.styles import MARGIN, PAGE_HEIGHT, PAGE_WIDTH, TEXT_WIDTH
 from tests.contents import WORDS, content, figures, first_page
@@ -177,6 +177,15 @@ def test_large_amounts_in_many_periods_do_not_touch(periods: int) -> None:
     lines = page_lines(pdf, 1)
     assert not [(one, two) for one, two in combinations(lines, 2) if _overlap(one, two)]
     assert page_texts(pdf)[1].count("123 456 789 012") == 3 * periods
+
+
+def test_a_cell_as_long_as_a_book_is_cut_and_says_where_it_stands_in_full() -> None:
+    book = "word " * 4000
+    row = Row((Cell("1"), Cell("Inventories"), Cell(book)))
+    grid = Grid("Findings", ("Weight", "Where", "What"), (row,) * 4, (0.7, 1.6, 4.2), words=(0, 1, 2))
+    noted = Grid("Stress events", ("Event", "PD"), (Row((Cell("One"), Cell("1"))), note_row(book)) * 3, (3, 1))
+    texts = page_texts(memo_bytes(content(sections=(Section("Long", (grid, noted)),)), standing()))
+    assert "".join(texts).count("in full in the attached case") == 7
 
 
 def test_markup_and_foreign_characters_in_a_text_are_printed_not_run() -> None:
