@@ -88,7 +88,7 @@ def open_pencil(qtbot: QtBot, house: HouseBook, case: Case, size: tuple[int, int
     make_application()
     session = Session(house, case, Path("case.deskcase"))
     sheet = PencilSheet(PencilDraft(session, session))
-    qtbot.addWidget(sheet)
+    qtbot.addWidget(sheet, before_close_func=lambda _: sheet.stop())
     hands = Hands(qtbot, session, sheet)
     session.changed.connect(lambda: sheet.show_standing(session.case, session.standing))
     sheet.fault.connect(hands.faults.append)
