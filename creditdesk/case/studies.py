@@ -135,7 +135,8 @@ def sensitivity(
 
 def starts_of(board: PencilBoard, house: HouseBook, scenario: Scenario, ranges: Sequence[Range]) -> Starts:
     """Say where a scenario stands in ranges: by its marks, or by what they move; nan where none tells."""
-    moves, after = moves_of(scenario.marks), board.scenario(scenario, opinions=False).standing
+    moves = moves_of(scenario.marks)
+    after = board.scenario(scenario, opinions=False).standing if moves else board.ink
     found = {}
     for one in ranges:
         move = moves.get(one.target)

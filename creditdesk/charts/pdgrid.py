@@ -201,7 +201,9 @@ def _frame(picture: GridPicture, size: Size, points: float) -> GridFrame:
     left = max((text_width(words, points) for words in labels), default=0.0) + 6
     ends = [picture.across.write(at) for at in sides[0]]
     left = max(left, text_width(ends[0], points) / 2)
-    key = scale_for((float(pd) for pd in grid.pd.ravel()), (bottom, max(top, bottom + 40)))
+    known = grid.pd[np.isfinite(grid.pd)]
+    extremes = [float(known.min()), float(known.max())] if known.size else []
+    key = scale_for(extremes, (bottom, max(top, bottom + 40)))
     numbers = max((text_width(words, points) for _, words in key.ticks(points)), default=0.0)
     room = max(_KEY_WIDTH + numbers + 20, text_width(ends[1], points) / 2)
     plot = Box(left, bottom, max(size[0] - room, left + 40), max(top, bottom + 40))

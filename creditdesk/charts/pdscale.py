@@ -37,9 +37,9 @@ class PdScale:
         inside = [pd for pd in _ROUND if self.low * (1 - 1e-9) <= pd <= self.high * (1 + 1e-9)]
         kept: list[tuple[float, float, str]] = []
         for pd in (*(one for one in _PREFERRED if one in inside), *inside):
-            half = text_width(round_text(pd), size) / 2 + 0.5 * size
-            if all(abs(self.at(pd) - at) >= half + other for at, other, _ in kept):
-                kept.append((self.at(pd), half, round_text(pd)))
+            half, place = text_width(round_text(pd), size) / 2 + 0.5 * size, self.at(pd)
+            if all(abs(place - at) >= half + other for at, other, _ in kept):
+                kept.append((place, half, round_text(pd)))
         return sorted((at, words) for at, _, words in kept)
 
 

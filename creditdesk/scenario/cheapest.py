@@ -21,7 +21,7 @@ _STILL = 1e-8
 """Share of the box's half width that a step has to gain in cost."""
 _SAMPLES = 24
 """Places around a point at which slopes are taken: on either side of every kink nearby."""
-_LIBRARY = (
+SOLVER_LIBRARY = (
     "numpy.f2py", "numpy.testing", "scipy", "scipy.special", "scipy.fft", "scipy.linalg", "scipy.sparse.linalg",
     "scipy.spatial.transform", "scipy.optimize",
 )  # fmt: skip
@@ -30,7 +30,7 @@ _LIBRARY = (
 
 def load_solver() -> Generator[None, None, None]:
     """Import the solver part by part: the whole of it takes longer than a stop may wait, the first time."""
-    for part in _LIBRARY:
+    for part in SOLVER_LIBRARY:
         import_module(part)
         yield
 

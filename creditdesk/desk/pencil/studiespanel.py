@@ -3,7 +3,7 @@
 from collections.abc import Callable, Sequence
 
 from PySide6.QtCore import QSize, Qt, Signal
-from PySide6.QtGui import QKeyEvent, QKeySequence, QShortcut
+from PySide6.QtGui import QKeyEvent, QKeySequence, QShortcut, QShowEvent
 from PySide6.QtWidgets import (
     QButtonGroup,
     QHBoxLayout,
@@ -24,10 +24,12 @@ from creditdesk.desk.pencil.study_compare import ComparePage
 from creditdesk.desk.pencil.study_grid import GridPage
 from creditdesk.desk.pencil.study_page import StudyPage
 from creditdesk.desk.pencil.study_reach import ReachPage
+from creditdesk.desk.pencil.study_runner import fetch_ahead
 from creditdesk.desk.pencil.study_sensitivity import SensitivityPage
 from creditdesk.desk.pencil.study_spread import SpreadPage
 from creditdesk.desk.pencil.study_stress import StressPage
 from creditdesk.desk.session import Session
+from creditdesk.desk.worker import Jobs, Progress
 
 _STEPS = {Qt.Key.Key_Left: -1, Qt.Key.Key_Right: 1}
 _RUN_KEYS = "Ctrl+Return"
@@ -66,6 +68,8 @@ class StudiesPanel(QWidget):
         self.session, self.draft = session, draft
         self._palette: Palette | None = None
         self._pages: dict[type[StudyPage], StudyPage] = {}
+        self._ahead: Progress | None = None
+        self._jobs = Jobs(self)
         self.names: list[QPushButton] = []
         self.stack = QStackedWidget()
         self.run_button, self.progress, self.size_button = QPushButton(_RUN), QProgressBar(), QPushButton(_LARGER)
@@ -105,8 +109,18 @@ class StudiesPanel(QWidget):
         """Say whether no study runs."""
         return not any(page.runner.running for page in self._pages.values())
 
+    def showEvent(self, event: QShowEvent) -> None:
+        """Fetch what the studies take, the first time that they come into sight."""
+        super().showEvent(event)
+        if self._ahead is None:
+            ahead = self._ahead = Progress()
+            self._jobs.start(lambda: fetch_ahead(ahead), lambda _: None, lambda _: None)
+
     def stop(self) -> None:
         """Stop all studies and wait for their workers, because the window closes."""
+        if self._ahead is not None:
+            self._ahead.stop()
+        self._jobs.stop()
         for page in self._pages.values():
             page.runner.close()
 

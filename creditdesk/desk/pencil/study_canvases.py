@@ -59,6 +59,7 @@ class StudyChart(Generic[Shown]):
     def show(self, shown: Shown, numbers: Callable[[], str]) -> None:
         """Draw a study; ``numbers``: gives what is copied of it, tab-separated, with points as decimal marks."""
         self._shown, self._numbers = shown, numbers
+        self._take_place()
         self._chart.show(shown)
         self.canvas.refresh()
 
@@ -66,6 +67,13 @@ class StudyChart(Generic[Shown]):
     def shown(self) -> Shown | None:
         """Return what is drawn."""
         return self._shown
+
+    def _take_place(self) -> None:
+        """Take the size there is before drawing: to draw at another and then again would be twice the work."""
+        parent = self.canvas.parentWidget()
+        layout = parent.layout() if parent is not None else None
+        if layout is not None:
+            layout.activate()
 
     def _localised(self, decimal: str) -> str:
         return self._numbers().replace(".", decimal)

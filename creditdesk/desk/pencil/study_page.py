@@ -129,7 +129,6 @@ class StudyPage(QWidget):
             note(self.note, f"▲ {fault_words(error)}", "caution")
             return
         self._asked = asked
-        note(self.note, "")
         self.runner.start(lambda: self.work(asked))
 
     def run_once(self) -> None:
@@ -186,8 +185,8 @@ class StudyPage(QWidget):
     def _on_done(self, result: object) -> None:
         if self._asked is not None:
             self.answered = self._asked
-            self.show_answer(self._asked, result)
             self.show_age()
+            self.show_answer(self._asked, result)
 
     # Making
 

@@ -1,7 +1,7 @@
 """Run a study in a worker: told how far it is, stopped between two of its parts, at rest before the next begins."""
 
 import sys
-from collections.abc import Callable, Generator
+from collections.abc import Callable, Generator, Sequence
 from importlib import import_module
 from typing import Any
 
@@ -11,6 +11,7 @@ from creditdesk.base.errors import UserError
 from creditdesk.desk.fetching import fetching
 from creditdesk.desk.pencil.study_canvases import LIBRARY
 from creditdesk.desk.worker import Jobs, Progress, Stopped
+from creditdesk.scenario.cheapest import SOLVER_LIBRARY
 
 Work = Callable[[], Generator[float, None, Any]]
 """Begin a study: a generator of the share done, whose value is the result."""
@@ -48,9 +49,13 @@ class StudyRunner(QObject):
         def finished(result: object) -> None:
             if self._ended(progress):
                 self.done.emit(result)
+                self.changed.emit()
 
         def failed(error: BaseException) -> None:
-            if not self._ended(progress) or isinstance(error, Stopped):
+            if not self._ended(progress):
+                return
+            self.changed.emit()
+            if isinstance(error, Stopped):
                 return
             if not isinstance(error, UserError):
                 raise error
@@ -76,7 +81,6 @@ class StudyRunner(QObject):
         if self._progress is not progress:
             return False
         self._progress = None
-        self.changed.emit()
         return True
 
     def _on_told(self, progress: Progress, done: int) -> None:
@@ -86,10 +90,7 @@ class StudyRunner(QObject):
 
 def _driven(begin: Work, progress: Progress) -> object:
     """Drive a study to its end, between two parts looking whether it is to stop; the charts are fetched first."""
-    if any(name not in sys.modules for name in LIBRARY):
-        with fetching():
-            for name in LIBRARY:
-                import_module(name)
+    _fetch(LIBRARY, progress)
     work = begin()
     while True:
         try:
@@ -97,3 +98,18 @@ def _driven(begin: Work, progress: Progress) -> object:
         except StopIteration as end:
             return end.value
         progress.step("", round(100 * share), 100)
+
+
+def fetch_ahead(progress: Progress) -> None:
+    """Fetch in a worker what studies take: they begin at once then, and the solver of one of them stops none."""
+    _fetch((*LIBRARY, *SOLVER_LIBRARY), progress)
+
+
+def _fetch(names: Sequence[str], progress: Progress) -> None:
+    """Import libraries that are not there yet, between two looking whether to stop."""
+    missing = [name for name in names if name not in sys.modules]
+    if missing:
+        with fetching():
+            for name in missing:
+                progress.step("", 0, 100)
+                import_module(name)
