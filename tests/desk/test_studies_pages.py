@@ -18,6 +18,7 @@ from creditdesk.case.pencil import PencilBoard
 from creditdesk.case.pencil_commands import RubOut
 from creditdesk.case.stress_table import stress_table
 from creditdesk.case.studies import ReachAnswer, run_study, sensitivity
+from creditdesk.case.study_words import side_words
 from creditdesk.charts.pointing import Step
 from creditdesk.desk.pencil.study_breakeven import AT, DOWN, LIMIT, NOW, UP, BreakEvenPage
 from creditdesk.desk.pencil.study_compare import ComparePage
@@ -171,6 +172,23 @@ def test_a_click_puts_the_pencil_where_it_breaks_and_a_hair_further_it_is_broken
     hands.draft.mark(replace(mark, amount=mark.amount - 0.01))
     assert hands.draft.pencilled is not None
     assert hands.draft.pencilled.standing.grade.final == "8"
+
+
+def test_sales_result_and_rate_are_each_answered_at_one_click(hands: StudyHands, house: HouseBook) -> None:
+    page = hands.page(BreakEvenPage)
+    assert list(page.ways) == ["revenue", "operating_result", "interest_rate"]
+    assert [target for target, way in page.ways.items() if way.isChecked()] == ["revenue"]
+    for target, way in page.ways.items():
+        way.click()
+        hands.wait()
+        assert page.question().along.target == target
+        assert [one for one, other in page.ways.items() if other.isChecked()] == [target]
+        found = told(run_study(hands.board, house, hands.case, page.question())).result
+        assert isinstance(found, BreakEven)
+        rows = [page.table.words(row, DOWN) for row in range(page.table.rowCount())]
+        shown = hands.draft.targets.find(target)
+        assert shown is not None
+        assert rows == [side_words(one, one.down, shown, (found.spec.along, found.start)) for one in found.breaks]
 
 
 def test_enter_on_a_cell_that_leads_nowhere_does_nothing(hands: StudyHands) -> None:

@@ -1,14 +1,16 @@
 """How far until it breaks: one thing that moves, each limit's end on either side, and the way there by a click."""
 
 from collections.abc import Sequence
+from functools import partial
 
 import msgspec
-from PySide6.QtWidgets import QTableWidgetItem
+from PySide6.QtWidgets import QHBoxLayout, QPushButton, QTableWidgetItem
 
 from creditdesk.base.errors import UserError
 from creditdesk.case.study_words import amount_label, amount_words, limit_words, side_words
 from creditdesk.case.targets import Target
 from creditdesk.desk.blockactions import usual_mark
+from creditdesk.desk.fields import set_role
 from creditdesk.desk.pencil.draft import PencilDraft
 from creditdesk.desk.pencil.study_forms import Choice, FormTable, RangeForm, cell, tick_cell, typed_cell
 from creditdesk.desk.pencil.study_marks import bound_mark, put_marks
@@ -40,12 +42,17 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
         self.table = FormTable("How far until it breaks", _HEADS)
         self._limits: list[tuple[Limit, bool]] = []
         self._found: BreakEven | None = None
+        self.ways: dict[str, QPushButton] = {}
+        self._ways = QHBoxLayout()
+        self._ways.setSpacing(0)
         self.form.addWidget(self.along)
         self.form.addStretch(1)
         self.form.addWidget(self.more)
+        self.answer.addLayout(self._ways)
         self.answer.addWidget(self.table, 1)
         self.table.share_width(_WIDTHS, (DOWN, UP))
         self.along.changed.connect(self.touched)
+        self.along.changed.connect(self._show_way)
         self.along.faulted.connect(self.fault)
         self.more.changed.connect(self._on_more)
         self.table.touched.connect(self._on_touched)
@@ -61,6 +68,7 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
         above = [(Limit(LimitKind.ABOVE, key), f"{amount_label(key, house)} above") for key in known]
         self.more.offer([("", _ADD), *grades, *below, *above])
         self.more.put("")
+        self._offer_ways()
 
     def spec(self) -> BreakEvenSpec:
         """Return what is asked in the form."""
@@ -72,6 +80,7 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
     def put_spec(self, spec: BreakEvenSpec) -> None:
         """Show a break-even in the form; limits that stood there unticked stay."""
         self.along.put(spec.along)
+        self._show_way()
         others = [(limit, False) for limit, _ in self._limits if limit not in spec.limits]
         self._limits = [*((limit, True) for limit in spec.limits), *others]
         self._fill()
@@ -82,6 +91,46 @@ class BreakEvenPage(KeptPage[BreakEvenSpec]):
         self._fill()
 
     # Within
+
+    def _offer_ways(self) -> None:
+        """Offer at one click what is moved most often; each is answered at once, by the limits as they are ticked."""
+        while (item := self._ways.takeAt(0)) is not None:
+            if (old := item.widget()) is not None:
+                old.deleteLater()
+        self.ways = {}
+        for spec in self._offered_ways():
+            target = spec.along.target
+            button = self.ways[target] = QPushButton(self.draft.targets.label(target))
+            button.setCheckable(True)
+            button.setToolTip(f"How far {self.draft.targets.label(target)} may move until it breaks")
+            set_role(button, "small")
+            button.clicked.connect(partial(self._go, target))
+            self._ways.addWidget(button)
+        self._ways.addStretch(1)
+
+    def _offered_ways(self) -> Sequence[BreakEvenSpec]:
+        try:
+            return self.offers()
+        except UserError:
+            return ()
+
+    def _go(self, target: str) -> None:
+        """Ask the same of another thing that moves, over its usual range."""
+        for spec in self._offered_ways():
+            if spec.along.target == target:
+                self.along.put(spec.along)
+                self._show_way()
+                self.touched()
+                self.run()
+
+    def _show_way(self) -> None:
+        """Show which of the things offered is the one in the form."""
+        try:
+            target = self.along.range.target
+        except UserError:
+            target = ""
+        for key, button in self.ways.items():
+            button.setChecked(key == target)
 
     def _fill(self) -> None:
         self.table.fill([self._row(limit, wanted=wanted) for limit, wanted in self._limits])

@@ -180,6 +180,6 @@ class ReachPage(KeptPage[ReachSpec]):
         self.table.setFixedWidth(_WIDTH)
         self.form.addLayout(head)
         self.form.addWidget(self.table, 1)
-        self.form.addWidget(self.marked)
         self.answer.addWidget(self.words, 1)
+        self.answer.addWidget(self.marked)
         self.answer.addWidget(self.take, 0, Qt.AlignmentFlag.AlignLeft)
