@@ -218,9 +218,6 @@ class CaseView(QObject):
         second = self.standing.contributions_place
         second.setUpdatesEnabled(False)  # to paint a chart for the first time takes a turn of its own
         self._soon(partial(second.setUpdatesEnabled, True))
-        second = self.standing.contributions_place
-        second.setUpdatesEnabled(False)  # to paint a chart for the first time takes a turn of its own
-        self._soon(partial(second.setUpdatesEnabled, True))
         self._window.ready.emit()
         self._soon(self._fetch_sheets, _PAINT_MILLISECONDS)
 
