@@ -1,5 +1,6 @@
 """The PD curve: where the borrower stands on the fitted curve, among sample, grades and its own past."""
 
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from matplotlib.backend_bases import Event
@@ -11,6 +12,7 @@ from creditdesk.case.standing import Curve, Standing
 from creditdesk.charts.backdrop import curve_boxes, draw_backdrop
 from creditdesk.charts.board import Board
 from creditdesk.charts.borrower import draw_borrower, write_reason
+from creditdesk.charts.fan import SPREAD, draw_fan
 from creditdesk.charts.frame import Frame, make_frame
 from creditdesk.charts.pencil import PENCIL, draw_point, taken_by
 from creditdesk.charts.style import Size, Type, house_style, new_figure, type_size, wrap
@@ -37,6 +39,7 @@ class CurveChart:
         self._obstacles: list[Box] = []
         self._pencil: Standing | None = None
         self._around: list[Box] = []
+        self._spread: Sequence[float] = ()
         figure.canvas.mpl_connect("resize_event", self._on_resize)
 
     def show(self, standing: Standing) -> None:
@@ -53,11 +56,26 @@ class CurveChart:
             with house_style():
                 draw_point(self.board, self.frame, pencil, self._standing, (self._palette, self._around))
 
+    def show_spread(self, scores: Sequence[float]) -> None:
+        """Draw the spread of the estimate by quantiles of its score, see ``draw_fan``; none take it away."""
+        self._spread = scores
+        self._draw_spread()
+        self.show_pencil(self._pencil)
+
     def _draw(self, standing: Standing) -> None:
         self.board.clear(BORROWER)
         self._draw_ink(standing)
-        self._around = [*self._obstacles, *taken_by(self.board.marks(BORROWER))]
+        self._draw_spread()
         self.show_pencil(self._pencil)
+
+    def _draw_spread(self) -> None:
+        self.board.clear(SPREAD)
+        around = [*self._obstacles, *taken_by(self.board.marks(BORROWER))]
+        curve = self._standing.curve if self._standing is not None else None
+        if self._spread and self.frame is not None and curve is not None:
+            with house_style():
+                draw_fan(self.board, self.frame, curve, self._spread, (self._palette, around))
+        self._around = [*around, *taken_by(self.board.marks(SPREAD))]
 
     def _draw_ink(self, standing: Standing) -> None:
         if standing.curve is None:

@@ -193,6 +193,7 @@ def _draw_bars(board: Board, picture: SpreadPicture, frame: SpreadFrame, palette
 def _draw_levels(board: Board, picture: SpreadPicture, frame: SpreadFrame, palette: Palette) -> None:
     """Draw the 5th, 50th and 95th percentile as lines with their PD, and the scenario's own place as a dot."""
     size = type_size(palette)
+    _draw_halves(board, picture, frame, palette)
     wanted = [(level, float(pd)) for level, pd in zip(LEVELS, picture.spread.quantiles, strict=True)]
     shown = [(level, pd) for level, pd in wanted if level in (0.05, 0.5, 0.95) and not np.isnan(pd)]
     centres = _spread_out([frame.scale.at(pd) for _, pd in shown], text_width("median", size) + 10, frame.scale)
@@ -206,6 +207,14 @@ def _draw_levels(board: Board, picture: SpreadPicture, frame: SpreadFrame, palet
         board.text(LAYER, (centre, frame.top + (0.9 + LINE_HEIGHT * 0.9) * size), name, under)
     if not np.isnan(picture.pd):
         board.dot(LAYER, (frame.scale.at(picture.pd), frame.bottom), 3.6, Pen(palette.ink), Pen(palette.sheet), z=4)
+
+
+def _draw_halves(board: Board, picture: SpreadPicture, frame: SpreadFrame, palette: Palette) -> None:
+    """Draw on the line of PDs the stroke that the curve has: 5th to 95th percentile, the middle half thicker."""
+    places = [frame.scale.at(float(pd)) for pd in picture.spread.quantiles if not np.isnan(pd)]
+    for ends, width in zip(((0, -1), (1, -2)), (2.4, 5.0), strict=True) if len(places) == len(LEVELS) else ():
+        points = [(places[end], frame.bottom) for end in ends]
+        board.line(LAYER, points, Pen(palette.pencil, width), z=2.2)
 
 
 def _spread_out(places: Sequence[float], apart: float, scale: PdScale) -> list[float]:

@@ -1,6 +1,6 @@
 """Charts on Qt canvases; this module imports matplotlib and is itself imported off the main thread."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import matplotlib as mpl
@@ -323,6 +323,11 @@ class ChartCanvases:
         self._contributions_chart.show_pencil(pencil, held=held)
         for canvas in (self.curve, self.contributions):
             canvas.draw_idle()
+
+    def show_spread(self, scores: Sequence[float]) -> None:
+        """Draw the spread of the estimate along the curve, by quantiles of its score; none take it away."""
+        self._curve_chart.show_spread(scores)
+        self.curve.refresh()
 
     def show_moved(self, *, moved: bool) -> None:
         """Draw what ``moved`` since last year, or the contributions from the reference borrower."""

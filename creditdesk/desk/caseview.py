@@ -178,6 +178,7 @@ class CaseView(QObject):
         for moved in (draft.changed, draft.moved):
             moved.connect(partial(self._show_pencil, draft))
         self.standing.put_away_asked.connect(partial(draft.choose, INK))
+        sheet.studies.spread_found.connect(self.standing.show_spread)
         sheet.restore_split(self._window.settings.split("pencil"))
         return sheet
 

@@ -109,6 +109,7 @@ class StandingColumn(QWidget):
         self.verdict, self.findings, self.look = Verdict(), FindingsList(), FactorLook()
         self.pencil_findings, self.pencil_heading = FindingsList(), label("heading", "In pencil")
         self._pencil: Pencilled | None = None
+        self._spread: Sequence[float] = ()
         self.switch, self.switch_note = WaySwitch(), label("second", wrap=True)
         self.heading = label("heading", _REFERENCE_HEADING, wrap=True)
         self.cautions = CautionsList()
@@ -152,6 +153,12 @@ class StandingColumn(QWidget):
         if turned:
             self.verdict.settle()
             self._fit_curve()
+
+    def show_spread(self, scores: Sequence[float]) -> None:
+        """Show on the curve how far the estimate spreads, by quantiles of its score; none take it away."""
+        self._spread = scores
+        if self._canvases is not None:
+            self._canvases.show_spread(scores)
 
     def _show_pencil_findings(self, pencilled: "Pencilled | None") -> None:
         """List what the marks meet, each leading to its row in pencil."""
@@ -234,6 +241,7 @@ class StandingColumn(QWidget):
             if self._canvases.moved != moved:
                 self._canvases.show_moved(moved=moved)
             self._canvases.show_standing(self._standing)
+            self._canvases.show_spread(self._spread)
             self._canvases.show_pencil(self._pencil.standing if self._pencil is not None else None)
             if self.look.look is not None:
                 self.look.show_look(self._canvases.look(self.look.look.key))

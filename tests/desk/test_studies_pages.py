@@ -442,6 +442,22 @@ def test_the_spread_is_the_case_s_own_and_the_same_again(hands: StudyHands, hous
     assert not np.array_equal(page._found.quantiles, found.quantiles)
 
 
+def test_the_curve_is_told_of_the_spread_as_long_as_it_is_that_of_the_scenario(hands: StudyHands) -> None:
+    told_of: list[tuple[float, ...]] = []
+    hands.panel.spread_found.connect(told_of.append)
+    page = hands.page(SpreadPage)
+    answer = told(run_study(hands.board, hands.session.house, hands.case, page.question())).result
+    assert isinstance(answer, Spread)
+    assert told_of == [tuple(answer.scores.tolist())]
+    hands.page(GridPage)
+    hands.draft.choose("")
+    assert told_of[1:] == [()]
+    hands.draft.choose(DOWNTURN)
+    assert told_of[2:] == told_of[:1], "of the same figures and marks"
+    hands.draft.mark(Mark("revenue", MoveKind.BY_PCT, -25.0))
+    assert told_of[3:] == [()]
+
+
 def test_inputs_shapes_and_correlations_are_asked_for(on_ink: StudyHands) -> None:
     page = on_ink.page(SpreadPage)
     shape = page.table.cellWidget(0, SHAPE)

@@ -58,16 +58,19 @@ class _Name(QPushButton):
 class StudiesPanel(QWidget):
     """Show the studies; one that has no answer yet is begun when its name is chosen.
 
-    ``fault``: a sentence for the status line. A page is made when it is first chosen.
+    ``fault``: a sentence for the status line. ``spread_found``: quantiles of the score where the spread of the scenario
+    at hand is known, else none. A page is made when it is first chosen.
     """
 
     fault = Signal(str)
+    spread_found = Signal(tuple)
 
     def __init__(self, session: Session, draft: PencilDraft) -> None:
         super().__init__()
         self.session, self.draft = session, draft
         self._palette: Palette | None = None
         self._pages: dict[type[StudyPage], StudyPage] = {}
+        self._spread: tuple[float, ...] = ()
         self._ahead: Progress | None = None
         self._jobs = Jobs(self)
         self.names: list[QPushButton] = []
@@ -90,6 +93,14 @@ class StudiesPanel(QWidget):
         """Show the draft as it stands; pages that are not in sight follow when they are."""
         self.page.show_draft()
         self._show_running()
+        self._tell_spread()
+
+    def _tell_spread(self) -> None:
+        page = self._pages.get(SpreadPage)
+        scores = page.scores if isinstance(page, SpreadPage) else ()
+        if scores != self._spread:
+            self._spread = scores
+            self.spread_found.emit(scores)
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""
@@ -171,6 +182,8 @@ class StudiesPanel(QWidget):
             if self._palette is not None:
                 page.recolour(self._palette)
             self._pages[kind] = page
+            if isinstance(page, SpreadPage):
+                page.shown.connect(self._tell_spread)
             self.stack.addWidget(page)
         self.stack.setCurrentWidget(self._pages[kind])
         self._show_running()

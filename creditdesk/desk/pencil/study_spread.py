@@ -5,6 +5,8 @@ from itertools import combinations
 from typing import TYPE_CHECKING
 
 import msgspec
+import numpy as np
+from PySide6.QtCore import Signal
 from PySide6.QtWidgets import QCheckBox, QHBoxLayout, QTableWidgetItem
 
 from creditdesk.base.display import format_percent
@@ -48,6 +50,7 @@ _LOW_CHART = 150
 class SpreadPage(KeptPage[SimulationSpec]):
     """Tick what is uncertain, set ranges, shapes and correlations; see how far the estimate spreads."""
 
+    shown = Signal()
     kind = SimulationSpec
     title, short = "Spread of the estimate", "Spread"
     hint = "How far the estimate of the PD spreads when inputs are not known exactly; it is not a spread of defaults."
@@ -100,6 +103,17 @@ class SpreadPage(KeptPage[SimulationSpec]):
         self.seed.put(spec.seed)
         self._fill()
 
+    @property
+    def scores(self) -> tuple[float, ...]:
+        """Return the quantiles of the score found, none where they are of another question than the one at hand."""
+        known = self._found is not None and not self.stale and not np.isnan(self._found.scores).any()
+        return tuple(self._found.scores.tolist()) if known and self._found is not None else ()
+
+    def show_age(self) -> None:
+        """Say where the answer is of another question; the curve shows it only as long as it is not."""
+        super().show_age()
+        self.shown.emit()
+
     def show_result(self, asked: Asked, result: Spread) -> None:
         """Draw the simulation and say its numbers."""
         self._found = result
@@ -108,6 +122,7 @@ class SpreadPage(KeptPage[SimulationSpec]):
         if self.chart is not None:
             self.chart.show(spread_picture(asked, result), lambda: spread_numbers(result))
         self.words.setText(spread_words(result))
+        self.shown.emit()
 
     def recolour(self, palette: Palette) -> None:
         """Draw in another palette."""
