@@ -15,9 +15,11 @@ import numpy as np
 import pytest
 from pytest_benchmark.fixture import BenchmarkFixture
 
+from creditdesk.case.comparison import comparing
 from creditdesk.case.convert import load_any
 from creditdesk.case.document import Case
 from creditdesk.case.pencil import PencilBoard
+from creditdesk.case.stress_table import stress_rows
 from creditdesk.case.studies import run_study, sensitivity
 from creditdesk.case.study_offers import offered_studies
 from creditdesk.flow.moves import MoveKind
@@ -167,6 +169,9 @@ def test_how_near_a_stop_is(benchmark: BenchmarkFixture, ground: Ground, path: o
         works[f"{scenario.name or 'ink'}: sensitivity"] = lambda scenario=scenario: sensitivity(  # type: ignore[misc]
             own.board, own.house, scenario
         )
+    names = [scenario.name for scenario in own.case.scenarios]
+    works["side by side"] = lambda: comparing(own.board, own.house, own.case, names)
+    works["stress events"] = lambda: stress_rows(own.board, own.house, own.case)
     first = next(iter(works.values()))
     benchmark.pedantic(lambda: finish(first()), rounds=1)
     if not benchmark.enabled:

@@ -27,7 +27,7 @@ LEVER, LOW, HIGH, UNIT, COST = range(5)
 _HEADS = ("lever", "from", "to", "", "cost")
 _WIDTHS = {LEVER: 176, LOW: 50, HIGH: 52, UNIT: 48, COST: 48}
 _WIDTH = 392
-_UNDOES = "To tick it lets the plan undo that."
+_UNDOES = "Tick it to let the plan undo that."
 _TAKE, _TAKE_BEST = "Take as pencil marks", "Take the best as pencil marks"
 
 
@@ -106,10 +106,10 @@ class ReachPage(KeptPage[ReachSpec]):
         return () if board is None else house_levers(board, draft.session.house, draft.recorded or Scenario(INK))
 
     def _say_marked(self) -> None:
-        """Say which levers the scenario marks itself."""
+        """Say which levers are not pulled because the scenario marks them itself."""
         recorded = self.draft.recorded
         own = {mark.target for mark in recorded.marks} if recorded is not None else set[str]()
-        levers = [lever.range.target for lever, _ in self._levers]
+        levers = [lever.range.target for lever, wanted in self._levers if not wanted]
         marked = [self.draft.targets.label(target) for target in levers if target in own]
         self.marked.setText(f"{', '.join(marked)}: marked by the scenario. {_UNDOES}" if marked else "")
         self.marked.setVisible(bool(marked))
@@ -143,6 +143,7 @@ class ReachPage(KeptPage[ReachSpec]):
             self._fill()
             return
         self._levers[row] = (lever, self.table.ticked(row))
+        self._say_marked()
         self.touched()
 
     def _edited(self, lever: Lever, row: int, column: int) -> Lever:
