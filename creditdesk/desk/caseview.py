@@ -7,7 +7,7 @@ then the sheet in front, then the charts, then the sheets behind.
 from collections.abc import Callable, Iterator, Mapping
 from datetime import datetime
 from functools import partial
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, cast
 
 from PySide6.QtCore import QObject, Qt, QTimer
 from PySide6.QtWidgets import QDialog
@@ -33,6 +33,8 @@ if TYPE_CHECKING:
     from creditdesk.case.document import Case
     from creditdesk.desk.pencil.draft import PencilDraft
     from creditdesk.desk.sheets.base import Sheet
+    from creditdesk.desk.sheets.memo import MemoSheet
+    from creditdesk.desk.sheets.pencil import PencilSheet
 
 _BREATH_MILLISECONDS, _PAINT_MILLISECONDS = 5, 50
 """Between two parts of the work, and where a chart is to be painted in between."""
@@ -67,11 +69,11 @@ class CaseView(QObject):
 
     def close(self) -> None:
         """Remember how the sheets stood, and close the case."""
-        stack = self._window.stack
-        if stack.has(MEMO):
-            self._window.settings.set_split("memo", self._window.memo.split.saveState())
-        if stack.has(PENCIL):
-            self._window.settings.set_split("pencil", self._window.pencil.split.saveState())
+        stack, settings = self._window.stack, self._window.settings
+        for name in (MEMO, PENCIL):
+            if stack.has(name):  # as it is: to bring it up would begin its work anew
+                sheet = cast("MemoSheet | PencilSheet", stack.sheet(name))
+                settings.set_split(name.lower(), sheet.split.saveState())
         self.session.close()
 
     def finds(self) -> Iterator[Find]:

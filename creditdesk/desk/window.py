@@ -87,6 +87,8 @@ class Window(QMainWindow):
         self._own_palette = palette
         self._view: View | None = None
         self._was_painted = False
+        self._after_paint = QTimer(self, singleShot=True)  # the window's own, so that it ends with the window
+        self._after_paint.timeout.connect(self.painted)
         self.header, self.bar, self.stack, self.split = Header(), SheetBar(SHEETS), SheetStack(SHEETS), QSplitter()
         self._beside: QWidget = StandingPlace()
         self.recorded, self.counts = QLabel(), QLabel()
@@ -252,7 +254,7 @@ class Window(QMainWindow):
         super().paintEvent(event)
         if not self._was_painted:
             self._was_painted = True
-            QTimer.singleShot(0, self.painted.emit)
+            self._after_paint.start()
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Keep what lies over the window in its middle."""
@@ -278,6 +280,7 @@ class Window(QMainWindow):
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Let running work end, remember how the window stood, close the case."""
+        self._after_paint.stop()
         self.stack.stop()
         self.jobs.stop()
         self.settings.geometry = self.saveGeometry()

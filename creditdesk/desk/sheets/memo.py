@@ -58,6 +58,8 @@ class MemoSheet(Sheet):
         self.blocks = {key: TextBlock(title, hint) for key, title, hint in BLOCKS}
         self._pause = QTimer(self, singleShot=True, interval=_PAUSE)
         self._pause.timeout.connect(self.refresh)
+        self._share = QTimer(self, singleShot=True)  # its own: Qt keeps what a bare single shot calls, sheet and all
+        self._share.timeout.connect(self.share_height)
         self._connect()
         self.setFocusProxy(self.blocks["request"])
         self._lay_out()
@@ -67,7 +69,7 @@ class MemoSheet(Sheet):
         self._case = case
         for key, block in self.blocks.items():
             block.show_text(case.texts.get(key, ""))
-        QTimer.singleShot(0, self, self.share_height)
+        self._share.start()
         if self.isVisible():
             self._pause.start()
 
@@ -86,7 +88,7 @@ class MemoSheet(Sheet):
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Share the new height among the texts."""
         super().resizeEvent(event)
-        QTimer.singleShot(0, self, self.share_height)
+        self._share.start()
 
     def go_to(self, place: str) -> None:
         """Put the cursor into the block ``texts.<name>``."""
