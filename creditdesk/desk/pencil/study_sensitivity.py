@@ -25,7 +25,7 @@ if TYPE_CHECKING:
 _USUAL_PCT, _MOST_PCT = 10.0, 95.0
 _FIRST, _ALL, _LINES, _RATIOS = "the twelve largest", "all", "lines", "ratios"
 _FIRST_COUNT = 12
-_NOTE = "One at a time, counted from where the scenario stands; points are percentage points of PD."
+_NOTE = "One at a time, from where the scenario stands; points are percentage points of PD. Not printed in the memo."
 
 
 class SensitivityPage(StudyPage):
