@@ -87,7 +87,7 @@ def _power(node: nodes.Power, at: Point) -> Dual:
     result = np.power(value, node.exponent)
     if node.exponent == 0.0:
         return result, None
-    return result, _scaled(node.exponent * np.power(value, node.exponent - 1.0), slope)
+    return result, _through(node.exponent * np.power(value, node.exponent - 1.0), slope)
 
 
 _OUTER: Mapping[str, Callable[[Any, Any], Any]] = {
@@ -106,7 +106,7 @@ def _call(node: nodes.Call, at: Point) -> Dual:
     result = ELEMENTWISE[node.function](value)
     if node.function == "sign" or slope is None:
         return result, None
-    return result, _scaled(_OUTER[node.function](value, result), slope)
+    return result, _through(_OUTER[node.function](value, result), slope)
 
 
 def _extreme(node: nodes.Call, at: Point) -> Dual:
@@ -145,6 +145,11 @@ def _sum(left: Slope, right: Slope) -> Slope:
 
 def _scaled(factor: Value, slope: Slope) -> Slope:
     return None if slope is None else np.multiply(factor, slope)
+
+
+def _through(steepness: Value, slope: Slope) -> Slope:
+    """Apply the chain rule; what does not move gives no slope, however steep the function is there."""
+    return None if slope is None else np.where(np.equal(slope, 0.0), 0.0, np.multiply(steepness, slope))
 
 
 def _known(slope: Slope) -> Value:

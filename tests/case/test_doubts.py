@@ -73,7 +73,12 @@ def test_every_reason_to_be_out_of_scope_is_a_query_of_its_own_and_the_rule_appl
     findings = [finding for finding in one.findings if finding.code == "out_of_scope"]
     assert [finding.severity for finding in findings] == [Severity.QUERY] * 4
     assert {finding.place for finding in findings} == {"model.scope"}
-    for words in ("legal form other", "country code DE", "sector F (ISIC4)", "total assets 205\u202f000\u202f000\u00a0GBP"):
+    for words in (
+        "legal form other",
+        "country code DE",
+        "sector F (ISIC4)",
+        "total assets 205\u202f000\u202f000\u00a0GBP",
+    ):
         assert sum(words in finding.text for finding in findings) == 1, words
     assert one.grade.final == "8"
     assert one.usable

@@ -5,6 +5,7 @@ import math
 import pytest
 from PySide6.QtCore import QPoint, Qt
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QSlider, QStyle, QStyleOptionSlider
 from pytestqt.qtbot import QtBot
 
 from creditdesk.case.assess import assess
@@ -29,6 +30,14 @@ def hands(qtbot: QtBot, house: HouseBook, sound_case: Case) -> Hands:
 @pytest.fixture
 def book(house: HouseBook, sound_case: Case) -> TargetBook:
     return TargetBook(house, assess(sound_case, house))
+
+
+def handle(slider: QSlider) -> QPoint:
+    """Return the middle of the handle, which each style puts where it likes."""
+    asked = QStyleOptionSlider()
+    slider.initStyleOption(asked)
+    parts = QStyle.ComplexControl.CC_Slider, asked, QStyle.SubControl.SC_SliderHandle
+    return slider.style().subControlRect(*parts, slider).center()
 
 
 def test_the_row_shows_the_usual_range_of_the_row_at_hand(hands: Hands) -> None:
@@ -60,8 +69,7 @@ def test_arrow_keys_try_with_each_step_and_keep_when_the_key_is_up(hands: Hands)
 def test_the_mouse_slides_and_keeps_when_it_lets_go(hands: Hands) -> None:
     hands.at("revenue")
     slider = hands.sheet.slider.slider
-    middle = slider.height() // 2
-    start = QPoint(round(slider.width() * 40 / 60), middle)
+    start, middle = handle(slider), handle(slider).y()
     QTest.mousePress(slider, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier, start)
     for x in range(start.x(), slider.width() // 4, -3):
         QTest.mouseMove(slider, QPoint(x, middle))
