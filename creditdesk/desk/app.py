@@ -9,7 +9,7 @@ from PySide6.QtWidgets import QApplication, QMessageBox, QWidget
 
 from creditdesk.base.errors import UserError
 from creditdesk.desk import crash, theme
-from creditdesk.desk.fetching import fetching, spare_what_is_loaded
+from creditdesk.desk.fetching import fetching, let_closed_go, spare_what_is_loaded
 from creditdesk.desk.files import show_faults
 from creditdesk.desk.settings import Settings
 from creditdesk.desk.start import Start
@@ -169,6 +169,8 @@ class Desk(QObject):
     def _on_closed(self, window: Window) -> None:
         self.windows.remove(window)
         window.deleteLater()
+        if self.windows:  # with the last window the program ends
+            QTimer.singleShot(_BREATH_MILLISECONDS, self, let_closed_go)
 
     def _on_crash(self, report: Path) -> None:
         words = "Something in creditdesk failed. The case is safe: every recorded edit is in its file."

@@ -16,7 +16,7 @@ from creditdesk.base.errors import UserError
 from creditdesk.desk import files
 from creditdesk.desk.about import About, Keys, key_sections
 from creditdesk.desk.actions import placed_actions
-from creditdesk.desk.fetching import fetching
+from creditdesk.desk.fetching import fetch, fetching
 from creditdesk.desk.finds import action_finds, case_finds
 from creditdesk.desk.frame import FIGURES, FIND_KEY, MEMO, OBLIGOR, PENCIL, RATIOS
 from creditdesk.desk.headline import describe, recorded_words, status_words
@@ -148,13 +148,14 @@ class CaseView(QObject):
         self._soon(self._fetch_charts)
 
     def _makers(self) -> "Mapping[str, Callable[[], Sheet]]":
-        return {
+        makers = {
             OBLIGOR: self._make_obligor,
             FIGURES: self._make_figures,
             RATIOS: self._make_ratios,
             PENCIL: self._make_pencil,
             MEMO: self._make_memo,
         }
+        return {name: partial(_fetched, name, make) for name, make in makers.items()}
 
     def _make_obligor(self) -> "Sheet":
         from creditdesk.desk.sheets.obligor import ObligorSheet  # a sheet is fetched when it is needed
@@ -260,6 +261,12 @@ class CaseView(QObject):
         states = {entry.document for entry in self.session.trail()}
         no_other = "" if len(states) > 1 else "there is no other state to go back to"
         self._window.menus.allow_revert(self.session.read_only or no_other)
+
+
+def _fetched(name: str, make: "Callable[[], Sheet]") -> "Sheet":
+    """Return a sheet made once no worker is in the midst of fetching what it is made of."""
+    fetch(f"creditdesk.desk.sheets.{name.lower()}")
+    return make()
 
 
 def _fail(error: BaseException) -> None:
