@@ -2,9 +2,10 @@
 
 import threading
 from collections.abc import Callable
+from contextlib import suppress
 from typing import Any
 
-from PySide6.QtCore import QObject, QThreadPool, Signal
+from PySide6.QtCore import QObject, QThreadPool, Signal, SignalInstance
 
 
 class Stopped(Exception):
@@ -24,10 +25,13 @@ class Progress(QObject):
         self._stop = threading.Event()
 
     def step(self, words: str, done: int = 0, total: int = 0) -> None:
-        """Tell what begins now; called by the worker. Raises Stopped where that was asked for."""
+        """Tell what begins now; called by the worker. Raises Stopped where that was asked for or nobody listens."""
         if self._stop.is_set():
             raise Stopped(words)
-        self.told.emit(words, done, total)
+        try:
+            self.told.emit(words, done, total)
+        except RuntimeError:  # Qt has taken this down with the rest of the program
+            raise Stopped(words) from None
 
     def stop(self) -> None:
         """Ask the work to end before its next step."""
@@ -65,9 +69,15 @@ class Job:
         try:
             result = self._work()
         except Exception as error:  # noqa: BLE001  whatever it is, the main thread decides what it means
-            self._messenger.failed.emit(error)
+            _tell(self._messenger.failed, error)
         else:
-            self._messenger.done.emit(result)
+            _tell(self._messenger.done, result)
+
+
+def _tell(signal: SignalInstance, result: object) -> None:
+    """Send a result to the main thread; where Qt has taken the messenger down, nobody waits for it."""
+    with suppress(RuntimeError):
+        signal.emit(result)
 
 
 class Jobs(QObject):

@@ -1,11 +1,14 @@
+import gc
+import weakref
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import pytest
 from msgspec.structs import replace
-from PySide6.QtCore import QObject, QPoint, QSettings
+from PySide6.QtCore import QCoreApplication, QEvent, QObject, QPoint, QSettings
 from PySide6.QtWidgets import QMessageBox, QWidget
 from pytestqt.qtbot import QtBot
+from shiboken6 import isValid
 
 from creditdesk.base.errors import Refusal, UserError
 from creditdesk.case.document import Case, ModelChoice
@@ -240,3 +243,35 @@ def test_our_own_bug_while_a_case_is_read_ends_with_70(
     monkeypatch.setattr("creditdesk.desk.opening.open_session", fail)
     assert program(SOUND) == 70
     assert said == []
+
+
+def test_a_window_closed_beside_another_is_let_go_whole(
+    qtbot: QtBot, desk: Desk, opened: Callable[[Path], Window]
+) -> None:
+    opened(STRETCHED)
+    kept = weakref.ref(opened(SOUND))
+    gc.freeze()  # as it is where libraries are fetched while the window is open
+    desk.windows[1].close()
+    qtbot.waitUntil(lambda: kept() is None)
+
+
+@pytest.mark.parametrize("sheet", ["Figures", "Memo", "Pencil"])
+@pytest.mark.parametrize("milliseconds", [0, 20, 90, 200, 450])
+def test_a_window_can_be_closed_at_any_moment(
+    qtbot: QtBot, desk: Desk, kept: Path, capfd: pytest.CaptureFixture[str], sheet: str, milliseconds: int
+) -> None:
+    """While it opens; while the pages of the memo are drawn; while a study runs."""
+    window = desk.open_path(kept)
+    if sheet != "Figures":
+        qtbot.waitUntil(lambda: window.settled, timeout=20_000)
+        window.show_named(sheet)
+        qtbot.waitUntil(lambda: sheet == "Pencil" or window.memo.jobs.busy)
+        window.pencil.studies.choose(milliseconds % 4) if sheet == "Pencil" else None
+    qtbot.wait(milliseconds)
+    window.close()
+    QCoreApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
+    desk.finish()
+    qtbot.wait(30)
+    assert not isValid(window)
+    assert capfd.readouterr() == ("", "")
+    assert is_free(kept)

@@ -2,10 +2,12 @@ import gc
 import threading
 import weakref
 
+import pytest
 from PySide6.QtCore import QCoreApplication, QEvent
 from pytestqt.qtbot import QtBot
+from shiboken6 import delete
 
-from creditdesk.desk.worker import Jobs, Progress, Stopped
+from creditdesk.desk.worker import Job, Jobs, Progress, Stopped
 
 
 def test_a_result_comes_back_on_the_main_thread(qtbot: QtBot) -> None:
@@ -77,3 +79,16 @@ def test_a_job_that_is_over_keeps_nothing_alive(qtbot: QtBot) -> None:
     QCoreApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
     gc.collect()
     assert kept() is None
+
+
+def test_what_qt_has_taken_down_ends_the_work_without_a_word(capfd: pytest.CaptureFixture[str]) -> None:
+    progress = Progress()
+    seen: list[object] = []
+    job = Job(lambda: progress.step("next"), seen.append, seen.append)
+    delete(progress)
+    delete(job._messenger)
+    job.run()
+    with pytest.raises(Stopped, match="next"):
+        progress.step("next")
+    assert seen == []
+    assert capfd.readouterr() == ("", "")

@@ -149,7 +149,10 @@ class MemoSheet(Sheet):
     def refresh(self) -> None:
         """Draw the memo of the present case in the background."""
         case, house, width = self._case, self._house, self.preview.page_width()
-        if case is None or self._drawn_for == (case, width) or self.jobs.busy:
+        if case is None or self._drawn_for == (case, width):
+            return
+        if self.jobs.busy:  # with other pages, or with some that were stopped because the sheet was out of sight
+            self._pause.start()
             return
         progress = self._progress = Progress()
 
