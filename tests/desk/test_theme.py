@@ -91,7 +91,7 @@ def _all_sheets(qtbot: QtBot, window: Window) -> list[QImage]:
     pictures = []
     for sheet in SHEETS:
         window.show_named(sheet)
-        qtbot.waitUntil(lambda: window.settled)
+        qtbot.waitUntil(lambda: window.settled, timeout=20_000)  # the pages of the memo are drawn among them
         QApplication.processEvents()
         window.setFocus()
         pictures.append(window.grab().toImage())
