@@ -52,7 +52,7 @@ class _Desk:
     scored: Scored
     period: int
     scope: tuple[str, ...]
-    opinions: bool
+    over: Standing | None
 
 
 def assess(case: Case, house: HouseBook, model: str = "") -> Standing:
@@ -66,11 +66,12 @@ def assess(case: Case, house: HouseBook, model: str = "") -> Standing:
 
 
 def assess_statements(
-    case: Case, house: HouseBook, statements: CaseStatements, model: str = "", *, opinions: bool = True
+    case: Case, house: HouseBook, statements: CaseStatements, model: str = "", *, over: Standing | None = None
 ) -> Standing:
     """Say where the borrower of ``case`` would stand with ``statements`` in place of its own; else as ``assess``.
 
-    ``opinions`` False leaves the second opinions out: a sketch that is answered at once shows none.
+    ``over``: the standing of the same case over which a sketch of the assessed period is to be answered at once; the
+    periods before it stand as there, and no second opinions are asked.
     """
     chosen = _model(case, house, model)
     period, period_findings = assessed_period(case.periods, case.assessment.period)
@@ -78,7 +79,7 @@ def assess_statements(
     tables = RatioTables(case, house.catalogue, statements.adjusted, held, chosen.spec.currency)
     scored = score_periods(chosen.spec, tables.of(chosen.spec.currency), house.settings.interval_level)
     scope = out_of_scope(chosen.spec, borrower(case, chosen.spec, statements.adjusted, tables, period))
-    desk = _Desk(case, house, chosen, statements, tables, scored, period, scope, opinions)
+    desk = _Desk(case, house, chosen, statements, tables, scored, period, scope, over)
     return _standing(desk, period_findings)
 
 
@@ -113,7 +114,8 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
     given = without_grade(given, why) if why else given
     factors = factor_standings(scored, house.catalogue, table, period)
     others = [other for other, one in enumerate(case.periods) if other != period and is_actual(one)]
-    past = {other: _past(desk, other) for other in others}
+    known = {} if desk.over is None else dict(zip(others, desk.over.past, strict=True))
+    past = {other: known[other] if other in known and other < period else _past(desk, other) for other in others}
     before = prior_index(case.periods, period)
     last_year = None if before is None else past[before]
     moves, why_no_moves = what_moved(scored, period, factors, before, last_year)
@@ -147,7 +149,7 @@ def _standing(desk: _Desk, period_findings: tuple[Finding, ...]) -> Standing:
         last_year=last_year,
         what_moved=moves,
         what_moved_reason=why_no_moves,
-        second_opinions=_second_opinions(desk) if desk.opinions else (),
+        second_opinions=_second_opinions(desk) if desk.over is None else (),
         findings=findings,
         cautions=(*house.settings.cautions, *spec.cautions, *((UNCERTAINTY,) if spec.covariance else ())),
     )

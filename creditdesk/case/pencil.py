@@ -74,10 +74,11 @@ class PencilBoard:
         held, findings = self._held(flow)
         marked = {key: float(value) for key, value in held.items()}
         pencilled = replace(self._statements, adjusted=pencil_statements(self.ink.statements, flow), held=marked)
+        over = None if opinions else self.ink
         return Pencilled(
             scenario=scenario,
             moves=moves,
-            standing=assess_statements(self._case, self._house, pencilled, self._model, opinions=opinions),
+            standing=assess_statements(self._case, self._house, pencilled, self._model, over=over),
             flow=flow,
             steps=steps(self._book, self.ink.statements, flow),
             findings=(*flow.findings, *findings),

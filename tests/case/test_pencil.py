@@ -84,6 +84,15 @@ def test_without_a_mark_everything_is_the_ink(number_of_case: int) -> None:
     same_numbers(found, ink)
 
 
+@pytest.mark.parametrize("number_of_case", range(len(CASES)))
+def test_a_sketch_is_the_whole_but_for_the_second_opinions(number_of_case: int) -> None:
+    board = BOARDS[number_of_case]
+    whole, sketch = board.scenario(AFRESH).standing, board.scenario(AFRESH, opinions=False).standing
+    assert sketch.second_opinions == ()
+    assert result_bytes(sketch) == result_bytes(replace(whole, second_opinions=()))
+    assert (sketch.past, sketch.what_moved, sketch.findings) == (whole.past, whole.what_moved, whole.findings)
+
+
 def test_a_house_without_a_flow_book_says_so() -> None:
     with pytest.raises(UserError, match=r"flow\.toml"):
         PencilBoard(demo(), replace(HOUSE, flow=None))
