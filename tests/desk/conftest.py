@@ -1,11 +1,12 @@
 """Windows on the demonstration cases, closed again after each test."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Generator, Iterator
 from pathlib import Path
 from weakref import ref
 
 import pytest
-from PySide6.QtCore import QSettings
+from PySide6.QtCore import QCoreApplication, QEvent, QSettings
+from PySide6.QtWidgets import QApplication, QWidget
 from pytestqt.qtbot import QtBot
 
 from creditdesk.case.convert import load_any
@@ -20,11 +21,36 @@ from creditdesk.house.shipped import resources_folder
 
 SOUND = "brackwater-millworks.case.toml"
 STRETCHED = "tarnside-castings.case.toml"
+FAILED = pytest.StashKey[bool]()
 
 
 @pytest.fixture(scope="session")
 def house() -> HouseBook:
     return load_house_book(resources_folder() / "housebook")
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, pytest.TestReport, pytest.TestReport]:
+    """Keep in mind that a test has failed, for what cleans up after it."""
+    report = yield
+    item.stash[FAILED] = item.stash.get(FAILED, False) or report.failed
+    return report
+
+
+@pytest.fixture(autouse=True)
+def _a_failed_test_harms_no_other(request: pytest.FixtureRequest) -> Iterator[None]:
+    """Close what a failed test leaves open, so that the fault is told once and not by the tests that follow."""
+    before = _top_widgets()
+    yield
+    if request.node.stash.get(FAILED, False):
+        for widget in _top_widgets() - before:
+            widget.close()
+            widget.deleteLater()
+        QCoreApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
+
+
+def _top_widgets() -> set[QWidget]:
+    return set(QApplication.topLevelWidgets()) if QApplication.instance() is not None else set()
 
 
 @pytest.fixture(autouse=True)
