@@ -122,6 +122,7 @@ class PencilSheet(Sheet):
         self.bar.show_scenarios(self.draft.case.scenarios, self.draft.active)
         self.about.show_draft()
         self._show_moved()
+        self.assumptions.show_draft()
         self._count_assumptions()
         if another:
             self._go_to_mark()
@@ -138,7 +139,6 @@ class PencilSheet(Sheet):
     def _show_moved(self) -> None:
         """Show what a sketch moves."""
         self.model.show_draft()
-        self.assumptions.show_draft()
         if not self.table.currentIndex().isValid():
             self.table.go_to_first()
         self.slider.show_mark()
