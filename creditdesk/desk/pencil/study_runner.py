@@ -44,7 +44,7 @@ class StudyRunner(QObject):
         self.stop()
         progress = Progress()
         self._progress = progress
-        progress.told.connect(lambda _words, done, _total: self._on_told(progress, done))
+        progress.told.connect(self._on_told)  # a function that knows the progress would keep both for ever
 
         def finished(result: object) -> None:
             if self._ended(progress):
@@ -83,8 +83,8 @@ class StudyRunner(QObject):
         self._progress = None
         return True
 
-    def _on_told(self, progress: Progress, done: int) -> None:
-        if self._progress is progress:
+    def _on_told(self, _words: str, done: int) -> None:
+        if self.sender() is self._progress:
             self.progressed.emit(done)
 
 
