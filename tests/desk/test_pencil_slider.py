@@ -3,9 +3,10 @@
 import math
 
 import pytest
-from PySide6.QtCore import QPoint, Qt
+from PySide6.QtCore import QEvent, QPoint, Qt
+from PySide6.QtGui import QMouseEvent
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QSlider, QStyle, QStyleOptionSlider
+from PySide6.QtWidgets import QApplication, QSlider, QStyle, QStyleOptionSlider
 from pytestqt.qtbot import QtBot
 
 from creditdesk.case.assess import assess
@@ -40,6 +41,13 @@ def handle(slider: QSlider) -> QPoint:
     return slider.style().subControlRect(*parts, slider).center()
 
 
+def drag(slider: QSlider, at: QPoint) -> None:
+    """Move the mouse, its button down, on the slider itself, whatever else lies at that place of the screen."""
+    buttons = Qt.MouseButton.NoButton, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier
+    place = at.toPointF(), slider.mapToGlobal(at).toPointF()
+    QApplication.sendEvent(slider, QMouseEvent(QEvent.Type.MouseMove, *place, *buttons))
+
+
 def test_the_row_shows_the_usual_range_of_the_row_at_hand(hands: Hands) -> None:
     hands.at("revenue")
     row = hands.sheet.slider
@@ -72,7 +80,7 @@ def test_the_mouse_slides_and_keeps_when_it_lets_go(hands: Hands) -> None:
     start, middle = handle(slider), handle(slider).y()
     QTest.mousePress(slider, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier, start)
     for x in range(start.x(), slider.width() // 4, -3):
-        QTest.mouseMove(slider, QPoint(x, middle))
+        drag(slider, QPoint(x, middle))
     assert hands.draft.sketching is not None
     assert hands.case.scenarios == ()
     QTest.mouseRelease(slider, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier, QPoint(x, middle))
