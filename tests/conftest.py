@@ -74,18 +74,21 @@ def _nothing_left_behind() -> Iterator[None]:
     yield
     running = [thread.name for thread in threading.enumerate() if thread not in threads and not thread.daemon]
     assert not running, f"threads still run: {running}"
-    _let_go_of_the_keys()
+    _let_go_of_keys_and_buttons()
     left = [f"{type(window).__name__} {window.objectName()}" for window in _windows() if window not in windows]
     assert not left, f"windows are left behind: {left}"
 
 
-def _let_go_of_the_keys() -> None:
-    """Lift Shift and Ctrl, which Qt takes for held down after a test's last key, whichever test comes next."""
+def _let_go_of_keys_and_buttons() -> None:
+    """Lift keys and buttons, which Qt takes for held down after a test's last ones, whichever test comes next."""
     widgets, test = sys.modules.get("PySide6.QtWidgets"), sys.modules.get("PySide6.QtTest")
     if widgets is None or test is None or widgets.QApplication.instance() is None:
         return
     widget = widgets.QWidget()
-    test.QTest.keyClick(widget, sys.modules["PySide6.QtCore"].Qt.Key.Key_A)
+    keys_and_buttons = sys.modules["PySide6.QtCore"].Qt
+    test.QTest.keyClick(widget, keys_and_buttons.Key.Key_A)
+    for button in (keys_and_buttons.MouseButton.LeftButton, keys_and_buttons.MouseButton.RightButton):
+        test.QTest.mouseRelease(widget, button)
     widget.deleteLater()
 
 
